@@ -1,0 +1,8 @@
+"""`python -m seqcheck` is the same as the command `seqcheck`."""
+
+import sys
+
+from seqcheck.cli import main
+
+if __name__ == "__main__":
+    sys.exit(main())

@@ -1,0 +1,62 @@
+"""Exact quantities: rational numbers go in, whole picoseconds come out, rounded so that no behaviour is lost."""
+
+from dataclasses import dataclass
+from fractions import Fraction
+from math import ceil, floor
+
+PICOSECONDS: dict[str, Fraction] = {
+    "ps": Fraction(1),
+    "ns": Fraction(10**3),
+    "us": Fraction(10**6),
+    "\u00b5s": Fraction(10**6),  # micro sign
+    "\u03bcs": Fraction(10**6),  # Greek small letter mu, which many keyboards give instead
+    "ms": Fraction(10**9),
+    "s": Fraction(10**12),
+}
+HERTZ: dict[str, Fraction] = {
+    "Hz": Fraction(1),
+    "kHz": Fraction(10**3),
+    "MHz": Fraction(10**6),
+    "GHz": Fraction(10**9),
+}
+RATIOS: dict[str, Fraction] = {"%": Fraction(1, 100), "ppm": Fraction(1, 10**6)}
+
+_SHOWN = ((10**12, "s"), (10**9, "ms"), (10**6, "us"), (10**3, "ns"), (1, "ps"))
+
+
+@dataclass(frozen=True, slots=True)
+class Interval:
+    """A span of whole picoseconds with both ends included; `hi` is None where there is no upper bound."""
+
+    lo: int
+    hi: int | None
+
+    def __add__(self, other: "Interval") -> "Interval":
+        hi = None if self.hi is None or other.hi is None else self.hi + other.hi
+        return Interval(self.lo + other.lo, hi)
+
+
+INSTANT = Interval(0, 0)
+
+
+def outwards(lo: Fraction, hi: Fraction | None) -> Interval:
+    """The smallest interval of whole picoseconds around [lo, hi], given in picoseconds."""
+    return Interval(floor(lo), None if hi is None else ceil(hi))
+
+
+def widened(lo: Fraction, hi: Fraction | None, tolerance: Fraction) -> Interval:
+    """A duration kept by a clock whose frequency is right within `tolerance` (below 1), rounded outwards.
+
+    A clock that runs fast by R makes D/(1+R) of D, one that runs slow D/(1-R).
+    """
+    return outwards(lo / (1 + tolerance), None if hi is None else hi / (1 - tolerance))
+
+
+def shown(time: int) -> str:
+    """A time in picoseconds for people, exact, in the largest unit that keeps it at or above one: `12.5 us`."""
+    if time == 0:
+        return "0 s"
+    size, unit = next((size, unit) for size, unit in _SHOWN if abs(time) >= size)
+    whole, rest = divmod(abs(time), size)
+    digits = str(rest + size)[1:].rstrip("0") if rest else ""
+    return f"{'-' if time < 0 else ''}{whole}{'.' if digits else ''}{digits} {unit}"

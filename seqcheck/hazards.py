@@ -1,9 +1,11 @@
 """What must never happen, as data."""
 
+from collections import Counter
+from collections.abc import Mapping
 from dataclasses import dataclass
 
-from seqcheck.drive import Above
-from seqcheck.quantities import Interval
+from seqcheck.drive import Above, Part
+from seqcheck.quantities import INSTANT, Interval
 
 
 @dataclass(frozen=True, slots=True, order=True)
@@ -40,9 +42,51 @@ class Hazard:
     needs: tuple[frozenset[Above], ...] = ()
 
 
-@dataclass(frozen=True, slots=True)
-class Reach:
-    """The bounds of one switch's path, parts in series added."""
+def reach(parts: tuple[Part, ...]) -> tuple[Interval, Interval]:
+    """The bounds of a path's turn-on and turn-off: parts in series add."""
+    on, off = INSTANT, INSTANT
+    for part in parts:
+        on, off = on + part.on, off + part.off
+    return on, off
 
-    on: Interval
-    off: Interval
+
+def delays(hazard: Hazard, paths: Mapping[str, tuple[Part, ...]]) -> tuple[Delays, ...]:
+    """From command to possibility and back, for each literal in order; with the raise that `difference` allows."""
+    plain = tuple(_plain(literal, paths[literal.switch]) for literal in hazard.literals)
+    if len(plain) != 2 or not all(literal.on for literal in hazard.literals):
+        return plain
+    first, second = (paths[literal.switch] for literal in hazard.literals)
+    return _raised(plain[0], plain[1], second, first), _raised(plain[1], plain[0], first, second)
+
+
+def _plain(literal: Literal, parts: tuple[Part, ...]) -> Delays:
+    on, off = reach(parts)
+    return Delays(on.lo, _bounded(off)) if literal.on else Delays(off.lo, _bounded(on))
+
+
+def _bounded(interval: Interval) -> int:
+    assert interval.hi is not None, "the language asks for an upper bound of every part"
+    return interval.hi
+
+
+def _raised(mine: Delays, other: Delays, other_parts: tuple[Part, ...], my_parts: tuple[Part, ...]) -> Delays:
+    """My `rise`, raised to where the difference lets me follow the other switch's turn-off at the soonest."""
+    apart = min(other.fall - _excess(other_parts, my_parts), mine.fall)
+    return Delays(max(mine.rise, apart), mine.fall)
+
+
+def _excess(leaving: tuple[Part, ...], joining: tuple[Part, ...]) -> int:
+    """The most by which the turn-off of one path exceeds the turn-on of the other.
+
+    Parts that stand on both paths are two samples of one kind: their difference counts where it is smaller.
+    """
+    own, other = Counter(part.name for part in leaving), Counter(part.name for part in joining)
+    shared = own & other
+    kinds = {part.name: part for part in (*leaving, *joining)}
+    total = sum(_bounded(kinds[name].off) * count for name, count in (own - shared).items())
+    total -= sum(kinds[name].on.lo * count for name, count in (other - shared).items())
+    for name, count in shared.items():
+        part = kinds[name]
+        plain = _bounded(part.off) - part.on.lo
+        total += count * (plain if part.difference is None else min(plain, part.difference))
+    return total

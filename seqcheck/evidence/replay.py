@@ -1,0 +1,69 @@
+"""The replay of a trace: by the meaning of the drive alone, so that it can contradict whatever made the trace."""
+
+from seqcheck.drive import Drive
+from seqcheck.evidence.endless import require_endless
+from seqcheck.evidence.facts import asked_for
+from seqcheck.evidence.possible import Stretch, delays, possible, stretches, together, wanted, within_trace
+from seqcheck.evidence.refusal import NotPermitted
+from seqcheck.evidence.walk import Walk
+from seqcheck.hazards import Delays, Literal
+from seqcheck.quantities import shown
+from seqcheck.verdict import Replayed, Span, Trace
+
+__all__ = ["NotPermitted", "replay"]
+
+
+def replay(drive: Drive, trace: Trace) -> Replayed:
+    """Walk through `trace` with concrete times, and confirm the overlap that it claims.
+
+    `commands` of the answer also holds pulses of no length, as two changes at one time; `possible` starts at time 0
+    where a literal was possible before. Raises NotPermitted, with a sentence, where an event is not permitted at its
+    time, a deadline is overrun, or the overlap is not exactly one in which all literals are possible and the hazard
+    is asked for.
+    """
+    walk = _walked(drive, trace)
+    found = delays(drive, trace.hazard)
+    spans = {literal: _possible(walk, literal, found[literal], trace.end) for literal in found}
+    asked = possible(stretches(walk.known, asked_for(trace.hazard)), Delays(0, 0))
+    overlaps = together([*spans.values(), within_trace(asked, trace.end)])
+    claimed = Span(trace.overlap_from, trace.overlap_to)
+    if claimed not in overlaps:
+        raise NotPermitted(
+            f"The overlap {_between(claimed)} is not one of the run: all literals are possible together "
+            + (", ".join(map(_between, overlaps)) or "at no time")
+            + "."
+        )
+    if claimed.end is None:
+        _require_endless(drive, walk, found)
+    commands = {switch: tuple(timeline) for switch, timeline in walk.commands.items()}
+    return Replayed(commands, spans, claimed)
+
+
+def _walked(drive: Drive, trace: Trace) -> Walk:
+    unknown = [one.switch for one in trace.hazard.literals if one.switch not in drive.columns]
+    if unknown or not trace.hazard.literals:
+        raise NotPermitted(f"The hazard is none of the drive: {', '.join(unknown) or 'it has no literal'}.")
+    try:
+        walk = Walk(drive, trace)
+    except NotPermitted as why:
+        raise NotPermitted(f"The start of the run is not permitted: {why}.") from None
+    for number, event in enumerate(trace.events, start=1):
+        walk.step(number, event)
+    walk.finish(trace.end)
+    return walk
+
+
+def _possible(walk: Walk, literal: Literal, times: Delays, end: int) -> tuple[Span, ...]:
+    pieces: list[Stretch] = stretches(walk.commands[literal.switch], lambda command: wanted(literal, command))
+    return within_trace(possible(pieces, times), end)
+
+
+def _require_endless(drive: Drive, walk: Walk, found: dict[Literal, Delays]) -> None:
+    try:
+        require_endless(drive, walk, found)
+    except NotPermitted as why:
+        raise NotPermitted(f"The overlap has an end after {shown(walk.now)}, against the claim: {why}.") from None
+
+
+def _between(span: Span) -> str:
+    return f"from {shown(span.start)} {'without end' if span.end is None else f'to {shown(span.end)}'}"

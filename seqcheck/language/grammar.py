@@ -1,0 +1,62 @@
+"""Finding and building the grammar; parsing one line."""
+
+from collections.abc import Iterator
+from functools import lru_cache
+from importlib.resources import files
+from pathlib import Path
+from typing import Any
+
+from lark import Lark, Token, UnexpectedInput
+from lark.lark import PostLex
+
+from seqcheck.language.building import Builder
+from seqcheck.language.mistakes import explained, reserved
+from seqcheck.language.syntax import Node
+from seqcheck.language.words import SECTIONS
+from seqcheck.messages import Problem
+
+STATEMENT = "statement"
+STARTS = (STATEMENT, *(f"{section}_line" for section in SECTIONS))
+
+
+def grammar_text() -> str:
+    """The grammar: beside the code where a wheel puts it, else beside the package as in a checkout."""
+    try:
+        return (files("seqcheck") / "grammars" / "drive.lark").read_text("utf-8")
+    except OSError:
+        return (Path(__file__).parents[2] / "grammars" / "drive.lark").read_text("utf-8")
+
+
+class _WholeWords(PostLex):
+    """Lets the contextual lexer try NAME everywhere, or `legs` would be read as `leg` and `s`."""
+
+    always_accept = ("NAME",)
+
+    def process(self, stream: Iterator[Token]) -> Iterator[Token]:
+        """The tokens as they are."""
+        return stream
+
+
+def built(text: str, builder: Builder | None, strict: bool = False) -> Lark:
+    """A parser from the grammar's text; a cache of built parsers would stand here."""
+    return Lark(text, parser="lalr", start=list(STARTS), transformer=builder, strict=strict, postlex=_WholeWords())
+
+
+@lru_cache(maxsize=1)
+def _ready() -> tuple[Lark, Builder]:
+    builder = Builder()
+    return built(grammar_text(), builder), builder
+
+
+def parsed(text: str, start: str, file: str, line: int) -> Node | Problem:
+    """What one line says, or the mistake at which it cannot be read on."""
+    parser, builder = _ready()
+    builder.file, builder.line = file, line
+    builder.reserved.clear()
+    try:
+        node: Any = parser.parse(text, start)
+    except UnexpectedInput as error:
+        return explained(error, text, file, line, {one.name: one.pattern.value for one in parser.terminals})
+    if builder.reserved:
+        return reserved(*builder.reserved[0])
+    return node  # type: ignore[no-any-return] # the builder made it

@@ -1,0 +1,141 @@
+"""The proof of one hazard: the screen, then zones with phases forgotten, then exact zones.
+
+Everything is tried first with the firmware's upper bounds removed: what holds then holds however late the firmware is.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from seqcheck.drive import Drive, Fixed, Follow, Update
+from seqcheck.firmware import Firmware
+from seqcheck.hazards import Hazard, delays
+from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.screen import Map, screened
+from seqcheck.proving.search import Longest, first_hazard, longest_overlap
+from seqcheck.proving.tracing import trace_of
+from seqcheck.proving.views import View, view
+from seqcheck.verdict import Trace
+from seqcheck.zones import INFINITE
+
+Observer = Callable[[int], None]
+
+
+class LimitReached(Exception):
+    """The observer's way to stop a proof; its text names the limit."""
+
+
+@dataclass(frozen=True, slots=True)
+class Proven:
+    """No run brings the hazard; `method` is "screen" or "zones"."""
+
+    method: str
+    zones: int
+    however_late: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Refuted:
+    """A run that brings the hazard: `held` by a mode itself or in passing; `overlap` None is without end."""
+
+    trace: Trace
+    held: bool
+    overlap: int | None
+    zones: int
+
+
+@dataclass(slots=True)
+class _Count:
+    """Zones over all searches of one proof."""
+
+    observer: Observer
+    before: int = 0
+    last: int = 0
+
+    def __call__(self, count: int) -> None:
+        self.last = count
+        self.observer(self.before + count)
+
+    def next_search(self) -> None:
+        self.before, self.last = self.before + self.last, 0
+
+    @property
+    def total(self) -> int:
+        return self.before + self.last
+
+
+class Prover:
+    """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them."""
+
+    def __init__(self, drive: Drive) -> None:
+        self.drive = drive
+        self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool], Firmware] = {}
+        self._maps: dict[Firmware, Map] = {}
+
+    def prove(self, hazard: Hazard, interlocks: bool, observer: Observer) -> Proven | Refuted:
+        """Prove or refute one hazard, with or without the drive's interlocks. What the observer raises passes through."""
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
+        count = _Count(observer)
+        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+            return Proven("screen", 0, True)
+        for punctual in (False, True):
+            for manner in _manners(looking):
+                if self._safe(looking, punctual, manner, count):
+                    return Proven("zones", count.total, not punctual)
+        return self._refute(looking, interlocks, count)
+
+    def _safe(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> bool:
+        count.next_search()
+        projection = Projection(looking, self._firmware(looking, punctual), manner)
+        return first_hazard(projection.initial(), count) is None
+
+    def _refute(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+        firmware = self._firmware(looking, punctual=True)
+        ceiling: int | None = None
+        *rough, exact = (Projection(looking, firmware, manner) for manner in _manners(looking, measure=True))
+        for projection in rough:
+            count.next_search()
+            bound = longest_overlap(projection.initial(), count, None, may_hold=False)
+            ceiling = bound.time if bound else None
+        count.next_search()
+        found = longest_overlap(exact.initial(), count, ceiling, _may_hold(looking))
+        assert found is not None, "a first hazard was found before"
+        return _refuted(exact, found, interlocks, count.total)
+
+    def _firmware(self, looking: View, punctual: bool) -> Firmware:
+        waiting = frozenset(
+            name for name in looking.carriers if self.drive.carriers[name].update is not Update.AT_ONCE
+        )
+        key = (waiting, frozenset(looking.switches) if waiting else frozenset(), punctual)
+        if key not in self._firmwares:
+            self._firmwares[key] = Firmware(self.drive, *key)
+        return self._firmwares[key]
+
+    def _map(self, firmware: Firmware) -> Map:
+        if firmware not in self._maps:
+            self._maps[firmware] = Map(firmware)
+        return self._maps[firmware]
+
+
+def _manners(looking: View, measure: bool = False) -> tuple[Manner, ...]:
+    exact = Manner(forget=False, cut=True, measure=measure)
+    return (Manner(forget=True, cut=True, measure=measure), exact) if looking.carriers else (exact,)
+
+
+def _may_hold(looking: View) -> bool:
+    """Whether some row could command all literals at once."""
+    drive = looking.drive
+    columns = [drive.columns.index(one.switch) for one in looking.hazard.literals]
+    sides = (Fixed.OFF, Fixed.ON)
+    for mode in drive.modes.values():
+        cells = [(mode.cells[column], one.on) for column, one in zip(columns, looking.hazard.literals, strict=True)]
+        if all(isinstance(cell, Follow) or cell not in sides or (cell is Fixed.ON) == on for cell, on in cells):
+            return True
+    return False
+
+
+def _refuted(projection: Projection, found: Longest, interlocks: bool, zones: int) -> Refuted:
+    node = found.held or found.node
+    location = node.location
+    time = node.zone[location.measure * location.size]
+    endless = found.time is None and (found.held is None or time >= INFINITE)
+    return Refuted(trace_of(projection, node, endless, interlocks), found.held is not None, found.time, zones)

@@ -1,0 +1,214 @@
+"""The screen: settle a pair of switches by least times alone, without zones.
+
+Let d(X→Y) be the least time from a command of X going away to one of Y coming, pulses of no length included. The pair
+never meets if no state commands both, d(X→Y) ≥ out(X) − in(Y), d(Y→X) ≥ out(Y) − in(X), and the sum of both is strictly
+more than either `out`: else a stretch of possibility could outlast the other switch's whole pulse and its own next
+beginning. Upper bounds of firmware play no part, so what the screen settles holds however late the firmware is.
+Interlocks are left out: they only shorten pulses.
+"""
+
+from collections import deque
+from collections.abc import Iterator
+from heapq import heappop, heappush
+from itertools import combinations
+from typing import NamedTuple
+
+from seqcheck.drive import Update
+from seqcheck.firmware import Firmware, State
+from seqcheck.hazards import Delays, Literal
+from seqcheck.proving.projection import C_BOTH, C_OFF, C_ON, CODES
+from seqcheck.proving.views import View
+from seqcheck.writing import FREE, ON, carrier_of
+from seqcheck.zones import INFINITE
+
+Pair = tuple[int, int]
+
+
+class Arc(NamedTuple):
+    """A change of the firmware's state; `restarts` where it starts the clock of the next."""
+
+    least: int
+    target: int
+    restarts: bool
+
+
+class Map:
+    """All states of a firmware with the least times between them."""
+
+    def __init__(self, firmware: Firmware) -> None:
+        self.firmware = firmware
+        self.states: list[State] = [firmware.start()]
+        self.arcs: list[tuple[Arc, ...]] = []
+        numbers = {self.states[0]: 0}
+        while len(self.arcs) < len(self.states):
+            state = self.states[len(self.arcs)]
+            arcs = []
+            for least, target, restarts in _next(firmware, state):
+                if target not in numbers:
+                    numbers[target] = len(self.states)
+                    self.states.append(target)
+                arcs.append(Arc(least, numbers[target], restarts))
+            self.arcs.append(tuple(dict.fromkeys(arcs)))
+
+
+def _next(firmware: Firmware, state: State) -> Iterator[tuple[int, State, bool]]:
+    for edge in firmware.edges(state):
+        yield edge.lo, edge.step.target, True
+    written, effective, _ = state.put
+    if written != effective:
+        holders = {firmware.writing.holder(old, new) for new, old in zip(written, effective, strict=True) if new != old}
+        for number in sorted(holders):
+            yield 0, firmware.updated(state, number), False
+
+
+def screened(view: View, here: Map) -> bool:
+    """Whether some pair of the hazard's literals never meets."""
+    places = range(len(view.hazard.literals))
+    return any(_Pairing(view, here, first, second).apart() for first, second in combinations(places, 2))
+
+
+class _Pairing:
+    """Two literals over the map of a firmware; a point is (state, commands of both)."""
+
+    def __init__(self, view: View, here: Map, first: int, second: int) -> None:
+        drive = view.drive
+        self.here = here
+        self.literals: tuple[Literal, Literal] = (view.hazard.literals[first], view.hazard.literals[second])
+        self.delays: tuple[Delays, Delays] = (view.delays[first], view.delays[second])
+        self.columns = tuple(drive.columns.index(one.switch) for one in self.literals)
+        pins = [drive.pins.get(one.switch) for one in self.literals]
+        self.rests = tuple(C_OFF if pin is None else CODES[pin.resting] for pin in pins)
+        carriers = tuple(drive.carriers.values())
+        self.dead = tuple(carrier.dead.lo for carrier in carriers)
+        self.updates = tuple(carrier.update is not Update.AT_ONCE for carrier in carriers)
+
+    def apart(self) -> bool:
+        points = self._points()
+        if points is None:
+            return False
+        one_way, other_way = self._least(points, 0), self._least(points, 1)
+        first, second = self.delays
+        if one_way < first.fall - second.rise or other_way < second.fall - first.rise:
+            return False
+        return one_way + other_way > max(first.fall, second.fall)
+
+    def _wanted(self, pair: Pair, which: int) -> bool:
+        return pair[which] == C_BOTH or (pair[which] == C_ON) == self.literals[which].on
+
+    def _cells(self, state: int) -> Pair:
+        effective = self.here.states[state].put[1]
+        return effective[self.columns[0]], effective[self.columns[1]]
+
+    def _points(self) -> set[tuple[int, Pair]] | None:
+        """All points that can be reached; None if one of them commands both."""
+        starts = [(0, pair) for pair in self._joined(0, None)]
+        seen = set(starts)
+        waiting = deque(starts)
+        while waiting:
+            point = waiting.popleft()
+            if self._wanted(point[1], 0) and self._wanted(point[1], 1):
+                return None
+            for _, target, _ in self._steps(point):
+                if target not in seen:
+                    seen.add(target)
+                    waiting.append(target)
+        return seen
+
+    def _steps(self, point: tuple[int, Pair]) -> Iterator[tuple[Arc | None, tuple[int, Pair], bool]]:
+        """What can come next: (the firmware's arc or None, the point after it, whether the arc restarts the clock)."""
+        state, pair = point
+        for other in self._drifting(state, pair):
+            yield None, (state, other), False
+        before = self._cells(state)
+        for arc in self.here.arcs[state]:
+            kept = self._kept(before, pair, arc.target)
+            for other in self._joined(arc.target, kept):
+                yield arc, (arc.target, other), arc.restarts
+
+    def _kept(self, before: Pair, pair: Pair, target: int) -> tuple[int | None, int | None]:
+        """The commands that an arc leaves as they were; None where the switch joins a carrier."""
+        after = self._cells(target)
+        first = pair[0] if after[0] == before[0] or after[0] == FREE else None
+        second = pair[1] if after[1] == before[1] or after[1] == FREE else None
+        return first, second
+
+    def _joined(self, state: int, kept: tuple[int | None, int | None] | None) -> list[Pair]:
+        """The commands with which a state can begin."""
+        cells = self._cells(state)
+        choices = []
+        for which in (0, 1):
+            cell, old = cells[which], kept[which] if kept else None
+            if cell <= ON:
+                choices.append([cell])
+            elif old is not None:
+                choices.append([old, self.rests[which]] if cell == FREE else [old])
+            else:
+                choices.append([self.rests[which]] if cell == FREE else [C_OFF, C_ON])
+        return [(a, b) for a in choices[0] for b in choices[1] if self._fits(cells, (a, b))]
+
+    def _drifting(self, state: int, pair: Pair) -> list[Pair]:
+        """The commands that carriers and resting pins can make of these without the firmware."""
+        cells = self._cells(state)
+        choices = []
+        for which in (0, 1):
+            if cells[which] <= ON:
+                choices.append([pair[which]])
+            elif cells[which] == FREE:
+                choices.append([pair[which], self.rests[which]])
+            else:
+                choices.append([C_OFF, C_ON])
+        return [(a, b) for a in choices[0] for b in choices[1] if (a, b) != pair and self._fits(cells, (a, b))]
+
+    def _fits(self, cells: Pair, pair: Pair) -> bool:
+        """Whether two switches on one carrier can have these commands."""
+        one, other = carrier_of(cells[0]), carrier_of(cells[1])
+        if one < 0 or one != other:
+            return True
+        return pair[0] == pair[1] if cells[0] == cells[1] else pair != (C_ON, C_ON)
+
+    def _least(self, points: set[tuple[int, Pair]], leaving: int) -> int:
+        """The least time from the command of one literal going away to the other's coming."""
+        sources: dict[int, set[tuple[int, Pair, bool]]] = {}
+        coming = 1 - leaving
+        best = INFINITE
+        for point in points:
+            if not self._wanted(point[1], leaving):
+                continue
+            cell = self._cells(point[0])[leaving]
+            for arc, target, restarts in self._steps(point):
+                if self._wanted(target[1], leaving):
+                    continue
+                if not self._wanted(point[1], coming) and self._wanted(target[1], coming):
+                    best = min(best, self._floor(cell, target, coming))
+                sources.setdefault(cell, set()).add((*target, arc is not None and restarts))
+        for cell, starts in sources.items():
+            best = min(best, self._shortest(cell, starts, coming, best))
+        return best
+
+    def _floor(self, cell: int, target: tuple[int, Pair], coming: int) -> int:
+        """A dead time that lies between: one switch was on with a carrier's output, the other comes with its complement."""
+        number = carrier_of(cell)
+        after = self._cells(target[0])[coming]
+        opposite = number >= 0 and carrier_of(after) == number and after != cell
+        return self.dead[number] if opposite else 0
+
+    def _shortest(self, cell: int, starts: set[tuple[int, Pair, bool]], coming: int, ceiling: int) -> int:
+        """Dijkstra's algorithm; an arc costs its least time where the clock is known to have started on the way."""
+        best = dict.fromkeys(starts, 0)
+        queue = [(0, start) for start in sorted(starts)]
+        while queue:
+            time, here = heappop(queue)
+            if time >= ceiling:
+                return ceiling
+            if time > best[here]:
+                continue
+            state, pair, known = here
+            for arc, target, restarts in self._steps((state, pair)):
+                later = time + (arc.least if arc is not None and known and restarts else 0)
+                if not self._wanted(pair, coming) and self._wanted(target[1], coming):
+                    ceiling = min(ceiling, max(later, self._floor(cell, target, coming)))
+                there = (*target, restarts or known)
+                if later < best.get(there, INFINITE):
+                    best[there] = later
+                    heappush(queue, (later, there))
+        return ceiling

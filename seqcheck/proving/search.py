@@ -1,0 +1,176 @@
+"""Zone exploration: all runs at once, breadth first by the number of moves.
+
+The search does not know what a location means. It is handed the ways to start and asks locations for their hops; an
+observer is told of every stored zone and may stop the search by raising. A zone that a stored one includes is dropped;
+that keeps what can be reached (Alur and Dill 1994), and with it the fewest moves, since fewer moves come first.
+"""
+
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
+
+from seqcheck.proving.location import Bound, Hop, Location
+from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limited, renamed
+
+Observer = Callable[[int], None]
+
+
+@dataclass(slots=True, eq=False)
+class Node:
+    """A stored zone and how it was reached; `parent` is None where the run starts."""
+
+    location: Location
+    zone: Zone
+    parent: "Node | None"
+    hop: Hop
+    moves: int
+    alive: bool = True
+
+    def path(self) -> list["Node"]:
+        """The nodes from the start of the run to this one."""
+        nodes: list[Node] = []
+        node: Node | None = self
+        while node is not None:
+            nodes.append(node)
+            node = node.parent
+        return nodes[::-1]
+
+
+def successor(zone: Zone, size: int, hop: Hop) -> Zone | None:
+    """The zone after a hop and any delay in its target, widened as the target allows; None if no run takes the hop."""
+    left = _limited(zone, size, hop.least, hop.most)
+    if left is None:
+        return None
+    target = hop.target
+    entered = _limited(renamed(left, size, hop.sources), target.size, hop.after, ())
+    if entered is None:
+        return None
+    stayed = delayed(entered, target.size, target.bounds)
+    if stayed is None:
+        return None
+    return extrapolated(stayed, target.size, target.lower, target.upper)
+
+
+def _limited(zone: Zone, size: int, least: tuple[Bound, ...], most: tuple[Bound, ...]) -> Zone | None:
+    current: Zone | None = zone
+    for clock, value in least:
+        if current is not None:
+            current = limited(current, size, 0, clock, -value)
+    for clock, value in most:
+        if current is not None:
+            current = limited(current, size, clock, 0, value)
+    return current
+
+
+def ticks(location: Location, zone: Zone) -> bool:
+    """Whether time can pass in the location."""
+    return all(-zone[clock] < bound for clock, bound in location.bounds)
+
+
+def nodes(initial: Iterable[Hop], observer: Observer) -> Iterator[Node]:
+    """All stored zones, fewest moves first; on every step each zone before is stored or included in a stored one."""
+    level: list[Node] = []
+    count = 0
+    for hop in initial:
+        node = _stored(None, [0], 1, hop)
+        if node is not None:
+            count += 1
+            observer(count)
+            level.append(node)
+            yield node
+    while level:
+        following: list[Node] = []
+        for node in level:  # grows while it is walked through
+            if not node.alive:
+                continue
+            for hop in node.location.out():
+                new = _stored(node, node.zone, node.location.size, hop)
+                if new is None:
+                    continue
+                count += 1
+                observer(count)
+                (following if hop.cost else level).append(new)
+                yield new
+        level = following
+
+
+def _stored(parent: Node | None, zone: Zone, size: int, hop: Hop) -> Node | None:
+    new = successor(zone, size, hop)
+    if new is None:
+        return None
+    passed = hop.target.passed
+    for old, _ in passed:
+        if includes(old, new):
+            return None
+    node = Node(hop.target, new, parent, hop, (parent.moves if parent else 0) + hop.cost)
+    kept: list[tuple[Zone, object]] = []
+    for old, owner in passed:
+        if includes(new, old):
+            assert isinstance(owner, Node)
+            owner.alive = False
+        else:
+            kept.append((old, owner))
+    kept.append((new, node))
+    hop.target.passed = kept
+    return node
+
+
+def first_hazard(initial: Iterable[Hop], observer: Observer) -> Node | None:
+    """The first stored zone in which all literals are possible for a positive time; None if there is none."""
+    for node in nodes(initial, observer):
+        if node.location.hot and ticks(node.location, node.zone):
+            return node
+    return None
+
+
+@dataclass(frozen=True, slots=True)
+class Longest:
+    """The longest overlap and the run that shows it; `time` None: without end. `held` is a run to a mode that holds
+    the hazard, if there is one."""
+
+    time: int | None
+    node: Node
+    held: Node | None
+
+
+def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | None, may_hold: bool) -> Longest | None:
+    """The longest overlap of all runs.
+
+    `ceiling` is a bound known beforehand (None: none): the search ends where it is reached. With `may_hold` the search
+    also looks for a mode that holds the hazard.
+    """
+    best: Node | None = None
+    most = 0
+    held: Node | None = None
+    for node in nodes(initial, observer):
+        if not node.location.hot or not ticks(node.location, node.zone):
+            continue
+        if held is None and node.location.held:
+            held = node
+        time = node.zone[node.location.measure * node.location.size]
+        if time < INFINITE and _pumps(node):
+            time = INFINITE
+        if time > most:
+            best, most = node, time
+        if most >= (INFINITE if ceiling is None else ceiling) and (held is not None or not may_hold):
+            break
+    if best is None:
+        return None
+    return Longest(None if most >= INFINITE else most, best, held)
+
+
+def _pumps(node: Node) -> bool:
+    """Whether the overlap of a run goes through a circle that can be gone through again and again.
+
+    That is so where the run comes to a location again with all values it had there before (apart from the measuring
+    clock), and a longer overlap: what it did between it can then do once more from everywhere.
+    """
+    location, size, measure = node.location, node.location.size, node.location.measure
+    time = node.zone[measure * size]
+    ancestor = node.parent
+    while ancestor is not None and ancestor.location.hot:
+        if ancestor.location is location and ancestor.zone[measure * size] < time:
+            others = [place for place in range(size * size) if measure not in (place // size, place % size)]
+            if all(node.zone[place] >= ancestor.zone[place] for place in others):
+                return True
+        ancestor = ancestor.parent
+    return False

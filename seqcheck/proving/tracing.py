@@ -1,0 +1,71 @@
+"""From a path of hops to a run with concrete times."""
+
+from seqcheck.proving.cutting import longest_memory
+from seqcheck.proving.dwelling import Run, with_full_dwells
+from seqcheck.proving.location import Hop
+from seqcheck.proving.projection import CARRIER, Happening, Key, Projection
+from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
+from seqcheck.proving.schedule import constraints_of, scheduled
+from seqcheck.proving.search import Node
+from seqcheck.verdict import Act, Event, Phase, Trace
+
+
+class Infeasible(Exception):
+    """A path of the search has no concrete times: the program is at fault."""
+
+
+def trace_of(projection: Projection, node: Node, endless: bool, interlocked: bool) -> Trace:
+    """The run to a node, with times that make its last overlap longest. Raises Infeasible."""
+    nodes = node.path()
+    hops = [one.hop for one in nodes]
+    first = len(nodes) - 1
+    while first > 0 and nodes[first - 1].location.hot:
+        first -= 1
+    path = constraints_of(hops)
+    times = scheduled(path, first, max(1, longest_memory(projection.view)))
+    if times is None:
+        raise Infeasible
+    events = [(place, event) for place in range(1, len(hops)) for event in _events(projection, hops[place], times[place])]
+    key = hops[0].target.key
+    assert isinstance(key, Key)
+    births = {projection.clock_name(key, place): times[variable] for place, variable in path.births.items()}
+    phases = tuple(
+        _phase(projection, place, state, births) for place, state in enumerate(key.carriers) if state != FORGOTTEN
+    )
+    run = with_full_dwells(projection, hops, Run(tuple(times[: len(hops)]), tuple(events), times[first], times[path.end]))
+    happened = tuple(event for _, event in run.events)
+    return Trace(
+        projection.view.hazard, phases, happened, run.end, run.hot, None if endless else run.end, interlocked
+    )
+
+
+def _phase(projection: Projection, place: int, state: int, births: dict[int, int]) -> Phase:
+    carrier = projection.view.carriers[place]
+    age = -births.get(CARRIER + place, 0)
+    return Phase(carrier, state in (HIGH_DEAD, HIGH_OUT), age, state in (HIGH_OUT, LOW_OUT))
+
+
+def _events(projection: Projection, hop: Hop, time: int) -> list[Event]:
+    """The events of one hop; timeouts of the literals' own automata are none."""
+    happening = hop.event
+    assert isinstance(happening, Happening)
+    if happening.act is None:
+        return []
+    if happening.edge is None:
+        return [Event(time, happening.act, happening.name)]
+    drive, writing = projection.view.drive, projection.firmware.writing
+    events = []
+    for act, number, writes in happening.edge.step.acts:
+        cells = tuple((drive.columns[switch], writing.cell(cell)) for switch, cell in writes)
+        if act is Act.ARRIVES:
+            trip = drive.trips[number]
+            events.append(Event(time, act, trip.name, number, True, place=trip.place))
+            continue
+        is_trip = number >= len(drive.moves)
+        index = number - len(drive.moves) if is_trip else number
+        run = drive.trips[index] if is_trip else drive.moves[index]
+        name = run.target if act is Act.ENTERS else ""
+        events.append(Event(time, act, name, index, is_trip, cells, run.place))
+    return events
+
+

@@ -1,0 +1,74 @@
+"""What one hazard looks at: which switches, carriers and interlock directions take part, and how it is to be proven."""
+
+from dataclasses import dataclass
+
+from seqcheck.drive import Drive, Follow, SetStep, Update
+from seqcheck.hazards import Delays, Hazard
+from seqcheck.quantities import Interval
+
+
+@dataclass(frozen=True, slots=True)
+class Lock:
+    """One direction of an interlock: `guarded` passes only while `partner` is off; places in View.switches."""
+
+    guarded: int
+    partner: int
+    dead: Interval
+
+
+@dataclass(frozen=True, slots=True)
+class View:
+    """The part of a drive that one hazard looks at.
+
+    `switches` are the hazard's own and the partners of their interlocks; `carriers` those that these may follow (and
+    whatever shares a held group with them).
+    """
+
+    drive: Drive
+    hazard: Hazard
+    delays: tuple[Delays, ...]
+    switches: tuple[str, ...]
+    carriers: tuple[str, ...]
+    locks: tuple[Lock, ...]
+
+
+def view(drive: Drive, hazard: Hazard, delays: tuple[Delays, ...], interlocks: bool) -> View:
+    """What a hazard looks at; with `interlocks` False as if the drive had none."""
+    names = list(dict.fromkeys(literal.switch for literal in hazard.literals))
+    pairs = [one for one in drive.interlocks if interlocks and (one.first in names or one.second in names)]
+    directions = [
+        (guarded, partner, one.dead)
+        for one in pairs
+        for guarded, partner in ((one.first, one.second), (one.second, one.first))
+        if guarded in names
+    ]
+    switches = tuple(dict.fromkeys((*names, *(partner for _, partner, _ in directions))))
+    locks = tuple(Lock(switches.index(guarded), switches.index(partner), dead) for guarded, partner, dead in directions)
+    return View(drive, hazard, delays, switches, _carriers(drive, switches), locks)
+
+
+def _carriers(drive: Drive, switches: tuple[str, ...]) -> tuple[str, ...]:
+    """The carriers that these switches may follow.
+
+    Where one of them updates within a period, a switch that may be held for it counts with all of its carriers, since
+    the oldest write held sets the time for all.
+    """
+    used = {name: _followed(drive, name) for name in drive.columns}
+    found = set().union(*(used[name] for name in switches))
+    while any(drive.carriers[name].update is Update.WITHIN_PERIOD for name in found):
+        spans = {name for name in found if drive.carriers[name].update is Update.WITHIN_PERIOD}
+        wider = found.union(*(one for one in used.values() if one & spans))
+        if wider == found:
+            break
+        found = wider
+    return tuple(name for name in drive.carriers if name in found)
+
+
+def _followed(drive: Drive, switch: str) -> set[str]:
+    column = drive.columns.index(switch)
+    cells = [mode.cells[column] for mode in drive.modes.values()]
+    steps = [step for move in drive.moves for step in move.steps] + [step for trip in drive.trips for step in trip.steps]
+    for step in steps:
+        if isinstance(step, SetStep):
+            cells += [cell for name, cell in step.writes if name == switch]
+    return {cell.carrier for cell in cells if isinstance(cell, Follow)}

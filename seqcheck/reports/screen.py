@@ -1,0 +1,180 @@
+"""The form for people: every counterexample in full, what was proven and how, and a last word on each file."""
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from enum import Enum
+
+from rich.color import ColorSystem
+from rich.style import Style
+
+from seqcheck.reports.counterexample import counterexample, sentence
+from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
+from seqcheck.reports.waived import reason
+from seqcheck.reports.wording import CAUTION, happens, subject
+from seqcheck.verdict import WARNINGS, Finding, Outcome, Safe, Undecided, Unsafe
+
+_STYLES = {
+    Tone.PLAIN: Style(),
+    Tone.STRONG: Style(bold=True),
+    Tone.FAINT: Style(dim=True),
+    Tone.GOOD: Style(color="green", bold=True),
+    Tone.BAD: Style(color="red", bold=True),
+    Tone.DOUBT: Style(color="yellow", bold=True),
+}
+
+
+class Standing(Enum):
+    """The last word on a file."""
+
+    UNSAFE = "UNSAFE"
+    AMISS = "not in order"
+    UNDECIDED = "undecided"
+    PROVEN = "proven"
+
+
+_TONES = {
+    Standing.UNSAFE: Tone.BAD,
+    Standing.AMISS: Tone.BAD,
+    Standing.UNDECIDED: Tone.DOUBT,
+    Standing.PROVEN: Tone.GOOD,
+}
+
+
+def report(outcomes: Sequence[Outcome]) -> list[Line]:
+    """The whole report as styled lines."""
+    found: list[Line] = []
+    for outcome in outcomes:
+        found += [*_file(outcome), ()]
+    if len(outcomes) != 1:
+        found.append(_all(outcomes))
+    return [*found, line(Piece(CAUTION, Tone.FAINT))]
+
+
+def plain(lines: Iterable[Line]) -> str:
+    """The lines as bare text, each with a line end."""
+    return "".join("".join(piece.text for piece in one) + "\n" for one in lines)
+
+
+def coloured(lines: Iterable[Line]) -> str:
+    """The lines with terminal colours; it looks at no terminal and no environment, the caller has decided."""
+    return "".join("".join(_painted(piece) for piece in one) + "\n" for one in lines)
+
+
+def _painted(piece: Piece) -> str:
+    return _STYLES[piece.tone].render(piece.text, color_system=ColorSystem.STANDARD)
+
+
+# One file
+
+
+@dataclass(frozen=True, slots=True)
+class _Sorted:
+    """The contents of an outcome by what they mean; `waived` counts what a waiver lets pass."""
+
+    unsafe: tuple[Unsafe, ...]
+    undecided: tuple[Undecided, ...]
+    safe: tuple[Safe, ...]
+    findings: tuple[Finding, ...]
+    warnings: tuple[Finding, ...]
+    waived: tuple[tuple[Unsafe | Finding, str], ...]
+
+
+def _sorted(outcome: Outcome) -> _Sorted:
+    unsafe = tuple(one for one in outcome.verdicts if isinstance(one, Unsafe))
+    found: list[Unsafe | Finding] = [*unsafe, *outcome.findings]
+    reasons = [(one, reason(outcome.drive, one)) for one in found]
+    counting = [one for one, why in reasons if why is None]
+    findings = [one for one in counting if isinstance(one, Finding)]
+    return _Sorted(
+        tuple(one for one in counting if isinstance(one, Unsafe)),
+        tuple(one for one in outcome.verdicts if isinstance(one, Undecided)),
+        tuple(one for one in outcome.verdicts if isinstance(one, Safe)),
+        tuple(one for one in findings if one.check not in WARNINGS),
+        tuple(one for one in findings if one.check in WARNINGS),
+        tuple((one, why) for one, why in reasons if why is not None),
+    )
+
+
+def _file(outcome: Outcome) -> list[Line]:
+    parts = _sorted(outcome)
+    blocks = [[line(Piece(outcome.file, Tone.STRONG), f'  "{outcome.drive.title}"')]]
+    blocks += (counterexample(one, outcome.drive) for one in parts.unsafe)
+    blocks += (_undecided(one) for one in parts.undecided)
+    blocks += (_finding(one, Piece(one.check.value, Tone.BAD)) for one in parts.findings)
+    blocks.append(_proven(parts.safe))
+    blocks += (_finding(one, Piece(f"warning {one.check.value}", Tone.DOUBT)) for one in parts.warnings)
+    blocks += (_waived(one, why) for one, why in parts.waived)
+    blocks.append(_closing(outcome.file, parts))
+    full = [block for block in blocks if block]
+    return [one for block in full[:-1] for one in (*block, ())] + full[-1]
+
+
+def _undecided(verdict: Undecided) -> list[Line]:
+    """An undecided hazard, in words that nobody takes for proven."""
+    found = [line(Piece("UNDECIDED", Tone.DOUBT), f"  {subject(verdict.hazard)}")]
+    said = f"Neither proven nor disproven. Limit reached: {verdict.limit}. Zones stored: {verdict.zones}"
+    return [*found, *sentence(said)]
+
+
+def _finding(finding: Finding, title: Piece) -> list[Line]:
+    found = [line(title, f"  {finding.place}"), *sentence(finding.text)]
+    return found + (sentence(f"A way out: {finding.way_out}") if finding.way_out else [])
+
+
+def _waived(found: Unsafe | Finding, why: str) -> list[Line]:
+    text = found.text if isinstance(found, Finding) else happens(found.hazard, found.overlap)
+    head = line(Piece(f"waived {found.check.value}", Tone.STRONG), f"  {found.place}")
+    return [head, *sentence(text), *sentence(f"Waived because: {why}")]
+
+
+def _proven(safe: Sequence[Safe]) -> list[Line]:
+    """What was proven, by what method, and what of it does not lean on the firmware being in time."""
+    if not safe:
+        return []
+    shorts = sum(1 for one in safe if one.hazard.joins)
+    kinds = [counted(shorts, "shorting set")] if shorts else []
+    kinds += [counted(len(safe) - shorts, "forbidden combination")] if len(safe) > shorts else []
+    found = [line(Piece("proven", Tone.GOOD), f"  {listed(kinds)}: possible in no run")]
+    zoned = [one for one in safe if one.method != "screen"]
+    ways = [f"{len(safe) - len(zoned)} by least times alone"] if len(safe) > len(zoned) else []
+    ways += [f"{len(zoned)} by {counted(sum(one.zones for one in zoned), 'zone')}"] if zoned else []
+    late = sum(1 for one in safe if one.however_late)
+    lateness = "all of them" if late == len(safe) else f"{late or 'none'} of {len(safe)}"
+    return found + sentence(f"Shown {listed(ways)}. However late the firmware is: {lateness}")
+
+
+# The last words
+
+
+def _standing(parts: _Sorted) -> Standing:
+    if parts.unsafe:
+        return Standing.UNSAFE
+    if parts.findings:
+        return Standing.AMISS
+    return Standing.UNDECIDED if parts.undecided else Standing.PROVEN
+
+
+def _closing(file: str, parts: _Sorted) -> list[Line]:
+    standing = _standing(parts)
+    counts = [
+        (len(parts.unsafe), "counterexample", ""),
+        (len(parts.findings), "finding", ""),
+        (len(parts.undecided), "hazard", " undecided"),
+        (len(parts.safe), "hazard", " proven"),
+        (len(parts.warnings), "warning", ""),
+        (len(parts.waived), "finding", " waived"),
+    ]
+    said = [f"{counted(number, name)}{rest}" for number, name, rest in counts if number]
+    text = ", ".join(said) or "no hazard was asked for, and nothing else was found"
+    but = " but for what is waived" if parts.waived and standing is Standing.PROVEN else ""
+    return [line(Piece(f"{standing.value}{but}", _TONES[standing]), f": {file}: {text}")]
+
+
+def _all(outcomes: Sequence[Outcome]) -> Line:
+    """How many files stand how."""
+    stands = [_standing(_sorted(one)) for one in outcomes]
+    cells: list[str | Piece] = [f"{counted(len(stands), 'file')}"]
+    for standing in Standing:
+        if number := stands.count(standing):
+            cells += [", " if len(cells) > 1 else ": ", Piece(f"{number} {standing.value}", _TONES[standing])]
+    return line(*cells, ".")

@@ -1,0 +1,131 @@
+"""Difference-bound matrices over whole picoseconds (Dill 1989).
+
+A zone is a flat list of (n+1)² numbers: entry [i][j] bounds x_i − x_j from above, where x_0 is always 0. All
+constraints are closed, and over whole numbers a strict `x > c` is `x ≥ c + 1`. Every zone here is in its canonical
+(closed) form unless a function says otherwise; an empty zone is None.
+"""
+
+from collections.abc import Sequence
+
+Zone = list[int]
+
+INFINITE = 1 << 60
+"""Stands for no bound; above every sum of times that a file can hold."""
+
+FRESH = -1
+"""In a renaming: a clock of which nothing is known, but that it is not negative."""
+
+
+def closed(zone: Zone, size: int) -> Zone | None:
+    """The canonical form of any matrix (Floyd and Warshall), or None if it is empty."""
+    for mid in range(size):
+        row = zone[mid * size : mid * size + size]
+        for start in range(0, size * size, size):
+            first = zone[start + mid]
+            if first >= INFINITE:
+                continue
+            for end in range(size):
+                if row[end] < INFINITE and first + row[end] < zone[start + end]:
+                    zone[start + end] = first + row[end]
+    return None if any(zone[place] < 0 for place in range(0, size * size, size + 1)) else zone
+
+
+def limited(zone: Zone, size: int, upper: int, lower: int, bound: int) -> Zone | None:
+    """The zone with x_upper − x_lower ≤ bound as well, canonical again; a new list if anything changed."""
+    if zone[upper * size + lower] <= bound:
+        return zone
+    if zone[lower * size + upper] + bound < 0:
+        return None
+    zone = zone[:]
+    tail = zone[lower * size : lower * size + size]
+    for start in range(0, size * size, size):
+        first = zone[start + upper]
+        if first >= INFINITE:
+            continue
+        first += bound
+        for end in range(size):
+            if tail[end] < INFINITE and first + tail[end] < zone[start + end]:
+                zone[start + end] = first + tail[end]
+    return zone
+
+
+def renamed(zone: Zone, size: int, sources: Sequence[int]) -> Zone:
+    """The zone over other clocks: each is an old one (its number), 0 if it was reset just now, or FRESH."""
+    picks = (0, *sources)
+    if FRESH not in picks:
+        return [zone[row * size + column] for row in picks for column in picks]
+    result: Zone = []
+    for new, row in enumerate(picks):
+        for place, column in enumerate(picks):
+            if new == place:
+                result.append(0)
+            elif row == FRESH:
+                result.append(INFINITE)
+            else:
+                result.append(zone[row * size + (0 if column == FRESH else column)])
+    return result
+
+
+def delayed(zone: Zone, size: int, bounds: Sequence[tuple[int, int]]) -> Zone | None:
+    """All that the zone becomes as time passes while each clock stays within its bound; in place.
+
+    Bounds are (clock, most). The greatest value of every clock follows from the bounded ones in one step, since their
+    differences do not change as time passes.
+    """
+    if not bounds:
+        for start in range(size, size * size, size):
+            zone[start] = INFINITE
+        return zone
+    first_row = zone[:size]
+    for start in range(size, size * size, size):
+        most = INFINITE
+        for clock, bound in bounds:
+            apart = zone[start + clock]
+            if apart < INFINITE and apart + bound < most:
+                most = apart + bound
+        zone[start] = most
+        if most >= INFINITE:
+            continue
+        for end in range(1, size):
+            if most + first_row[end] < zone[start + end]:
+                zone[start + end] = most + first_row[end]
+        if zone[start + start // size] < 0:
+            return None
+    return zone
+
+
+def includes(large: Zone, small: Zone) -> bool:
+    """Whether every point of `small` is one of `large`."""
+    return all(map(int.__ge__, large, small))
+
+
+def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[int]) -> Zone:
+    """The zone widened by lower and upper bounds (Behrmann, Bouyer, Larsen and Pelánek 2006, Extra_LU+).
+
+    `lower[i]` is the greatest constant that clock i is compared with from below, `upper[i]` from above, place 0
+    unused; INFINITE keeps a clock exact. What can be reached stays the same, as no guard compares two clocks.
+    """
+    first_row = zone[:size]
+    changed = False
+    far = [-first_row[clock] > lower[clock] for clock in range(size)]
+    high = [-first_row[clock] > upper[clock] for clock in range(size)]
+    far[0] = high[0] = False
+    for clock in range(1, size):
+        start = clock * size
+        loose = far[clock]
+        limit = lower[clock]
+        for end in range(size):
+            if end == clock:
+                continue
+            value = zone[start + end]
+            if value < INFINITE and (loose or value > limit or high[end]):
+                zone[start + end] = INFINITE
+                changed = True
+        if high[clock] and first_row[clock] < -upper[clock] - 1:
+            zone[clock] = -upper[clock] - 1
+            changed = True
+    if changed:
+        result = closed(zone, size)
+        assert result is not None, "widening never empties a zone"
+        return result
+    return zone

@@ -1,0 +1,265 @@
+"""The overlap that a trace claims, interlocks, and overlaps without end."""
+
+import pytest
+from build import after, carrier, drive, hazard, interlock, move, part, pin, span, steps, trace, trip, writes
+from test_replay_runs import permitted, refused
+
+from seqcheck.drive import Above, Carrier, Command, Drive, Interlock, Level, Move, Update
+from seqcheck.evidence.replay import NotPermitted, replay
+from seqcheck.hazards import Hazard, Literal
+from seqcheck.quantities import Interval
+from seqcheck.verdict import Phase, Replayed, Span
+
+ON, OFF, UNKNOWN = Command.ON, Command.OFF, Command.UNKNOWN
+X, Y = Literal("X"), Literal("Y")
+SWAP = "10 begins 0; 10 writes X on; 10 enters high; 50 begins 1; 50 writes X off; 55 writes Y on; 55 enters low"
+
+
+def half_bridge(**more: object) -> Drive:
+    """A leg whose low switch comes 5 ps after the command of the high one goes off."""
+    return drive(
+        "X Y",
+        {"idle": "off off", "high": "on off", "low": "off on"},
+        moves=(move("idle", "high"), move("high", "low", steps=steps("X off"))),
+        writes=writes(gap=span(5)),
+        **{"paths": dict.fromkeys("XY", (part((2, 6), (3, 12)),)), **more},  # type: ignore[arg-type]
+    )
+
+
+def test_an_overlap_is_confirmed() -> None:
+    """X is possible until 50 + 12, Y from 55 + 2 on."""
+    assert replay(half_bridge(), trace(SWAP, 70, (57, 62))) == Replayed(
+        commands={"X": ((None, OFF), (10, ON), (50, OFF)), "Y": ((None, OFF), (55, ON))},
+        possible={X: (Span(12, 62),), Y: (Span(57, None),)},
+        overlap=Span(57, 62),
+    )
+    assert replay(half_bridge(), trace(SWAP, 62, (57, 62))).overlap == Span(57, 62)
+
+
+@pytest.mark.parametrize("claimed", [(57, 63), (57, 61), (56, 62), (58, 62), (57, None), (57, 57), (12, 62), (0, 0)])
+def test_another_overlap_is_refused(claimed: tuple[int, int | None]) -> None:
+    with pytest.raises(NotPermitted, match=r"all literals are possible together from 57 ps to 62 ps\."):
+        replay(half_bridge(), trace(SWAP, 70, claimed))
+
+
+def test_an_overlap_beyond_the_end_of_the_trace_is_refused() -> None:
+    refused(half_bridge(), SWAP, 61, "from 57 ps without end", overlap=(57, 62))
+    refused(half_bridge(), SWAP, 61, "X is not as wanted at the end", overlap=(57, None))
+    refused(half_bridge(), SWAP, 57, "at no time", overlap=(57, 62))
+
+
+def test_no_overlap_where_they_only_touch() -> None:
+    built = half_bridge(paths=dict.fromkeys("XY", (part((2, 6), (3, 7)),)))
+    refused(built, SWAP, 70, "at no time", overlap=(57, 57))
+
+
+def test_a_pulse_of_no_length_is_prolonged() -> None:
+    rows = {"idle": "off off", "low": "off on"}
+    moves = (move("idle", "low", steps=steps("X on", "X off")),)
+    paths = {"X": (part((2, 2), (5, 5)),)}
+    built = drive("X Y", rows, moves=moves, paths=paths)
+    lines = "10 begins 0; 10 writes X on; 10 writes X off; 10 writes Y on; 10 enters low"
+    found = replay(built, trace(lines, 20, (12, 15)))
+    assert found.commands["X"] == ((None, OFF), (10, ON), (10, OFF))
+    assert found.possible[X] == (Span(12, 15),)
+
+
+def test_literals_that_want_off() -> None:
+    built = drive(
+        "X Y",
+        {"idle": "on off", "both": "off off"},
+        moves=(move("idle", "both"),),
+        paths={"X": (part((2, 6), (3, 12)),)},
+    )
+    off = "X off, Y off"
+    found = replay(built, trace("10 begins 0; 10 writes X off; 10 enters both", 20, (13, None), literals=off))
+    assert found.possible == {Literal("X", False): (Span(13, None),), Literal("Y", False): (Span(0, None),)}
+
+
+def test_the_start_row_is_settled_for_ever() -> None:
+    built = drive(
+        "X Y", {"both": "on on", "high": "on off"}, moves=(move("both", "high"),), paths={"Y": (part((9, 9), (4, 5)),)}
+    )
+    assert replay(built, trace("", 3, (0, None))).possible == {X: (Span(0, None),), Y: (Span(0, None),)}
+    assert replay(built, trace("2 begins 0; 2 writes Y off; 2 enters high", 9, (0, 7))).overlap == Span(0, 7)
+
+
+def test_a_pin_that_rests_nowhere_is_possible_either_way() -> None:
+    pins = (pin("X", Level.UNKNOWN, after=span(3, 9)), pin("Y"))
+    built = drive("X Y", {"idle": "off on", "loose": "free on"}, moves=(move("idle", "loose"),), pins=pins)
+    lines = "1 begins 0; 1 writes X free; 1 enters loose; 5 rests X"
+    assert replay(built, trace(lines, 9, (5, None))).commands["X"] == ((None, OFF), (5, UNKNOWN))
+    assert replay(built, trace(lines, 9, (0, None), literals="X off, Y")).overlap == Span(0, None)
+    refused(
+        built,
+        lines.replace("; 5 rests X", ""),
+        9,
+        "the pin of X is still to change",
+        literals="X off",
+        overlap=(0, None),
+    )
+
+
+# Facts
+
+
+def sourced(needs: tuple[frozenset[Above], ...]) -> tuple[Drive, Hazard]:
+    up, down = (Above("a", "b"),), (Above("b", "a"),)
+    moves = (
+        move("idle", "plus", steps=steps((4, 4), "X on", (6, 6)), known=up),
+        move("plus", "minus", known=down, steps=steps((5, 5))),
+        move("plus", "plus"),
+    )
+    rows = {"idle": "off on", "plus": "on on", "minus": "on on"}
+    return drive("X Y", rows, moves=moves, known={"plus": up, "minus": down}), hazard("X, Y", needs)
+
+
+def test_an_overlap_lies_where_the_hazard_is_asked_for() -> None:
+    lines = "0 begins 0; 4 writes X on; 10 enters plus; 17 begins 2; 17 enters plus; 20 begins 1; 25 enters minus"
+    up, down = frozenset({Above("a", "b")}), frozenset({Above("b", "a")})
+    built, asked = sourced((up,))
+    assert replay(built, trace(lines, 30, (4, 20), literals=asked)).overlap == Span(4, 20)
+    refused(built, lines, 30, "from 4 ps to 20 ps", literals=asked, overlap=(4, None))
+    built, asked = sourced((down,))
+    assert replay(built, trace(lines, 30, (20, None), literals=asked)).overlap == Span(20, None)
+    built, asked = sourced((down, up))
+    assert replay(built, trace(lines, 30, (4, None), literals=asked)).overlap == Span(4, None)
+
+
+# Interlocks
+
+
+def interlocked(*locks: Interlock, **more: object) -> Drive:
+    return half_bridge(interlocks=locks, paths={"X": (part((2, 6), (3, 12)),), "Y": (part((2, 6), (3, 12)),)}, **more)
+
+
+def test_an_interlock_holds_a_command_back_until_it_clears() -> None:
+    built = interlocked(interlock("X", "Y", span(6, 9)))
+    found = replay(built, trace(SWAP + "; 58 clears Y", 70, (60, 62)))
+    assert found.commands["Y"] == ((None, OFF), (58, ON))
+    for lines, why in (
+        (SWAP + "; 55 clears Y", "cannot come before 56 ps"),
+        (SWAP + "; 60 clears Y", "the interlock must clear Y by 59 ps"),
+        (SWAP, "the interlock must clear Y by 59 ps"),
+        (SWAP + "; 58 clears Y; 58 clears Y", "no dead time of an interlock runs for Y"),
+        (SWAP + "; 58 clears X", "no dead time of an interlock runs for X"),
+    ):
+        refused(built, lines, 70, why)
+    assert replay(built, trace(SWAP, 70, (57, 62), interlocked=False)).commands["Y"][1] == (55, ON)
+    refused(built, SWAP + "; 58 clears Y", 70, "no dead time of an interlock runs", interlocked=False)
+
+
+def test_an_interlock_without_dead_time_clears_without_an_event() -> None:
+    rows = {"idle": "off off", "both": "on on", "low": "off on"}
+    built = drive("X Y", rows, moves=(move("idle", "both"), move("both", "low")), interlocks=(interlock("X", "Y"),))
+    lines = "1 begins 0; 1 writes X on, Y on; 1 enters both; 4 begins 1; 4 writes X off; 4 enters low"
+    walk = permitted(built, lines, 9)
+    assert walk.commands == {"X": [(None, OFF)], "Y": [(None, OFF), (4, ON)]}
+    assert replay(built, trace(lines, 9, (1, 4), interlocked=False)).overlap == Span(1, 4)
+
+
+def test_a_switch_in_two_interlocks_needs_both_to_clear() -> None:
+    rows = {"idle": "on off on", "low": "off on off"}
+    locks = (interlock("X", "Y", span(3, 3)), interlock("Y", "Z", span(8, 8)))
+    built = drive("X Y Z", rows, moves=(move("idle", "low"),), interlocks=locks)
+    lines = "1 begins 0; 1 writes X off, Y on, Z off; 1 enters low; 4 clears Y; "
+    assert permitted(built, lines + "9 clears Y", 12, literals="Y").commands["Y"] == [(None, OFF), (9, ON)]
+    refused(built, lines + "5 clears Y", 12, "cannot come before 9 ps", literals="Y")
+    refused(built, lines, 12, "must clear Y by 9 ps", literals="Y")
+    # Z is not judged: by when its partner has been off for long enough is not asked
+    back = drive("X Y Z", {"idle": "off on off", "low": "off off on"}, moves=(move("idle", "low"),), interlocks=locks)
+    permitted(back, "1 begins 0; 1 writes Y off, Z on; 1 enters low", 99, literals="Y")
+
+
+def test_unknown_commands_and_interlocks() -> None:
+    pins = (pin("X", Level.UNKNOWN), pin("Y", Level.UNKNOWN))
+    rows = {"idle": "off off", "loose": "free on", "adrift": "free free"}
+    moves = (move("idle", "loose"), move("loose", "adrift"))
+    built = drive("X Y", rows, moves=moves, pins=pins, interlocks=(interlock("X", "Y", span(4, 4)),))
+    lines = (
+        "1 begins 0; 1 writes X free, Y on; 1 enters loose; 5 begins 1; 5 writes Y free; 5 enters adrift; 9 clears X"
+    )
+    walk = permitted(built, lines, 20)
+    assert walk.commands == {"X": [(None, OFF), (9, UNKNOWN)], "Y": [(None, OFF), (1, UNKNOWN)]}
+
+
+# Without end
+
+
+def resting(*more_moves: Move, **more: object) -> Drive:
+    moves = (move("idle", "both"), *more_moves)
+    return drive("X Y", {"idle": "off off", "both": "on on"}, moves=moves, **more)  # type: ignore[arg-type]
+
+
+def test_what_must_go_on_is_not_without_end() -> None:
+    lines = "1 begins 0; 1 writes X on, Y on; 1 enters both"
+    assert replay(resting(), trace(lines, 5, (1, None))).overlap == Span(1, None)
+    assert replay(resting(move("both", "idle")), trace(lines, 5, (1, None))).overlap == Span(1, None)
+    timed = resting(move("both", "idle", after(3, 90)))
+    refused(
+        timed,
+        lines,
+        5,
+        "The overlap has an end after 5 ps, against the claim: mode both must be left",
+        overlap=(1, None),
+    )
+    tripped = resting(trips=(trip("fault", "both", "idle", within=50),))
+    refused(tripped, lines + "; 4 arrives fault", 5, "trip fault is in hand", overlap=(1, None))
+    waiting = drive(
+        "X Y", {"idle": "off off", "both": "on on"}, moves=(move("idle", "both", steps=steps("X on, Y on", (9, 9))),)
+    )
+    refused(waiting, "1 begins 0; 1 writes X on, Y on", 5, "the run to both must go on", overlap=(1, None))
+
+
+def carried(k: Carrier, fall: int, row: str = "k on") -> Drive:
+    paths = {"X": (part((0, 0), (0, fall)),)}
+    return drive("X Y", {"idle": "off on", "run": row}, moves=(move("idle", "run"),), carriers=(k,), paths=paths)
+
+
+def test_an_overlap_that_carriers_keep_up() -> None:
+    k = carrier("k", span(20, 30), span(40, 50))
+    begun = "0 begins 0; 0 writes X k; 0 enters run; 10 falls k; 50 rises k"
+    phases = (Phase("k", True, 10, True),)
+    assert replay(carried(k, 40), trace(begun, 60, (0, None), phases=phases)).overlap == Span(0, None)
+    refused(carried(k, 39), begun, 60, "from 0 s to 49 ps, from 50 ps without end", phases=phases, overlap=(0, None))
+    # it reaches the end of the trace, but no low is short enough for it to last
+    refused(
+        carried(k, 39),
+        begun,
+        60,
+        "X cannot stay possible while its switch follows k",
+        phases=phases,
+        overlap=(50, None),
+    )
+    high = carrier("k", Interval(20, None), span(40, 50))
+    assert replay(carried(high, 39), trace(begun, 60, (50, None), phases=phases)).overlap == Span(50, None)
+
+
+def test_the_dead_time_counts_for_what_carriers_keep_up() -> None:
+    k = carrier("k", span(20, 30), span(40, 50), dead=span(3, 6))
+    begun = "0 begins 0; 0 writes X k; 0 enters run; 10 falls k; 13 output k; 50 rises k; 53 output k"
+    phases = (Phase("k", True, 10, True),)
+    assert replay(carried(k, 43), trace(begun, 60, (0, None), phases=phases)).overlap == Span(0, None)
+    refused(carried(k, 42), begun, 60, "cannot stay possible", phases=phases, overlap=(53, None))
+    off = {"literals": "X off, Y", "phases": phases, "overlap": (10, None)}
+    quiet = "0 begins 0; 0 writes X k; 0 enters run; 10 falls k; 13 output k"
+    refused(carried(k, 0), quiet, 50, "X off cannot stay possible", **off)
+    shy = carrier("k", span(5, 30), span(40, 50), dead=span(3, 6))
+    assert replay(carried(shy, 0), trace(quiet, 50, **off)).overlap == Span(10, None)  # type: ignore[arg-type]
+
+
+def test_a_pending_update_or_interlock_is_not_without_end() -> None:
+    k = carrier("k", span(20, 30), span(40, 50), update=Update.WITHIN_PERIOD)
+    rows = {"idle": "on on", "run": "k on"}
+    built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,))
+    low = (Phase("k", False, 0, True),)
+    refused(
+        built,
+        "0 begins 0; 0 writes X k; 0 enters run",
+        20,
+        "the pin of X is still to change",
+        phases=low,
+        overlap=(0, None),
+    )
+    locked = interlocked(interlock("X", "Y", span(6, 90)))
+    refused(locked, SWAP, 60, "the interlock is still to clear Y", literals="Y off, X off", overlap=(53, None))

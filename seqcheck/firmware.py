@@ -34,6 +34,18 @@ from seqcheck.writing import FREE, KEEP, Put, Write, Writing
 Group = tuple[Write, ...]
 
 
+class Deed(NamedTuple):
+    """One act of the firmware: of which run or trip, with which writes, at which of the run's items (-1: none)."""
+
+    act: Act
+    number: int
+    writes: Group = ()
+    item: int = -1
+
+
+Deeds = tuple[Deed, ...]
+
+
 class State(NamedTuple):
     """Where the firmware stands. At rest `run` is -1 and `mode` the mode; in a run `mode` is the mode that was left.
 
@@ -53,9 +65,9 @@ class State(NamedTuple):
 
 
 class Step(NamedTuple):
-    """What a transition does, for the trace: acts in order, each with the writes that belong to it."""
+    """What a transition does: its deeds in order, and the state after them."""
 
-    acts: tuple[tuple[Act, int, tuple[Write, ...]], ...]  # (act, run or trip number, writes)
+    deeds: Deeds
     target: State
 
 
@@ -166,7 +178,8 @@ class Firmware:
         for group in self._next_groups(state.left):
             rest = tuple(one for one in state.left if one is not group)
             put = self.writing.write(state.put, group)
-            found.append(self._edge(state, self._after_write(state, put, rest, ((Act.WRITES, state.run, group),))))
+            deeds = (Deed(Act.WRITES, state.run, group, state.item),)
+            found.append(self._edge(state, self._after_write(state, put, rest, deeds)))
         return found
 
     def _edge(self, state: State, step: Step) -> Edge:
@@ -200,7 +213,7 @@ class Firmware:
 
     def _begin(self, state: State, run: int) -> list[Step]:
         """A run begins: its first write belongs to this event, unless a wait comes first."""
-        begun = ((Act.BEGINS, run, ()),)
+        begun = (Deed(Act.BEGINS, run),)
         if self._runs[run].target == RESET:
             return [self._reset(run)]
         item, groups, wait = self._look(run, 0, state.put)
@@ -214,7 +227,7 @@ class Firmware:
         for group in self._next_groups(groups):
             rest = tuple(one for one in groups if one is not group)
             put = self.writing.write(state.put, group)
-            steps.append(self._after_write(there, put, rest, (*begun, (Act.WRITES, run, group))))
+            steps.append(self._after_write(there, put, rest, (*begun, Deed(Act.WRITES, run, group, item))))
         return steps
 
     def _look(self, run: int, item: int, put: Put) -> tuple[int, tuple[Group, ...], Interval | None]:
@@ -260,28 +273,28 @@ class Firmware:
         return first or second
 
     def _after_write(
-        self, state: State, put: Put, rest: tuple[Group, ...], acts: tuple[tuple[Act, int, Group], ...]
+        self, state: State, put: Put, rest: tuple[Group, ...], deeds: Deeds
     ) -> Step:
         """Where a run stands after a write; the last write and the entry are one event."""
         lo, hi = self._gap
         if rest:
-            return Step(acts, state._replace(left=rest, soonest=lo, latest=hi, put=put))
+            return Step(deeds, state._replace(left=rest, soonest=lo, latest=hi, put=put))
         item, groups, wait = self._look(state.run, state.item + 1, put)
         if wait is not None:
             lo, hi = self._bounds.of(wait)
         elif not groups:
-            return self._entered(state.run, put, acts)
-        return Step(acts, state._replace(item=item, left=groups, soonest=lo, latest=hi, put=put))
+            return self._entered(state.run, put, deeds)
+        return Step(deeds, state._replace(item=item, left=groups, soonest=lo, latest=hi, put=put))
 
-    def _entered(self, run: int, put: Put, acts: tuple[tuple[Act, int, Group], ...]) -> Step:
+    def _entered(self, run: int, put: Put, deeds: Deeds) -> Step:
         target = State(self._runs[run].target, -1, 0, (), 0, None, -1, put)
-        return Step((*acts, (Act.ENTERS, run, ())), target)
+        return Step((*deeds, Deed(Act.ENTERS, run)), target)
 
     def _reset(self, run: int) -> Step:
         row = (FREE,) * len(self.drive.columns)
         every = tuple(enumerate(row))
         return Step(
-            ((Act.BEGINS, run, every), (Act.ENTERS, run, ())), State(RESET, -1, 0, (), 0, None, -1, (row, row, ()))
+            (Deed(Act.BEGINS, run, every), Deed(Act.ENTERS, run)), State(RESET, -1, 0, (), 0, None, -1, (row, row, ()))
         )
 
     # Trips
@@ -326,7 +339,7 @@ class Firmware:
     def _break_in(self, state: State, run: int) -> Step:
         """A break input cancels what is held and makes its first writes in one instant, in effect at once."""
         put = self.writing.force(state.put, ())
-        begun = ((Act.BEGINS, run, ()),)
+        begun = (Deed(Act.BEGINS, run),)
         item, groups, wait = self._look(run, 0, put)
         if not groups and wait is None:
             return self._entered(run, put, begun)
@@ -335,7 +348,8 @@ class Firmware:
             return Step(begun, State(state.mode, run, item, groups, lo, hi, -1, put))
         writes = tuple(sorted(write for group in groups for write in group))
         there = State(state.mode, run, item, (), 0, 0, -1, put)
-        return self._after_write(there, self.writing.force(put, writes), (), (*begun, (Act.WRITES, run, writes)))
+        deeds = (*begun, Deed(Act.WRITES, run, writes, item))
+        return self._after_write(there, self.writing.force(put, writes), (), deeds)
 
     def _taken(self, state: State, number: int, y_hi: int | None) -> list[Edge]:
         """A firmware trip is taken: on the spot where it may arrive, else from hand."""
@@ -344,9 +358,9 @@ class Firmware:
             return []
         if state.hand < 0 and not self._covers(number, state):
             return []
-        arrives = ((Act.ARRIVES, number, ()),) if state.hand < 0 else ()
+        arrives = (Deed(Act.ARRIVES, number),) if state.hand < 0 else ()
         steps = self._begin(state._replace(hand=-1), len(self.drive.moves) + number)
-        return [Edge(0, None, y_hi, False, True, Step((*arrives, *acts), target)) for acts, target in steps]
+        return [Edge(0, None, y_hi, False, True, Step((*arrives, *deeds), target)) for deeds, target in steps]
 
     def _arriving(self, state: State, edge: Edge) -> list[Edge]:
         """A trip arrives at the last moment: just before the firmware leaves the states in which it may."""
@@ -356,7 +370,7 @@ class Firmware:
                 continue
             if trip.within is None and self._interruptible(state):
                 continue  # without `within` it is taken as it arrives
-            found.append(_with_hand(edge, number, True, ((Act.ARRIVES, number, ()),)))
+            found.append(_with_hand(edge, number, True, (Deed(Act.ARRIVES, number),)))
         return found
 
     def _in_hand(self, state: State, edge: Edge) -> list[Edge]:
@@ -373,6 +387,6 @@ class Firmware:
         return self._covers(number, target)
 
 
-def _with_hand(edge: Edge, number: int, resets_y: bool, acts: tuple[tuple[Act, int, Group], ...]) -> Edge:
-    step = Step((*acts, *edge.step.acts), edge.step.target._replace(hand=number))
+def _with_hand(edge: Edge, number: int, resets_y: bool, deeds: Deeds) -> Edge:
+    step = Step((*deeds, *edge.step.deeds), edge.step.target._replace(hand=number))
     return edge._replace(resets_y=resets_y, step=step)

@@ -44,7 +44,7 @@ class Event:
 
 @dataclass(frozen=True, slots=True)
 class Phase:
-    """Where a carrier stands at time 0: the level of its reference, for how long already (ps), dead time over or not."""
+    """Where a carrier stands at time 0: its reference's level, for how long already (ps), dead time over or not."""
 
     carrier: str
     high: bool

@@ -1,6 +1,9 @@
 """The grammar: found, built without conflicts, and in agreement with the list of reserved words."""
 
+import subprocess
+import sys
 import time
+import zipfile
 from pathlib import Path
 
 import pytest
@@ -33,8 +36,21 @@ def test_it_is_found_beside_the_package_in_a_checkout() -> None:
 def test_it_is_found_in_the_package_where_a_wheel_puts_it(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     (tmp_path / "grammars").mkdir()
     (tmp_path / "grammars" / "drive.lark").write_text("from the wheel", "utf-8")
-    monkeypatch.setattr(grammar, "files", lambda package: tmp_path)
+    monkeypatch.setattr(grammar, "PACKAGE", tmp_path)
     assert grammar.grammar_text() == "from the wheel"
+
+
+def test_it_is_found_in_a_zip_file(tmp_path: Path) -> None:
+    archive = tmp_path / "seqcheck.zip"
+    root = Path(grammar.__file__).parents[2]
+    with zipfile.ZipFile(archive, "w") as packed:
+        for path in sorted((root / "seqcheck").rglob("*.py")):
+            packed.write(path, path.relative_to(root))
+        packed.write(root / "grammars" / "drive.lark", "seqcheck/grammars/drive.lark")
+    code = "from seqcheck.language import grammar; print(grammar.grammar_text(), end='')"
+    env = {"PYTHONPATH": str(archive)}
+    ran = subprocess.run([sys.executable, "-c", code], cwd=tmp_path, env=env, capture_output=True, check=True)
+    assert ran.stdout.decode("utf-8") == grammar.grammar_text()
 
 
 def words_of(parser: Lark) -> dict[str, str]:

@@ -127,6 +127,17 @@ def test_orders(order: Order, there: tuple[Says, int | None], back: tuple[Says, 
         assert of(asked(built)) == expected
 
 
+def test_a_release_to_off_is_a_turn_off() -> None:
+    """A's pin rests off, so that it is freed before B is turned on, 5 ps apart."""
+    rows, writes = {"a": "on off", "b": "free on"}, singly(5, 5, Order.OFFS_FIRST)
+    moves = [move("a", "b", when=(0, None))]
+    pins = [pin("A"), pin("B")]
+    assert of(asked(drive(rows, moves, paths=SLOW, writes=writes, pins=pins))) == SAFE
+    # A pin that rests on is a turn-on: in any order with B, and on for ever.
+    pins = [pin("A", Level.HIGH), pin("B")]
+    assert of(asked(drive(rows, moves, paths=SLOW, writes=writes, pins=pins))) == unsafe(None)
+
+
 def test_gap_stands_between_steps_too() -> None:
     """`set A off` and the row are written 5 ps apart; a wait between them takes the place of that gap."""
     rows, writes = {"a": "on off", "b": "off on"}, singly(5)
@@ -209,6 +220,22 @@ def test_keep_and_entry_after_trailing_wait() -> None:
     assert of(asked(drive(rows, moves, paths=SLOW))) == unsafe(5)
 
 
+def test_leading_wait() -> None:
+    """A wait before the first write delays it from the beginning of the move."""
+    rows = {"a": "on off", "m": "off off", "b": "off on"}
+    for wait, expected in ((5, SAFE), (3, unsafe(2))):
+        moves = [move("a", "m", when=(0, None)), move("m", "b", waits(wait))]
+        assert of(asked(drive(rows, moves, paths=SLOW))) == expected
+
+
+def test_no_time_is_no_hazard() -> None:
+    """Both are on in a mode that lasts no time, and without delays."""
+    rows = {"a": "on off", "m": "on on", "b": "off on"}
+    moves = [move("a", "m", when=(0, None)), move("m", "b")]
+    assert of(asked(drive(rows, moves))) == SAFE
+    assert of(asked(drive(rows, moves, paths={"A": (0, 0, 1, 1)}))) == unsafe(1)
+
+
 def test_facts() -> None:
     """The overlap lies in the move (2 of its 3 ps) and the row after it (3 more)."""
     rows = {"a": "on off", "b": "off on"}
@@ -267,6 +294,19 @@ def test_break_input_cancels_held_writes() -> None:
     assert of(asked(leaving(Update.AT_RISE, hardware=True))) == SAFE
 
 
+def test_cancelled_write_leaves_what_is_effective() -> None:
+    """A is about to leave the carrier when hardware cancels that; the row keeps it there, with B on.
+
+    Its turn-off bridges the lows, so that they meet for ever. Firmware's trip leaves the write held: on for 3, and 4.
+    """
+    one = carrier("m", span(3), span(3), update=Update.AT_RISE)
+    rows = {"i": "off off", "a": "m off", "c": "off off", "b": "keep on"}
+    moves = [move("i", "a", when=(0, None)), move("a", "c", when=(0, None))]
+    for hardware, expected in ((True, unsafe(None)), (False, unsafe(7))):
+        trips = [trip("t", "c", "b", origins="", at_once=hardware)]
+        assert of(asked(drive(rows, moves, carriers=[one], trips=trips, paths={"A": (0, 0, 4, 4)}))) == expected
+
+
 def test_held_write_is_dropped() -> None:
     """A's joining is held; writing off again drops it. On the carrier A is possible for ever: turn-offs bridge lows.
 
@@ -279,6 +319,25 @@ def test_held_write_is_dropped() -> None:
     paths = {"A": (0, 0, 4, 4)}
     assert of(asked(drive(rows, [there], carriers=[one], paths=paths), A)) == unsafe(None)
     assert of(asked(drive(rows, [there, back], carriers=[one], paths=paths), A)) == unsafe(7)
+
+
+def test_a_write_waits_for_the_carrier_that_is_left() -> None:
+    """From `m` to `n`, which never rises: held for `m`, so that A gets onto `n`, which is high for ever."""
+    left = carrier("m", span(3), span(3), update=Update.AT_RISE)
+    joined = carrier("n", Interval(1, None), None, update=Update.AT_RISE)
+    rows = {"i": "off off", "a": "m off", "b": "n off"}
+    moves = [move("i", "a", when=(0, None)), move("a", "b", when=(0, None))]
+    assert of(asked(drive(rows, moves, carriers=[left, joined]), A)) == unsafe(None)
+    # From a constant it waits for `n`, for ever.
+    assert of(asked(drive(rows, [move("i", "b", when=(0, None))], carriers=[left, joined]), A)) == SAFE
+
+
+def test_pulse_of_a_carrier() -> None:
+    """High for 5 with a dead time of 3: on for 2, from the first moment on; a dead time of 6 leaves no pulse."""
+    rows, moves = {"i": "off off", "a": "m off"}, [move("i", "a", when=(0, None))]
+    for dead, expected in ((3, unsafe(2)), (6, SAFE)):
+        one = carrier("m", span(5), span(5), dead=span(dead))
+        assert of(asked(drive(rows, moves, carriers=[one]), A)) == expected
 
 
 def test_fixed_reference() -> None:
@@ -359,6 +418,23 @@ def test_within_starts_anew_after_an_unbroken_move() -> None:
         assert of(asked(built)) == expected
 
 
+def test_unbroken_move_stops_the_time_in_hand() -> None:
+    """Heard in `a` only, 1 ps before an unbroken move of 5 begins; A is on again 1 ps after its end.
+
+    A `within` of 1 has passed when the move begins, and starts anew at its end.
+    """
+    rows = {"a": "off off", "w": "off off", "c": "off off", "d": "on off", "b": "off on"}
+    moves = [move("a", "w", when=(0, None)), move("w", "c", waits(5), after=span(1), unbroken=True)]
+    moves += [move("c", "d", after=span(1))]
+    for within, expected in ((0, SAFE), (1, unsafe(4))):
+        trips = [trip("t", "a", "b", origins="", within=within)]
+        assert of(asked(drive(rows, moves, trips=trips, paths={"A": (0, 0, 4, 4)}))) == expected
+    # Not so where the move may be broken: it is too late in `w` already.
+    moves[1] = replace(moves[1], unbroken=False)
+    trips = [trip("t", "a", "b", origins="", within=1)]
+    assert of(asked(drive(rows, moves, trips=trips, paths={"A": (0, 0, 4, 4)}))) == SAFE
+
+
 @pytest.mark.parametrize(("target", "expected"), [("t", SAFE), ("z", unsafe(3))])
 def test_target_drops_the_trip(target: str, expected: tuple[Says, int | None]) -> None:
     """Heard in `a`, in hand for up to 9; its run is a pulse of B that lasts 3. A is on in the mode after `t`, 5 later.
@@ -381,13 +457,34 @@ def test_trips_do_not_interrupt_trips_but_hardware_does() -> None:
         assert of(asked(drive(rows, trips=[first, second], paths=SLOW))) == expected
 
 
+def test_no_firmware_trip_arrives_during_a_trip() -> None:
+    """The second would turn A on as soon as the first has turned B on; it is heard only in runs that come from `a`."""
+    rows = {"a": "on off", "b": "off on", "c": "on off"}
+    first = trip("s", "a", "b", sets(A="off"), waits(5), at_once=True)
+    second = trip("t", "", "c", origins="a", within=9)
+    assert of(asked(drive(rows, trips=[first, second], paths=SLOW))) == SAFE
+    # Heard at rest in `a`, it stays in hand while the first runs and is taken in `b`: B ends after 7, A begins at 2.
+    second = trip("t", "a", "c", origins="", within=0)
+    assert of(asked(drive(rows, trips=[first, second], paths=SLOW))) == unsafe(5)
+
+
+def test_break_input_does_not_break_into_itself() -> None:
+    """It could otherwise begin anew between A's turn-off and B's turn-on, and write B at once."""
+    rows = {"a": "on off", "b": "off on"}
+    hard = trip("s", "a", "b", sets(A="off"), waits(5), at_once=True)
+    assert of(asked(drive(rows, trips=[hard], paths=SLOW))) == SAFE
+
+
 def test_break_input_skips_waits_before_its_first_write() -> None:
     """A is off already: the first item with changes is the row, written in the instant of the trip."""
     rows = {"a": "on off", "c": "off off", "b": "off on"}
     moves = [move("a", "c", when=(0, None))]
     hard = trip("t", "c", "b", sets(A="off"), waits(9), at_once=True, origins="")
     assert of(asked(drive(rows, moves, trips=[hard], paths=SLOW))) == unsafe(5)
-    # From `a` the step has changes, and the wait stands behind its write.
+    # So is a wait before a step that has changes; what follows it comes in the same instant.
+    hard = trip("t", "a", "b", sets(B="off"), waits(9), sets(A="off"), at_once=True, origins="")
+    assert of(asked(drive(rows, moves, trips=[hard], paths=SLOW))) == unsafe(5)
+    # From `a` the first step has changes, and the wait stands behind its write.
     hard = trip("t", "a", "b", sets(A="off"), waits(9), at_once=True, origins="")
     assert of(asked(drive(rows, moves, trips=[hard], paths=SLOW))) == SAFE
 
@@ -450,6 +547,16 @@ def test_interlock() -> None:
     both = {"a": "off off", "b": "on on"}
     assert of(asked(locked(INSTANT, both))) == SAFE
     assert of(asked(locked(INSTANT, both), interlocks=False)) == unsafe(None)
+
+
+def test_interlock_passes_in_time() -> None:
+    """B is held off for the 2 ps in which A is on, then for the dead time of 3 at most: off for 5, plus 3, less 4."""
+    rows = {"s": "off on", "a": "on on", "b": "off on"}
+    lock = Interlock(HERE, "A", "B", span(1, 3))
+    moves = [move("s", "a", when=(9, None)), move("a", "b", after=span(2))]
+    built = drive(rows, moves, paths=SLOW, interlocks=[lock])
+    assert of(asked(built, Literal("B", on=False))) == unsafe(4)
+    assert of(asked(built, Literal("B", on=False), interlocks=False)) == SAFE
 
 
 def test_interlock_with_unknown_commands() -> None:

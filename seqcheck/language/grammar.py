@@ -2,7 +2,6 @@
 
 from collections.abc import Iterator
 from functools import lru_cache
-from importlib.resources import files
 from pathlib import Path
 from typing import Any
 
@@ -15,16 +14,25 @@ from seqcheck.language.syntax import Node
 from seqcheck.language.words import SECTIONS
 from seqcheck.messages import Problem
 
+PACKAGE = Path(__file__).parents[1]
 STATEMENT = "statement"
 STARTS = (STATEMENT, *(f"{section}_line" for section in SECTIONS))
 
 
 def grammar_text() -> str:
-    """The grammar: beside the code where a wheel puts it, else beside the package as in a checkout."""
-    try:
-        return (files("seqcheck") / "grammars" / "drive.lark").read_text("utf-8")
-    except OSError:
-        return (Path(__file__).parents[2] / "grammars" / "drive.lark").read_text("utf-8")
+    """The grammar: in the package, where a wheel puts it, else beside the package, as in a checkout.
+
+    Importing importlib.resources costs more than reading a small file does, so it is asked only where the package is
+    no folder, as in a zip file.
+    """
+    for folder in (PACKAGE, PACKAGE.parent):
+        try:
+            return (folder / "grammars" / "drive.lark").read_text("utf-8")
+        except OSError:
+            continue
+    from importlib.resources import files
+
+    return (files("seqcheck") / "grammars" / "drive.lark").read_text("utf-8")
 
 
 class _WholeWords(PostLex):

@@ -43,7 +43,8 @@ def with_full_dwells(projection: Projection, hops: Sequence[Hop], run: Run) -> R
         assert isinstance(happening, Happening)
         if happening.edge is None:
             continue
-        missing = projection.full_dwell(happening.edge, hops[place - 1].target) - (run.times[place] - run.times[entered])
+        stayed = run.times[place] - run.times[entered]
+        missing = projection.full_dwell(happening.edge, hops[place - 1].target) - stayed
         if missing > 0:
             run = _lengthened(projection, Dwell(entered, place), run, missing)
         entered = place

@@ -377,7 +377,7 @@ class Projection:
     def _firmware_hops(self, key: Key) -> Iterator[Hop]:
         for edge in self._timing(key, self._hot(key))[0]:
             target = edge.step.target
-            written = sum({1 << switch for _, _, writes in edge.step.acts for switch, _ in writes})
+            written = sum({1 << switch for deed in edge.step.deeds for switch, _ in deed.writes})
             most = ((X, edge.hi),) if edge.hi is not None else ()
             if edge.y_hi is not None:
                 most = (*most, (Y, edge.y_hi))

@@ -20,7 +20,7 @@ from seqcheck.zones import INFINITE
 Observer = Callable[[int], None]
 
 
-class LimitReached(Exception):
+class LimitReached(Exception):  # noqa: N818 - it is an answer, not an error
     """The observer's way to stop a proof; its text names the limit."""
 
 
@@ -72,7 +72,10 @@ class Prover:
         self._maps: dict[Firmware, Map] = {}
 
     def prove(self, hazard: Hazard, interlocks: bool, observer: Observer) -> Proven | Refuted:
-        """Prove or refute one hazard, with or without the drive's interlocks. What the observer raises passes through."""
+        """Prove or refute one hazard, with the drive's interlocks or as if it had none.
+
+        What the observer raises passes through.
+        """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         count = _Count(observer)
         if screened(looking, self._map(self._firmware(looking, punctual=False))):

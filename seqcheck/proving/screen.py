@@ -186,7 +186,7 @@ class _Pairing:
         return best
 
     def _floor(self, cell: int, target: tuple[int, Pair], coming: int) -> int:
-        """A dead time that lies between: one switch was on with a carrier's output, the other comes with its complement."""
+        """A dead time that lies between: one switch was on with an output, the other comes with its complement."""
         number = carrier_of(cell)
         after = self._cells(target[0])[coming]
         opposite = number >= 0 and carrier_of(after) == number and after != cell

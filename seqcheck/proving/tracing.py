@@ -1,5 +1,7 @@
 """From a path of hops to a run with concrete times."""
 
+from seqcheck.drive import Drive, Move, Trip
+from seqcheck.firmware import Deed
 from seqcheck.proving.cutting import longest_memory
 from seqcheck.proving.dwelling import Run, with_full_dwells
 from seqcheck.proving.location import Hop
@@ -7,10 +9,11 @@ from seqcheck.proving.projection import CARRIER, Happening, Key, Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
 from seqcheck.proving.schedule import constraints_of, scheduled
 from seqcheck.proving.search import Node
+from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
 
 
-class Infeasible(Exception):
+class Infeasible(Exception):  # noqa: N818 - it names what a path is
     """A path of the search has no concrete times: the program is at fault."""
 
 
@@ -25,14 +28,16 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     times = scheduled(path, first, max(1, longest_memory(projection.view)))
     if times is None:
         raise Infeasible
-    events = [(place, event) for place in range(1, len(hops)) for event in _events(projection, hops[place], times[place])]
+    timed = list(enumerate(zip(hops, times, strict=False)))[1:]
+    events = tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))
     key = hops[0].target.key
     assert isinstance(key, Key)
     births = {projection.clock_name(key, place): times[variable] for place, variable in path.births.items()}
     phases = tuple(
         _phase(projection, place, state, births) for place, state in enumerate(key.carriers) if state != FORGOTTEN
     )
-    run = with_full_dwells(projection, hops, Run(tuple(times[: len(hops)]), tuple(events), times[first], times[path.end]))
+    short = Run(tuple(times[: len(hops)]), events, times[first], times[path.end])
+    run = with_full_dwells(projection, hops, short)
     happened = tuple(event for _, event in run.events)
     return Trace(
         projection.view.hazard, phases, happened, run.end, run.hot, None if endless else run.end, interlocked
@@ -55,17 +60,24 @@ def _events(projection: Projection, hop: Hop, time: int) -> list[Event]:
         return [Event(time, happening.act, happening.name)]
     drive, writing = projection.view.drive, projection.firmware.writing
     events = []
-    for act, number, writes in happening.edge.step.acts:
-        cells = tuple((drive.columns[switch], writing.cell(cell)) for switch, cell in writes)
-        if act is Act.ARRIVES:
-            trip = drive.trips[number]
-            events.append(Event(time, act, trip.name, number, True, place=trip.place))
+    for deed in happening.edge.step.deeds:
+        cells = tuple((drive.columns[switch], writing.cell(cell)) for switch, cell in deed.writes)
+        if deed.act is Act.ARRIVES:
+            trip = drive.trips[deed.number]
+            events.append(Event(time, deed.act, trip.name, deed.number, True, place=trip.place))
             continue
-        is_trip = number >= len(drive.moves)
-        index = number - len(drive.moves) if is_trip else number
+        is_trip = deed.number >= len(drive.moves)
+        index = deed.number - len(drive.moves) if is_trip else deed.number
         run = drive.trips[index] if is_trip else drive.moves[index]
-        name = run.target if act is Act.ENTERS else ""
-        events.append(Event(time, act, name, index, is_trip, cells, run.place))
+        name = run.target if deed.act is Act.ENTERS else ""
+        events.append(Event(time, deed.act, name, index, is_trip, cells, _place(drive, run, deed)))
     return events
 
 
+def _place(drive: Drive, run: Move | Trip, deed: Deed) -> Place:
+    """Where the file says it: the step, the row, or the run itself."""
+    if deed.act is Act.ENTERS:
+        return drive.modes[run.target].place
+    if deed.item < 0:
+        return run.place
+    return run.steps[deed.item].place if deed.item < len(run.steps) else drive.modes[run.target].place

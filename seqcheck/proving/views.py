@@ -67,8 +67,8 @@ def _carriers(drive: Drive, switches: tuple[str, ...]) -> tuple[str, ...]:
 def _followed(drive: Drive, switch: str) -> set[str]:
     column = drive.columns.index(switch)
     cells = [mode.cells[column] for mode in drive.modes.values()]
-    steps = [step for move in drive.moves for step in move.steps] + [step for trip in drive.trips for step in trip.steps]
-    for step in steps:
+    runs = [run.steps for run in drive.moves] + [run.steps for run in drive.trips]
+    for step in (step for steps in runs for step in steps):
         if isinstance(step, SetStep):
             cells += [cell for name, cell in step.writes if name == switch]
     return {cell.carrier for cell in cells if isinstance(cell, Follow)}

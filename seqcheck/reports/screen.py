@@ -4,9 +4,6 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from enum import Enum
 
-from rich.color import ColorSystem
-from rich.style import Style
-
 from seqcheck.reports.counterexample import counterexample, sentence
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
 from seqcheck.reports.waived import reason
@@ -14,12 +11,11 @@ from seqcheck.reports.wording import CAUTION, happens, subject
 from seqcheck.verdict import WARNINGS, Finding, Outcome, Safe, Undecided, Unsafe
 
 _STYLES = {
-    Tone.PLAIN: Style(),
-    Tone.STRONG: Style(bold=True),
-    Tone.FAINT: Style(dim=True),
-    Tone.GOOD: Style(color="green", bold=True),
-    Tone.BAD: Style(color="red", bold=True),
-    Tone.DOUBT: Style(color="yellow", bold=True),
+    Tone.STRONG: "bold",
+    Tone.FAINT: "dim",
+    Tone.GOOD: "bold green",
+    Tone.BAD: "bold red",
+    Tone.DOUBT: "bold yellow",
 }
 
 
@@ -57,11 +53,16 @@ def plain(lines: Iterable[Line]) -> str:
 
 def coloured(lines: Iterable[Line]) -> str:
     """The lines with terminal colours; it looks at no terminal and no environment, the caller has decided."""
-    return "".join("".join(_painted(piece) for piece in one) + "\n" for one in lines)
+    from rich.color import ColorSystem
+    from rich.style import Style
 
+    styles = {tone: Style.parse(said) for tone, said in _STYLES.items()}
 
-def _painted(piece: Piece) -> str:
-    return _STYLES[piece.tone].render(piece.text, color_system=ColorSystem.STANDARD)
+    def painted(piece: Piece) -> str:
+        style = styles.get(piece.tone)
+        return style.render(piece.text, color_system=ColorSystem.STANDARD) if style else piece.text
+
+    return "".join("".join(painted(piece) for piece in one) + "\n" for one in lines)
 
 
 # One file

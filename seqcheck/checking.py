@@ -1,0 +1,173 @@
+"""The pipeline from a drive to everything that is to be said about it, as one pure function."""
+
+from collections.abc import Callable, Iterator
+from dataclasses import replace
+
+from seqcheck.circuit import shorting_sets
+from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, NeverRule, Rule
+from seqcheck.evidence.replay import NotPermitted, replay
+from seqcheck.hazards import Hazard
+from seqcheck.messages import Problem, Problems
+from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
+from seqcheck.proving.tracing import Infeasible
+from seqcheck.sizing import cure
+from seqcheck.source import Place
+from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Undecided, Unsafe, Verdict
+
+Observer = Callable[[int], None]
+
+PROVEN_CHECKS = (Check.SHORT, Check.OVERLAP, Check.NO_PATH, Check.HELD_BY_INTERLOCK, Check.PUNCTUAL)
+"""What this version looks for; a file or a call that asks for another check is refused."""
+
+_RULES: dict[type[Rule], str] = {
+    MarginRule: "margin at least",
+    NeverRule: "never",
+    ClearsRule: "clears",
+    LastsRule: "on at most, on at least, off at least",
+    ApartRule: "apart",
+}
+
+
+class Fault(Exception):  # noqa: N818 - the program is at fault, not the input
+    """A counterexample that its own replay does not confirm: nothing that was found may be shown."""
+
+
+def check(drive: Drive, file: str, only: frozenset[Check], observer: Observer) -> Outcome:
+    """Everything about one drive.
+
+    `only` limits what is said to these checks; empty means all. `observer` is told the number of zones stored for a
+    proof and may raise LimitReached. Raises Problems for what cannot be proven, Fault if a trace does not replay.
+    """
+    _refuse(drive)
+    prover = Prover(drive)
+    verdicts: list[Verdict] = []
+    findings: list[Finding] = list(_without_path(drive))
+    for hazard in shorting_sets(drive.stage):
+        verdict = _judged(prover, hazard, observer)
+        verdicts.append(verdict)
+        if isinstance(verdict, Safe):
+            findings += _held_by_interlock(prover, hazard, observer)
+    findings += _punctual(drive, verdicts)
+    return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
+
+
+def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
+    if not only:
+        return outcome
+    verdicts = tuple(one for one in outcome.verdicts if not isinstance(one, Unsafe) or one.check in only)
+    findings = tuple(one for one in outcome.findings if one.check in only)
+    return replace(outcome, verdicts=verdicts, findings=findings)
+
+
+def _refuse(drive: Drive) -> None:
+    """Nothing that the file asks for is passed over in silence."""
+    way_out = "take the line out to have the rest proven"
+    found = [
+        Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
+        for rule in drive.rules
+    ]
+    found += [
+        Problem(one.place, "not-proven-yet", "'must flow' cannot be proven yet", way_out)
+        for one in drive.stage.windings
+        if one.must_flow
+    ]
+    found += [
+        Problem(mode.means.place, "not-proven-yet", "'means' cannot be proven yet", way_out)
+        for mode in drive.modes.values()
+        if mode.means
+    ]
+    found += [
+        Problem(waiver.place, "not-proven-yet", "'waive' is not served yet", way_out) for waiver in drive.waivers
+    ]
+    if found:
+        raise Problems(found)
+
+
+def _judged(prover: Prover, hazard: Hazard, observer: Observer) -> Verdict:
+    seen = 0
+
+    def counting(count: int) -> None:
+        nonlocal seen
+        seen = count
+        observer(count)
+
+    try:
+        proof = prover.prove(hazard, True, counting)
+    except LimitReached as limit:
+        return Undecided(hazard, str(limit), seen)
+    except Infeasible as fault:
+        raise Fault(f"a path to {_named(hazard)} has no times") from fault
+    if isinstance(proof, Proven):
+        return Safe(hazard, proof.method, proof.zones, proof.however_late)
+    return _unsafe(prover.drive, hazard, proof, observer)
+
+
+def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Unsafe:
+    try:
+        replayed = replay(drive, proof.trace)
+    except NotPermitted as fault:
+        raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
+    check = Check.SHORT if proof.held else Check.OVERLAP
+    remedy = None if proof.held else cure(drive, hazard, proof, observer)
+    return Unsafe(hazard, check, _place(drive, proof, replayed), proof.trace, replayed, proof.overlap, remedy)
+
+
+def _named(hazard: Hazard) -> str:
+    return " with ".join(map(str, hazard.literals))
+
+
+def _place(drive: Drive, proof: Refuted, replayed: Replayed) -> Place:
+    """The row that holds a short; for an overlap the run that brings it, or the row at rest in which it comes."""
+    trace = proof.trace
+    changes = [time for line in replayed.commands.values() for time, _ in line if time is not None]
+    last = max((time for time in changes if time <= trace.overlap_from), default=0)
+    concerned = {literal.switch for literal in trace.hazard.literals}
+    mode, run, at_rest, written = drive.start, drive.modes[drive.start].place, True, False
+    for event in trace.events:
+        if event.time > (trace.overlap_from if proof.held else last):
+            break
+        if event.act is Act.BEGINS:
+            run, at_rest = (drive.trips[event.index] if event.trip else drive.moves[event.index]).place, False
+        elif event.act is Act.ENTERS:
+            mode, at_rest = event.name, True
+        if event.time == last and concerned & {switch for switch, _ in event.writes}:
+            written = True
+    if proof.held or (at_rest and not written):
+        return drive.modes[mode].place
+    return run
+
+
+def _without_path(drive: Drive) -> Iterator[Finding]:
+    for switch in drive.stage.switches:
+        if not drive.paths[switch.name]:
+            text = f"'{switch.name}' has no path, so its delays are taken as zero"
+            yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
+
+
+def _held_by_interlock(prover: Prover, hazard: Hazard, observer: Observer) -> Iterator[Finding]:
+    """A short that only the interlock prevents is worth knowing."""
+    drive = prover.drive
+    names = {literal.switch for literal in hazard.literals}
+    locks = [one for one in drive.interlocks if {one.first, one.second} & names]
+    if not locks:
+        return
+    try:
+        proof: Proven | Refuted | None = prover.prove(hazard, False, observer)
+    except LimitReached:
+        proof = None
+    if isinstance(proof, Proven):
+        return
+    said = "the firmware alone would bring" if proof else "whether the firmware alone would bring"
+    text = f"{said} {_named(hazard)} together" + ("; only the interlock prevents it" if proof else " is undecided")
+    yield Finding(Check.HELD_BY_INTERLOCK, locks[0].place, text, "", tuple(sorted(names)))
+
+
+def _punctual(drive: Drive, verdicts: list[Verdict]) -> Iterator[Finding]:
+    if drive.clock is not None and drive.clock.late is not None:
+        return
+    resting = [one.hazard for one in verdicts if isinstance(one, Safe) and not one.however_late]
+    for hazard in resting:
+        text = f"that {_named(hazard)} never meet rests on firmware that is never late"
+        place = drive.clock.place if drive.clock else drive.place
+        names = tuple(literal.switch for literal in hazard.literals)
+        yield Finding(Check.PUNCTUAL, place, text, "say how late it can be: 'clock ..., late by at most ...'", names)

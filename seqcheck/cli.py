@@ -1,0 +1,271 @@
+"""Arguments, opening files and exit codes: the only room that touches the world."""
+
+import argparse
+import gc
+import os
+import re
+import sys
+import time
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+from pathlib import Path
+from typing import Never, TextIO
+
+from seqcheck import __version__
+from seqcheck.messages import Problem, Problems, nearest
+from seqcheck.quantities import PICOSECONDS
+from seqcheck.source import Place
+from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
+
+PROVEN, FOUND, WRONG, UNDECIDED, FAULT = 0, 1, 2, 3, 4
+_WORST_FIRST = (FAULT, WRONG, FOUND, UNDECIDED, PROVEN)
+_STDIN = "-"
+
+_LINT = """\
+Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
+folder you are in, '-' standard input."""
+_EXITS = """\
+exit codes: 0 everything asked is proven; 1 a hazard is possible; 2 the input or the call is wrong, nothing was judged;
+3 undecided within the limits given, never to be taken for proven; 4 the program itself is at fault. Where several
+files differ the worst counts, in the order 4, 2, 1, 3, 0."""
+
+
+@dataclass(frozen=True, slots=True)
+class Limits:
+    """When to give a proof up: after so many zones, or so many seconds for one file."""
+
+    zones: int | None
+    seconds: float | None
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run the command line; the exit code. No input makes it raise."""
+    gc.disable()  # a short-lived process: collecting would cost more than it frees
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="backslashreplace")
+    try:
+        code = _run(list(sys.argv[1:] if arguments is None else arguments))
+        sys.stdout.flush()
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return FOUND  # whoever stopped reading has not seen a proof
+    except KeyboardInterrupt:
+        _complain("stopped by the keyboard; nothing is proven")
+        return UNDECIDED
+    except Exception as fault:
+        _complain(f"internal error, please report it: {type(fault).__name__}: {fault}")
+        return FAULT
+    return code
+
+
+def _complain(text: str) -> None:
+    print(f"seqcheck: {text}", file=sys.stderr)
+
+
+class _Parser(argparse.ArgumentParser):
+    """Wrong calls in our own words, on one line."""
+
+    def error(self, message: str) -> Never:
+        _complain(f"error: {message}; '{self.prog} --help' shows the call")
+        raise SystemExit(WRONG)
+
+
+def _parser() -> argparse.ArgumentParser:
+    parser = _Parser(
+        prog="seqcheck",
+        description="Prove that a drive sequence never shorts a leg of its power stage.",
+        epilog=_EXITS,
+        allow_abbrev=False,
+    )
+    parser.add_argument("--version", action="version", version=f"seqcheck {__version__}")
+    commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
+    lint = commands.add_parser("lint", help="prove files", description=_LINT, epilog=_EXITS, allow_abbrev=False)
+    lint.add_argument("paths", nargs="*", metavar="PATH", default=[])
+    lint.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
+    lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="say only this; may be repeated")
+    lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+    lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    return parser
+
+
+def _run(arguments: list[str]) -> int:
+    try:
+        asked = _parser().parse_args(arguments)
+        form = _one_of("--as", asked.form, ("screen", "lines"))
+        colour = _one_of("--color", asked.color, ("auto", "always", "never"))
+        only = frozenset(_check(name) for name in asked.only)
+        limits = Limits(_count(asked.most_zones), _seconds(asked.give_up_after))
+        files = list(_files(asked.paths or ["."]))
+    except SystemExit as stop:
+        return int(stop.code or 0)
+    outcomes, code = _lint(files, only, limits)
+    if outcomes:
+        text = _written(outcomes, form, _wants_colour(colour, sys.stdout) and not asked.out)
+        code = _worse(code, _deliver(text, asked.out))
+    return code
+
+
+def _wrong(text: str) -> Never:
+    _complain(f"error: {text}")
+    raise SystemExit(WRONG)
+
+
+def _one_of(option: str, value: str, known: tuple[str, ...]) -> str:
+    if value not in known:
+        _wrong(f"{option} cannot be '{value}'; {nearest(value, known)}")
+    return value
+
+
+def _check(name: str) -> Check:
+    from seqcheck.checking import PROVEN_CHECKS
+
+    known = {check.value: check for check in PROVEN_CHECKS}
+    if name in known:
+        return known[name]
+    if name in {check.value for check in Check}:
+        _wrong(f"--only {name}: this check cannot be proven yet; known are {', '.join(known)}")
+    _wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
+
+
+def _count(text: str | None) -> int | None:
+    if text is None:
+        return None
+    if not re.fullmatch(r"[0-9]{1,15}", text) or int(text) == 0:
+        _wrong(f"--most-zones must be a whole number above 0, not '{text}'")
+    return int(text)
+
+
+def _seconds(text: str | None) -> float | None:
+    if text is None:
+        return None
+    match = re.fullmatch(r"([0-9]{1,15}(?:\.[0-9]{1,15})?) *([a-zµμ]+)", text)
+    if match is None or match[2] not in PICOSECONDS or Fraction(match[1]) == 0:
+        _wrong(f"--give-up-after must be a time above 0 with its unit, such as '30 s', not '{text}'")
+    return float(Fraction(match[1]) * PICOSECONDS[match[2]] / PICOSECONDS["s"])
+
+
+def _files(paths: list[str]) -> Iterator[str]:
+    for path in paths:
+        if path == _STDIN or not os.path.isdir(path):
+            yield path
+            continue
+        found = sorted(name for name in os.listdir(path) if name.endswith(".dseq"))
+        if not found:
+            _wrong(f"there is no *.dseq file in the folder '{path}'; name a file or another folder")
+        yield from (name if path == "." else os.path.join(path, name) for name in found)
+
+
+# Proving
+
+
+def _lint(files: list[str], only: frozenset[Check], limits: Limits) -> tuple[list[Outcome], int]:
+    outcomes, code = [], PROVEN
+    for file in dict.fromkeys(files):
+        answer, own = _one_file(file, only, limits)
+        code = _worse(code, own)
+        if answer is not None:
+            outcomes.append(answer)
+    return outcomes, code
+
+
+def _one_file(file: str, only: frozenset[Check], limits: Limits) -> tuple[Outcome | None, int]:
+    from seqcheck.checking import Fault, check
+    from seqcheck.language import read
+
+    try:
+        drive = read(_text(file), file, _text)
+        outcome = check(drive, file, only, _observer(limits))
+    except Problems as problems:
+        for problem in problems.found:
+            print(problem.line(), file=sys.stderr)
+        return None, WRONG
+    except Fault as fault:
+        _complain(f"{file}: internal error, please report it with the file: {fault}")
+        return None, FAULT
+    return outcome, _exit_of(outcome)
+
+
+def _text(file: str) -> str:
+    from seqcheck.language import decode
+
+    try:
+        data = sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
+    except (OSError, ValueError) as refusal:
+        why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
+        raise Problems([_unreadable(file, why)]) from refusal
+    return decode(data, file)
+
+
+def _unreadable(file: str, why: str) -> Problem:
+    return Problem(Place(file, 1, 1, 1, 1), "cannot-read", f"cannot read this file: {why}", "check its name and rights")
+
+
+def _observer(limits: Limits) -> Callable[[int], None]:
+    from seqcheck.proving.prove import LimitReached
+
+    end = None if limits.seconds is None else time.monotonic() + limits.seconds
+
+    def observe(zones: int) -> None:
+        if limits.zones is not None and zones > limits.zones:
+            raise LimitReached(f"{limits.zones} zones (--most-zones)")
+        if end is not None and zones % 64 == 0 and time.monotonic() > end:
+            raise LimitReached(f"{limits.seconds:g} s (--give-up-after)")
+
+    return observe
+
+
+def _exit_of(outcome: Outcome) -> int:
+    if any(isinstance(one, Unsafe) for one in outcome.verdicts):
+        return FOUND
+    if any(finding.check not in WARNINGS for finding in outcome.findings):
+        return FOUND
+    return UNDECIDED if any(isinstance(one, Undecided) for one in outcome.verdicts) else PROVEN
+
+
+def _worse(one: int, other: int) -> int:
+    return min(one, other, key=_WORST_FIRST.index)
+
+
+# Answering
+
+
+def _written(outcomes: list[Outcome], form: str, colour: bool) -> str:
+    if form == "lines":
+        from seqcheck.reports import lines
+
+        return lines.report(outcomes)
+    from seqcheck.reports import screen
+
+    report = screen.report(outcomes)
+    return screen.coloured(report) if colour else screen.plain(report)
+
+
+def _wants_colour(asked: str, stream: TextIO) -> bool:
+    """--color above the environment: NO_COLOR and FORCE_COLOR count where they are not empty."""
+    if asked != "auto":
+        return asked == "always"
+    if os.environ.get("NO_COLOR"):
+        return False
+    if os.environ.get("FORCE_COLOR"):
+        return True
+    return stream.isatty() and os.environ.get("TERM") != "dumb"
+
+
+def _deliver(text: str, out: str | None) -> int:
+    if out is None:
+        sys.stdout.write(text)
+        return PROVEN
+    target = Path(out)
+    draft = target.with_name(f".{target.name}.{os.getpid()}.part")
+    try:
+        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
+        draft.replace(target)
+    except (OSError, ValueError) as refusal:
+        draft.unlink(missing_ok=True)
+        _complain(f"error: cannot write '{out}': {getattr(refusal, 'strerror', None) or refusal}")
+        return WRONG
+    return PROVEN

@@ -1,0 +1,99 @@
+"""What would cure an overlap, with the number, each proposal proven before it is made."""
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
+from fractions import Fraction
+from math import ceil
+from typing import TypeVar
+
+from seqcheck.drive import Carrier, Drive, Move, Trip, WaitStep
+from seqcheck.hazards import Hazard
+from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
+from seqcheck.quantities import Interval, shown
+from seqcheck.source import Place
+from seqcheck.verdict import Act, Cure, Trace
+
+Observer = Callable[[int], None]
+Run = TypeVar("Run", Move, Trip)
+
+
+@dataclass(frozen=True, slots=True)
+class _Proposal:
+    """A drive with one time made longer, and how to say so."""
+
+    drive: Drive
+    place: Place
+    words: str
+
+
+def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cure | None:
+    """The first time of the file that, made longer by the overlap, brings a proof; None if none does.
+
+    Waits of the runs on the way are tried, the last first, then the carriers' dead times and the spacing of writes.
+    """
+    if proof.overlap is None:
+        return None
+    for proposal in _proposals(drive, proof.trace, proof.overlap):
+        try:
+            answer = Prover(proposal.drive).prove(hazard, True, observer)
+        except LimitReached:
+            return None
+        if isinstance(answer, Proven):
+            return Cure(proposal.place, proof.overlap, proposal.words)
+    return None
+
+
+def _proposals(drive: Drive, trace: Trace, missing: int) -> Iterator[_Proposal]:
+    for is_trip, index in _runs(trace):
+        run = drive.trips[index] if is_trip else drive.moves[index]
+        for number in reversed(range(len(run.steps))):
+            step = run.steps[number]
+            if isinstance(step, WaitStep):
+                yield _longer_wait(drive, is_trip, index, number, step, missing)
+    for phase in trace.phases:
+        carrier = drive.carriers[phase.carrier]
+        yield _longer_dead_time(drive, carrier, missing)
+    if drive.writes is not None and drive.writes.gap.lo:
+        longer = replace(drive.writes, gap=_longer(drive.writes.gap, missing))
+        least = _nominal(drive, longer.gap.lo)
+        words = f"put writes at least {shown(least)} apart"
+        yield _Proposal(replace(drive, writes=longer), drive.writes.place, words)
+
+
+def _runs(trace: Trace) -> list[tuple[bool, int]]:
+    begun = [
+        (event.trip, event.index)
+        for event in trace.events
+        if event.act is Act.BEGINS and event.time <= trace.overlap_from
+    ]
+    return list(dict.fromkeys(reversed(begun)))[:3]
+
+
+def _longer_wait(drive: Drive, is_trip: bool, index: int, number: int, step: WaitStep, missing: int) -> _Proposal:
+    longer = replace(step, time=_longer(step.time, missing))
+    words = f"make this wait at least {shown(_nominal(drive, longer.time.lo))}"
+    if is_trip:
+        trips = [_with_step(run, number, longer) if at == index else run for at, run in enumerate(drive.trips)]
+        return _Proposal(replace(drive, trips=tuple(trips)), step.place, words)
+    moves = [_with_step(run, number, longer) if at == index else run for at, run in enumerate(drive.moves)]
+    return _Proposal(replace(drive, moves=tuple(moves)), step.place, words)
+
+
+def _with_step(run: Run, number: int, step: WaitStep) -> Run:
+    return replace(run, steps=(*run.steps[:number], step, *run.steps[number + 1 :]))
+
+
+def _longer_dead_time(drive: Drive, carrier: Carrier, missing: int) -> _Proposal:
+    longer = replace(carrier, dead=_longer(carrier.dead, missing))
+    words = f"make the dead time of '{carrier.name}' at least {shown(_nominal(drive, longer.dead.lo))}"
+    return _Proposal(replace(drive, carriers={**drive.carriers, carrier.name: longer}), carrier.place, words)
+
+
+def _longer(time: Interval, missing: int) -> Interval:
+    return Interval(time.lo + missing, None if time.hi is None else time.hi + missing)
+
+
+def _nominal(drive: Drive, least: int) -> int:
+    """What to write for a time that is to last at least this long by the drive's clock."""
+    tolerance = drive.clock.tolerance if drive.clock else Fraction(0)
+    return ceil(least * (1 + tolerance))

@@ -99,6 +99,16 @@ def test_pulse_of_no_length() -> None:
     assert of(asked(drive(rows, moves, paths={"A": (5, 5, 5, 5)}), A)) == SAFE
 
 
+def test_pause_of_no_length() -> None:
+    """Off and on in one instant, every 2 ps: with no turn-off time the stretches still touch, so they join for ever."""
+    rows = {"i": "off off", "p": "on off"}
+    moves = [move("i", "p", when=(0, None)), move("p", "p", sets(A="off"), after=span(2))]
+    assert of(asked(drive(rows, moves, paths={"A": (3, 3, 0, 0)}), A)) == unsafe(None)
+    # Off for 1 ps they do not touch, and neither is long enough.
+    moves[1] = move("p", "p", sets(A="off"), waits(1), after=span(2))
+    assert of(asked(drive(rows, moves, paths={"A": (3, 3, 0, 0)}), A)) == SAFE
+
+
 def test_wanted_off() -> None:
     """A off from the beginning: possible without end; A off for 1 ps with off 3 and on up to 4: 1 + 4 - 3."""
     rows = {"i": "on off", "j": "on off"}

@@ -169,7 +169,8 @@ def test_differences_look_at_what_was_last_written() -> None:
 def test_a_hardware_trip_cancels_what_is_held_and_acts_at_once() -> None:
     halt = trip("halt", "run held", "idle", at_once=True)
     built = modulated(Update.AT_RISE, trips=(halt,))
-    permitted(built, JOINED + "5 begins trip 0; 5 enters idle", 40, phases=LOW)  # nothing was in effect yet
+    walk = permitted(built, JOINED + "5 begins trip 0; 5 enters idle; 40 rises k", 50, phases=LOW)
+    assert walk.commands == {"X": [(None, OFF)], "Y": [(None, OFF)]}
     joined = JOINED + "40 rises k; 45 begins 3; 45 writes X on, Y off; 45 enters held; "
     walk = permitted(built, joined + "50 begins trip 0; 50 writes X off, Y off; 50 enters idle", 60, phases=LOW)
     assert walk.commands["X"] == [(None, OFF), (40, ON), (50, OFF)]
@@ -218,6 +219,12 @@ def test_the_oldest_write_still_held_counts() -> None:
 # Released pins
 
 
+def test_a_pin_that_nobody_looks_at_may_have_been_anywhere() -> None:
+    released = JOINED + "60 begins 6; 60 writes X free, Y off; 60 enters loose; "
+    for lines in (released + "161 rests X", released):
+        permitted(modulated(), lines, 400, literals="Z")
+
+
 def test_released_pins() -> None:
     built = modulated()
     released = (
@@ -261,4 +268,5 @@ def test_a_pin_that_rests_nowhere_counts_as_both() -> None:
 def test_a_switch_without_a_pin_line_is_not_released() -> None:
     built = drive("X Y", {"idle": "off off", "loose": "free off"}, moves=(move("idle", "loose"),))
     refused(built, "1 begins 0; 1 writes X free", 9, "X has no line in pins")
+    refused(drive("X Y", {"idle": "off keep"}), "", 9, "no constant cell for Y")
     refused(drive("X Y", {"idle": "k off"}, carriers=(carrier("k"),)), "", 9, "no constant cell for X")

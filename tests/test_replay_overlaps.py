@@ -1,5 +1,7 @@
 """The overlap that a trace claims, interlocks, and overlaps without end."""
 
+from dataclasses import replace
+
 import pytest
 from build import after, carrier, drive, hazard, interlock, move, part, pin, span, steps, trace, trip, writes
 from test_replay_runs import permitted, refused
@@ -8,7 +10,7 @@ from seqcheck.drive import Above, Carrier, Command, Drive, Interlock, Level, Mov
 from seqcheck.evidence.replay import NotPermitted, replay
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.quantities import Interval
-from seqcheck.verdict import Phase, Replayed, Span
+from seqcheck.verdict import Act, Phase, Replayed, Span
 
 ON, OFF, UNKNOWN = Command.ON, Command.OFF, Command.UNKNOWN
 X, Y = Literal("X"), Literal("Y")
@@ -165,6 +167,17 @@ def test_a_switch_in_two_interlocks_needs_both_to_clear() -> None:
     lines = "1 begins 0; 1 writes X off, Y on, Z off; 1 enters low; 4 clears Y; "
     assert permitted(built, lines + "9 clears Y", 12, literals="Y").commands["Y"] == [(None, OFF), (9, ON)]
     refused(built, lines + "5 clears Y", 12, "cannot come before 9 ps", literals="Y")
+    refused(built, lines.replace("4 clears Y", "4 clears Z"), 12, "runs for Z", literals="X")
+    named = trace(lines + "9 clears Y", 12, literals="Y")
+    for indices, fits in (((0, 1), True), ((1, 0), False), ((0, 0), False)):
+        cleared = iter(indices)
+        events = [replace(one, index=next(cleared)) if one.act is Act.CLEARS else one for one in named.events]
+        one = replace(named, events=tuple(events), overlap_from=9, overlap_to=None)
+        if fits:
+            assert replay(built, one).commands["Y"] == ((None, OFF), (9, ON))
+        else:
+            with pytest.raises(NotPermitted):
+                replay(built, one)
     refused(built, lines, 12, "must clear Y by 9 ps", literals="Y")
     # Z is not judged: by when its partner has been off for long enough is not asked
     back = drive("X Y Z", {"idle": "off on off", "low": "off off on"}, moves=(move("idle", "low"),), interlocks=locks)
@@ -181,6 +194,8 @@ def test_unknown_commands_and_interlocks() -> None:
     )
     walk = permitted(built, lines, 20)
     assert walk.commands == {"X": [(None, OFF), (9, UNKNOWN)], "Y": [(None, OFF), (1, UNKNOWN)]}
+    half = drive("X Y", {"idle": "off free"}, pins=pins, interlocks=built.interlocks)
+    assert permitted(half, "", 9).commands == {"X": [(None, OFF)], "Y": [(None, UNKNOWN)]}
 
 
 # Without end

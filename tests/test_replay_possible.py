@@ -35,6 +35,8 @@ def spans(pieces: list[tuple[int | None, int | None]], rise: int, fall: int) -> 
         ([(None, None)], 100, 5, [(None, None)]),
         ([(3, None)], 4, 5, [(7, None)]),
         ([(0, 2), (4, None)], 9, 2, [(9, None)]),
+        ([(0, None), (3, 5)], 1, 1, [(1, None)]),
+        ([(None, 3), (None, 5)], 1, 1, [(None, 6)]),
     ],
 )
 def test_possible(
@@ -140,7 +142,7 @@ def test_difference_never_makes_a_short_pulse_vanish() -> None:
 
 
 def test_a_wide_difference_changes_nothing() -> None:
-    shared = part((10, 40), (5, 60), difference=50)
+    shared = part((10, 40), (5, 60), difference=55)
     built = drive("X Y", {"idle": "off off"}, paths={"X": (shared,), "Y": (shared,)})
     assert set(delays(built, hazard("X, Y")).values()) == {Delays(10, 60)}
 

@@ -1,5 +1,7 @@
 """What the replay permits of moves, trips and writes, and what it refuses."""
 
+from dataclasses import replace
+
 import pytest
 from build import AT_ONCE, after, drive, move, pin, span, steps, trace, trip, when, writes
 
@@ -147,7 +149,8 @@ def test_steps_together_are_consecutive_at_one_instant() -> None:
     built = drive("X Y", ROWS, moves=moves, trips=(trip("halt", "idle", "idle", at_once=True),))
     walk = permitted(built, "1 begins 0; 1 writes X on, Y on; 1 writes X off; 1 enters shut", 9)
     assert [time for time, _ in walk.commands["X"]] == [None, 1, 1]
-    refused(built, "1 begins 0; 1 writes X on, Y on; 2 writes X off", 9, "must go on by 1 ps")
+    for one in (built, replace(built, writes=writes(How.TOGETHER, span(5)), clock=None)):
+        refused(one, "1 begins 0; 1 writes X on, Y on; 2 writes X off", 9, "must go on by 1 ps")
     permitted(built, "1 begins 0; 1 writes X on, Y on; 1 begins trip 0; 1 writes X off, Y off; 1 enters idle", 9)
 
 
@@ -212,6 +215,12 @@ def test_order_of_single_writes(order: Order, good: list[str]) -> None:
             permitted(built, lines, 9, literals="A, B")
         else:
             refused(built, lines, 9, "the order of the writes asks for", literals="A, B")
+
+
+def test_ports_only_count_by_port() -> None:
+    single = ordered(Order.TABLE, ports="pppp")
+    refused(single, "0 begins 0; 0 writes A on, B off, C free, D free", 9, "now is A on", literals="A, B")
+    permitted(gapped(How.BY_PORT), "1 begins 0; 1 writes Y on; 6 writes X on; 6 enters both", 9)  # no line in pins
 
 
 def test_ports() -> None:

@@ -1,5 +1,7 @@
 """What the replay permits of trips and reset, and what it refuses."""
 
+from dataclasses import replace
+
 from build import drive, move, pin, span, steps, trip, when, writes
 from test_replay_runs import ROWS, permitted, refused
 
@@ -42,6 +44,13 @@ def test_firmware_runs_on_until_the_trip_is_taken() -> None:
     begun = OPENED + "4 begins 1; 22 arrives fault; 24 writes Y on; 24 enters both; "
     permitted(built, begun + "35 begins trip 0; 35 writes X off; 40 writes Y off; 40 enters idle", 99)
     refused(built, begun + "36 begins trip 0", 99, "must be taken by 35 ps")
+    refused(built, OPENED + "4 begins 1; 6 arrives fault", 20, "must be taken by 19 ps")
+    refused(
+        tripped(FAULT, trip("other", "open", "idle")),
+        OPENED + "4 arrives fault; 4 begins trip 1",
+        9,
+        "other is not in hand",
+    )
     # reaching the target drops it
     dropped = begun + "30 begins 3; 30 writes X off; 35 writes Y off; 35 enters idle"
     permitted(built, dropped, 99)
@@ -168,6 +177,8 @@ def test_reset_drops_what_is_in_hand_and_is_left_like_any_mode() -> None:
     refused(built, gone + "103 begins 1", 200, "cannot come before 104 ps")
     refused(built, gone + "9 begins trip 1", 200, "not in hand")
     refused(built, gone + "9 arrives fault", 200, "does not come in mode reset")
+    odd = replace(built, trips=(trip("watchdog", "open reset", "reset"),))
+    refused(odd, gone.replace("2 arrives fault; ", "") + "9 begins trip 0", 200, "does not come in mode reset")
     refused(built, gone + "9 begins trip 0", 200, "does not come in mode reset")
 
 

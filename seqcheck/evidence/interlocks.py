@@ -59,13 +59,13 @@ class Interlocks:
         end first. Raises NotPermitted where none runs, or where it cannot be over yet.
         """
         running = [
-            (guard.off_since, guard)
+            (due(guard.off_since, guard.dead, ""), guard.off_since, guard)
             for guard in self.guards
             if guard.switch == event.name and guard.off_since is not None and event.index in (-1, guard.index)
         ]
         if not running:
             raise NotPermitted(f"no dead time of an interlock runs for {event.name}")
-        since, guard = min(running, key=lambda one: one[0] + (one[1].dead.hi or one[1].dead.lo))
+        _, since, guard = min(running, key=lambda one: (not one[0], [due.time for due in one[0]]))
         require_within(event.time, since, guard.dead, f"the end of the interlock's dead time for {event.name}")
         guard.clear, guard.off_since = True, None
 

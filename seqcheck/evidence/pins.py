@@ -146,7 +146,6 @@ class Pins:
 
     def release_all(self, time: int) -> None:
         """Reset: every pin is released in this instant and nothing is held any more."""
-        self.held.clear()
         for switch in self.written:
             self.write(time, switch, Fixed.FREE, unheld=True)
 

@@ -100,7 +100,8 @@ class Run:
 
     @property
     def _breaks_in(self) -> bool:
-        return isinstance(self.line, Trip) and self.line.at_once and not self.wrote
+        trip = isinstance(self.line, Trip) and self.line.at_once
+        return trip and not self.wrote and self.wait is None
 
     def _advance(self) -> None:
         while self.items and not self.remaining:

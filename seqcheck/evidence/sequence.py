@@ -50,7 +50,7 @@ class Sequence:
 
     def require_no_break(self, act: Act) -> None:
         """Refuse an event between two that are one."""
-        if not isinstance(self.at, Run) or not self.within_one_event:
+        if not isinstance(self.at, Run) or not self.at.forced:
             return
         needed = Act.WRITES if self.at.remaining else Act.ENTERS
         if act is not needed:
@@ -69,7 +69,7 @@ class Sequence:
             origin = self._breaks_in(line)
             self._pins.cancel_held()
         else:
-            origin = self._takes(event.time, line)
+            origin = self._takes(line)
         self.at = Run(self._drive, self._pins, line, origin, event.time)
 
     def _leaves(self, time: int, move: Move) -> str:
@@ -90,12 +90,12 @@ class Sequence:
             case AtOnce():
                 return INSTANT
 
-    def _takes(self, time: int, trip: Trip) -> str:
+    def _takes(self, trip: Trip) -> str:
+        """In time it is, since no deadline may be overrun before an event."""
         if self.in_hand is None or self.in_hand.trip is not trip:
             raise NotPermitted(f"trip {trip.name} is not in hand")
         if isinstance(self.at, Run) and (self.at.unbroken or self.at.trip):
             raise NotPermitted(f"the run in progress cannot be interrupted by trip {trip.name}")
-        require_within(time, self.in_hand.since, self._patience(trip), f"the taking of trip {trip.name}")
         self.in_hand = None
         return self.at.origin if isinstance(self.at, Run) else self.at.mode
 

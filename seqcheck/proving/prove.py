@@ -108,7 +108,7 @@ class Prover:
         waiting = frozenset(
             name for name in looking.carriers if self.drive.carriers[name].update is not Update.AT_ONCE
         )
-        key = (waiting, frozenset(looking.switches) if waiting else frozenset(), punctual)
+        key = (waiting, looking.held if waiting else frozenset(), punctual)
         if key not in self._firmwares:
             self._firmwares[key] = Firmware(self.drive, *key)
         return self._firmwares[key]

@@ -174,3 +174,25 @@ def _pumps(node: Node) -> bool:
                 return True
         ancestor = ancestor.parent
     return False
+
+
+def hops_out(node: Node) -> list[Hop]:
+    """The hops by which the longest overlap of a node ends; none if it cannot be told within a few steps."""
+    location = node.location
+    longest = node.zone[location.measure * location.size]
+    waiting: list[tuple[Location, Zone, list[Hop]]] = [(location, node.zone, [])]
+    for here, zone, hops in waiting:  # grows while it is walked through
+        at_end = limited(zone, here.size, 0, here.measure, -longest)
+        if at_end is None or len(waiting) > _MOST_ENDINGS:
+            continue
+        for hop in here.out():
+            after = successor(at_end, here.size, hop)
+            if after is None:
+                continue
+            if not hop.target.hot:
+                return [*hops, hop]
+            waiting.append((hop.target, after, [*hops, hop]))
+    return []
+
+
+_MOST_ENDINGS = 2000

@@ -8,9 +8,10 @@ from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import CARRIER, Happening, Key, Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
 from seqcheck.proving.schedule import constraints_of, scheduled
-from seqcheck.proving.search import Node
+from seqcheck.proving.search import Node, hops_out
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
+from seqcheck.zones import INFINITE
 
 
 class Infeasible(Exception):  # noqa: N818 - it names what a path is
@@ -20,14 +21,17 @@ class Infeasible(Exception):  # noqa: N818 - it names what a path is
 def trace_of(projection: Projection, node: Node, endless: bool, interlocked: bool) -> Trace:
     """The run to a node, with times that make its last overlap longest. Raises Infeasible."""
     nodes = node.path()
-    hops = [one.hop for one in nodes]
     first = len(nodes) - 1
     while first > 0 and nodes[first - 1].location.hot:
         first -= 1
+    ending = [] if endless else hops_out(node)
+    hops = [*(one.hop for one in nodes), *ending]
     path = constraints_of(hops)
     times = scheduled(path, first, max(1, longest_memory(projection.view)))
     if times is None:
         raise Infeasible
+    circling = endless and node.zone[node.location.measure * node.location.size] < INFINITE
+    end = times[len(hops) - 1] if ending or circling else times[path.end]
     timed = list(enumerate(zip(hops, times, strict=False)))[1:]
     events = tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))
     key = hops[0].target.key
@@ -36,7 +40,7 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     phases = tuple(
         _phase(projection, place, state, births) for place, state in enumerate(key.carriers) if state != FORGOTTEN
     )
-    short = Run(tuple(times[: len(hops)]), events, times[first], times[path.end])
+    short = Run(tuple(times[: len(hops)]), events, times[first], end)
     run = with_full_dwells(projection, hops, short)
     happened = tuple(event for _, event in run.events)
     return Trace(

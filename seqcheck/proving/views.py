@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from seqcheck.drive import Drive, Follow, SetStep, Update
+from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
 from seqcheck.hazards import Delays, Hazard
 from seqcheck.quantities import Interval
 
@@ -21,7 +21,7 @@ class View:
     """The part of a drive that one hazard looks at.
 
     `switches` are the hazard's own and the partners of their interlocks; `carriers` those that these may follow (and
-    whatever shares a held group with them).
+    whatever else can tell when their writes act); `held` the switches whose held writes matter.
     """
 
     drive: Drive
@@ -29,6 +29,7 @@ class View:
     delays: tuple[Delays, ...]
     switches: tuple[str, ...]
     carriers: tuple[str, ...]
+    held: frozenset[str]
     locks: tuple[Lock, ...]
 
 
@@ -44,7 +45,16 @@ def view(drive: Drive, hazard: Hazard, delays: tuple[Delays, ...], interlocks: b
     ]
     switches = tuple(dict.fromkeys((*names, *(partner for _, partner, _ in directions))))
     locks = tuple(Lock(switches.index(guarded), switches.index(partner), dead) for guarded, partner, dead in directions)
-    return View(drive, hazard, delays, switches, _carriers(drive, switches), locks)
+    if cancels(drive):
+        waiting = {carrier.name for carrier in drive.carriers.values() if carrier.update is not Update.AT_ONCE}
+        carriers = tuple(name for name in drive.carriers if name in waiting or name in _carriers(drive, switches))
+        return View(drive, hazard, delays, switches, carriers, frozenset(drive.columns), locks)
+    return View(drive, hazard, delays, switches, _carriers(drive, switches), frozenset(switches), locks)
+
+
+def cancels(drive: Drive) -> bool:
+    """Whether a break input can cancel held writes: then every held write can change what is written afterwards."""
+    return any(trip.at_once and trip.target != RESET for trip in drive.trips)
 
 
 def _carriers(drive: Drive, switches: tuple[str, ...]) -> tuple[str, ...]:

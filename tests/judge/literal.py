@@ -182,12 +182,12 @@ def _told(parents: Parents, last: Node | None) -> tuple[tuple[int, str], ...]:
 def greatest(search: Search, nodes: Iterable[Node]) -> int | None:
     """The longest run of consecutive hazard ticks, or None if one can go on for ever.
 
-    Looked at are the nodes at which all literals are possible; an edge is an event, of length 0, or a hazard tick, of
-    length 1. Within a strongly connected component a tick can be repeated for ever; between them there is a longest
-    path.
+    An edge is an event, of length 0, or a hazard tick, of length 1. Looked at are the nodes at which no literal ceases
+    to be possible: one that is about to, but becomes wanted again in the same instant, joins two stretches. Within a
+    strongly connected component a tick can be repeated for ever; between them there is a longest path.
     """
     edges: Edges = {}
-    inside = {node for node in nodes if search.together(node)}
+    inside = {node for node in nodes if search.together(node) or all(map(can, node[1]))}
     for node in inside:
         edges[node] = [(0, after) for _, after in search.events(node) if after in inside]
         later = search.later(node)

@@ -320,7 +320,7 @@ class World:
     def begin_hard(self, state: State, index: int, origin: str) -> Iterator[Step_]:
         """A break input: held writes are cancelled; the first item with changes goes out in one instant, unheld.
 
-        Nothing delays it: waits that stand before it, after steps without changes, are passed over.
+        A wait that comes first, after steps without changes, is kept; what follows it is written as usual.
         """
         if self.drive.trips[index].target == RESET:
             yield self.reset(state)
@@ -329,6 +329,9 @@ class World:
         cancelled = state._replace(pins=pins)
         reached = self.reach(pins, (True, index), 0)
         run = Run(True, index, origin, reached.item + 1, (), 0, 0, 0)
+        if reached.wait is not None:
+            yield from self.onward(cancelled, run._replace(item=0), now=True)
+            return
         if not reached.groups:
             yield self.enter(cancelled, run)
             return

@@ -57,7 +57,8 @@ class Trace:
     """A run that shows a hazard: from time 0, in the drive's start mode, to `end`.
 
     Only carriers with a phase are followed; writes of other carriers' switches act at once. From `overlap_from` to
-    `overlap_to` all literals of `hazard` are possible; `overlap_to` is None where that can last without end.
+    `overlap_to` all literals of `hazard` are possible; `overlap_to` is None where that lasts without end if the run
+    stays where it is. A run that must go round in a circle for that stops with `end`, after one round.
     `interlocked` tells whether the run is one of the drive with its interlocks.
     """
 

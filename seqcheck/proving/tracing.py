@@ -44,7 +44,7 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     run = with_full_dwells(projection, hops, short)
     happened = tuple(event for _, event in run.events)
     return Trace(
-        projection.view.hazard, phases, happened, run.end, run.hot, None if endless else run.end, interlocked
+        projection.view.hazard, phases, happened, run.end, run.hot, None if endless and not circling else run.end, interlocked
     )
 
 

@@ -50,6 +50,7 @@ def _proposals(drive: Drive, trace: Trace, missing: int) -> Iterator[_Proposal]:
             step = run.steps[number]
             if isinstance(step, WaitStep):
                 yield _longer_wait(drive, is_trip, index, number, step, missing)
+                yield _longer_waits(drive, step, missing)
     for phase in trace.phases:
         carrier = drive.carriers[phase.carrier]
         yield _longer_dead_time(drive, carrier, missing)
@@ -81,6 +82,25 @@ def _longer_wait(drive: Drive, is_trip: bool, index: int, number: int, step: Wai
 
 def _with_step(run: Run, number: int, step: WaitStep) -> Run:
     return replace(run, steps=(*run.steps[:number], step, *run.steps[number + 1 :]))
+
+
+def _longer_waits(drive: Drive, step: WaitStep, missing: int) -> _Proposal:
+    """All waits of one length made longer, as where they are written with one `let`."""
+    time = _longer(step.time, missing)
+    moves = tuple(_with_waits(run, step.time, time) for run in drive.moves)
+    trips = tuple(_with_waits(run, step.time, time) for run in drive.trips)
+    steps = [one for move in drive.moves for one in move.steps] + [one for trip in drive.trips for one in trip.steps]
+    others = sum(isinstance(one, WaitStep) and one.time == step.time for one in steps) - 1
+    which = f"this wait and the {others} other{'s' if others > 1 else ''} of its length"
+    words = f"make {which} at least {shown(_nominal(drive, time.lo))}"
+    return _Proposal(replace(drive, moves=moves, trips=trips), step.place, words)
+
+
+def _with_waits(run: Run, old: Interval, new: Interval) -> Run:
+    steps = tuple(
+        replace(one, time=new) if isinstance(one, WaitStep) and one.time == old else one for one in run.steps
+    )
+    return replace(run, steps=steps)
 
 
 def _longer_dead_time(drive: Drive, carrier: Carrier, missing: int) -> _Proposal:

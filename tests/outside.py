@@ -1,4 +1,4 @@
-"""Shared by the tests against values from outside the project: small drives as texts, and what the program says of them.
+"""Shared by the tests against values from outside the project: small drives, and what the program says of them.
 
 Marks beside every source: [seen] read in stored public material, [memory] known and not looked up again, [derived]
 computed from the stated rule; common practice for facts of the trade without a source.

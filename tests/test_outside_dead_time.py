@@ -269,7 +269,9 @@ moves
 """
 
 
-@pytest.mark.parametrize(("active", "rests"), [("high", "high"), ("high", "unknown"), ("low", "low"), ("low", "unknown")])
+@pytest.mark.parametrize(
+    ("active", "rests"), [("high", "high"), ("high", "unknown"), ("low", "low"), ("low", "unknown")]
+)
 def test_pins_that_rest_on_short_from_the_start(
     active: str, rests: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:

@@ -1,4 +1,4 @@
-"""Published methods and standards: difference constraints, temporal networks, zones, extrapolation, delays, messages."""
+"""Published methods and standards: difference constraints, temporal networks, zones, delays, messages."""
 
 import re
 from pathlib import Path
@@ -59,7 +59,7 @@ def ranges(zone: list[int], count: int) -> list[tuple[int, int]]:
     return [(-zone[variable], zone[variable * (count + 1)]) for variable in range(1, count + 1)]
 
 
-# Simple temporal network: Dechter, Meiri, Pearl, Artificial Intelligence 49, 1991, 61-95, the commuting example [memory]
+# Simple temporal network: Dechter, Meiri, Pearl, Artificial Intelligence 49, 1991, 61-95, commuting example [memory]
 
 COMMUTING = [(0, 1, 10, 20), (1, 2, 30, 40), (3, 2, 10, 20), (3, 4, 40, 50), (0, 4, 60, 70)]
 """(i, j, least, most): minutes from event i to event j; 0 is seven o'clock."""

@@ -115,7 +115,9 @@ def test_the_four_step_change_is_the_only_shortest_legal_path(known: str, expect
 # The same paths as moves, with time
 
 
-def change(steps: list[str], known: str, pause: str, before: str = "on on off off", after: str = "off off on on") -> str:
+def change(
+    steps: list[str], known: str, pause: str, before: str = "on on off off", after: str = "off off on on"
+) -> str:
     """One change from input a to input b in single steps; off 1.2 µs at most, on 0.5 µs at least."""
     between = "\n    wait pause\n".join(f"    set {step}" for step in steps)
     given = f" with {known}" if known else ""
@@ -200,5 +202,5 @@ def test_a_word_of_the_wrong_direction_shorts_in_passing() -> None:
 
 @pytest.mark.parametrize(("known", "expected"), [("a above b", {}), ("b above a", {B_TO_A: 2_700_000})])
 def test_change_by_voltage(known: str, expected: dict[tuple[str, str], int]) -> None:
-    """While a is above b the order Bf on, Ar off, Br on after Af off never shorts; while b is above a it does [derived]."""
+    """Bf with Ar on shorts only while b is above a [derived]."""
     assert overlaps(change(["Bf on", "Ar off", "Af off", "Br on"], known, "2 us")) == expected

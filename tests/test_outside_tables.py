@@ -221,6 +221,28 @@ def test_reversing_on_the_spot_swaps_within_two_legs() -> None:
     assert found == [2] * 6
 
 
+def turning(loop: str) -> str:
+    """A motor turned forwards and backwards by its sensor; every row lasts at least the polling loop."""
+    rows = (" ".join("on" if column in on else "off" for column in COLUMNS) for on in SIX_STEP.values())
+    steps = [(number, (number + step) % 6) for step in (1, -1) for number in range(6)]
+    head = six_step(SIX_STEP["101"], SIX_STEP["100"]).split("modes")[0]
+    return f"""\
+{head}
+loop at least {loop}
+modes {" ".join(NAMED[column] for column in COLUMNS)}
+{lines(f"s{code} {row}" for code, row in zip(CODES, rows, strict=True))}
+moves
+  start s101
+{lines(f"s{CODES[one]} -> s{CODES[other]} when h{CODES[other]}" for one, other in steps)}
+"""
+
+
+def test_six_step_needs_its_dead_time_only_over_a_whole_row() -> None:
+    """A leg rests for one row between its two switches, so a row must last 600 - 100 ns [derived]."""
+    assert overlaps(turning("500 ns")) == {}
+    assert overlaps(turning("499.999 ns")) == {("AH", "AL"): 1, ("BH", "BL"): 1, ("CH", "CL"): 1}
+
+
 def test_rows_of_the_six_step_table_do_not_short() -> None:
     for on in SIX_STEP.values():
         word = "".join("1" if column in on else "0" for column in COLUMNS)

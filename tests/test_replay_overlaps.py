@@ -263,6 +263,81 @@ def test_the_dead_time_counts_for_what_carriers_keep_up() -> None:
     assert replay(carried(shy, 0), trace(quiet, 50, **off)).overlap == Span(10, None)  # type: ignore[arg-type]
 
 
+EVER, NEVER = Interval(1, None), None
+
+
+@pytest.mark.parametrize(
+    ("cell", "on", "high", "low", "dead", "now_high", "fall", "fits"),
+    [
+        ("k", True, EVER, NEVER, 0, True, 0, True),  # it is high for ever
+        ("~k", True, NEVER, EVER, 0, False, 0, True),
+        ("k", False, NEVER, EVER, 0, False, 0, True),
+        ("~k", False, EVER, NEVER, 0, True, 0, True),
+        ("k", True, span(20, 30), EVER, 0, True, 1, True),  # a low of 1 ps is bridged
+        ("k", True, span(20, 30), EVER, 0, True, 0, False),
+        ("k", True, span(20, 30), EVER, 5, True, 6, True),
+        ("k", True, span(20, 30), EVER, 5, True, 5, False),
+        ("~k", True, span(7, 9), span(20, 30), 0, False, 7, True),
+        ("~k", True, span(7, 9), span(20, 30), 0, False, 6, False),
+        ("k", False, span(7, 9), span(20, 30), 0, False, 7, True),
+        ("k", False, span(7, 9), span(20, 30), 0, False, 6, False),
+        ("k", False, span(7, 9), span(20, 30), 2, False, 5, True),
+        ("k", False, span(7, 9), span(20, 30), 2, False, 4, False),
+        ("k", False, span(7, 9), EVER, 0, False, 0, True),  # it may stay low
+        ("~k", False, EVER, span(7, 9), 0, True, 0, True),
+    ],
+)
+def test_what_a_carrier_keeps_up(
+    cell: str, on: bool, high: Interval | None, low: Interval | None, dead: int, now_high: bool, fall: int, fits: bool
+) -> None:
+    """X follows the carrier and is as wanted to the end; `fall` bridges its shortest time away, or does not."""
+    k = carrier("k", high, low, dead=span(dead))
+    paths = {"X": (part((0, 0 if on else fall), (0, fall if on else 0)),)}
+    rows = {"idle": "off on", "run": f"{cell} on"}
+    built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths)
+    begun = f"0 begins 0; 0 writes X {cell}; 0 enters run"
+    more = {
+        "literals": "X, Y" if on else "X off, Y",
+        "phases": (Phase("k", now_high, dead, True),),
+        "overlap": (0, None),
+    }
+    if fits:
+        assert replay(built, trace(begun, 1, **more)).overlap == Span(0, None)  # type: ignore[arg-type]
+    else:
+        refused(built, begun, 1, "cannot stay possible", **more)
+
+
+def test_a_pulse_that_its_dead_time_always_swallows_does_not_come_again() -> None:
+    k = carrier("k", span(2, 4), span(20, 30), dead=span(5))
+    paths = {"X": (part((0, 0), (0, 99)),)}
+    rows = {"idle": "on on", "run": "k on"}
+    built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths)
+    begun, low = "0 begins 0; 0 writes X k; 0 enters run", (Phase("k", False, 5, True),)
+    refused(built, begun, 9, "X cannot stay possible", phases=low, overlap=(0, None))
+
+
+def test_an_interlock_with_a_carrier_lets_a_command_come_and_go() -> None:
+    k = carrier("k", span(20, 30), span(40, 50))
+    paths = {"X": (part((0, 0), (0, 99)),)}
+    rows = {"idle": "on off on", "run": "on k on"}
+    locks = (interlock("X", "Y"),)
+    built = drive("X Y Z", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths, interlocks=locks)
+    begun, high = "0 begins 0; 0 writes Y k; 0 enters run", (Phase("k", True, 5, True),)
+    found = replay(built, trace(begun, 9, (0, None), literals="X, Z", phases=high))
+    assert found.commands["X"] == ((None, ON), (0, OFF))
+
+
+def test_a_claim_may_stop_with_the_trace() -> None:
+    lines = "1 begins 0; 1 writes X on, Y on; 1 enters both"
+    assert replay(resting(), trace(lines, 5, (1, 5))).overlap == Span(1, 5)
+    refused(resting(), lines, 5, "from 1 ps without end", overlap=(1, 4))
+    refused(resting(), lines, 5, "from 1 ps without end", overlap=(2, 5))
+
+
+def test_a_hazard_without_literals_is_refused() -> None:
+    refused(resting(), "", 5, "it has no literal", literals=Hazard((), ()))
+
+
 def test_a_pending_update_or_interlock_is_not_without_end() -> None:
     k = carrier("k", span(20, 30), span(40, 50), update=Update.WITHIN_PERIOD)
     rows = {"idle": "on on", "run": "k on"}

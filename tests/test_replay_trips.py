@@ -114,6 +114,15 @@ def test_what_follows_the_first_item_of_a_hardware_trip_keeps_the_gaps() -> None
     refused(built, begun + "6 begins trip 0", 99, "does not interrupt itself")
 
 
+def test_a_hardware_trip_keeps_a_wait_that_vanished_steps_leave_first() -> None:
+    """After the wait its writes are like any others."""
+    built = tripped(trip("halt", "open", "shut", at_once=True, steps=steps("X on", (7, 9))), late=None)
+    begun = OPENED + "4 begins trip 0; "
+    permitted(built, begun + "11 writes X off; 16 writes Y on; 16 enters shut", 99)
+    refused(built, begun + "4 writes X off, Y on", 99, "cannot come before 11 ps")
+    refused(built, begun + "11 writes X off, Y on", 99, "what may be written now is X off or Y on")
+
+
 def test_a_hardware_trip_interrupts_other_trips_of_its_origins() -> None:
     halt = trip("halt", "", "idle", origins="open", at_once=True)
     slow = trip("fault", "open both", "shut", within=10, steps=steps("X off", (50, 50)))

@@ -43,9 +43,8 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     short = Run(tuple(times[: len(hops)]), events, times[first], end)
     run = with_full_dwells(projection, hops, short)
     happened = tuple(event for _, event in run.events)
-    return Trace(
-        projection.view.hazard, phases, happened, run.end, run.hot, None if endless and not circling else run.end, interlocked
-    )
+    until = None if endless and not circling else run.end
+    return Trace(projection.view.hazard, phases, happened, run.end, run.hot, until, interlocked)
 
 
 def _phase(projection: Projection, place: int, state: int, births: dict[int, int]) -> Phase:

@@ -8,10 +8,11 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from seqcheck.drive import Command
+from seqcheck.reports.instants import Instant, State
 from seqcheck.reports.lanes import Conduct
 from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, line, merged
 from seqcheck.reports.rows import CONDUCT_TONES, GAP, scaled
-from seqcheck.reports.run import Instant, Run, State
+from seqcheck.reports.run import Run
 
 _LEVELS = {Command.ON: "~", Command.OFF: "_", Command.UNKNOWN: "?"}
 _CONDUCTS = {Conduct.NO: ".", Conduct.MAY: ":", Conduct.YES: "="}

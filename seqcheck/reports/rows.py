@@ -4,9 +4,10 @@ from dataclasses import dataclass
 
 from seqcheck.quantities import shown
 from seqcheck.reports.acts import Note
+from seqcheck.reports.instants import Instant
 from seqcheck.reports.lanes import Conduct
 from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, line, visible, wrapped
-from seqcheck.reports.run import Instant, Run
+from seqcheck.reports.run import Run
 
 CONDUCT_TONES = {Conduct.NO: Tone.FAINT, Conduct.MAY: Tone.DOUBT, Conduct.YES: Tone.STRONG}
 GAP = "  "

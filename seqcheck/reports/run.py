@@ -6,6 +6,8 @@ from string import ascii_lowercase
 from seqcheck.drive import Command, Drive
 from seqcheck.quantities import PICOSECONDS, shown
 from seqcheck.reports.acts import Note, begun_by, told
+from seqcheck.reports.folding import folded
+from seqcheck.reports.instants import Instant, State
 from seqcheck.reports.lanes import Conduct, Lane, lanes
 from seqcheck.reports.pieces import Tone
 from seqcheck.source import Place
@@ -14,30 +16,6 @@ from seqcheck.verdict import Act, Event, Phase, Trace, Unsafe
 _SETTLED = {(Command.ON, Conduct.YES), (Command.OFF, Conduct.NO)}
 _LONG, _WIDE = 12, 24  # the longest name, and all names with a blank each, that still make columns
 Told = list[tuple[Event, list[Note]]]
-
-
-@dataclass(frozen=True, slots=True)
-class State:
-    """How one switch stands: the commands given in an instant (the last one stands), and what it does from then on."""
-
-    commands: tuple[Command, ...]
-    conduct: Conduct
-
-    @property
-    def command(self) -> Command:
-        """The command that stands."""
-        return self.commands[-1]
-
-
-@dataclass(frozen=True, slots=True)
-class Instant:
-    """One instant of a run; `time` is None for all that was before time 0. `states` are in the order of the lanes."""
-
-    number: int
-    time: int | None
-    notes: tuple[Note, ...]
-    states: tuple[State, ...]
-    overlap: bool
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,6 +50,7 @@ def run_of(verdict: Unsafe, drive: Drive) -> Run:
     instants = [_before(drive, trace, found)]
     for time in _times(trace, notes, found):
         instants.append(_instant(time, notes.get(time, []), instants[-1], trace, found))
+    instants = folded(instants, trace.events)
     first, last = _window(instants, trace)
     unit = shown(max(1, _time(instants[last]) - _time(instants[first]))).split()[1]
     return Run(found, _titles(found), tuple(instants), origin, origin_note, first, last, unit, int(PICOSECONDS[unit]))

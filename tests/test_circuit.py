@@ -1,0 +1,307 @@
+"""Shorting sets against every subset of the switches of random small stages: is there a closed way, or not."""
+
+from collections.abc import Iterator
+from itertools import combinations, permutations, product
+from random import Random
+
+import pytest
+from reading import drive_of
+
+from seqcheck import circuit
+from seqcheck.circuit import contradicted, shorting_sets
+from seqcheck.drive import Above, Capacitor, Conducts, Diode, Rails, Sources, Stage, Switch
+from seqcheck.hazards import Hazard
+from seqcheck.messages import Problems
+from seqcheck.source import Place
+
+HERE = Place("stage", 1, 1, 1, 1)
+Edge = tuple[str, str, int]
+"""From, to, and the stiff element passed (-1: none)."""
+Orders = tuple[tuple[str, ...], ...]
+"""For each line of sources its nodes, highest first."""
+
+
+def stage(
+    rails: str = "",
+    sources: str = "",
+    capacitors: str = "",
+    switches: str = "",
+    diodes: str = "",
+) -> Stage:
+    """A stage from words: `"P N, Q M"`, `"a b"`, `"S P-U"` (`S P-U/U-N one way`), `"U-P"`."""
+    return Stage(
+        HERE,
+        tuple(Rails(HERE, tuple(one.split())) for one in _parts(rails)),
+        tuple(Sources(HERE, tuple(one.split())) for one in _parts(sources)),
+        tuple(Capacitor(HERE, *one.split()) for one in _parts(capacitors)),
+        tuple(_switch(one) for one in _parts(switches)),
+        tuple(Diode(HERE, *one.split("-")) for one in _parts(diodes)),
+        (),
+        (),
+    )
+
+
+def _parts(text: str) -> list[str]:
+    return [one.strip() for one in text.split(",") if one.strip()]
+
+
+def _switch(text: str) -> Switch:
+    name, poles, *way = text.split()
+    pairs = tuple((pole.split("-")[0], pole.split("-")[1]) for pole in poles.split("/"))
+    return Switch(HERE, name, pairs, Conducts(" ".join(way) or "diode"))
+
+
+def sets(one: Stage) -> list[str]:
+    """The shorting sets in words, in order."""
+    return [" ".join(literal.switch for literal in hazard.literals) for hazard in shorting_sets(one)]
+
+
+# The definition: a closed way
+
+
+def edges(one: Stage, on: frozenset[str], orders: Orders) -> list[Edge]:
+    """Each way in which current can pass, with the polarity of every source given.
+
+    A supply is passed from its lower to its upper node, so that the way leaves it at its positive end.
+    """
+    found = [(diode.start, diode.end, -1) for diode in one.diodes]
+    for switch in one.switches:
+        for start, end in switch.poles:
+            if switch.name in on:
+                found.append((start, end, -1))
+            if switch.conducts is Conducts.DIODE or (switch.conducts is Conducts.TWO_WAY and switch.name in on):
+                found.append((end, start, -1))
+    number = 0
+    for nodes in (*(line.nodes for line in one.rails), *orders):
+        found += [(lower, upper, number) for upper, lower in combinations(nodes, 2)]
+        number += 1
+    for line in one.capacitors:
+        found += [(line.positive, line.negative, number), (line.negative, line.positive, number)]
+        number += 1
+    return found
+
+
+def closed_ways(ways: list[Edge]) -> Iterator[list[Edge]]:
+    """All closed ways that pass no node twice, each from its alphabetically first node."""
+    for start in sorted({edge[0] for edge in ways}):
+        waiting: list[list[Edge]] = [[edge] for edge in ways if edge[0] == start]
+        while waiting:
+            way = waiting.pop()
+            here = way[-1][1]
+            if here == start:
+                yield way
+                continue
+            seen = {edge[0] for edge in way}
+            if here not in seen and here > start:
+                waiting += [[*way, edge] for edge in ways if edge[0] == here]
+
+
+def shorted(one: Stage, on: frozenset[str], orders: Orders) -> bool:
+    """Whether these switches short the stage: by a closed way through at least one stiff element.
+
+    A way whose only stiff elements are capacitors leaves at least one of them at its positive end; none is passed
+    there and back.
+    """
+    supplies = len(one.rails) + len(one.sources)
+    for way in closed_ways(edges(one, on, orders)):
+        stiff = [edge for edge in way if edge[2] >= 0]
+        caps = [edge for edge in stiff if edge[2] >= supplies]
+        if not stiff or len({edge[2] for edge in caps}) < len(caps):
+            continue
+        if len(caps) < len(stiff) or any(edge[1] == one.capacitors[edge[2] - supplies].positive for edge in caps):
+            return True
+    return False
+
+
+def polarities(one: Stage) -> list[Orders]:
+    """Every polarity of every line of sources."""
+    return list(product(*(permutations(line.nodes) for line in one.sources)))
+
+
+def facts(orders: Orders) -> list[Above]:
+    """The polarity as a file would say it."""
+    return [Above(upper, lower) for nodes in orders for upper, lower in combinations(nodes, 2)]
+
+
+def subsets(one: Stage) -> list[frozenset[str]]:
+    """Every set of switches."""
+    names = [switch.name for switch in one.switches]
+    return [frozenset(some) for size in range(len(names) + 1) for some in combinations(names, size)]
+
+
+def said(hazards: tuple[Hazard, ...], on: frozenset[str], orders: Orders) -> bool:
+    """Whether the hazards say that these switches short the stage under this polarity."""
+    return any(
+        {literal.switch for literal in hazard.literals} <= on and not contradicted(hazard, facts(orders))
+        for hazard in hazards
+    )
+
+
+# Random stages
+
+
+def drawn(rng: Random) -> Stage:
+    """A stage with up to four switches, any supplies, and now and then capacitors, diodes and contactors of two poles."""
+    kind = rng.choice(("rails", "rails", "three rails", "two supplies", "sources", "sources", "three sources", "both"))
+    rails = {"rails": "P N", "three rails": "P O N", "two supplies": "P N, Q M", "both": "P N"}.get(kind, "")
+    sources = {"sources": "a b", "three sources": "a b c", "both": "a b"}.get(kind, "")
+    stiff = f"{rails} {sources}".replace(",", " ").split()
+    nodes = [*stiff, *("x", "y", "z")[: rng.randint(1, 3)]]
+    caps = [" ".join(rng.sample(nodes, 2)) for _ in range(rng.choice((0, 0, 1, 1, 2)))]
+    diodes = ["-".join(rng.sample(nodes, 2)) for _ in range(rng.choice((0, 0, 0, 1)))]
+    switches = []
+    for number in range(rng.randint(2, 4)):
+        poles = "/".join("-".join(rng.sample(nodes, 2)) for _ in range(rng.choice((1, 1, 1, 1, 2))))
+        switches.append(f"S{number} {poles} {rng.choice(('', '', 'one way', 'two way'))}")
+    return stage(rails, sources, ", ".join(caps), ", ".join(switches), ", ".join(diodes))
+
+
+@pytest.mark.parametrize("block", range(20))
+def test_sets_by_brute_force(block: int) -> None:
+    """A set of switches shorts if and only if it holds a shorting set that the polarity does not rule out."""
+    rng, compared = Random(block), 0
+    for _ in range(25):
+        one = drawn(rng)
+        always = any(shorted(one, frozenset(), orders) for orders in polarities(one))
+        try:
+            hazards = shorting_sets(one)
+        except Problems as problems:
+            assert always, one
+            assert {problem.kind for problem in problems.found} == {"always-shorted"}
+            continue
+        assert not always, one
+        for on, orders in product(subsets(one), polarities(one)):
+            assert said(hazards, on, orders) == shorted(one, on, orders), (one, on, orders)
+        compared += 1
+    assert compared > 5
+
+
+@pytest.mark.parametrize("block", range(10))
+def test_sets_are_minimal(block: int) -> None:
+    """Without one of its switches a set does not short under a polarity for which it is there.
+
+    Of three sources in a row the outer two may be joined by a set whose parts short the inner ones: left out here.
+    """
+    rng = Random(1000 + block)
+    for _ in range(25):
+        one = drawn(rng)
+        if any(len(line.nodes) > 2 for line in one.sources):
+            continue
+        try:
+            hazards = shorting_sets(one)
+        except Problems:
+            continue
+        for hazard in hazards:
+            on = frozenset(literal.switch for literal in hazard.literals)
+            needed = [orders for orders in polarities(one) if not contradicted(hazard, facts(orders))]
+            assert any(
+                shorted(one, on, orders) and not any(shorted(one, on - {name}, orders) for name in on)
+                for orders in needed
+            ), (one, hazard)
+
+
+# Known stages
+
+
+@pytest.mark.parametrize(
+    ("one", "right"),
+    [
+        (stage("P N", switches="H P-U, L U-N"), ["H L"]),
+        (stage("P N", switches="UH P-U, UL U-N, VH P-V, VL V-N"), ["UH UL", "VH VL"]),
+        # diode-clamped, Nabae, Takahashi, Akagi 1981: from memory; sets derived
+        (stage("P O N", switches="S1 P-a, S2 a-X, S3 X-b, S4 b-N", diodes="O-a, b-O"), ["S1 S2 S3", "S2 S3 S4"]),
+        # without its diodes all four are needed
+        (stage("P O N", switches="S1 P-a, S2 a-X, S3 X-b, S4 b-N"), ["S1 S2 S3 S4"]),
+        # flying capacitor: the outer pair shorts the supply through it, the inner one itself
+        (stage("P N", "", "a b", "S1 P-a, S2 a-X, S3 X-b, S4 b-N"), ["S1 S4", "S2 S3"]),
+        # isolated supplies have no common node: no way leads back
+        (stage("P N, Q M", switches="S1 P-M"), []),
+        (stage("P N, Q M", switches="S1 P-M, S2 Q-N"), ["S1 S2"]),
+        # a pole of its own for each way of a contactor; alone it reverses nothing
+        (stage("P N", switches="S P-x/x-N"), ["S"]),
+        (stage("P N", switches="S P-x/y-N, T x-y"), ["S T"]),
+        # two way switches block both ways while off
+        (stage("", "a b", "", "A a-X two way, B b-X two way"), ["A B"]),
+        # bidirectional by two of them: each pair that points the same way
+        (stage("", "a b", "", "Af a-m one way, Ar m-a one way, Bf m-b one way, Br b-m one way"), ["Af Bf", "Ar Br"]),
+    ],
+)
+def test_known_stages(one: Stage, right: list[str]) -> None:
+    """Common practice where no source is named."""
+    assert sets(one) == right
+
+
+def test_needs_of_a_matrix_leg() -> None:
+    """Af with Br back to back: each way shorts under one polarity only, and both together under any."""
+    one = stage("", "a b", "", "Af a-x one way, Ar x-a one way, Bf b-x one way, Br x-b one way")
+    found = {" ".join(lit.switch for lit in hazard.literals): hazard for hazard in shorting_sets(one)}
+    assert set(found) == {"Af Br", "Ar Bf"}
+    assert found["Af Br"].needs == (frozenset({Above("a", "b")}),)
+    assert contradicted(found["Af Br"], [Above("b", "a")])
+    assert not contradicted(found["Af Br"], [Above("a", "b")])
+    assert not contradicted(found["Af Br"], [])
+    assert contradicted(found["Ar Bf"], [Above("a", "b")])
+
+
+def test_facts_follow_from_each_other() -> None:
+    """a above b and b above c is a above c."""
+    (hazard,) = shorting_sets(stage("", "a b c", "", "S a-c one way"))
+    assert contradicted(hazard, [Above("c", "b"), Above("b", "a")])
+    assert not contradicted(hazard, [Above("c", "b"), Above("a", "b")])
+
+
+def test_facts_do_not_forbid_shorts_of_rails() -> None:
+    """What shorts a rail as well is asked for whatever is known of sources."""
+    (hazard,) = shorting_sets(stage("P N", "a b", "", "S P-N/a-b one way"))
+    assert hazard.needs == ()
+    assert not contradicted(hazard, [Above("b", "a")])
+
+
+def test_either_polarity_is_enough() -> None:
+    """A short that one of two polarities carries is ruled out only where both are."""
+    (hazard,) = shorting_sets(stage("", "a b", "", "S a-b two way"))
+    assert len(hazard.needs) == 2
+    for fact in (Above("a", "b"), Above("b", "a")):
+        assert not contradicted(hazard, [fact])
+
+
+def test_joins_names_the_positive_node_first() -> None:
+    """For people: what a short would join."""
+    hazards = shorting_sets(stage("P N", "", "a b", "S1 P-a, S2 a-X, S3 X-b, S4 b-N"))
+    assert [hazard.joins for hazard in hazards] == [("P", "N"), ("a", "b")]
+
+
+def test_always_shorted() -> None:
+    """A diode across the rails conducts whatever the switches do."""
+    with pytest.raises(Problems) as caught:
+        shorting_sets(stage("P N", switches="S P-N", diodes="P-N"))
+    (problem,) = caught.value.found
+    assert problem.kind == "always-shorted"
+    assert "'P' and 'N'" in problem.text
+
+
+def test_too_many_sets_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Never cut short: 3 · 3 = 9 sets are listed or refused."""
+    ladder = stage("P N", switches=", ".join([*(f"A{k} P-x" for k in range(3)), *(f"B{k} x-N" for k in range(3))]))
+    assert len(shorting_sets(ladder)) == 9
+    monkeypatch.setattr(circuit, "MOST_SETS", 8)
+    with pytest.raises(Problems) as caught:
+        shorting_sets(ladder)
+    (problem,) = caught.value.found
+    assert problem.kind == "too-many-sets"
+    assert "8" in problem.text
+
+
+def test_many_switches_in_reasonable_time() -> None:
+    """Twelve legs, twelve sets."""
+    legs = ", ".join(f"H{k} P-U{k}, L{k} U{k}-N" for k in range(12))
+    assert sets(stage("P N", switches=legs)) == [f"H{k} L{k}" for k in range(12)]
+
+
+def test_stage_of_a_file() -> None:
+    """The same from a text, with legs between rails that are named."""
+    text = (
+        'drive "two"\nwrites together\nstage\n  rails P N\n  rails Q M\n  leg U A B between P and N\n'
+        "  leg V C D between Q and M\nmodes A B C D\n  i off off off off\nmoves\n  start i\n"
+    )
+    assert sets(drive_of(text).stage) == ["A B", "C D"]

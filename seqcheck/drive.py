@@ -389,8 +389,8 @@ class Move:
 class Trip:
     """One line of `trips`.
 
-    `resting` are the modes in which it may arrive; `origins` the modes such that it may arrive during a move that left
-    one of them (for `any` that includes the target, and never `reset`). `within` is None where the line has none; then
+    `resting` are the modes in which it may arrive, never its target; `origins` the modes such that it may arrive during
+    a move that left one of them (for `any` that includes the target, and never `reset`). `within` is None where the line has none; then
     its first write comes with the arrival. A trip to `reset` is always `at_once`.
     """
 

@@ -8,7 +8,7 @@ from typing import TypeVar
 
 from seqcheck.drive import Carrier, Drive, Move, Trip, WaitStep
 from seqcheck.hazards import Hazard
-from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
+from seqcheck.proving.prove import LimitReached, Prover, Refuted
 from seqcheck.quantities import Interval, shown
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Cure, Trace
@@ -35,10 +35,10 @@ def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cu
         return None
     for proposal in _proposals(drive, proof.trace, proof.overlap):
         try:
-            answer = Prover(proposal.drive).prove(hazard, True, observer)
+            holds = Prover(proposal.drive).holds(hazard, observer)
         except LimitReached:
             return None
-        if isinstance(answer, Proven):
+        if holds:
             return Cure(proposal.place, proof.overlap, proposal.words)
     return None
 

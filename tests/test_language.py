@@ -449,6 +449,13 @@ def test_steps_of_every_form() -> None:
     ]
 
 
+
+def test_a_trip_cannot_arrive_at_rest_in_its_own_target() -> None:
+    text = row_drive("A", THREE, "start a", more="") + "trips\n  t from a, b -> a at once\n"
+    trip = drive_of(text).trips[0]
+    assert (trip.resting, trip.origins) == (frozenset({"b"}), frozenset({"a", "b"}))
+
+
 def test_a_trip_from_any_but_some() -> None:
     text = row_drive("A", THREE, "start a", more="") + "trips\n  t from any but c -> a within 1 ns\n  set A off\n"
     trip = drive_of(text).trips[0]

@@ -242,7 +242,7 @@ class Motion:
             text = "no firmware trip is taken in 'reset'"
             self.notes.add(said.origin.place, "wrong-origin", text, "leave 'reset' out")
             return None
-        return frozenset(listed), frozenset(listed)
+        return frozenset(listed) - {said.target.text}, frozenset(listed)
 
     def _within(self, said: TripLine) -> int | None:
         """The trip's `within` in ps, rounded up; None without one, -1 where a mistake was noted."""

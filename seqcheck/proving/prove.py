@@ -86,6 +86,14 @@ class Prover:
                     return Proven("zones", count.total, not punctual)
         return self._refute(looking, interlocks, count)
 
+    def holds(self, hazard: Hazard, observer: Observer) -> bool:
+        """Whether the hazard happens in no run, with the drive's interlocks and firmware in time; without a trace."""
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+        count = _Count(observer)
+        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+            return True
+        return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
+
     def _safe(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> bool:
         count.next_search()
         projection = Projection(looking, self._firmware(looking, punctual), manner)

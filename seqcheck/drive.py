@@ -390,8 +390,9 @@ class Trip:
     """One line of `trips`.
 
     `resting` are the modes in which it may arrive, never its target; `origins` the modes such that it may arrive during
-    a move that left one of them (for `any` that includes the target, and never `reset`). `within` is None where the line has none; then
-    its first write comes with the arrival. A trip to `reset` is always `at_once`.
+    a move that left one of them (for `any` that includes the target, and never `reset`).
+    `within` is None where the line has none; then its first write comes with the arrival. A trip to `reset` is always
+    `at_once`.
     """
 
     place: Place

@@ -114,8 +114,7 @@ def against_judge(drive: Drive, zones: int = 15_000, states: int = 60_000) -> It
         yield Held(Hazard((), ()), True, f"the set {sorted(missed)} is not found", True)
     for names, hazard in found.items():
         for interlocks in (True, False) if drive.interlocks else (True,):
-            literals, forbid = forbids.get(names, (hazard.literals, None))
-            if forbid is None:
+            if names not in forbids:
                 yield Held(hazard, interlocks, f"the set {sorted(names)} does not short", True)
                 continue
             try:

@@ -140,7 +140,8 @@ for within, late, right in ((7, 0, SAFE), (8, 0, 1), (9, 0, 2), (5, 2, SAFE), (5
     head = f"clock 1 GHz, late by at most {late} ps\nwrites together"
     rows = "a off off\nm off off\nb on off\nt off on"
     moves = "  start a\n  a -> m when go\n  m -> b after 8 ps"
-    text = leg(rows, moves, head=head, parts=SLOW_A, paths="A through p\nB through q", trips=f"  x from a -> t within {within} ps")
+    trip = f"  x from a -> t within {within} ps"
+    text = leg(rows, moves, head=head, parts=SLOW_A, paths="A through p\nB through q", trips=trip)
     case(f"trip within {within}, {late} late", text, right)
 
 # Trips write like moves. At once: what stands before the wait in one instant, the rest as `writes` says.
@@ -185,21 +186,22 @@ for wait, right in ((6, SAFE), (5, 1)):
     moves = f"  start a\n  a -> z when go\n  z -> b when go_on earliest {wait} ps"
     case(f"tolerance, earliest {wait}", leg(PAUSE, moves, head=head), right)
 # The other end: up to 4 ps become 4 / 0.8 = 5, up to 4.1 ps 5.125, which 6 whole ones hold.
-for most, right in (("4", SAFE), ("4.1", 1)):
-    head = f"clock 1 GHz within 20 %\nwrites one at a time, up to {most} ps apart, turn-ons first"
-    case(f"tolerance, up to {most}", leg(SWAP, GO, head=head, parts=LATE_ON), right)
+for longest, right in (("4", SAFE), ("4.1", 1)):
+    head = f"clock 1 GHz within 20 %\nwrites one at a time, up to {longest} ps apart, turn-ons first"
+    case(f"tolerance, up to {longest}", leg(SWAP, GO, head=head, parts=LATE_ON), right)
 # A carrier's dead time is kept by the clock as well.
-for dead, right in (("5 ps", 1), ("6 ps", SAFE)):
-    carrier = f"carriers\n  k 10 GHz duty 30 % to 70 % dead time {dead}"
+for pause, right in (("5 ps", 1), ("6 ps", SAFE)):
+    carrier = f"carriers\n  k 10 GHz duty 30 % to 70 % dead time {pause}"
     text = leg(CARRIED, TURNS, head="clock 1000 GHz within 20 %\nwrites together", more=carrier)
-    case(f"tolerance, carrier's dead time {dead}", text, right)
+    case(f"tolerance, carrier's dead time {pause}", text, right)
 
 # An interlock with a dead time of its own: B passes when A has been commanded off for D.
-for dead, right in (("5 ps", SAFE), ("4 ps", 1), ("4 ps to 9 ps", 1), ("0 ps", 5)):
-    text = leg(SWAP, GO, paths=f"A B through p\ninterlock A B dead time {dead}", head="writes together")
-    case(f"interlock {dead}", text, right)
+for pause, right in (("5 ps", SAFE), ("4 ps", 1), ("4 ps to 9 ps", 1), ("0 ps", 5)):
+    text = leg(SWAP, GO, paths=f"A B through p\ninterlock A B dead time {pause}", head="writes together")
+    case(f"interlock {pause}", text, right)
 # Hardware times are as they are: 5 ps of dead time in a driver are 5 ps whatever the clock does.
-text = leg(SWAP, GO, paths="A B through p\ninterlock A B dead time 5 ps", head="clock 1 GHz within 20 %\nwrites together")
+locked = "A B through p\ninterlock A B dead time 5 ps"
+text = leg(SWAP, GO, paths=locked, head="clock 1 GHz within 20 %\nwrites together")
 case("tolerance, interlock", text, SAFE)
 
 

@@ -6,7 +6,7 @@ from itertools import permutations
 import pytest
 from build import AT_ONCE, after, carrier, drive, move, pin, span, steps, trip, when, writes
 
-from seqcheck.drive import RESET, Drive, How, Level, Order, Update
+from seqcheck.drive import RESET, Drive, How, Level, Order, Trigger, Trip, Update
 from seqcheck.firmware import Edge, Firmware, State
 from seqcheck.verdict import Act
 from seqcheck.writing import FREE
@@ -70,7 +70,9 @@ SWAP = {"a": "on off", "b": "off on"}
 GO = (move("a", "b"),)
 
 
-def swap(*values: str | tuple[int, int | None], how: How = How.SINGLY, late: int = 0, punctual: bool = True) -> set[str]:
+def swap(
+    *values: str | tuple[int, int | None], how: How = How.SINGLY, late: int = 0, punctual: bool = True
+) -> set[str]:
     """The runs from a to b with these steps, writes 3 to 4 ps apart, turn-offs first."""
     built = drive(
         "A B",
@@ -199,7 +201,13 @@ def test_order_holds_within_an_item() -> None:
 def test_triggers() -> None:
     """An event waits for the loop or what is said of it, a timed move for neither; both count from entry."""
     rows = {"a": "on off", "b": "off off"}
-    kinds = [(when(), "7.."), (when(9, 20), "9..20"), (when(3), "7.."), (after(2, 4), "2..9"), (AT_ONCE, "0..0")]
+    kinds: list[tuple[Trigger, str]] = [
+        (when(), "7.."),
+        (when(9, 20), "9..20"),
+        (when(3), "7.."),
+        (after(2, 4), "2..9"),
+        (AT_ONCE, "0..0"),
+    ]
     for trigger, times in kinds:
         built = drive("A B", rows, moves=(move("a", "b", trigger),), loop=7, late=5)
         assert runs(unfolded(built)) == {f"{times} begins, A off, enters"}
@@ -222,11 +230,11 @@ def test_stay() -> None:
 PAUSED = steps("A off", (5, 6))
 
 
-def tripped(*trips: object, unbroken: bool = False) -> Firmware:
+def tripped(*trips: Trip, unbroken: bool = False) -> Firmware:
     """a goes to b with a pause, b to c; with trips."""
     rows = {"a": "on off", "b": "off on", "c": "off off", "t": "off off"}
     moves = (move("a", "b", steps=PAUSED, unbroken=unbroken), move("b", "c", when(4)))
-    return unfolded(drive("A B", rows, moves=moves, trips=trips))  # type: ignore[arg-type]
+    return unfolded(drive("A B", rows, moves=moves, trips=trips))
 
 
 def hands(firmware: Firmware) -> set[tuple[str, int, int]]:
@@ -306,6 +314,16 @@ def test_trips_do_not_interrupt_trips() -> None:
     firmware = tripped(slow, soft)
     held = [edge for one in states(firmware) if one.hand == 0 for edge in firmware.edges(one)]
     assert {deed.number for edge in held if edge.starts_run for deed in edge.step.deeds} == {1, 2}, "a move, and x"
+
+
+def test_break_input_leaves_a_trip_in_hand() -> None:
+    """It is not taken while the break input's run lasts; its time starts anew at the end, and it is taken then."""
+    firmware = tripped(trip("x", "a", "t", within=9), trip("z", "b", "c", at_once=True, steps=steps("B off", (5, 6))))
+    running = [one for one in states(firmware) if one.run == 3 and one.hand == 0]
+    assert [words(firmware, edge) for one in running for edge in firmware.edges(one)] == ["5..6 enters"]
+    (ending,) = [edge for one in running for edge in firmware.edges(one)]
+    assert (ending.resets_y, ending.step.target.mode, ending.step.target.hand) == (True, "c", 0)
+    assert [words(firmware, edge) for edge in firmware.edges(ending.step.target)] == ["0.. begins, enters"]
 
 
 def test_break_input_comes_in_unbroken_moves_too() -> None:

@@ -71,7 +71,7 @@ class Model:
 
 @pytest.mark.parametrize("seed", range(200))
 def test_random_writes(seed: int) -> None:
-    """Rewriting replaces what is held, writing what is in effect drops it, a change of carrier waits for the old one."""
+    """A later write replaces a held one, writing what is in effect drops it, a change of carrier waits for the old."""
     rng, model, put, rules = Random(seed), Model(), START, writing()
     for _ in range(25):
         model.instant += 1

@@ -218,7 +218,12 @@ def test_extrapolation_makes_few_zones_of_many() -> None:
 
 @pytest.mark.parametrize(
     ("least", "most", "lower", "upper", "right"),
-    [(3, 5, 2, 10, (3, INFINITE)), (12, 15, 10, 10, (11, INFINITE)), (3, 5, 5, 10, (3, 5)), (3, 5, 4, 2, (3, INFINITE))],
+    [
+        (3, 5, 2, 10, (3, INFINITE)),
+        (12, 15, 10, 10, (11, INFINITE)),
+        (3, 5, 5, 10, (3, 5)),
+        (3, 5, 4, 2, (3, INFINITE)),
+    ],
 )
 def test_extrapolation_of_one_clock(least: int, most: int, lower: int, upper: int, right: tuple[int, int]) -> None:
     """3 ≤ x ≤ 5 with L = 2 is x ≥ 3; 12 ≤ x ≤ 15 with both 10 is x > 10 (derived from the definitions)."""

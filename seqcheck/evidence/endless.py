@@ -1,6 +1,6 @@
 """Whether an overlap that reaches the end of a trace can go on for ever from there."""
 
-from seqcheck.drive import Carrier, Command, Drive, Follow
+from seqcheck.drive import Carrier, Command, Drive, Follow, Update
 from seqcheck.evidence.possible import wanted
 from seqcheck.evidence.refusal import NotPermitted
 from seqcheck.evidence.walk import Walk
@@ -26,11 +26,18 @@ def _require_rest(walk: Walk) -> None:
     forced = next(sequence.dues(), None)
     if forced is not None:
         raise NotPermitted(forced.what)
-    for switch in sorted(walk.concerned & (pins.released.keys() | pins.held.keys())):
+    held = {switch for switch, one in pins.held.items() if not _may_stay_held(walk, one.carrier)}
+    for switch in sorted(walk.concerned & (pins.released.keys() | held)):
         raise NotPermitted(f"the pin of {switch} is still to change")
     for guard in walk.interlocks.running():
         if pins.commands[guard.switch] is not Command.OFF:
             raise NotPermitted(f"the interlock is still to clear {guard.switch}")
+
+
+def _may_stay_held(walk: Walk, carrier: str) -> bool:
+    """Whether a write that waits for a rise of this carrier may wait for ever: its reference may stay as it is."""
+    reference = walk.references[carrier]
+    return reference.carrier.update is Update.AT_RISE and reference.span().hi is None
 
 
 def _require_lasting(drive: Drive, walk: Walk, literal: Literal, fall: int) -> None:

@@ -10,8 +10,9 @@ from typing import NamedTuple
 
 from seqcheck.drive import Carrier
 from seqcheck.proving.cutting import longest_memory
+from seqcheck.proving.keys import Happening
 from seqcheck.proving.location import Hop
-from seqcheck.proving.projection import Happening, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import Reference
 from seqcheck.verdict import Act, Event
 

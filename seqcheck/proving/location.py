@@ -52,6 +52,11 @@ class Location:
     hops: tuple[Hop, ...] | None = None
     passed: list[tuple[Zone, object]] = field(default_factory=list)
 
+    @property
+    def overlapping(self) -> bool:
+        """Whether an overlap is under way here, or has just paused."""
+        return self.hot or self.measure > 0
+
     def out(self) -> tuple[Hop, ...]:
         """The hops out of this location."""
         if self.hops is None:

@@ -6,61 +6,39 @@ Other switches are left with the time that their writes take. Locations are work
 from collections.abc import Iterator
 from dataclasses import dataclass
 from itertools import product
-from typing import NamedTuple
 
 from seqcheck.circuit import contradicted
-from seqcheck.drive import Above, Command, Update
+from seqcheck.drive import Above, Update
 from seqcheck.firmware import Edge, Firmware, State
-from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts, turned
+from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts
 from seqcheck.proving.cutting import Cutting
+from seqcheck.proving.keys import (
+    CARRIER,
+    CLEAR,
+    CODES,
+    FALL,
+    HOLD,
+    LOCK,
+    OVER,
+    PAUSE,
+    PIN,
+    RISE,
+    SILENT,
+    WAITING,
+    Clock,
+    Happening,
+    Key,
+    X,
+    Y,
+    Z,
+)
 from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.proving.references import FORGOTTEN, Reference
-from seqcheck.proving.views import Lock, View
+from seqcheck.proving.views import View
+from seqcheck.proving.wiring import Wiring
 from seqcheck.quantities import Interval
 from seqcheck.verdict import Act
-from seqcheck.writing import FREE, ON, carrier_of, inverted
 from seqcheck.zones import FRESH, INFINITE
-
-X, Y, Z = 0, 1, 2
-CARRIER, HOLD, PIN, LOCK, RISE, FALL = 100, 200, 300, 400, 500, 600
-
-C_OFF, C_ON, C_BOTH = 0, 1, 2
-"""Commands as numbers; C_BOTH for a pin that floats."""
-CODES = {Command.OFF: C_OFF, Command.ON: C_ON, Command.UNKNOWN: C_BOTH}
-DRIVEN = -1
-"""The state of a pin that is not released; else command and whether it is still on its way to rest."""
-BLOCKED, WAITING, CLEAR = 0, 1, 2
-"""An interlock direction: partner on; partner off, dead time running; dead time over."""
-
-
-class Key(NamedTuple):
-    """A location's state. Entries follow the view's switches, carriers, locks and literals."""
-
-    state: State
-    carriers: tuple[int, ...]
-    pins: tuple[int, ...]
-    locks: tuple[int, ...]
-    literals: tuple[int, ...]
-
-
-class Happening(NamedTuple):
-    """What a hop does, for the trace: an act and what it is about; `edge` for acts of the firmware."""
-
-    act: Act | None
-    name: str = ""
-    edge: Edge | None = None
-
-
-class Clock(NamedTuple):
-    """A clock in one location: its identity, greatest constants and invariant (INFINITE: none)."""
-
-    name: int
-    lower: int
-    upper: int
-    bound: int
-
-
-SILENT = Happening(None)
 
 
 @dataclass(frozen=True, slots=True)
@@ -80,14 +58,10 @@ class Projection:
         self.view = view
         self.firmware = firmware
         self.manner = manner
-        self._columns = tuple(drive.columns.index(name) for name in view.switches)
-        self._numbers = tuple(list(drive.carriers).index(name) for name in view.carriers)
-        self._place = {number: place for place, number in enumerate(self._numbers)}
+        self._wiring = Wiring(view, firmware)
         self._references = tuple(Reference(drive.carriers[name]) for name in view.carriers)
         self._spans = tuple(drive.carriers[name].update is Update.WITHIN_PERIOD for name in view.carriers)
         self._rises = tuple(drive.carriers[name].update is Update.AT_RISE for name in view.carriers)
-        self._pins = tuple(drive.pins.get(name) for name in view.switches)
-        self._literals = tuple((view.switches.index(one.switch), one.on) for one in view.hazard.literals)
         self._cutting = Cutting(view, self._references) if manner.cut and not view.locks else None
         self._locations: dict[Key, Location] = {}
         self._clocks: dict[Key, tuple[Clock, ...]] = {}
@@ -98,104 +72,11 @@ class Projection:
         """The ways to start, as hops from nowhere."""
         state = self.firmware.start()
         hops = []
-        for carriers in self._phases(state, (FORGOTTEN,) * len(self._numbers), everything=not self.manner.forget):
-            pins = tuple(self._settled_pin(state, place) for place in range(len(self._columns)))
-            raw = self._raw(state, carriers, pins)
-            locks = tuple(BLOCKED if raw[lock.partner] == C_ON else CLEAR for lock in self.view.locks)
-            literals = tuple(IN if wanted else OUT for wanted in self._wanted(raw, locks))
-            key = Key(state, carriers, pins, locks, literals)
+        nowhere = (FORGOTTEN,) * len(self._wiring.numbers)
+        for carriers in self._phases(state, nowhere, everything=not self.manner.forget):
+            key = self._wiring.initial(state, carriers, (IN, OUT))
             hops.append(self._hop(None, key, frozenset(), (), (), 0, SILENT))
         return tuple(hops)
-
-    def _settled_pin(self, state: State, place: int) -> int:
-        if state.put[1][self._columns[place]] != FREE:
-            return DRIVEN
-        pin = self._pins[place]
-        assert pin is not None, "the language asks for the pins of a drive that frees them"
-        return CODES[pin.resting] * 2
-
-    # Commands
-
-    def _raw(self, state: State, carriers: tuple[int, ...], pins: tuple[int, ...]) -> tuple[int, ...]:
-        """The command at each pin."""
-        effective = state.put[1]
-        commands = []
-        for place, column in enumerate(self._columns):
-            cell = effective[column]
-            if cell <= ON:
-                commands.append(cell)
-            elif cell == FREE:
-                commands.append(pins[place] >> 1)
-            else:
-                reference = carriers[self._place[carrier_of(cell)]]
-                commands.append(int(reference == (3 if inverted(cell) else 1)))
-        return tuple(commands)
-
-    def _wanted(self, raw: tuple[int, ...], locks: tuple[int, ...]) -> tuple[bool, ...]:
-        """Whether the passed command of each literal's switch is, or may be, as wanted."""
-        return tuple(self._passes(place, on, raw, locks) for place, on in self._literals)
-
-    def _passes(self, place: int, on: bool, raw: tuple[int, ...], locks: tuple[int, ...]) -> bool:
-        mine = [(lock, state) for lock, state in zip(self.view.locks, locks, strict=True) if lock.guarded == place]
-        if on:
-            return raw[place] != C_OFF and all(state == CLEAR for _, state in mine)
-        return raw[place] != C_ON or any(state != CLEAR or raw[lock.partner] == C_BOTH for lock, state in mine)
-
-    # From one location to the next
-
-    def _settle(
-        self, old: Key, state: State, carriers: tuple[int, ...], pins: tuple[int, ...], locks: tuple[int, ...]
-    ) -> tuple[Key, frozenset[int]]:
-        """The key after an event, and the clocks that it starts anew."""
-        resets: list[int] = []
-        before = self._raw(old.state, old.carriers, old.pins)
-        pins = tuple(self._released(place, state, pins[place], before[place], resets) for place in range(len(pins)))
-        raw = self._raw(state, carriers, pins)
-        locks = tuple(
-            self._locked(place, lock, locks[place], raw, resets) for place, lock in enumerate(self.view.locks)
-        )
-        literals = []
-        for place, wanted in enumerate(self._wanted(raw, locks)):
-            turn = turned(old.literals[place], wanted, self.view.delays[place])
-            literals.append(turn.state)
-            resets += [RISE + place] * turn.resets_rise + [FALL + place] * turn.resets_fall
-        return Key(state, carriers, pins, locks, tuple(literals)), frozenset(resets)
-
-    def _released(self, place: int, state: State, pin: int, before: int, resets: list[int]) -> int:
-        if state.put[1][self._columns[place]] != FREE:
-            return DRIVEN
-        if pin != DRIVEN:
-            return pin
-        line = self._pins[place]
-        assert line is not None, "the language asks for the pins of a drive that frees them"
-        rest = CODES[line.resting]
-        if before == rest or line.after.hi == 0:
-            return rest * 2
-        resets.append(PIN + place)
-        return before * 2 + 1
-
-    def _locked(self, place: int, lock: Lock, state: int, raw: tuple[int, ...], resets: list[int]) -> int:
-        if raw[lock.partner] == C_ON:
-            return BLOCKED
-        if state != BLOCKED:
-            return state
-        if lock.dead.hi == 0:
-            return CLEAR
-        resets.append(LOCK + place)
-        return WAITING
-
-    def _needs(self, state: State) -> set[int]:
-        """The places of the carriers whose phase matters in a state."""
-        written, effective, _ = state.put
-        found = {carrier_of(effective[column]) for column in self._columns}
-        found |= {carrier_of(written[column]) for column in self._columns}
-        if written != effective:
-            found |= {
-                self.firmware.writing.holder(old, new)
-                for new, old in zip(written, effective, strict=True)
-                if new != old
-            }
-        return {self._place[number] for number in found if number in self._place}
 
     def _phases(
         self, state: State, carriers: tuple[int, ...], everything: bool = False
@@ -204,7 +85,7 @@ class Projection:
         if not everything and not self.manner.forget:
             yield carriers
             return
-        needed = set(range(len(carriers))) if everything else self._needs(state)
+        needed = set(range(len(carriers))) if everything else self._wiring.needs(state)
         choices: list[list[int]] = []
         for place, reference in enumerate(carriers):
             if place not in needed:
@@ -226,6 +107,8 @@ class Projection:
         event: Happening,
         written: int = 0,
     ) -> Hop:
+        if self.manner.measure and old is not None and event is not OVER:
+            key = key._replace(paused=self._pauses(old, key))
         target = self._location(key)
         names = {} if old is None else {clock.name: place for place, clock in enumerate(self._clocks[old], 1)}
         renaming = _holds(old, key, written)
@@ -263,28 +146,21 @@ class Projection:
         measure = next((place for place, clock in enumerate(clocks, 1) if clock.name == Z), 0)
         lower, upper = (0, *(clock.lower for clock in clocks)), (0, *(clock.upper for clock in clocks))
         location = Location(
-            key, len(clocks) + 1, bounds, lower, upper, hot, hot and self._held(key), measure, self._expand
+            key, len(clocks) + 1, bounds, lower, upper, hot, hot and self._wiring.held(key), measure, self._expand
         )
         self._locations[key] = location
         return location
+
+    def _pauses(self, old: Key, key: Key) -> bool:
+        """Whether an overlap may go on after this: it does if no time passes until the hazard is asked for again."""
+        possible = all(POSSIBLE[literal] for literal in key.literals)
+        return possible and not self._hot(key) and (old.paused or self._hot(old))
 
     def _hot(self, key: Key) -> bool:
         if not all(POSSIBLE[literal] for literal in key.literals):
             return False
         facts = [fact for fact in self.firmware.facts(key.state) if isinstance(fact, Above)]
         return not contradicted(self.view.hazard, facts)
-
-    def _held(self, key: Key) -> bool:
-        """Whether the mode itself commands all literals: nothing held, nothing on its way to rest."""
-        if key.state.run >= 0 or any(literal != IN for literal in key.literals):
-            return False
-        written, effective, _ = key.state.put
-        own = {place for place, _ in self._literals}
-        return all(
-            written[self._columns[place]] == effective[self._columns[place]]
-            and (key.pins[place] == DRIVEN or key.pins[place] & 1 == 0)
-            for place in own
-        )
 
     def _clocks_of(self, key: Key) -> Iterator[Clock]:
         hot = self._hot(key)
@@ -298,7 +174,7 @@ class Projection:
             first = all(other != number for other, _ in key.state.put[2][:place])
             yield Clock(HOLD + place, 0, longest, longest if first else INFINITE)
         for place, state in enumerate(key.pins):
-            pin = self._pins[place]
+            pin = self._wiring.pins[place]
             if state > 0 and state & 1 and pin is not None:
                 yield _timer(PIN + place, pin.after)
         for place, state in enumerate(key.locks):
@@ -311,13 +187,17 @@ class Projection:
                 yield Clock(RISE + place, times.rise, times.rise, times.rise)
             if fall:
                 yield Clock(FALL + place, times.fall, times.fall, times.fall)
-        if self.manner.measure and hot:
+        if self.manner.measure and (hot or key.paused):
             yield Clock(Z, INFINITE, INFINITE, INFINITE)
+        if key.paused:
+            yield Clock(PAUSE, 0, 0, 0)
 
     def _firmware_clocks(self, key: Key, hot: bool) -> Iterator[Clock]:
         edges, deadline = self._timing(key, hot)
         lower = max((edge.lo for edge in edges), default=0)
         highs = [edge.hi for edge in edges if edge.hi is not None]
+        if self._cutting is not None and deadline is None and self.firmware.deadline(key.state) is not None:
+            highs.append(self._cutting.length)  # where an overlap begins in this stay, the bounds come back
         if deadline is not None or highs or lower:
             upper = max([*highs, deadline or 0])
             yield Clock(X, lower, upper, INFINITE if deadline is None else deadline)
@@ -326,7 +206,7 @@ class Projection:
             yield Clock(Y, 0, hand, hand)
 
     def _period(self, number: int) -> int:
-        period = self._references[self._place[number]].carrier.period.hi
+        period = self._references[self._wiring.place[number]].carrier.period.hi
         assert period is not None, "a frequency is finite"
         return period
 
@@ -358,6 +238,7 @@ class Projection:
         key = location.key
         assert isinstance(key, Key)
         return (
+            *self._pause_over(key),
             *self._conducting(key),
             *self._firmware_hops(key),
             *self._carrier_hops(key),
@@ -365,6 +246,10 @@ class Projection:
             *self._pin_hops(key),
             *self._lock_hops(key),
         )
+
+    def _pause_over(self, key: Key) -> Iterator[Hop]:
+        if key.paused:
+            yield self._hop(key, key._replace(paused=False), frozenset(), (), (), 0, OVER)
 
     def _conducting(self, key: Key) -> Iterator[Hop]:
         for place, state in enumerate(key.literals):
@@ -383,7 +268,7 @@ class Projection:
                 most = (*most, (Y, edge.y_hi))
             starts_anew = {X, Y} if edge.resets_y else {X}
             for carriers in self._phases(target, key.carriers):
-                new, resets = self._settle(key, target, carriers, key.pins, key.locks)
+                new, resets = self._wiring.settle(key, target, carriers, key.pins, key.locks)
                 yield self._hop(
                     key,
                     new,
@@ -403,10 +288,10 @@ class Projection:
             for change in self._references[place].changes(reference):
                 state = key.state
                 if change.act is Act.RISES and self._rises[place]:
-                    state = self.firmware.updated(state, self._numbers[place])
+                    state = self.firmware.updated(state, self._wiring.numbers[place])
                 moved = (*key.carriers[:place], change.state, *key.carriers[place + 1 :])
                 for carriers in self._phases(state, moved):
-                    new, resets = self._settle(key, state, carriers, key.pins, key.locks)
+                    new, resets = self._wiring.settle(key, state, carriers, key.pins, key.locks)
                     starts_anew = resets | {CARRIER + place} if change.resets else resets
                     least = ((CARRIER + place, change.least),)
                     yield self._hop(key, new, starts_anew, least, (), 0, Happening(change.act, name))
@@ -416,16 +301,16 @@ class Projection:
             state = self.firmware.updated(key.state, number)
             happening = Happening(Act.UPDATES, self.firmware.writing.carriers[number])
             for carriers in self._phases(state, key.carriers):
-                new, resets = self._settle(key, state, carriers, key.pins, key.locks)
+                new, resets = self._wiring.settle(key, state, carriers, key.pins, key.locks)
                 yield self._hop(key, new, resets, (), (), 0, happening)
 
     def _pin_hops(self, key: Key) -> Iterator[Hop]:
         for place, state in enumerate(key.pins):
-            pin = self._pins[place]
+            pin = self._wiring.pins[place]
             if state <= 0 or state & 1 == 0 or pin is None:
                 continue
             pins = (*key.pins[:place], CODES[pin.resting] * 2, *key.pins[place + 1 :])
-            new, resets = self._settle(key, key.state, key.carriers, pins, key.locks)
+            new, resets = self._wiring.settle(key, key.state, key.carriers, pins, key.locks)
             happening = Happening(Act.RESTS, self.view.switches[place])
             yield self._hop(key, new, resets, ((PIN + place, pin.after.lo),), (), 0, happening)
 
@@ -435,7 +320,7 @@ class Projection:
                 continue
             lock = self.view.locks[place]
             locks = (*key.locks[:place], CLEAR, *key.locks[place + 1 :])
-            new, resets = self._settle(key, key.state, key.carriers, key.pins, locks)
+            new, resets = self._wiring.settle(key, key.state, key.carriers, key.pins, locks)
             happening = Happening(Act.CLEARS, self.view.switches[lock.guarded])
             yield self._hop(key, new, resets, ((LOCK + place, lock.dead.lo),), (), 0, happening)
 

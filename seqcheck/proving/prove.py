@@ -11,11 +11,10 @@ from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.screen import Map, screened
-from seqcheck.proving.search import Longest, first_hazard, longest_overlap
+from seqcheck.proving.search import first_hazard, first_held, longest_overlap
 from seqcheck.proving.tracing import trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
-from seqcheck.zones import INFINITE
 
 Observer = Callable[[int], None]
 
@@ -105,12 +104,22 @@ class Prover:
         *rough, exact = (Projection(looking, firmware, manner) for manner in _manners(looking, measure=True))
         for projection in rough:
             count.next_search()
-            bound = longest_overlap(projection.initial(), count, None, may_hold=False)
+            bound = longest_overlap(projection.initial(), count, None)
             ceiling = bound.time if bound else None
         count.next_search()
-        found = longest_overlap(exact.initial(), count, ceiling, _may_hold(looking))
+        found = longest_overlap(exact.initial(), count, ceiling)
         assert found is not None, "a first hazard was found before"
-        return _refuted(exact, found, interlocks, count.total)
+        held = self._held(looking, interlocks, count) if _may_hold(looking) else None
+        trace = held or trace_of(exact, found.node, found.time is None, interlocks)
+        return Refuted(trace, held is not None, found.time, count.total)
+
+    def _held(self, looking: View, interlocks: bool, count: _Count) -> Trace | None:
+        """The shortest run to a mode that itself holds the hazard, if there is one."""
+        count.next_search()
+        manner = _manners(looking)[-1]
+        projection = Projection(looking, self._firmware(looking, punctual=True), manner)
+        node = first_held(projection.initial(), count)
+        return trace_of(projection, node, not node.location.bounds, interlocks) if node else None
 
     def _firmware(self, looking: View, punctual: bool) -> Firmware:
         waiting = frozenset(
@@ -142,11 +151,3 @@ def _may_hold(looking: View) -> bool:
         if all(isinstance(cell, Follow) or cell not in sides or (cell is Fixed.ON) == on for cell, on in cells):
             return True
     return False
-
-
-def _refuted(projection: Projection, found: Longest, interlocks: bool, zones: int) -> Refuted:
-    node = found.held or found.node
-    location = node.location
-    time = node.zone[location.measure * location.size]
-    endless = found.time is None and (found.held is None or time >= INFINITE)
-    return Refuted(trace_of(projection, node, endless, interlocks), found.held is not None, found.time, zones)

@@ -16,7 +16,7 @@ from typing import NamedTuple
 from seqcheck.drive import Update
 from seqcheck.firmware import Firmware, State
 from seqcheck.hazards import Delays, Literal
-from seqcheck.proving.projection import C_BOTH, C_OFF, C_ON, CODES
+from seqcheck.proving.keys import C_BOTH, C_OFF, C_ON, CODES
 from seqcheck.proving.views import View
 from seqcheck.writing import FREE, ON, carrier_of
 from seqcheck.zones import INFINITE

@@ -122,40 +122,43 @@ def first_hazard(initial: Iterable[Hop], observer: Observer) -> Node | None:
     return None
 
 
+def first_held(initial: Iterable[Hop], observer: Observer) -> Node | None:
+    """The first stored zone in which a mode itself holds the hazard; None if there is none."""
+    for node in nodes(initial, observer):
+        if node.location.held and ticks(node.location, node.zone):
+            return node
+    return None
+
+
 @dataclass(frozen=True, slots=True)
 class Longest:
-    """The longest overlap and the run that shows it; `time` None: without end. `held` is a run to a mode that holds
-    the hazard, if there is one."""
+    """The longest overlap and the run that shows it; `time` None: without end."""
 
     time: int | None
     node: Node
-    held: Node | None
 
 
-def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | None, may_hold: bool) -> Longest | None:
-    """The longest overlap of all runs.
+def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | None) -> Longest | None:
+    """The longest overlap of all runs; None if there is none.
 
-    `ceiling` is a bound known beforehand (None: none): the search ends where it is reached. With `may_hold` the search
-    also looks for a mode that holds the hazard.
+    `ceiling` is a bound known beforehand (None: none): the search ends where it is reached. It comes to an end without
+    one too: the zones apart from the measuring clock are finitely many, and a circle among them is without end.
     """
     best: Node | None = None
     most = 0
-    held: Node | None = None
     for node in nodes(initial, observer):
         if not node.location.hot or not ticks(node.location, node.zone):
             continue
-        if held is None and node.location.held:
-            held = node
         time = node.zone[node.location.measure * node.location.size]
         if time < INFINITE and _pumps(node):
             time = INFINITE
         if time > most:
             best, most = node, time
-        if most >= (INFINITE if ceiling is None else ceiling) and (held is not None or not may_hold):
+        if most >= (INFINITE if ceiling is None else ceiling):
             break
     if best is None:
         return None
-    return Longest(None if most >= INFINITE else most, best, held)
+    return Longest(None if most >= INFINITE else most, best)
 
 
 def _pumps(node: Node) -> bool:
@@ -167,7 +170,7 @@ def _pumps(node: Node) -> bool:
     location, size, measure = node.location, node.location.size, node.location.measure
     time = node.zone[measure * size]
     ancestor = node.parent
-    while ancestor is not None and ancestor.location.hot:
+    while ancestor is not None and ancestor.location.measure:
         if ancestor.location is location and ancestor.zone[measure * size] < time:
             others = [place for place in range(size * size) if measure not in (place // size, place % size)]
             if all(node.zone[place] >= ancestor.zone[place] for place in others):
@@ -179,6 +182,8 @@ def _pumps(node: Node) -> bool:
 def hops_out(node: Node) -> list[Hop]:
     """The hops by which the longest overlap of a node ends; none if it cannot be told within a few steps."""
     location = node.location
+    if not location.measure:
+        return []
     longest = node.zone[location.measure * location.size]
     waiting: list[tuple[Location, Zone, list[Hop]]] = [(location, node.zone, [])]
     for here, zone, hops in waiting:  # grows while it is walked through
@@ -189,7 +194,7 @@ def hops_out(node: Node) -> list[Hop]:
             after = successor(at_end, here.size, hop)
             if after is None:
                 continue
-            if not hop.target.hot:
+            if not hop.target.measure:
                 return [*hops, hop]
             waiting.append((hop.target, after, [*hops, hop]))
     return []

@@ -4,14 +4,14 @@ from seqcheck.drive import Drive, Move, Trip
 from seqcheck.firmware import Deed
 from seqcheck.proving.cutting import longest_memory
 from seqcheck.proving.dwelling import Run, with_full_dwells
+from seqcheck.proving.keys import CARRIER, Happening, Key
 from seqcheck.proving.location import Hop
-from seqcheck.proving.projection import CARRIER, Happening, Key, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
 from seqcheck.proving.schedule import constraints_of, scheduled
 from seqcheck.proving.search import Node, hops_out
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
-from seqcheck.zones import INFINITE
 
 
 class Infeasible(Exception):  # noqa: N818 - it names what a path is
@@ -22,7 +22,7 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     """The run to a node, with times that make its last overlap longest. Raises Infeasible."""
     nodes = node.path()
     first = len(nodes) - 1
-    while first > 0 and nodes[first - 1].location.hot:
+    while first > 0 and nodes[first - 1].location.overlapping:
         first -= 1
     ending = [] if endless else hops_out(node)
     hops = [*(one.hop for one in nodes), *ending]
@@ -30,7 +30,7 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     times = scheduled(path, first, max(1, longest_memory(projection.view)))
     if times is None:
         raise Infeasible
-    circling = endless and node.zone[node.location.measure * node.location.size] < INFINITE
+    circling = endless and bool(node.location.bounds)
     end = times[len(hops) - 1] if ending or circling else times[path.end]
     timed = list(enumerate(zip(hops, times, strict=False)))[1:]
     events = tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))
@@ -49,7 +49,8 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
 
 def _phase(projection: Projection, place: int, state: int, births: dict[int, int]) -> Phase:
     carrier = projection.view.carriers[place]
-    age = -births.get(CARRIER + place, 0)
+    settled = projection.view.drive.carriers[carrier].dead.lo  # a reference that never moves is long past its dead time
+    age = -births.get(CARRIER + place, -settled)
     return Phase(carrier, state in (HIGH_DEAD, HIGH_OUT), age, state in (HIGH_OUT, LOW_OUT))
 
 

@@ -1,0 +1,53 @@
+"""What a location of one hazard is made of: its key, its clocks, and what a hop between two of them does."""
+
+from typing import NamedTuple
+
+from seqcheck.drive import Command
+from seqcheck.firmware import Edge, State
+from seqcheck.verdict import Act
+
+X, Y, Z, PAUSE = 0, 1, 2, 3
+CARRIER, HOLD, PIN, LOCK, RISE, FALL = 100, 200, 300, 400, 500, 600
+
+C_OFF, C_ON, C_BOTH = 0, 1, 2
+"""Commands as numbers; C_BOTH for a pin that floats."""
+CODES = {Command.OFF: C_OFF, Command.ON: C_ON, Command.UNKNOWN: C_BOTH}
+DRIVEN = -1
+"""The state of a pin that is not released; else command and whether it is still on its way to rest."""
+BLOCKED, WAITING, CLEAR = 0, 1, 2
+"""An interlock direction: partner on; partner off, dead time running; dead time over."""
+
+
+class Key(NamedTuple):
+    """A location's state. Entries follow the view's switches, carriers, locks and literals.
+
+    `paused`: an overlap has come to where the hazard is not asked for, and no time has passed there yet.
+    """
+
+    state: State
+    carriers: tuple[int, ...]
+    pins: tuple[int, ...]
+    locks: tuple[int, ...]
+    literals: tuple[int, ...]
+    paused: bool = False
+
+
+class Happening(NamedTuple):
+    """What a hop does, for the trace: an act and what it is about; `edge` for acts of the firmware."""
+
+    act: Act | None
+    name: str = ""
+    edge: Edge | None = None
+
+
+class Clock(NamedTuple):
+    """A clock in one location: its identity, greatest constants and invariant (INFINITE: none)."""
+
+    name: int
+    lower: int
+    upper: int
+    bound: int
+
+
+SILENT = Happening(None)
+OVER = Happening(None, "a pause lasts")

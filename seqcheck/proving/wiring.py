@@ -1,0 +1,142 @@
+"""From the firmware's cells to the commands that reach the paths, and on to the literals' automata."""
+
+from seqcheck.firmware import Firmware, State
+from seqcheck.proving.conduction import IN, turned
+from seqcheck.proving.keys import (
+    BLOCKED,
+    C_BOTH,
+    C_OFF,
+    C_ON,
+    CLEAR,
+    CODES,
+    DRIVEN,
+    FALL,
+    LOCK,
+    PIN,
+    RISE,
+    WAITING,
+    Key,
+)
+from seqcheck.proving.references import HIGH_OUT, LOW_OUT
+from seqcheck.proving.views import Lock, View
+from seqcheck.writing import FREE, ON, carrier_of, inverted
+
+
+class Wiring:
+    """What one hazard's switches are commanded, and what that makes of its literals."""
+
+    def __init__(self, view: View, firmware: Firmware) -> None:
+        drive = view.drive
+        self.view = view
+        self.firmware = firmware
+        self.numbers = tuple(list(drive.carriers).index(name) for name in view.carriers)
+        self.place = {number: place for place, number in enumerate(self.numbers)}
+        self.pins = tuple(drive.pins.get(name) for name in view.switches)
+        self._columns = tuple(drive.columns.index(name) for name in view.switches)
+        self._literals = tuple((view.switches.index(one.switch), one.on) for one in view.hazard.literals)
+
+    def initial(self, state: State, carriers: tuple[int, ...], settled: tuple[int, int]) -> Key:
+        """The key at time 0; `settled` are the states of a literal that was always as wanted, and that never was."""
+        pins = tuple(self._settled_pin(state, place) for place in range(len(self._columns)))
+        raw = self._raw(state, carriers, pins)
+        locks = tuple(BLOCKED if raw[lock.partner] == C_ON else CLEAR for lock in self.view.locks)
+        literals = tuple(settled[0] if wanted else settled[1] for wanted in self._wanted(raw, locks))
+        return Key(state, carriers, pins, locks, literals)
+
+    def _settled_pin(self, state: State, place: int) -> int:
+        if state.put[1][self._columns[place]] != FREE:
+            return DRIVEN
+        pin = self.pins[place]
+        assert pin is not None, "the language asks for the pins of a drive that frees them"
+        return CODES[pin.resting] * 2
+
+    def _raw(self, state: State, carriers: tuple[int, ...], pins: tuple[int, ...]) -> tuple[int, ...]:
+        """The command at each pin."""
+        effective = state.put[1]
+        commands = []
+        for place, column in enumerate(self._columns):
+            cell = effective[column]
+            if cell <= ON:
+                commands.append(cell)
+            elif cell == FREE:
+                commands.append(pins[place] >> 1)
+            else:
+                reference = carriers[self.place[carrier_of(cell)]]
+                commands.append(int(reference == (LOW_OUT if inverted(cell) else HIGH_OUT)))
+        return tuple(commands)
+
+    def _wanted(self, raw: tuple[int, ...], locks: tuple[int, ...]) -> tuple[bool, ...]:
+        """Whether the passed command of each literal's switch is, or may be, as wanted."""
+        return tuple(self._passes(place, on, raw, locks) for place, on in self._literals)
+
+    def _passes(self, place: int, on: bool, raw: tuple[int, ...], locks: tuple[int, ...]) -> bool:
+        mine = [(lock, state) for lock, state in zip(self.view.locks, locks, strict=True) if lock.guarded == place]
+        if on:
+            return raw[place] != C_OFF and all(state == CLEAR for _, state in mine)
+        return raw[place] != C_ON or any(state != CLEAR or raw[lock.partner] == C_BOTH for lock, state in mine)
+
+    def settle(
+        self, old: Key, state: State, carriers: tuple[int, ...], pins: tuple[int, ...], locks: tuple[int, ...]
+    ) -> tuple[Key, frozenset[int]]:
+        """The key after an event, and the clocks that it starts anew."""
+        resets: list[int] = []
+        before = self._raw(old.state, old.carriers, old.pins)
+        pins = tuple(self._released(place, state, pins[place], before[place], resets) for place in range(len(pins)))
+        raw = self._raw(state, carriers, pins)
+        locks = tuple(
+            self._locked(place, lock, locks[place], raw, resets) for place, lock in enumerate(self.view.locks)
+        )
+        literals = []
+        for place, wanted in enumerate(self._wanted(raw, locks)):
+            turn = turned(old.literals[place], wanted, self.view.delays[place])
+            literals.append(turn.state)
+            resets += [RISE + place] * turn.resets_rise + [FALL + place] * turn.resets_fall
+        return Key(state, carriers, pins, locks, tuple(literals)), frozenset(resets)
+
+    def _released(self, place: int, state: State, pin: int, before: int, resets: list[int]) -> int:
+        if state.put[1][self._columns[place]] != FREE:
+            return DRIVEN
+        if pin != DRIVEN:
+            return pin
+        line = self.pins[place]
+        assert line is not None, "the language asks for the pins of a drive that frees them"
+        rest = CODES[line.resting]
+        if before == rest or line.after.hi == 0:
+            return rest * 2
+        resets.append(PIN + place)
+        return before * 2 + 1
+
+    def _locked(self, place: int, lock: Lock, state: int, raw: tuple[int, ...], resets: list[int]) -> int:
+        if raw[lock.partner] == C_ON:
+            return BLOCKED
+        if state != BLOCKED:
+            return state
+        if lock.dead.hi == 0:
+            return CLEAR
+        resets.append(LOCK + place)
+        return WAITING
+
+    def needs(self, state: State) -> set[int]:
+        """The places of the carriers whose phase matters in a state."""
+        written, effective, _ = state.put
+        found = {carrier_of(effective[column]) for column in self._columns}
+        found |= {carrier_of(written[column]) for column in self._columns}
+        if written != effective:
+            found |= {
+                self.firmware.writing.holder(old, new)
+                for new, old in zip(written, effective, strict=True)
+                if new != old
+            }
+        return {self.place[number] for number in found if number in self.place}
+
+    def held(self, key: Key) -> bool:
+        """Whether the mode itself commands all literals: nothing held, nothing on its way to rest."""
+        if key.state.run >= 0 or any(literal != IN for literal in key.literals):
+            return False
+        written, effective, _ = key.state.put
+        own = {place for place, _ in self._literals}
+        return all(
+            written[self._columns[place]] == effective[self._columns[place]]
+            and (key.pins[place] == DRIVEN or key.pins[place] & 1 == 0)
+            for place in own
+        )

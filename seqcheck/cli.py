@@ -1,6 +1,8 @@
 """Arguments, opening files and exit codes: the only room that touches the world."""
 
 import argparse
+import contextlib
+import errno
 import gc
 import os
 import re
@@ -15,7 +17,7 @@ from typing import Never, TextIO
 from seqcheck import __version__
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
-from seqcheck.source import Place
+from seqcheck.source import Place, printable
 from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
 
 PROVEN, FOUND, WRONG, UNDECIDED, FAULT = 0, 1, 2, 3, 4
@@ -155,7 +157,7 @@ def _files(paths: list[str]) -> Iterator[str]:
             continue
         found = sorted(name for name in os.listdir(path) if name.endswith(".dseq"))
         if not found:
-            _wrong(f"there is no *.dseq file in the folder '{path}'; name a file or another folder")
+            _wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
         yield from (name if path == "." else os.path.join(path, name) for name in found)
 
 
@@ -184,7 +186,7 @@ def _one_file(file: str, only: frozenset[Check], limits: Limits) -> tuple[Outcom
             print(problem.line(), file=sys.stderr)
         return None, WRONG
     except Fault as fault:
-        _complain(f"{file}: internal error, please report it with the file: {fault}")
+        _complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
         return None, FAULT
     return outcome, _exit_of(outcome)
 
@@ -260,12 +262,15 @@ def _deliver(text: str, out: str | None) -> int:
         sys.stdout.write(text)
         return PROVEN
     target = Path(out)
-    draft = target.with_name(f".{target.name}.{os.getpid()}.part")
+    draft = target.parent / f".{target.name}.{os.getpid()}.part"
     try:
+        if not target.name or target.is_dir():
+            raise IsADirectoryError(errno.EISDIR, "it is a folder")
         draft.write_text(text, encoding="utf-8", errors="backslashreplace")
         draft.replace(target)
     except (OSError, ValueError) as refusal:
-        draft.unlink(missing_ok=True)
-        _complain(f"error: cannot write '{out}': {getattr(refusal, 'strerror', None) or refusal}")
+        with contextlib.suppress(OSError, ValueError):
+            draft.unlink()
+        _complain(f"error: cannot write '{printable(out)}': {getattr(refusal, 'strerror', None) or refusal}")
         return WRONG
     return PROVEN

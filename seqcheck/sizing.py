@@ -6,7 +6,7 @@ from fractions import Fraction
 from math import ceil
 from typing import TypeVar
 
-from seqcheck.drive import Carrier, Drive, Move, Trip, WaitStep
+from seqcheck.drive import Carrier, Drive, Move, Trip, WaitStep, When
 from seqcheck.hazards import Hazard
 from seqcheck.proving.prove import LimitReached, Prover, Refuted
 from seqcheck.quantities import Interval, shown
@@ -15,6 +15,9 @@ from seqcheck.verdict import Act, Cure, Trace
 
 Observer = Callable[[int], None]
 Run = TypeVar("Run", Move, Trip)
+
+_SHARE = 10
+"""A dead time above this part of the period would eat up the duty: no cure anyone would take."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,7 +32,8 @@ class _Proposal:
 def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cure | None:
     """The first time of the file that, made longer by the overlap, brings a proof; None if none does.
 
-    Waits of the runs on the way are tried, the last first, then the carriers' dead times and the spacing of writes.
+    Waits of the runs on the way are tried, the last first, then the carriers' dead times, the beginning of the last
+    move and the spacing of writes.
     """
     if proof.overlap is None:
         return None
@@ -53,12 +57,32 @@ def _proposals(drive: Drive, trace: Trace, missing: int) -> Iterator[_Proposal]:
                 yield _longer_waits(drive, step, missing)
     for phase in trace.phases:
         carrier = drive.carriers[phase.carrier]
-        yield _longer_dead_time(drive, carrier, missing)
+        if (carrier.dead.lo + missing) * _SHARE <= carrier.period.lo:
+            yield _longer_dead_time(drive, carrier, missing)
+    for is_trip, index in _runs(trace)[:1]:
+        if not is_trip:
+            yield from _later_begin(drive, index, missing)
     if drive.writes is not None and drive.writes.gap.lo:
         longer = replace(drive.writes, gap=_longer(drive.writes.gap, missing))
         least = _nominal(drive, longer.gap.lo)
         words = f"put writes at least {shown(least)} apart"
         yield _Proposal(replace(drive, writes=longer), drive.writes.place, words)
+
+
+def _later_begin(drive: Drive, index: int, missing: int) -> Iterator[_Proposal]:
+    """A move on an event that may begin later only: by its own `earliest`, or with all others by `loop`."""
+    move = drive.moves[index]
+    if not isinstance(move.trigger, When) or move.trigger.latest is not None:
+        return
+    loop = drive.loop.lo if drive.loop else 0
+    least = max(loop, move.trigger.earliest) + missing
+    later = replace(move, trigger=replace(move.trigger, earliest=least))
+    moves = (*drive.moves[:index], later, *drive.moves[index + 1 :])
+    words = f"let this move begin with 'earliest {shown(_nominal(drive, least))}'"
+    yield _Proposal(replace(drive, moves=moves), move.place, words)
+    if drive.loop:
+        words = f"make 'loop' at least {shown(_nominal(drive, loop + missing))}"
+        yield _Proposal(replace(drive, loop=Interval(loop + missing, None)), move.place, words)
 
 
 def _runs(trace: Trace) -> list[tuple[bool, int]]:
@@ -90,9 +114,9 @@ def _longer_waits(drive: Drive, step: WaitStep, missing: int) -> _Proposal:
     moves = tuple(_with_waits(run, step.time, time) for run in drive.moves)
     trips = tuple(_with_waits(run, step.time, time) for run in drive.trips)
     steps = [one for move in drive.moves for one in move.steps] + [one for trip in drive.trips for one in trip.steps]
-    others = sum(isinstance(one, WaitStep) and one.time == step.time for one in steps) - 1
-    which = f"this wait and the {others} other{'s' if others > 1 else ''} of its length"
-    words = f"make {which} at least {shown(_nominal(drive, time.lo))}"
+    count = sum(isinstance(one, WaitStep) and one.time == step.time for one in steps)
+    which = "both waits" if count == 2 else f"all {count} waits"
+    words = f"make {which} of this length at least {shown(_nominal(drive, time.lo))}"
     return _Proposal(replace(drive, moves=moves, trips=trips), step.place, words)
 
 

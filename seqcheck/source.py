@@ -8,6 +8,11 @@ its last character, so that an empty place has equal ends.
 from dataclasses import dataclass
 
 
+def printable(name: str) -> str:
+    """A file's name on one line: control characters and bytes that are no text as escapes."""
+    return "".join(one if one.isprintable() else one.encode("unicode_escape").decode() for one in name)
+
+
 @dataclass(frozen=True, slots=True, order=True)
 class Place:
     """A span of a source file, from (line, column) up to but not including (end_line, end_column)."""
@@ -19,7 +24,7 @@ class Place:
     end_column: int
 
     def __str__(self) -> str:
-        return f"{self.file}:{self.line}:{self.column}"
+        return f"{printable(self.file)}:{self.line}:{self.column}"
 
     def through(self, last: "Place") -> "Place":
         """The span from the start of this place to the end of `last`, which lies in the same file."""

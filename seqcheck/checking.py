@@ -119,12 +119,14 @@ def _named(hazard: Hazard) -> str:
 def _place(drive: Drive, proof: Refuted, replayed: Replayed) -> Place:
     """The row that holds a short; for an overlap the run that brings it, or the row at rest in which it comes."""
     trace = proof.trace
+    if proof.held is not None:
+        return drive.modes[proof.held].place
     changes = [time for line in replayed.commands.values() for time, _ in line if time is not None]
     last = max((time for time in changes if time <= trace.overlap_from), default=0)
     concerned = {literal.switch for literal in trace.hazard.literals}
     mode, run, at_rest, written = drive.start, drive.modes[drive.start].place, True, False
     for event in trace.events:
-        if event.time > (trace.overlap_from if proof.held else last):
+        if event.time > last:
             break
         if event.act is Act.BEGINS:
             run, at_rest = (drive.trips[event.index] if event.trip else drive.moves[event.index]).place, False
@@ -132,7 +134,7 @@ def _place(drive: Drive, proof: Refuted, replayed: Replayed) -> Place:
             mode, at_rest = event.name, True
         if event.time == last and concerned & {switch for switch, _ in event.writes}:
             written = True
-    if proof.held or (at_rest and not written):
+    if at_rest and not written:
         return drive.modes[mode].place
     return run
 

@@ -12,6 +12,8 @@ from lark import GrammarError, Lark
 from seqcheck.language import grammar
 from seqcheck.language.words import NO_QUANTITY, RESERVED, SECTIONS, SINGLES
 
+ROOT = Path(__file__).parents[1]
+
 
 @pytest.fixture(scope="module")
 def parser() -> Lark:
@@ -29,8 +31,13 @@ def test_a_conflict_would_be_noticed() -> None:
 
 
 def test_it_is_found_beside_the_package_in_a_checkout() -> None:
-    beside = Path(grammar.__file__).parents[2] / "grammars" / "drive.lark"
-    assert grammar.grammar_text() == beside.read_text("utf-8")
+    code = "from seqcheck.language import grammar; print(grammar.PACKAGE); print(grammar.grammar_text(), end='')"
+    env = {"PYTHONPATH": str(ROOT)}
+    ran = subprocess.run([sys.executable, "-c", code], cwd=ROOT, env=env, capture_output=True, check=True)
+    package, text = ran.stdout.decode("utf-8").split("\n", 1)
+    assert Path(package) == ROOT / "seqcheck"
+    assert not (ROOT / "seqcheck" / "grammars").exists()
+    assert text == (ROOT / "grammars" / "drive.lark").read_text("utf-8")
 
 
 def test_it_is_found_in_the_package_where_a_wheel_puts_it(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -42,11 +49,10 @@ def test_it_is_found_in_the_package_where_a_wheel_puts_it(tmp_path: Path, monkey
 
 def test_it_is_found_in_a_zip_file(tmp_path: Path) -> None:
     archive = tmp_path / "seqcheck.zip"
-    root = Path(grammar.__file__).parents[2]
     with zipfile.ZipFile(archive, "w") as packed:
-        for path in sorted((root / "seqcheck").rglob("*.py")):
-            packed.write(path, path.relative_to(root))
-        packed.write(root / "grammars" / "drive.lark", "seqcheck/grammars/drive.lark")
+        for path in sorted((ROOT / "seqcheck").rglob("*.py")):
+            packed.write(path, path.relative_to(ROOT))
+        packed.write(ROOT / "grammars" / "drive.lark", "seqcheck/grammars/drive.lark")
     code = "from seqcheck.language import grammar; print(grammar.grammar_text(), end='')"
     env = {"PYTHONPATH": str(archive)}
     ran = subprocess.run([sys.executable, "-c", code], cwd=tmp_path, env=env, capture_output=True, check=True)

@@ -67,7 +67,7 @@ def test_held_or_in_passing(rows: str, held: bool, overlap: int | None) -> None:
     """A row that commands both is told apart from a change that brings both together."""
     found = proof(leg(rows, "  start a\n  a -> b when go"))
     assert isinstance(found, Refuted)
-    assert (found.held, found.overlap) == (held, overlap)
+    assert (found.held is not None, found.overlap) == (held, overlap)
     assert found.trace.interlocked
 
 
@@ -76,7 +76,7 @@ def test_held_for_a_while() -> None:
     moves = "  start i\n  i -> ab when go earliest 9 ps\n  ab -> i after 20 ps to 30 ps"
     found = proof(leg("i off off\nab on on", moves))
     assert isinstance(found, Refuted)
-    assert (found.held, found.overlap) == (True, 30 + 7 - 2)
+    assert (found.held, found.overlap) == ("ab", 30 + 7 - 2)
 
 
 def test_with_and_without_interlock() -> None:

@@ -9,9 +9,10 @@ from dataclasses import dataclass
 from seqcheck.drive import Drive, Fixed, Follow, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
+from seqcheck.proving.keys import Key
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.screen import Map, screened
-from seqcheck.proving.search import first_hazard, first_held, longest_overlap
+from seqcheck.proving.search import Node, first_hazard, first_held, longest_overlap
 from seqcheck.proving.tracing import trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
@@ -34,10 +35,13 @@ class Proven:
 
 @dataclass(frozen=True, slots=True)
 class Refuted:
-    """A run that brings the hazard: `held` by a mode itself or in passing; `overlap` None is without end."""
+    """A run that brings the hazard; `held` is the mode that itself holds it, None where it comes in passing.
+
+    `overlap` None is without end.
+    """
 
     trace: Trace
-    held: bool
+    held: str | None
     overlap: int | None
     zones: int
 
@@ -109,17 +113,23 @@ class Prover:
         count.next_search()
         found = longest_overlap(exact.initial(), count, ceiling)
         assert found is not None, "a first hazard was found before"
-        held = self._held(looking, interlocks, count) if _may_hold(looking) else None
-        trace = held or trace_of(exact, found.node, found.time is None, interlocks)
-        return Refuted(trace, held is not None, found.time, count.total)
+        longest = trace_of(exact, found.node, found.time is None, interlocks)
+        if found.held is not None:
+            return Refuted(longest, _mode(found.held), found.time, count.total)
+        if not _may_hold(looking):
+            return Refuted(longest, None, found.time, count.total)
+        trace, mode = self._held(looking, interlocks, count)
+        return Refuted(trace or longest, mode, found.time, count.total)
 
-    def _held(self, looking: View, interlocks: bool, count: _Count) -> Trace | None:
-        """The shortest run to a mode that itself holds the hazard, if there is one."""
+    def _held(self, looking: View, interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
+        """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
         count.next_search()
         manner = _manners(looking)[-1]
         projection = Projection(looking, self._firmware(looking, punctual=True), manner)
         node = first_held(projection.initial(), count)
-        return trace_of(projection, node, not node.location.bounds, interlocks) if node else None
+        if node is None:
+            return None, None
+        return trace_of(projection, node, not node.location.bounds, interlocks), _mode(node)
 
     def _firmware(self, looking: View, punctual: bool) -> Firmware:
         waiting = frozenset(
@@ -151,3 +161,9 @@ def _may_hold(looking: View) -> bool:
         if all(isinstance(cell, Follow) or cell not in sides or (cell is Fixed.ON) == on for cell, on in cells):
             return True
     return False
+
+
+def _mode(node: Node) -> str:
+    key = node.location.key
+    assert isinstance(key, Key)
+    return key.state.mode

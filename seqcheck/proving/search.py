@@ -137,6 +137,16 @@ class Longest:
     time: int | None
     node: Node
 
+    @property
+    def held(self) -> Node | None:
+        """Where in this overlap a mode itself holds the hazard; None if nowhere."""
+        node: Node | None = self.node
+        while node is not None and node.location.overlapping:
+            if node.location.held and ticks(node.location, node.zone):
+                return node
+            node = node.parent
+        return None
+
 
 def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | None) -> Longest | None:
     """The longest overlap of all runs; None if there is none.

@@ -5,7 +5,7 @@ from dataclasses import replace
 
 from seqcheck.circuit import shorting_sets
 from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, NeverRule, Rule
-from seqcheck.evidence.replay import NotPermitted, replay
+from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem, Problems
 from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
@@ -104,12 +104,13 @@ def _judged(prover: Prover, hazard: Hazard, observer: Observer) -> Verdict:
 
 def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Unsafe:
     try:
-        replayed = replay(drive, proof.trace)
+        trace = proof.trace if proof.held is None else from_its_beginning(drive, proof.trace)
+        replayed = replay(drive, trace)
     except NotPermitted as fault:
         raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
     check = Check.SHORT if proof.held else Check.OVERLAP
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
-    return Unsafe(hazard, check, _place(drive, proof, replayed), proof.trace, replayed, proof.overlap, remedy)
+    return Unsafe(hazard, check, _place(drive, proof, replayed), trace, replayed, proof.overlap, remedy)
 
 
 def _named(hazard: Hazard) -> str:

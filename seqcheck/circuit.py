@@ -172,7 +172,9 @@ def _hazard(
 ) -> Hazard:
     literals = tuple(Literal(name) for name in sorted(switches, key=rank.__getitem__))
     least = [one for one in alternatives if not any(other < one for other in alternatives)]
-    needs = () if NOTHING in least else tuple(sorted(least, key=lambda one: sorted(map(str, one))))
+    single = {one for needs in least if len(needs) == 1 for one in needs}
+    always = NOTHING in least or any(Above(one.lower, one.upper) in single for one in single)
+    needs = () if always else tuple(sorted(least, key=lambda one: sorted(map(str, one))))
     return Hazard(literals, joins, needs)
 
 

@@ -260,3 +260,39 @@ def test_long_dwell_is_not_cut_too_short(quiet: int, right: Answer) -> None:
 def test_only_exact_zones_tell() -> None:
     """What the phase decides is proven by zones, not by the screen."""
     assert proved_by(locked(215)) == "zones"
+
+
+@pytest.mark.parametrize(("within", "overlap"), [("", "safe"), (" within 0 ps", 3)])
+def test_without_within_arrival_and_first_write_are_one_event(within: str, overlap: Answer) -> None:
+    """`within 0` lets the interrupted move make its last write in the same instant, between arrival and taking.
+
+    The trip cannot arrive at rest in `md`. With `within 0` it arrives just before A is written on and `md` entered, and
+    writes B on in that instant: A and B are then on together for the 2 ps of the trip's wait, and 1 ps more, until both
+    have turned off. Without `within` nothing comes between arrival and B's write, and B off again comes before A on.
+    """
+    text = f"""drive "t"
+writes one at a time, 0 ps apart
+stage
+  rails P N
+  leg U A B
+parts
+  p on 0 ps to 0 ps off 1 ps to 1 ps
+paths
+  A B through p
+modes A B
+  ma off off
+  mb on off
+  md on off
+moves
+  start ma
+  ma -> md when go
+    set all off
+    wait 1 ps
+trips
+  t from any but md -> mb{within}
+    set B on
+    wait 1 ps to 2 ps
+    set B off
+    wait 1 ps
+"""
+    assert answer(text) == judged(text) == overlap

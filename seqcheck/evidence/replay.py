@@ -1,5 +1,7 @@
 """The replay of a trace: by the meaning of the drive alone, so that it can contradict whatever made the trace."""
 
+from dataclasses import replace
+
 from seqcheck.drive import Drive
 from seqcheck.evidence.endless import require_endless
 from seqcheck.evidence.facts import asked_for
@@ -10,7 +12,7 @@ from seqcheck.hazards import Delays, Literal
 from seqcheck.quantities import shown
 from seqcheck.verdict import Replayed, Span, Trace
 
-__all__ = ["NotPermitted", "replay"]
+__all__ = ["NotPermitted", "from_its_beginning", "replay"]
 
 
 def replay(drive: Drive, trace: Trace) -> Replayed:
@@ -24,8 +26,7 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
     walk = _walked(drive, trace)
     found = delays(drive, trace.hazard)
     spans = {literal: _possible(walk, literal, found[literal], trace.end) for literal in found}
-    asked = possible(stretches(walk.known, asked_for(trace.hazard)), Delays(0, 0))
-    overlaps = together([*spans.values(), within_trace(asked, trace.end)])
+    overlaps = _overlaps(walk, trace, spans)
     claimed = Span(trace.overlap_from, trace.overlap_to)
     if claimed not in overlaps and not _cut_off(claimed, overlaps, trace.end):
         raise NotPermitted(
@@ -37,6 +38,28 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
         _require_endless(drive, walk, found)
     commands = {switch: tuple(timeline) for switch, timeline in walk.commands.items()}
     return Replayed(commands, spans, claimed)
+
+
+def from_its_beginning(drive: Drive, trace: Trace) -> Trace:
+    """The trace with its overlap claimed from its true beginning.
+
+    For a run to a mode that holds the hazard: it was looked for by the mode, so that its claim may begin too late.
+    Raises NotPermitted as replay does.
+    """
+    walk = _walked(drive, trace)
+    times = delays(drive, trace.hazard)
+    spans = {literal: _possible(walk, literal, times[literal], trace.end) for literal in times}
+    around = [
+        one
+        for one in _overlaps(walk, trace, spans)
+        if one.start <= trace.overlap_from and (one.end is None or trace.overlap_from < one.end)
+    ]
+    return replace(trace, overlap_from=around[0].start) if around else trace
+
+
+def _overlaps(walk: Walk, trace: Trace, spans: dict[Literal, tuple[Span, ...]]) -> tuple[Span, ...]:
+    asked = possible(stretches(walk.known, asked_for(trace.hazard)), Delays(0, 0))
+    return together([*spans.values(), within_trace(asked, trace.end)])
 
 
 def _walked(drive: Drive, trace: Trace) -> Walk:

@@ -25,6 +25,7 @@ class InHand:
 
     trip: Trip
     since: int
+    arrived_here: bool = False  # whether it arrived where it can be taken
 
 
 class Sequence:
@@ -45,11 +46,18 @@ class Sequence:
 
     @property
     def within_one_event(self) -> bool:
-        """Whether the last event and the next are one: a beginning and its first write, a last write and the entry."""
-        return isinstance(self.at, Run) and self.at.forced
+        """Whether the last event and the next are one: a beginning and its first write, a last write and the entry, or
+        the arrival of a trip without `within` and its taking."""
+        return self._taken_on_arrival or (isinstance(self.at, Run) and self.at.forced)
+
+    @property
+    def _taken_on_arrival(self) -> bool:
+        return self.in_hand is not None and self.in_hand.trip.within is None and self.in_hand.arrived_here
 
     def require_no_break(self, act: Act) -> None:
         """Refuse an event between two that are one."""
+        if self._taken_on_arrival and act is not Act.BEGINS:
+            raise NotPermitted("a trip without 'within' is taken as it arrives")
         if not isinstance(self.at, Run) or not self.at.forced:
             return
         needed = Act.WRITES if self.at.remaining else Act.ENTERS
@@ -127,7 +135,8 @@ class Sequence:
         if isinstance(self.at, Run) and self.at.trip:
             raise NotPermitted("a trip is running")
         self._origin(trip)
-        self.in_hand = InHand(trip, event.time)
+        waits = isinstance(self.at, Run) and self.at.unbroken
+        self.in_hand = InHand(trip, event.time, not waits)
 
     def writes(self, event: Event) -> None:
         """The run in progress writes; NotPermitted where it cannot write this now, or where there is none."""

@@ -452,7 +452,11 @@ class World:
                 for words, after in self.begin_hard(state, k, _origin(place)):
                     yield f"trip {trip.name}, {words}", after
             elif hand is None and not (isinstance(place, Run) and place.trip):
-                yield f"{trip.name} arrives", state._replace(hand=Hand(k, 0))
+                if trip.within is None and self.can_take(place):  # its arrival is its first write: one event
+                    for words, after in self.begin(state, trip=True, index=k, origin=_origin(place)):
+                        yield f"{trip.name} arrives and is taken, {words}", after
+                else:
+                    yield f"{trip.name} arrives", state._replace(hand=Hand(k, 0))
         if hand and self.can_take(place):
             taken = state._replace(hand=None)
             for words, after in self.begin(taken, trip=True, index=hand.trip, origin=_origin(place)):

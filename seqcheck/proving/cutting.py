@@ -27,17 +27,19 @@ class Cutting:
     def cut(
         self, edges: tuple[Edge, ...], deadline: int | None, keep_bounds: bool
     ) -> tuple[tuple[Edge, ...], int | None]:
-        """Edges and deadline with lower bounds no longer than needed, and without upper bounds that do not matter."""
+        """Edges and deadline with lower bounds no longer than needed, and without upper bounds that do not matter.
+
+        `keep_bounds` leaves a stay with a deadline as it is.
+        """
         possible = tuple(edge for edge in edges if deadline is None or edge.lo <= deadline)
         windows = [(edge.lo, _least(edge.hi, deadline)) for edge in possible]
         if all(hi is None or hi < self.length for _, hi in windows) and deadline is None:
             return tuple(self._shortened(edge) if edge.hi is None else edge for edge in possible), None
         if not all(self._free(lo, hi) for lo, hi in windows):
             return edges, deadline
-        shorter = tuple(self._shortened(edge) for edge in possible)
         if keep_bounds:
-            return shorter, deadline
-        return tuple(edge._replace(hi=None) for edge in shorter), None
+            return edges, deadline
+        return tuple(self._shortened(edge)._replace(hi=None) for edge in possible), None
 
     def _shortened(self, edge: Edge) -> Edge:
         return edge._replace(lo=min(edge.lo, self.length))

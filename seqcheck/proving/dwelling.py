@@ -20,17 +20,22 @@ _EDGES = (Act.RISES, Act.FALLS)
 
 
 class Run(NamedTuple):
-    """A run with times: of every hop, of its events (with the number of their hop), of the overlap and the end."""
+    """A run with times: of every hop, of its events (with the number of their hop), of the overlap and the end.
+
+    `hot_place` is the number of the hop with which the overlap begins.
+    """
 
     times: tuple[int, ...]
     events: tuple[tuple[int, Event], ...]
+    hot_place: int
     hot: int
     end: int
 
 
 @dataclass(frozen=True, slots=True)
 class Dwell:
-    """The hop that entered a mode and the one that leaves it."""
+    """The hop with which a stay began, and the first one that a longer stay puts off: the one that ends it, or the one
+    with which an overlap begins in it."""
 
     entered: int
     left: int
@@ -47,7 +52,9 @@ def with_full_dwells(projection: Projection, hops: Sequence[Hop], run: Run) -> R
         stayed = run.times[place] - run.times[entered]
         missing = projection.full_dwell(happening.edge, hops[place - 1].target) - stayed
         if missing > 0:
-            run = _lengthened(projection, Dwell(entered, place), run, missing)
+            overlap_within = entered < run.hot_place < place
+            dwell = Dwell(entered, run.hot_place if overlap_within else place)
+            run = _lengthened(projection, dwell, run, missing)
         entered = place
     return run
 
@@ -71,7 +78,7 @@ def _lengthened(projection: Projection, dwell: Dwell, run: Run, missing: int) ->
     events = tuple(sorted((*moved, *inserted), key=lambda one: one[1].time))
     times = tuple(time + longer if place >= dwell.left else time for place, time in enumerate(run.times))
     hot = run.hot + longer if run.hot >= run.times[dwell.left] else run.hot
-    return Run(times, events, hot, run.end + longer)
+    return Run(times, events, run.hot_place, hot, run.end + longer)
 
 
 def _first_edge(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> int | None:

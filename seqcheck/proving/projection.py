@@ -226,6 +226,15 @@ class Projection:
         """The identity of a location's clock."""
         return self._clocks[key][place - 1].name
 
+    def eased(self, hop: Hop) -> Hop:
+        """A hop of the firmware that asks for no longer a stay than a cut one."""
+        happening = hop.event
+        assert isinstance(happening, Happening)
+        if happening.edge is None or self._cutting is None:
+            return hop
+        length = self._cutting.length
+        return hop._replace(least=tuple(Bound(clock, min(value, length)) for clock, value in hop.least))
+
     def full_dwell(self, edge: Edge, location: Location) -> int:
         """How long a stay the file asks for before an edge that the search may have let come sooner."""
         key = location.key

@@ -8,7 +8,7 @@ from seqcheck.proving.keys import CARRIER, Happening, Key
 from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
-from seqcheck.proving.schedule import constraints_of, scheduled
+from seqcheck.proving.schedule import Path, constraints_of, scheduled
 from seqcheck.proving.search import Node, hops_out
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
@@ -26,10 +26,7 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
         first -= 1
     ending = [] if endless else hops_out(node)
     hops = [*(one.hop for one in nodes), *ending]
-    path = constraints_of(hops)
-    times = scheduled(path, first, max(1, longest_memory(projection.view)))
-    if times is None:
-        raise Infeasible
+    path, times = _timed(projection, hops, first)
     circling = endless and bool(node.location.bounds)
     end = times[len(hops) - 1] if ending or circling else times[path.end]
     timed = list(enumerate(zip(hops, times, strict=False)))[1:]
@@ -40,11 +37,21 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     phases = tuple(
         _phase(projection, place, state, births) for place, state in enumerate(key.carriers) if state != FORGOTTEN
     )
-    short = Run(tuple(times[: len(hops)]), events, times[first], end)
+    short = Run(tuple(times[: len(hops)]), events, first, times[first], end)
     run = with_full_dwells(projection, hops, short)
     happened = tuple(event for _, event in run.events)
     until = None if endless and not circling else run.end
     return Trace(projection.view.hazard, phases, happened, run.end, run.hot, until, interlocked)
+
+
+def _timed(projection: Projection, hops: list[Hop], origin: int) -> tuple[Path, list[int]]:
+    """The path with times; where long stays were cut before an overlap began in them, with what was cut left out."""
+    for asked in (hops, [projection.eased(hop) for hop in hops]):
+        path = constraints_of(asked)
+        times = scheduled(path, origin, max(1, longest_memory(projection.view)))
+        if times is not None:
+            return path, times
+    raise Infeasible
 
 
 def _phase(projection: Projection, place: int, state: int, births: dict[int, int]) -> Phase:

@@ -6,8 +6,12 @@ from pathlib import Path
 from typing import Any
 
 from lark import Lark, Token, UnexpectedInput
-from lark.lark import PostLex
+from lark import __version__ as lark_version
+from lark.grammar import Rule
+from lark.lark import _LOAD_ALLOWED_OPTIONS, PostLex
+from lark.lexer import TerminalDef
 
+from seqcheck.language import cache
 from seqcheck.language.building import Builder
 from seqcheck.language.mistakes import explained, reserved
 from seqcheck.language.syntax import Node
@@ -46,14 +50,37 @@ class _WholeWords(PostLex):
 
 
 def built(text: str, builder: Builder | None, strict: bool = False) -> Lark:
-    """A parser from the grammar's text; a cache of built parsers would stand here."""
+    """A parser from the grammar's text."""
     return Lark(text, parser="lalr", start=list(STARTS), transformer=builder, strict=strict, postlex=_WholeWords())
 
 
 @lru_cache(maxsize=1)
 def _ready() -> tuple[Lark, Builder]:
     builder = Builder()
-    return built(grammar_text(), builder), builder
+    text = grammar_text()
+    key = cache.key_of(text, lark_version)
+    parser = _revived(cache.recalled(key), builder)
+    if parser is None:
+        parser = built(text, builder)
+        cache.kept(key, _laid_down(parser))
+    return parser, builder
+
+
+def _laid_down(parser: Lark) -> tuple[Any, Any]:
+    """A parser as data, without the options that are given anew; as Lark itself does for its own cache."""
+    data, memo = parser.memo_serialize([TerminalDef, Rule])
+    data["options"] = {name: one for name, one in data["options"].items() if name not in _LOAD_ALLOWED_OPTIONS}
+    return data, memo
+
+
+def _revived(laid_down: Any, builder: Builder) -> Lark | None:
+    """The parser from its data; None if there is none or it does not fit."""
+    try:
+        data, memo = laid_down
+        parser = Lark.__new__(Lark)
+        return parser._load({"data": data, "memo": memo}, transformer=builder, postlex=_WholeWords())
+    except Exception:
+        return None
 
 
 def parsed(text: str, start: str, file: str, line: int) -> Node | Problem:

@@ -11,7 +11,7 @@ from reading import FILE, drive_of
 from seqcheck.checking import check
 from seqcheck.circuit import shorting_sets
 from seqcheck.drive import Drive
-from seqcheck.evidence.replay import NotPermitted, replay
+from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
 from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
 from seqcheck.verdict import Outcome, Safe, Unsafe
@@ -172,7 +172,7 @@ class Asking(NamedTuple):
         if said != right:
             return f"an overlap of {said} ps, but the judge says {right}"
         try:
-            replay(self.drive, proof.trace)
+            replay(self.drive, proof.trace if proof.held is None else from_its_beginning(self.drive, proof.trace))
         except NotPermitted as refusal:
             return f"does not replay: {refusal}"
         return ""

@@ -8,6 +8,7 @@ that keeps what can be reached (Alur and Dill 1994), and with it the fewest move
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 
+from seqcheck.proving.circles import goes_on
 from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limited, renamed
 
@@ -172,19 +173,18 @@ def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | N
 
 
 def _pumps(node: Node) -> bool:
-    """Whether the overlap of a run goes through a circle that can be gone through again and again.
-
-    That is so where the run comes to a location again with all values it had there before (apart from the measuring
-    clock), and a longer overlap: what it did between it can then do once more from everywhere.
-    """
+    """Whether the overlap of a run has come through a circle that it can go through without end."""
     location, size, measure = node.location, node.location.size, node.location.measure
+    others = [place for place in range(size * size) if measure not in (place // size, place % size)]
     time = node.zone[measure * size]
+    circle = [node.hop]
     ancestor = node.parent
-    while ancestor is not None and ancestor.location.measure:
+    while ancestor is not None and ancestor.location.overlapping:
         if ancestor.location is location and ancestor.zone[measure * size] < time:
-            others = [place for place in range(size * size) if measure not in (place // size, place % size)]
-            if all(node.zone[place] >= ancestor.zone[place] for place in others):
+            again = all(node.zone[place] >= ancestor.zone[place] for place in others)
+            if again and goes_on(location, node.zone, circle[::-1], successor):
                 return True
+        circle.append(ancestor.hop)
         ancestor = ancestor.parent
     return False
 

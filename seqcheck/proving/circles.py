@@ -1,0 +1,56 @@
+"""Whether an overlap can go round in a circle without end.
+
+A run comes to a location again with all values that it had there before: what it did between it can then do again from
+everywhere, any number of times. That the overlap has become longer on the way does not show that it will each time: a
+clock that is not started anew on the circle may bound it, or the first rounds may only make up for where the run came
+from. So no such clock may have an upper bound on the circle; then every constraint ties a round to the next one only,
+the longest overlap after k rounds is a shortest path through k layers of as many nodes as there are clocks, and it goes
+on growing if it still does after so many rounds that every such path has come through some node twice.
+"""
+
+from collections.abc import Callable, Sequence
+
+from seqcheck.proving.location import Hop, Location
+from seqcheck.zones import Zone
+
+Successor = Callable[[Zone, int, Hop], Zone | None]
+
+
+def goes_on(location: Location, zone: Zone, circle: Sequence[Hop], successor: Successor) -> bool:
+    """Whether the overlap grows with every round of a circle of hops from `location` back to it."""
+    if _bounded(location, circle):
+        return False
+    rounds = location.size + 1
+    early = _after(location, zone, circle, successor, rounds)
+    late = early and _after(location, early, circle, successor, rounds)
+    if not early or not late:
+        return False
+    place = location.measure * location.size
+    return late[place] > early[place]
+
+
+def _after(location: Location, zone: Zone, circle: Sequence[Hop], successor: Successor, rounds: int) -> Zone | None:
+    current: Zone | None = zone
+    for _ in range(rounds):
+        here = location
+        for hop in circle:
+            if current is None:
+                return None
+            current = successor(current, here.size, hop)
+            here = hop.target
+    return current
+
+
+def _bounded(location: Location, circle: Sequence[Hop]) -> bool:
+    """Whether a clock that runs through the whole circle has an upper bound on it.
+
+    On every step `since[c]` is the clock at the start of the circle that clock c still is, 0 if it was started since.
+    """
+    since = list(range(location.size))
+    bounds: list[tuple[int, ...]] = []
+    for hop in circle:
+        bounds += [tuple(since[clock] for clock, _ in hop.most)]
+        since = [0, *(since[source] if source > 0 else 0 for source in hop.sources)]
+        bounds += [tuple(since[clock] for clock, _ in hop.target.bounds)]
+    through = {was for was in since if was}
+    return any(clock in through for some in bounds for clock in some)

@@ -8,13 +8,17 @@ from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, 
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem, Problems
-from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
+from seqcheck.proving.certify import Data
+from seqcheck.proving.prove import Proven, Prover, Refuted
+from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
 from seqcheck.sizing import cure
 from seqcheck.source import Place
-from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Undecided, Unsafe, Verdict
+from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Trace, Undecided, Unsafe, Verdict
 
 Observer = Callable[[int], None]
+Kept = tuple[Hazard, Data | Trace | None]
+"""A hazard with its cover, the run that shows it, or None where neither is at hand."""
 
 PROVEN_CHECKS = (Check.SHORT, Check.OVERLAP, Check.NO_PATH, Check.HELD_BY_INTERLOCK, Check.PUNCTUAL)
 """What this version looks for; a file or a call that asks for another check is refused."""
@@ -32,18 +36,21 @@ class Fault(Exception):  # noqa: N818 - the program is at fault, not the input
     """A counterexample that its own replay does not confirm: nothing that was found may be shown."""
 
 
-def check(drive: Drive, file: str, only: frozenset[Check], observer: Observer) -> Outcome:
+def check(
+    drive: Drive, file: str, only: frozenset[Check], observer: Observer, kept: list[Kept] | None = None
+) -> Outcome:
     """Everything about one drive.
 
     `only` limits what is said to these checks; empty means all. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. Raises Problems for what cannot be proven, Fault if a trace does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof of every hazard, for evidence of them. Raises Problems
+    for what cannot be proven, Fault if a trace does not replay.
     """
-    _refuse(drive)
-    prover = Prover(drive)
+    refuse(drive)
+    prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
     findings: list[Finding] = list(_without_path(drive))
     for hazard in shorting_sets(drive.stage):
-        verdict = _judged(prover, hazard, observer)
+        verdict = _judged(prover, hazard, observer, kept)
         verdicts.append(verdict)
         if isinstance(verdict, Safe):
             findings += _held_by_interlock(prover, hazard, observer)
@@ -59,8 +66,8 @@ def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
     return replace(outcome, verdicts=verdicts, findings=findings)
 
 
-def _refuse(drive: Drive) -> None:
-    """Nothing that the file asks for is passed over in silence."""
+def refuse(drive: Drive) -> None:
+    """Raise Problems for what cannot be proven: nothing that the file asks for is passed over in silence."""
     way_out = "take the line out to have the rest proven"
     found = [
         Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
@@ -83,7 +90,15 @@ def _refuse(drive: Drive) -> None:
         raise Problems(found)
 
 
-def _judged(prover: Prover, hazard: Hazard, observer: Observer) -> Verdict:
+def _judged(prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None) -> Verdict:
+    verdict, cover = _with_cover(prover, hazard, observer)
+    if kept is not None:
+        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else cover))
+    return verdict
+
+
+def _with_cover(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Verdict, Data | None]:
+    """The verdict on a hazard, and its cover where it is safe and the prover keeps it."""
     seen = 0
 
     def counting(count: int) -> None:
@@ -94,23 +109,23 @@ def _judged(prover: Prover, hazard: Hazard, observer: Observer) -> Verdict:
     try:
         proof = prover.prove(hazard, True, counting)
     except LimitReached as limit:
-        return Undecided(hazard, str(limit), seen)
+        return Undecided(hazard, str(limit), seen), None
     except Infeasible as fault:
         raise Fault(f"a path to {_named(hazard)} has no times") from fault
     if isinstance(proof, Proven):
-        return Safe(hazard, proof.method, proof.zones, proof.however_late)
-    return _unsafe(prover.drive, hazard, proof, observer)
+        return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.cover
+    return _unsafe(prover.drive, hazard, proof, observer), None
 
 
 def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Unsafe:
     try:
-        trace = proof.trace if proof.held is None else from_its_beginning(drive, proof.trace)
+        trace = proof.trace if proof.held is None and proof.greatest else from_its_beginning(drive, proof.trace)
         replayed = replay(drive, trace)
     except NotPermitted as fault:
         raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
     check = Check.SHORT if proof.held else Check.OVERLAP
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
-    return Unsafe(hazard, check, _place(drive, proof, replayed), trace, replayed, proof.overlap, remedy)
+    return Unsafe(hazard, check, _place(drive, proof, replayed), trace, replayed, proof.overlap, remedy, proof.greatest)
 
 
 def _named(hazard: Hazard) -> str:

@@ -12,13 +12,18 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from pathlib import Path
-from typing import Never, TextIO
+from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
+from seqcheck.drive import Drive
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
 from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
+
+if TYPE_CHECKING:
+    from seqcheck.checking import Kept
+    from seqcheck.evidence.audit import Audited
 
 PROVEN, FOUND, WRONG, UNDECIDED, FAULT = 0, 1, 2, 3, 4
 _WORST_FIRST = (FAULT, WRONG, FOUND, UNDECIDED, PROVEN)
@@ -27,6 +32,9 @@ _STDIN = "-"
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
 folder you are in, '-' standard input."""
+_AUDIT = """\
+Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
+nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible; 2 the input or the call is wrong, nothing was judged;
 3 undecided within the limits given, never to be taken for proven; 4 the program itself is at fault. Where several
@@ -91,20 +99,29 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
+    audit = commands.add_parser(
+        "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
+    )
+    audit.add_argument("file", metavar="FILE")
+    audit.add_argument("evidence", metavar="EVIDENCE")
     return parser
 
 
 def _run(arguments: list[str]) -> int:
     try:
         asked = _parser().parse_args(arguments)
+        if asked.command == "audit":
+            return _audit(asked.file, asked.evidence)
         form = _one_of("--as", asked.form, ("screen", "lines"))
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         only = frozenset(_check(name) for name in asked.only)
         limits = Limits(_count(asked.most_zones), _seconds(asked.give_up_after))
-        files = list(_files(asked.paths or ["."]))
+        files = list(dict.fromkeys(_files(asked.paths or ["."])))
+        shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
         return int(stop.code or 0)
-    outcomes, code = _lint(files, only, limits)
+    outcomes, code = _lint(files, only, limits, shelf)
     if outcomes:
         text = _written(outcomes, form, _wants_colour(colour, sys.stdout) and not asked.out)
         code = _worse(code, _deliver(text, asked.out))
@@ -164,31 +181,102 @@ def _files(paths: list[str]) -> Iterator[str]:
 # Proving
 
 
-def _lint(files: list[str], only: frozenset[Check], limits: Limits) -> tuple[list[Outcome], int]:
+class _Shelf:
+    """The folder that takes up evidence; refuses two files whose evidence would have one name."""
+
+    def __init__(self, folder: str, files: list[str]) -> None:
+        self._folder = folder
+        names = [self._path(file) for file in files]
+        twice = next((file for file, name in zip(files, names, strict=True) if names.count(name) > 1), None)
+        if twice is not None:
+            name = printable(os.path.basename(twice))
+            _wrong(f"--evidence: two files are named '{name}'; give each a folder of its own")
+        try:
+            os.makedirs(folder, exist_ok=True)
+        except (OSError, ValueError) as refusal:
+            why = getattr(refusal, "strerror", None) or refusal
+            _wrong(f"--evidence: there can be no folder '{printable(folder)}': {why}")
+
+    def _path(self, file: str) -> str:
+        name = "standard-input" if file == _STDIN else os.path.basename(file)
+        return os.path.join(self._folder, f"{name}.json")
+
+    def put(self, file: str, drive: Drive, kept: "list[Kept]") -> int:
+        """Write the evidence of one file; the exit code."""
+        from seqcheck.evidence.certificate import written
+
+        return _deliver(written(drive, kept), self._path(file))
+
+
+def _lint(
+    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None
+) -> tuple[list[Outcome], int]:
     outcomes, code = [], PROVEN
-    for file in dict.fromkeys(files):
-        answer, own = _one_file(file, only, limits)
+    for file in files:
+        answer, own = _one_file(file, only, limits, shelf)
         code = _worse(code, own)
         if answer is not None:
             outcomes.append(answer)
     return outcomes, code
 
 
-def _one_file(file: str, only: frozenset[Check], limits: Limits) -> tuple[Outcome | None, int]:
+def _one_file(
+    file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
+) -> tuple[Outcome | None, int]:
     from seqcheck.checking import Fault, check
     from seqcheck.language import read
 
     try:
         drive = read(_text(file), file, _text)
-        outcome = check(drive, file, only, _observer(limits))
+        kept: list[Kept] | None = None if shelf is None else []
+        outcome = check(drive, file, only, _observer(limits), kept)
     except Problems as problems:
-        for problem in problems.found:
-            print(problem.line(), file=sys.stderr)
-        return None, WRONG
+        return None, _mistaken(problems)
     except Fault as fault:
         _complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
         return None, FAULT
-    return outcome, _exit_of(outcome)
+    stored = PROVEN if shelf is None or kept is None else shelf.put(file, drive, kept)
+    return outcome, _worse(stored, _exit_of(outcome))
+
+
+def _mistaken(problems: Problems) -> int:
+    for problem in problems.found:
+        print(problem.line(), file=sys.stderr)
+    return WRONG
+
+
+def _audit(file: str, evidence: str) -> int:
+    """Check the evidence of a file; the exit code of the verdicts that it bears out."""
+    from seqcheck.checking import refuse
+    from seqcheck.evidence.audit import NotProven, audit
+    from seqcheck.evidence.certificate import NoEvidence
+    from seqcheck.evidence.certificate import read as read_evidence
+    from seqcheck.language import read
+
+    try:
+        drive = read(_text(file), file, _text)
+        refuse(drive)
+        found = audit(drive, read_evidence(_text(evidence)))
+    except Problems as problems:
+        return _mistaken(problems)
+    except NoEvidence as why:
+        _complain(f"error: {printable(evidence)} cannot be used for {printable(file)}: {why}")
+        return WRONG
+    except NotProven as why:
+        _complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
+        return FAULT
+    print(f"{printable(file)}: {_borne_out(found)}")
+    if found.unsafe:
+        return FOUND
+    return UNDECIDED if found.undecided else PROVEN
+
+
+def _borne_out(found: "Audited") -> str:
+    late = f" ({found.however_late} of them however late the firmware is)" if found.however_late else ""
+    parts = [f"{found.safe} {'hazard' if found.safe == 1 else 'hazards'} safe{late}"] if found.safe else []
+    parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
+    parts += [f"{found.undecided} without evidence"] if found.undecided else []
+    return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
 
 
 def _text(file: str) -> str:
@@ -207,7 +295,7 @@ def _unreadable(file: str, why: str) -> Problem:
 
 
 def _observer(limits: Limits) -> Callable[[int], None]:
-    from seqcheck.proving.prove import LimitReached
+    from seqcheck.proving.search import LimitReached
 
     end = None if limits.seconds is None else time.monotonic() + limits.seconds
 

@@ -8,7 +8,8 @@ from typing import TypeVar
 
 from seqcheck.drive import Carrier, Drive, Move, Trip, WaitStep, When
 from seqcheck.hazards import Hazard
-from seqcheck.proving.prove import LimitReached, Prover, Refuted
+from seqcheck.proving.prove import Prover, Refuted
+from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import Interval, shown
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Cure, Trace

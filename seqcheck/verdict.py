@@ -137,7 +137,8 @@ class Unsafe:
     """In some run the hazard happens; `trace` is one, replayed.
 
     `check` is SHORT or OVERLAP (TOGETHER for a `never` rule). `place` is where it happens: the row for SHORT, the move
-    or trip whose run leads to it for OVERLAP. `overlap` is the greatest, in ps, None without end.
+    or trip whose run leads to it for OVERLAP. `overlap` is the greatest, in ps, None without end;
+    with `greatest` False a limit was reached, and there may be a longer one.
     """
 
     hazard: Hazard
@@ -147,6 +148,7 @@ class Unsafe:
     replayed: Replayed
     overlap: int | None
     cure: "Cure | None" = None
+    greatest: bool = True
 
 
 @dataclass(frozen=True, slots=True)

@@ -13,7 +13,8 @@ from seqcheck.circuit import shorting_sets
 from seqcheck.drive import Drive
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
-from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
+from seqcheck.proving.prove import Proven, Prover, Refuted
+from seqcheck.proving.search import LimitReached
 from seqcheck.verdict import Outcome, Safe, Unsafe
 
 SAFE = "safe"
@@ -169,10 +170,10 @@ class Asking(NamedTuple):
 
     def _refuted(self, proof: Refuted, right: Answer) -> str:
         said = ENDLESS if proof.overlap is None else proof.overlap
-        if said != right:
+        if said != right and proof.greatest:
             return f"an overlap of {said} ps, but the judge says {right}"
         try:
-            replay(self.drive, proof.trace if proof.held is None else from_its_beginning(self.drive, proof.trace))
+            replay(self.drive, proof.trace if proof.held is None and proof.greatest else from_its_beginning(self.drive, proof.trace))
         except NotPermitted as refusal:
             return f"does not replay: {refusal}"
         return ""

@@ -10,7 +10,7 @@ from seqcheck.language import cache, grammar, read
 from seqcheck.messages import Problems
 
 SAMPLE = (Path(__file__).parent.parent / "samples" / "vent.dseq").read_text("utf-8")
-BROKEN = SAMPLE.replace("when boot", "whenever boot").replace("wait settle", "wait settle settle").replace("idle ", "use ")
+BROKEN = SAMPLE.replace("when boot", "whenever boot").replace("wait settle", "wait settle settle")
 
 
 @pytest.fixture

@@ -12,7 +12,8 @@ from seqcheck.checking import check
 from seqcheck.circuit import shorting_sets
 from seqcheck.drive import Drive
 from seqcheck.evidence.replay import replay
-from seqcheck.proving.prove import LimitReached, Proven, Prover, Refuted
+from seqcheck.proving.prove import Proven, Prover, Refuted
+from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import Interval
 from seqcheck.verdict import Check, Safe, Undecided, Unsafe
 

@@ -220,7 +220,11 @@ class Projection:
             return edges, deadline
         return self._cutting.cut(edges, deadline, hot)
 
-    # For traces
+    # For traces and certificates
+
+    def locations(self) -> tuple[Location, ...]:
+        """All locations worked out so far."""
+        return tuple(self._locations.values())
 
     def clock_name(self, key: Key, place: int) -> int:
         """The identity of a location's clock."""

@@ -9,10 +9,11 @@ from dataclasses import dataclass
 from seqcheck.drive import Drive, Fixed, Follow, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
+from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.keys import Key
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.screen import Map, screened
-from seqcheck.proving.search import Node, first_hazard, first_held, longest_overlap
+from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
 from seqcheck.proving.tracing import trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
@@ -20,30 +21,31 @@ from seqcheck.verdict import Trace
 Observer = Callable[[int], None]
 
 
-class LimitReached(Exception):  # noqa: N818 - it is an answer, not an error
-    """The observer's way to stop a proof; its text names the limit."""
-
-
 @dataclass(frozen=True, slots=True)
 class Proven:
-    """No run brings the hazard; `method` is "screen" or "zones"."""
+    """No run brings the hazard; `method` is "screen" or "zones".
+
+    `cover` is the proof as data (see certify), where the prover keeps proofs and a limit did not end the search for it.
+    """
 
     method: str
     zones: int
     however_late: bool
+    cover: Data | None = None
 
 
 @dataclass(frozen=True, slots=True)
 class Refuted:
     """A run that brings the hazard; `held` is the mode that itself holds it, None where it comes in passing.
 
-    `overlap` None is without end.
+    `overlap` None is without end; `greatest` tells whether no run brings more.
     """
 
     trace: Trace
     held: str | None
     overlap: int | None
     zones: int
+    greatest: bool
 
 
 @dataclass(slots=True)
@@ -67,10 +69,14 @@ class _Count:
 
 
 class Prover:
-    """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them."""
+    """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
-    def __init__(self, drive: Drive) -> None:
+    With `keep` the proofs that hazards are safe (interlocks included) are kept, for a certificate.
+    """
+
+    def __init__(self, drive: Drive, keep: bool = False) -> None:
         self.drive = drive
+        self.keep = keep
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
 
@@ -80,13 +86,15 @@ class Prover:
         What the observer raises passes through.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
-        count = _Count(observer)
+        count, keep = _Count(observer), self.keep and interlocks
         if screened(looking, self._map(self._firmware(looking, punctual=False))):
-            return Proven("screen", 0, True)
+            return Proven("screen", 0, True, self._cover_of_screened(looking, count) if keep else None)
         for punctual in (False, True):
             for manner in _manners(looking):
-                if self._safe(looking, punctual, manner, count):
-                    return Proven("zones", count.total, not punctual)
+                projection = self._searched(looking, punctual, manner, count)
+                if projection is not None:
+                    kept = cover(projection, not punctual) if keep else None
+                    return Proven("zones", count.total, not punctual, kept)
         return self._refute(looking, interlocks, count)
 
     def holds(self, hazard: Hazard, observer: Observer) -> bool:
@@ -98,28 +106,58 @@ class Prover:
         return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
 
     def _safe(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> bool:
+        return self._searched(looking, punctual, manner, count) is not None
+
+    def _searched(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> Projection | None:
+        """The projection with all that its search stored, if no run in it brings the hazard."""
         count.next_search()
         projection = Projection(looking, self._firmware(looking, punctual), manner)
-        return first_hazard(projection.initial(), count) is None
+        return projection if first_hazard(projection.initial(), count) is None else None
+
+    def _cover_of_screened(self, looking: View, count: _Count) -> Data | None:
+        """What the screen has settled, shown by zones; None where a limit ends that, which leaves the verdict."""
+        try:
+            found = (self._searched(looking, False, manner, count) for manner in _manners(looking))
+            projection = next((one for one in found if one is not None), None)
+        except LimitReached:
+            return None
+        return cover(projection, True) if projection is not None else None
 
     def _refute(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+        try:
+            return self._measured(looking, interlocks, count)
+        except LimitReached:
+            return self._first(looking, interlocks)
+
+    def _measured(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+        """The run with the longest overlap, or to a mode that holds the hazard."""
         firmware = self._firmware(looking, punctual=True)
         ceiling: int | None = None
         *rough, exact = (Projection(looking, firmware, manner) for manner in _manners(looking, measure=True))
         for projection in rough:
             count.next_search()
             bound = longest_overlap(projection.initial(), count, None)
-            ceiling = bound.time if bound else None
+            ceiling = bound.time if bound and bound.greatest else None
         count.next_search()
         found = longest_overlap(exact.initial(), count, ceiling)
         assert found is not None, "a first hazard was found before"
         longest = trace_of(exact, found.node, found.time is None, interlocks)
         if found.held is not None:
-            return Refuted(longest, _mode(found.held), found.time, count.total)
+            return Refuted(longest, _mode(found.held), found.time, count.total, found.greatest)
         if not _may_hold(looking):
-            return Refuted(longest, None, found.time, count.total)
+            return Refuted(longest, None, found.time, count.total, found.greatest)
         trace, mode = self._held(looking, interlocks, count)
-        return Refuted(trace or longest, mode, found.time, count.total)
+        return Refuted(trace or longest, mode, found.time, count.total, found.greatest)
+
+    def _first(self, looking: View, interlocks: bool) -> Refuted:
+        """The first run found: a limit was reached before a longer one was. The search is one that ended before."""
+        projection = Projection(looking, self._firmware(looking, punctual=True), _manners(looking)[-1])
+        node = first_hazard(projection.initial(), lambda count: None)
+        assert node is not None, "it was found before"
+        endless = not node.location.bounds
+        trace = trace_of(projection, node, endless, interlocks)
+        overlap = None if endless else trace.end - trace.overlap_from
+        return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
     def _held(self, looking: View, interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""

@@ -14,6 +14,13 @@ from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limi
 
 Observer = Callable[[int], None]
 
+MOST_MEASURED = 10_000
+"""Zones after which a search for the longest overlap rests content with what it has found."""
+
+
+class LimitReached(Exception):  # noqa: N818 - it is an answer, not an error
+    """The observer's way to stop a search; its text names the limit."""
+
 
 @dataclass(slots=True, eq=False)
 class Node:
@@ -99,13 +106,16 @@ def _stored(parent: Node | None, zone: Zone, size: int, hop: Hop) -> Node | None
     if new is None:
         return None
     passed = hop.target.passed
+    clock = hop.target.measure or hop.target.size - 1  # its two bounds tell most zones apart, before all are looked at
+    upper, lower = clock * hop.target.size, clock
+    most, least = new[upper], new[lower]
     for old, _ in passed:
-        if includes(old, new):
+        if old[upper] >= most and old[lower] >= least and includes(old, new):
             return None
     node = Node(hop.target, new, parent, hop, (parent.moves if parent else 0) + hop.cost)
     kept: list[tuple[Zone, object]] = []
     for old, owner in passed:
-        if includes(new, old):
+        if most >= old[upper] and least >= old[lower] and includes(new, old):
             assert isinstance(owner, Node)
             owner.alive = False
         else:
@@ -133,10 +143,11 @@ def first_held(initial: Iterable[Hop], observer: Observer) -> Node | None:
 
 @dataclass(frozen=True, slots=True)
 class Longest:
-    """The longest overlap and the run that shows it; `time` None: without end."""
+    """The longest overlap found and the run that shows it; `time` None: without end. `greatest`: no run brings more."""
 
     time: int | None
     node: Node
+    greatest: bool
 
     @property
     def held(self) -> Node | None:
@@ -152,24 +163,38 @@ class Longest:
 def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | None) -> Longest | None:
     """The longest overlap of all runs; None if there is none.
 
-    `ceiling` is a bound known beforehand (None: none): the search ends where it is reached. It comes to an end without
-    one too: the zones apart from the measuring clock are finitely many, and a circle among them is without end.
+    `ceiling` is a bound known beforehand (None: none): the search ends where it is reached. It would come to an end
+    without one too: the zones apart from the measuring clock are finitely many, and a circle among them that goes on
+    growing is without end. A limit of the observer, or MOST_MEASURED, ends it earlier if something was found.
     """
     best: Node | None = None
-    most = 0
-    for node in nodes(initial, observer):
-        if not node.location.hot or not ticks(node.location, node.zone):
-            continue
-        time = node.zone[node.location.measure * node.location.size]
-        if time < INFINITE and _pumps(node):
-            time = INFINITE
-        if time > most:
-            best, most = node, time
-        if most >= (INFINITE if ceiling is None else ceiling):
-            break
+    most, complete = 0, True
+    try:
+        for count, node in enumerate(nodes(initial, observer)):
+            time = _measured(node)
+            if time > most:
+                best, most = node, time
+            if most >= (INFINITE if ceiling is None else ceiling):
+                break
+            if best is not None and count > MOST_MEASURED:
+                complete = False
+                break
+    except LimitReached:
+        if best is None:
+            raise
+        complete = False
     if best is None:
         return None
-    return Longest(None if most >= INFINITE else most, best)
+    return Longest(None if most >= INFINITE else most, best, complete or most >= INFINITE)
+
+
+def _measured(node: Node) -> int:
+    """How long an overlap can have lasted in a node; 0 where there is none."""
+    location = node.location
+    if not location.hot or not ticks(location, node.zone):
+        return 0
+    time = node.zone[location.measure * location.size]
+    return INFINITE if time < INFINITE and _pumps(node) else time
 
 
 def _pumps(node: Node) -> bool:

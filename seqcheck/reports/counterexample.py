@@ -16,7 +16,7 @@ def counterexample(verdict: Unsafe, drive: Drive) -> list[Line]:
     """The lines for one unsafe verdict that no waiver lets pass."""
     run = run_of(verdict, drive)
     found = [line(Piece(verdict.check.value.upper(), Tone.BAD), f"  {verdict.place}")]
-    found += sentence(happens(verdict.hazard, verdict.overlap), Tone.STRONG)
+    found += sentence(happens(verdict.hazard, verdict.overlap, verdict.greatest), Tone.STRONG)
     found += sentence(_capital(where(verdict, drive))) + sentence(_capital(condition(verdict.hazard)))
     found += [
         (),

@@ -31,7 +31,7 @@ def _found(outcome: Outcome) -> Iterator[tuple[Place, str]]:
 
 
 def _unsafe(verdict: Unsafe, drive: Drive) -> str:
-    said = [happens(verdict.hazard, verdict.overlap), where(verdict, drive)]
+    said = [happens(verdict.hazard, verdict.overlap, verdict.greatest), where(verdict, drive)]
     if (why := reason(drive, verdict)) is not None:
         said.append(f"waived because: {why}")
         return _line(verdict.place, "note", said, verdict.check.value)

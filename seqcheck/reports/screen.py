@@ -123,7 +123,7 @@ def _finding(finding: Finding, title: Piece) -> list[Line]:
 
 
 def _waived(found: Unsafe | Finding, why: str) -> list[Line]:
-    text = found.text if isinstance(found, Finding) else happens(found.hazard, found.overlap)
+    text = found.text if isinstance(found, Finding) else happens(found.hazard, found.overlap, found.greatest)
     head = line(Piece(f"waived {found.check.value}", Tone.STRONG), f"  {found.place}")
     return [head, *sentence(text), *sentence(f"Waived because: {why}")]
 

@@ -21,17 +21,19 @@ def subject(hazard: Hazard) -> str:
     return f"{' to '.join(hazard.joins)} through {switches(hazard)}"
 
 
-def lasting(overlap: int | None) -> str:
+def lasting(overlap: int | None, greatest: bool) -> str:
     """How long, to stand after a verb."""
-    return "without end" if overlap is None else f"for up to {shown(overlap)}"
+    if overlap is None:
+        return "without end"
+    return f"for {'up to' if greatest else 'at least'} {shown(overlap)}"
 
 
-def happens(hazard: Hazard, overlap: int | None) -> str:
+def happens(hazard: Hazard, overlap: int | None, greatest: bool = True) -> str:
     """One sentence without full stop: what can happen and for how long."""
     if hazard.joins:
-        return f"{_joined(hazard.joins)} through {switches(hazard)}, {lasting(overlap)}"
+        return f"{_joined(hazard.joins)} through {switches(hazard)}, {lasting(overlap, greatest)}"
     each = [f"{one.switch} can {'conduct' if one.on else 'be off'}" for one in hazard.literals]
-    return f"{listed(each)}, all at once, {lasting(overlap)}"
+    return f"{listed(each)}, all at once, {lasting(overlap, greatest)}"
 
 
 def _joined(nodes: tuple[str, ...]) -> str:
@@ -76,4 +78,5 @@ def cure(verdict: Unsafe, drive: Drive) -> str:
         return f"no wait cures this; row '{row.name}' must leave one of {switches(verdict.hazard)} off"
     if verdict.overlap is None:
         return f"no wait cures this; nothing ends it once {switches(verdict.hazard)} are so together"
-    return f"{switches(verdict.hazard)} must be kept apart up to {shown(verdict.overlap)} longer"
+    bound = "up to" if verdict.greatest else "at least"
+    return f"{switches(verdict.hazard)} must be kept apart {bound} {shown(verdict.overlap)} longer"

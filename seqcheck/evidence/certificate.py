@@ -1,0 +1,248 @@
+"""The evidence of one file's verdicts as JSON: written for a run of `lint`, read again by `audit`.
+
+The text is the same for the same verdicts. Reading trusts nothing; what is not as it should be is refused.
+"""
+
+import json
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+from seqcheck.drive import Above, Cell, Drive, Fixed, Follow, cell_text
+from seqcheck.evidence.digest import digest
+from seqcheck.hazards import Hazard, Literal
+from seqcheck.verdict import Act, Event, Phase, Trace
+
+FORMAT = "seqcheck evidence 1"
+MOST_TIME = 1 << 61
+"""No bound of an honest certificate is above this, in ps."""
+
+
+class NoEvidence(Exception):  # noqa: N818 - it says what a text is, not that the program failed
+    """The text is no evidence that this version reads; says why, in words without a full stop."""
+
+
+@dataclass(frozen=True, slots=True)
+class Claim:
+    """What is said of one hazard: a cover (as data) where it is safe, a trace where not, None where undecided."""
+
+    hazard: Hazard
+    proof: "Fields | Trace | None"
+
+
+@dataclass(frozen=True, slots=True)
+class Evidence:
+    """The claims about the drive whose meaning has this digest."""
+
+    digest: str
+    claims: tuple[Claim, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Fields:
+    """A JSON object of which every value is asked for by name and kind; `where` is for people."""
+
+    data: dict[str, object]
+    where: str
+
+    def of(self, name: str) -> object:
+        """The value of a name; NoEvidence if it is not there."""
+        if name not in self.data:
+            raise NoEvidence(f"{self.where} has no '{name}'")
+        return self.data[name]
+
+    def text(self, name: str) -> str:
+        """A string."""
+        value = self.of(name)
+        if not isinstance(value, str):
+            raise self.wrong(name)
+        return value
+
+    def flag(self, name: str) -> bool:
+        """True or false."""
+        value = self.of(name)
+        if not isinstance(value, bool):
+            raise self.wrong(name)
+        return value
+
+    def number(self, name: str) -> int:
+        """A whole number."""
+        return self.whole(self.of(name), name)
+
+    def whole(self, value: object, name: str) -> int:
+        """A value as a whole number that a time can be."""
+        if not isinstance(value, int) or isinstance(value, bool) or abs(value) > MOST_TIME:
+            raise self.wrong(name)
+        return value
+
+    def objects(self, name: str) -> "list[Fields]":
+        """A list of objects."""
+        return [self.inside(one, f"{name} {place}") for place, one in enumerate(self.rows(name))]
+
+    def field(self, name: str) -> "Fields":
+        """One object."""
+        return self.inside(self.of(name), name)
+
+    def texts(self, name: str) -> tuple[str, ...]:
+        """A list of strings."""
+        return self.strings(self.of(name), name)
+
+    def strings(self, value: object, name: str) -> tuple[str, ...]:
+        """A value as a list of strings."""
+        if not isinstance(value, list) or not all(isinstance(one, str) for one in value):
+            raise self.wrong(name)
+        return tuple(value)
+
+    def rows(self, name: str) -> list[object]:
+        """A list of anything."""
+        return self.listed(self.of(name), name)
+
+    def listed(self, value: object, name: str, length: int | None = None) -> list[object]:
+        """A value as a list, of that length."""
+        if not isinstance(value, list) or length not in (None, len(value)):
+            raise self.wrong(name)
+        return value
+
+    def inside(self, value: object, name: str) -> "Fields":
+        """A value as an object."""
+        if not isinstance(value, dict):
+            raise self.wrong(name)
+        return Fields(value, f"{name} of {self.where}")
+
+    def wrong(self, name: str) -> NoEvidence:
+        """That a value is not of its kind."""
+        return NoEvidence(f"'{name}' of {self.where} is not what it should be")
+
+
+# Writing
+
+
+def written(drive: Drive, claims: Iterable[tuple[Hazard, dict[str, object] | Trace | None]]) -> str:
+    """The text of the evidence: a cover as the prover hands it out, a trace, or None for an undecided hazard."""
+    data = {
+        "format": FORMAT,
+        "digest": digest(drive),
+        "claims": [_claim(hazard, proof) for hazard, proof in claims],
+    }
+    return json.dumps(data, ensure_ascii=False, separators=(",", ":")) + "\n"
+
+
+def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None) -> dict[str, object]:
+    said: dict[str, object] = {
+        "literals": [[one.switch, one.on] for one in hazard.literals],
+        "joins": list(hazard.joins),
+        "needs": [sorted([one.upper, one.lower] for one in needs) for needs in hazard.needs],
+    }
+    if proof is None:
+        return {**said, "verdict": "undecided"}
+    if isinstance(proof, Trace):
+        return {**said, "verdict": "unsafe", "run": _run(proof)}
+    return {**said, "verdict": "safe", "cover": proof}
+
+
+def _run(trace: Trace) -> dict[str, object]:
+    return {
+        "phases": [
+            {"carrier": one.carrier, "high": one.high, "age": one.age, "output": one.output} for one in trace.phases
+        ],
+        "events": [_event(one) for one in trace.events],
+        "end": trace.end,
+        "overlap": [trace.overlap_from, trace.overlap_to],
+    }
+
+
+def _event(event: Event) -> dict[str, object]:
+    return {
+        "time": event.time,
+        "act": event.act.value,
+        "name": event.name,
+        "index": event.index,
+        "trip": event.trip,
+        "writes": [[switch, cell_text(cell)] for switch, cell in event.writes],
+    }
+
+
+# Reading
+
+
+def read(text: str) -> Evidence:
+    """The evidence of a text; NoEvidence if it is none."""
+    try:
+        data = json.loads(text)
+    except (ValueError, RecursionError) as fault:
+        raise NoEvidence("it is not JSON") from fault
+    if not isinstance(data, dict):
+        raise NoEvidence("it is no JSON object")
+    whole = Fields(data, "the evidence")
+    if whole.of("format") != FORMAT:
+        raise NoEvidence(f"its format is not '{FORMAT}'")
+    return Evidence(whole.text("digest"), tuple(_claimed(one) for one in whole.objects("claims")))
+
+
+def _claimed(claim: Fields) -> Claim:
+    hazard = Hazard(
+        tuple(_literal(claim, one) for one in claim.rows("literals")),
+        claim.texts("joins"),
+        tuple(_needs(claim, one) for one in claim.rows("needs")),
+    )
+    verdict = claim.text("verdict")
+    if verdict == "undecided":
+        return Claim(hazard, None)
+    if verdict == "unsafe":
+        return Claim(hazard, _trace(hazard, claim.field("run")))
+    if verdict != "safe":
+        raise claim.wrong("verdict")
+    return Claim(hazard, claim.field("cover"))
+
+
+def _literal(claim: Fields, value: object) -> Literal:
+    switch, on = claim.listed(value, "literals", 2)
+    if not isinstance(switch, str) or not isinstance(on, bool):
+        raise claim.wrong("literals")
+    return Literal(switch, on)
+
+
+def _needs(claim: Fields, value: object) -> frozenset[Above]:
+    pairs = [claim.strings(one, "needs") for one in claim.listed(value, "needs")]
+    if not all(len(pair) == 2 for pair in pairs):
+        raise claim.wrong("needs")
+    return frozenset(Above(*pair) for pair in pairs)
+
+
+def _trace(hazard: Hazard, run: Fields) -> Trace:
+    start, end = run.listed(run.of("overlap"), "overlap", 2)
+    phases = tuple(
+        Phase(one.text("carrier"), one.flag("high"), one.number("age"), one.flag("output"))
+        for one in run.objects("phases")
+    )
+    return Trace(
+        hazard,
+        phases,
+        tuple(_happened(one) for one in run.objects("events")),
+        run.number("end"),
+        run.whole(start, "overlap"),
+        None if end is None else run.whole(end, "overlap"),
+    )
+
+
+def _happened(event: Fields) -> Event:
+    try:
+        act = Act(event.text("act"))
+    except ValueError as fault:
+        raise event.wrong("act") from fault
+    writes = [event.strings(one, "writes") for one in event.rows("writes")]
+    if not all(len(pair) == 2 for pair in writes):
+        raise event.wrong("writes")
+    return Event(
+        event.number("time"),
+        act,
+        event.text("name"),
+        event.number("index"),
+        event.flag("trip"),
+        tuple((switch, _cell(word)) for switch, word in writes),
+    )
+
+
+def _cell(word: str) -> Cell:
+    if word in {one.value for one in Fixed}:
+        return Fixed(word)
+    return Follow(word.removeprefix("~"), word.startswith("~"))

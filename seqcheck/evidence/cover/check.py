@@ -1,0 +1,229 @@
+"""A cover held against the behaviour of a drive: does it hold the start, and does every event lead back into it?
+
+A cover is a finite set of points, each with zones of clock values. If every run is in it at time 0, and every event
+from everything in it (and any time that passes after) leads to something in it, then every moment of every run is in
+it; and if time passes nowhere in it while the hazard is possible, the hazard happens in no run.
+"""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from itertools import product
+from typing import NamedTuple
+
+from seqcheck.evidence.cover.behaviour import Behaviour, Change
+from seqcheck.evidence.cover.matrix import UNKNOWN, Rows, cut, later, moved, table, tight, within
+from seqcheck.evidence.cover.wires import ANYWHERE, Point
+from seqcheck.quantities import Interval
+
+
+class NotCovered(Exception):  # noqa: N818 - it says what a certificate is, not that the program failed
+    """The cover proves nothing; the text is a sentence that says why."""
+
+
+Bounds = tuple[tuple[int, int, int], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """A point of a cover, the names of the clocks that it bounds, and its zones.
+
+    A zone is a list of (upper clock, lower clock, most), clocks counted from 1, 0 for none. A clock that is not named
+    has any age.
+    """
+
+    point: Point
+    clocks: tuple[str, ...]
+    zones: tuple[Bounds, ...]
+
+
+NOWHERE = -1
+
+
+class _Goal(NamedTuple):
+    """An entry in which an event may end: where its clocks come from, their least ages, and their limits there.
+
+    `place` is its number; NOWHERE where no entry has the point, so that the event must be impossible.
+    """
+
+    place: int
+    origins: tuple[int, ...]
+    floors: tuple[tuple[int, int], ...]
+    limits: tuple[tuple[int, int], ...]
+    tables: list[Rows]
+
+
+@dataclass(slots=True)
+class _Hop:
+    """An event out of an entry (None: out of nothing): what it needs, and for each way in which it may end the entries
+    of which one must hold it, worked out once it is found to be possible."""
+
+    needs: tuple[tuple[int, Interval], ...]
+    source: Entry | None
+    change: Change
+    ways: tuple[tuple[_Goal, ...], ...] | None = None
+
+
+def check(behaviour: Behaviour, entries: list[Entry]) -> None:
+    """Raise NotCovered unless the entries prove that the hazard of `behaviour` happens in no run."""
+    _Cover(behaviour, entries).check()
+
+
+class _Cover:
+    def __init__(self, behaviour: Behaviour, entries: list[Entry]) -> None:
+        self._behaviour = behaviour
+        self._entries = entries
+        self._tables = [[table(len(one.clocks) + 1, zone) for zone in one.zones] for one in entries]
+        self._places: dict[Point, list[int]] = {}
+        self._known_limits: dict[Point, dict[str, int]] = {}
+        self._needed = {NOWHERE}
+        self._waiting: list[int] = []
+        for place, entry in enumerate(entries):
+            self._places.setdefault(entry.point, []).append(place)
+
+    def check(self) -> None:
+        """Go through what the start and then the entries themselves need; other entries prove nothing and harm nothing.
+
+        So every point that is looked at is one that the checker has come to by itself.
+        """
+        beginning = Change((), self._behaviour.start(), frozenset({"x"}), ())
+        self._require_led(self._hop(None, beginning), [[0]], "The start is not covered")
+        while self._waiting:
+            place = self._waiting.pop()
+            self._check_entry(self._entries[place], self._tables[place])
+
+    def _check_entry(self, entry: Entry, tables: list[Rows]) -> None:
+        limits = self._own_limits(entry.point, entry.clocks)
+        hazardous = self._behaviour.hazardous(entry.point)
+        hops: list[_Hop] | None = None
+        for rows in tables:
+            zone = _limited(tight(rows), limits)
+            if zone is None:
+                continue
+            if hazardous and all(-zone[0][clock] < most for clock, most in limits):
+                raise NotCovered(f"The hazard happens: {_named(entry.point)}.")
+            if hops is None:
+                hops = [self._hop(entry, one) for one in self._behaviour.changes(entry.point)]
+            for hop in hops:
+                self._require_led(hop, zone, "An event leads out of the cover")
+
+    def _own_limits(self, point: Point, clocks: tuple[str, ...]) -> tuple[tuple[int, int], ...]:
+        limits = self._limits(point)
+        return tuple((place, limits[clock]) for place, clock in enumerate(clocks, 1) if clock in limits)
+
+    def _limits(self, point: Point) -> dict[str, int]:
+        known = self._known_limits.get(point)
+        if known is None:
+            known = self._known_limits[point] = self._behaviour.limits(point)
+        return known
+
+    def _require_led(self, hop: _Hop, zone: Rows, what: str) -> None:
+        left: Rows | None = zone
+        for clock, span in hop.needs:
+            if left is not None and span.lo > 0:
+                left = cut(left, 0, clock, -span.lo)
+            if left is not None and span.hi is not None:
+                left = cut(left, clock, 0, span.hi)
+        if left is None:
+            return
+        if hop.ways is None:
+            hop.ways = self._ways(hop.source, hop.change)
+        for goals in hop.ways:
+            led = next((goal for goal in goals if _led(left, goal)), None)
+            if led is None:
+                come = f"from {_named(hop.source.point)} " if hop.source else ""
+                raise NotCovered(f"{what}: {come}to {_named(hop.change.target)}.")
+            if led.place not in self._needed:
+                self._needed.add(led.place)
+                self._waiting.append(led.place)
+
+    def _hop(self, source: Entry | None, change: Change) -> _Hop:
+        at = {clock: place for place, clock in enumerate(source.clocks if source else (), 1)}
+        needs = tuple(
+            (at[clock], span) for clock, span in change.needs if clock in at and (span.lo > 0 or span.hi is not None)
+        )
+        return _Hop(needs, source, change)
+
+    def _ways(self, source: Entry | None, change: Change) -> tuple[tuple[_Goal, ...], ...]:
+        at = {clock: place for place, clock in enumerate(source.clocks if source else (), 1)}
+        return tuple(self._goals(source, at, change, target) for target in self._ends(change.target))
+
+    def _ends(self, point: Point) -> Iterator[Point]:
+        """The point, if some entry holds it; else the points that it is once its carriers are somewhere."""
+        unknown = [place for place, state in enumerate(point.carriers) if state == ANYWHERE]
+        if not unknown or any(one in self._places for one in self._coarser(point)):
+            yield point
+            return
+        for one in self._behaviour.somewhere(point, unknown[:1]):
+            yield from self._ends(one)
+
+    def _coarser(self, point: Point) -> Iterator[Point]:
+        """The point itself, and with carriers that no looked-at switch follows left anywhere."""
+        followed = self._behaviour.wires.followed(point.stand)
+        choices = [
+            (state,) if state == ANYWHERE or place in followed else (state, ANYWHERE)
+            for place, state in enumerate(point.carriers)
+        ]
+        return (point._replace(carriers=carriers) for carriers in product(*choices))
+
+    def _goals(self, source: Entry | None, at: dict[str, int], change: Change, target: Point) -> tuple[_Goal, ...]:
+        places = [place for one in self._coarser(target) for place in self._places.get(one, ())]
+        if places:
+            return tuple(self._goal(source, at, change, place, self._entries[place]) for place in places)
+        nothing = Entry(target, tuple(self._limits(target)), ())
+        return (self._goal(source, at, change, NOWHERE, nothing),)
+
+    def _goal(
+        self,
+        source: Entry | None,
+        at: dict[str, int],
+        change: Change,
+        place: int,
+        entry: Entry,
+    ) -> _Goal:
+        renamed = dict(change.renamed)
+        origins, floors = [], []
+        for number, clock in enumerate(entry.clocks, 1):
+            joined = self._joined(source, entry.point, clock)
+            if clock in change.started:
+                origins.append(0)
+            elif joined is not None:
+                origins.append(UNKNOWN)
+                floors.append((number, joined))
+            else:
+                origins.append(at.get(renamed.get(clock, clock), UNKNOWN))
+        tables = [] if place == NOWHERE else self._tables[place]
+        limits = self._own_limits(entry.point, entry.clocks)
+        return _Goal(place, tuple(origins), tuple(floors), limits, tables)
+
+    def _joined(self, source: Entry | None, target: Point, clock: str) -> int | None:
+        """The least age of a carrier that was anywhere and is somewhere now; None for any other clock."""
+        word, _, number = clock.partition(" ")
+        if word == "carrier" and target.carriers[int(number)] == ANYWHERE:
+            raise NotCovered(f"A carrier that is left anywhere has an age: {_named(target)}.")
+        if word != "carrier" or (source is not None and source.point.carriers[int(number)] != ANYWHERE):
+            return None
+        return dict(self._behaviour.phases(int(number)))[target.carriers[int(number)]]
+
+
+def _led(zone: Rows, goal: _Goal) -> bool:
+    """Whether what becomes of a zone lies in one of a goal's; also where nothing becomes of it."""
+    come: Rows | None = moved(zone, goal.origins)
+    for clock, least in goal.floors:
+        if come is not None and least > 0:
+            come = cut(come, 0, clock, -least)
+    ended = None if come is None else later(come, goal.limits)
+    return ended is None or any(within(ended, one) for one in goal.tables)
+
+
+def _limited(zone: Rows | None, limits: tuple[tuple[int, int], ...]) -> Rows | None:
+    for clock, most in limits:
+        if zone is not None:
+            zone = cut(zone, clock, 0, most)
+    return zone
+
+
+def _named(point: Point) -> str:
+    """A point in a few words."""
+    stand = point.stand
+    where = f"at rest in {stand.mode}" if stand.line < 0 else f"in run {stand.line} out of {stand.mode}"
+    return f"{where}, literals {', '.join(point.literals)}"

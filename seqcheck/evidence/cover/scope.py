@@ -1,0 +1,98 @@
+"""What of a drive the checker looks at for one hazard.
+
+Other switches matter only by the time that their writes take. When their writes act is told by nothing that is looked
+at, unless a break input cancels what is held (then what is written afterwards depends on it), or a carrier acts within
+a period after the oldest write held for it, whosever that is.
+"""
+
+from dataclasses import dataclass
+
+from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
+from seqcheck.evidence.possible import delays
+from seqcheck.hazards import Delays, Hazard
+from seqcheck.quantities import Interval
+
+
+@dataclass(frozen=True, slots=True)
+class Guard:
+    """One direction of an interlock: `guarded` passes only while `partner` is off and has been for `dead`."""
+
+    guarded: str
+    partner: str
+    dead: Interval
+
+
+@dataclass(frozen=True, slots=True)
+class Scope:
+    """A hazard of a drive and what it looks at.
+
+    `switches` are the hazard's and their partners in interlocks, `carriers` those whose phase is followed, `waiting`
+    those of them that hold writes, `held` the switches whose writes they hold. `in_time`: firmware keeps its upper
+    bounds; else it is free of them.
+    """
+
+    drive: Drive
+    hazard: Hazard
+    in_time: bool
+    delays: tuple[Delays, ...]
+    switches: tuple[str, ...]
+    guards: tuple[Guard, ...]
+    carriers: tuple[str, ...]
+    waiting: frozenset[str]
+    held: frozenset[str]
+
+
+def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
+    """What is looked at for `hazard`."""
+    own = [literal.switch for literal in hazard.literals]
+    guards = tuple(
+        Guard(guarded, partner, lock.dead)
+        for lock in drive.interlocks
+        for guarded, partner in ((lock.first, lock.second), (lock.second, lock.first))
+        if guarded in own
+    )
+    switches = tuple(dict.fromkeys([*own, *(guard.partner for guard in guards)]))
+    carriers = _followed(drive, switches)
+    cancelling = any(trip.at_once and trip.target != RESET for trip in drive.trips)
+    if cancelling:
+        carriers |= {name for name, carrier in drive.carriers.items() if carrier.update is not Update.AT_ONCE}
+    waiting = frozenset(name for name in carriers if drive.carriers[name].update is not Update.AT_ONCE)
+    everyone = cancelling or any(drive.carriers[name].update is Update.WITHIN_PERIOD for name in waiting)
+    found = delays(drive, hazard)
+    return Scope(
+        drive,
+        hazard,
+        in_time,
+        tuple(found[literal] for literal in hazard.literals),
+        switches,
+        guards,
+        tuple(name for name in drive.carriers if name in carriers),
+        waiting,
+        frozenset(drive.columns) if everyone else frozenset(switches),
+    )
+
+
+def _followed(drive: Drive, switches: tuple[str, ...]) -> set[str]:
+    """The carriers that the switches may follow; for one that acts within a period, also all that the switches on it
+    may follow, since the oldest write held for it sets the time for all."""
+    used = {switch: _cells_of(drive, switch) for switch in drive.columns}
+    found: set[str] = set()
+    for switch in switches:
+        found |= used[switch]
+    grown = True
+    while grown:
+        timed = {name for name in found if drive.carriers[name].update is Update.WITHIN_PERIOD}
+        wider = found.union(*(names for names in used.values() if names & timed))
+        grown, found = wider != found, wider
+    return found
+
+
+def _cells_of(drive: Drive, switch: str) -> set[str]:
+    """The carriers that some row or step puts the switch on."""
+    place = drive.columns.index(switch)
+    cells = [mode.cells[place] for mode in drive.modes.values()]
+    runs = [line.steps for line in drive.moves] + [line.steps for line in drive.trips]
+    for steps in runs:
+        for step in steps:
+            cells += [cell for name, cell in step.writes if name == switch] if isinstance(step, SetStep) else []
+    return {cell.carrier for cell in cells if isinstance(cell, Follow)}

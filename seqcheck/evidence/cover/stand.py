@@ -1,0 +1,296 @@
+"""Where the firmware stands, and what it can do next: sections 4.4 to 4.8 of the meaning, as the checker reads them.
+
+Clock x counts from the entry of the mode, or from the last write or the beginning of the run; clock y from where the
+time to take the trip in hand began. A firmware trip arrives at the last moment at which it still may before it is
+taken: see `Firmware.edges`.
+"""
+
+from collections.abc import Iterator
+from typing import NamedTuple
+
+from seqcheck.drive import (
+    RESET,
+    After,
+    AtOnce,
+    Cell,
+    Drive,
+    Fixed,
+    Follow,
+    How,
+    Known,
+    Move,
+    Trip,
+    WaitStep,
+    When,
+    cell_text,
+)
+from seqcheck.evidence.cover.scope import Scope
+from seqcheck.evidence.cover.writes import Cells, Write, Writes
+from seqcheck.evidence.groups import grouped, may_come_next
+from seqcheck.quantities import INSTANT, Interval
+
+REST = -1
+NOBODY = -1
+Group = tuple[Write, ...]
+
+
+class Stand(NamedTuple):
+    """At rest (`line` REST) in `mode`, or in the run of `line` (moves first, then trips), which left `mode`.
+
+    In a run `item` is the step, row or end that comes next, `left` its groups that are still to be written, and the
+    next event comes when x is in [soonest, latest]. `hand` is the number of the trip in hand, or NOBODY.
+    """
+
+    mode: str
+    line: int
+    item: int
+    left: tuple[Group, ...]
+    soonest: int
+    latest: int | None
+    hand: int
+    cells: Cells
+
+
+class Edge(NamedTuple):
+    """An event of the firmware: possible while x is in [lo, hi] (and y at most `y_hi`); `y_anew` starts y."""
+
+    lo: int
+    hi: int | None
+    y_hi: int | None
+    y_anew: bool
+    target: Stand
+
+
+class Firmware:
+    """What firmware and break inputs can do in a drive."""
+
+    def __init__(self, scope: Scope, writes: Writes) -> None:
+        self._drive: Drive = scope.drive
+        self._in_time = scope.in_time
+        self._writes = writes
+        self._lines: tuple[Move | Trip, ...] = (*scope.drive.moves, *scope.drive.trips)
+        self._first_trip = len(scope.drive.moves)
+        self._rows = {name: writes.row(mode.cells) for name, mode in scope.drive.modes.items()}
+        self._late = (scope.drive.clock.late or 0) if scope.drive.clock else 0
+        self._known: dict[Stand, tuple[Edge, ...]] = {}
+
+    def start(self) -> Stand:
+        """Time 0: the start mode, its row in effect."""
+        return self._resting(self._drive.start, NOBODY, self._settled(self._drive.start))
+
+    def _settled(self, mode: str) -> Cells:
+        return Cells(self._rows[mode], self._rows[mode], ())
+
+    def _resting(self, mode: str, hand: int, cells: Cells) -> Stand:
+        return Stand(mode, REST, 0, (), 0, None, hand, cells)
+
+    # Bounds
+
+    def _kept(self, span: Interval) -> Interval:
+        """A span that firmware keeps: late by what the file allows, or without an upper bound if it may be late."""
+        if not self._in_time or span.hi is None:
+            return Interval(span.lo, None)
+        return Interval(span.lo, span.hi + self._late)
+
+    def _window(self, move: Move) -> Interval:
+        match move.trigger:
+            case When(earliest=earliest, latest=latest):
+                return Interval(max(earliest, self._drive.loop.lo if self._drive.loop else 0), latest)
+            case After(span=span):
+                return self._kept(span)
+            case AtOnce():
+                return INSTANT
+
+    def _gap(self) -> Interval:
+        writes = self._drive.writes
+        return INSTANT if writes is None or writes.how is How.TOGETHER else self._kept(writes.gap)
+
+    def x_limit(self, stand: Stand) -> int | None:
+        """The latest x of a stand."""
+        if stand.line != REST:
+            return stand.latest
+        timed = [self._window(move).hi for move in self._from(stand.mode) if not isinstance(move.trigger, When)]
+        return min((hi for hi in timed if hi is not None), default=None)
+
+    def y_limit(self, stand: Stand) -> int | None:
+        """The latest y of a stand: a trip in hand must be taken in time wherever it can be."""
+        return self._patience(stand.hand) if stand.hand != NOBODY and self._takes(stand) else None
+
+    def _patience(self, number: int) -> int | None:
+        within = self._drive.trips[number].within
+        return 0 if within is None else self._kept(Interval(0, within)).hi
+
+    def _from(self, mode: str) -> list[Move]:
+        return [move for move in self._drive.moves if mode in move.sources]
+
+    # What comes next
+
+    def edges(self, stand: Stand) -> tuple[Edge, ...]:
+        """All that firmware and break inputs can do next.
+
+        Only runs are gone through in which a firmware trip arrives as late as it can before it is taken: where it is
+        taken, if it may arrive there; else just before the last event that leaves a place in which it may. Any other
+        run is brought to that by moving arrivals later and leaving out those of trips that are never taken: nothing
+        else is forbidden or made due by that, and the time to take the trip begins later.
+        """
+        if stand not in self._known:
+            self._known[stand] = tuple(self._edges(stand))
+        return self._known[stand]
+
+    def _edges(self, stand: Stand) -> Iterator[Edge]:
+        own = [*self._onward(stand), *self._broken(stand)]
+        if stand.hand == NOBODY:
+            yield from own
+            for number in self._firmware_trips():
+                if not self._hears(number, stand):
+                    continue
+                if self._takes(stand):
+                    yield from self._taken(stand, number, None)
+                if not self._takes(stand) or self._drive.trips[number].within is not None:
+                    yield from self._carried(stand, number, own, y_anew=True)
+            return
+        if self._takes(stand):
+            yield from self._taken(stand, stand.hand, self._patience(stand.hand))
+        yield from self._carried(stand, stand.hand, own, y_anew=not self._takes(stand))
+
+    def _carried(self, stand: Stand, number: int, own: list[Edge], *, y_anew: bool) -> Iterator[Edge]:
+        """Events that leave a trip in hand; where it may still arrive afterwards, it does so only then."""
+        goal = self._drive.trips[number].target
+        for edge in own:
+            there = edge.target
+            dropped = there.line == REST and there.mode in (RESET, goal)
+            if not dropped and not self._hears(number, there):
+                yield edge._replace(y_anew=y_anew, target=there._replace(hand=number))
+
+    def _firmware_trips(self) -> Iterator[int]:
+        return (number for number, trip in enumerate(self._drive.trips) if not trip.at_once)
+
+    def _takes(self, stand: Stand) -> bool:
+        """Whether firmware takes a trip here: at rest and in moves that are not unbroken."""
+        if stand.line == REST:
+            return stand.mode != RESET
+        line = self._lines[stand.line]
+        return isinstance(line, Move) and not line.unbroken
+
+    def _hears(self, number: int, stand: Stand) -> bool:
+        """Whether a trip may come here."""
+        trip = self._drive.trips[number]
+        if stand.line == REST:
+            return stand.mode != RESET and stand.mode in trip.resting
+        if stand.line >= self._first_trip and (not trip.at_once or stand.line == self._first_trip + number):
+            return False
+        return stand.mode in trip.origins
+
+    def _onward(self, stand: Stand) -> Iterator[Edge]:
+        if stand.line == REST:
+            for number, move in enumerate(self._drive.moves):
+                if stand.mode in move.sources:
+                    window = self._window(move)
+                    for target in self._begun(stand.mode, number, stand.cells):
+                        yield Edge(window.lo, window.hi, None, False, target)
+            return
+        targets = self._written(stand) if stand.left else (self._entered(stand),)
+        yield from (Edge(stand.soonest, stand.latest, None, False, target) for target in targets)
+
+    def _taken(self, stand: Stand, number: int, y_hi: int | None) -> Iterator[Edge]:
+        for target in self._begun(stand.mode, self._first_trip + number, stand.cells):
+            yield Edge(0, None, y_hi, False, target)
+
+    def _broken(self, stand: Stand) -> Iterator[Edge]:
+        for number, trip in enumerate(self._drive.trips):
+            if trip.at_once and self._hears(number, stand):
+                yield Edge(0, None, None, False, self._break_in(stand, number))
+
+    def _break_in(self, stand: Stand, number: int) -> Stand:
+        if self._drive.trips[number].target == RESET:
+            return self._resting(RESET, NOBODY, self._settled(RESET))
+        cells = self._writes.cancelled(stand.cells)
+        run, groups, wait = self._advanced(stand.mode, self._first_trip + number, 0, cells)
+        if groups and wait is None:
+            forced = self._writes.forced(cells, [write for group in groups for write in group])
+            return self._after(run._replace(cells=forced, left=()))
+        return self._waiting(run, groups, wait)
+
+    # Runs
+
+    def _begun(self, mode: str, number: int, cells: Cells) -> Iterator[Stand]:
+        """A run begins; with its first write, if no wait stands before it."""
+        if self._lines[number].target == RESET:
+            yield self._resting(RESET, NOBODY, self._settled(RESET))
+            return
+        run, groups, wait = self._advanced(mode, number, 0, cells)
+        if groups and wait is None:
+            yield from self._written(run._replace(left=groups))
+        else:
+            yield self._waiting(run, groups, wait)
+
+    def _waiting(self, run: Stand, groups: tuple[Group, ...], wait: Interval | None) -> Stand:
+        """A run before a wait; the mode that it enters if there is neither wait nor write."""
+        if wait is None:
+            return self._entered(run)
+        return run._replace(left=groups, soonest=wait.lo, latest=wait.hi)
+
+    def _written(self, run: Stand) -> Iterator[Stand]:
+        """What the run is after each group that may be written next."""
+        for group in self._next(run.left):
+            left = tuple(one for one in run.left if one != group)
+            yield self._after(run._replace(left=left, cells=self._writes.write(run.cells, group)))
+
+    def _after(self, run: Stand) -> Stand:
+        """What the run is just after a write."""
+        gap = self._gap()
+        if run.left:
+            return run._replace(soonest=gap.lo, latest=gap.hi)
+        ahead, groups, wait = self._advanced(run.mode, run.line, run.item + 1, run.cells)
+        if groups and wait is None:
+            wait = gap
+        return self._waiting(ahead, groups, wait)
+
+    def _entered(self, run: Stand) -> Stand:
+        return self._resting(self._lines[run.line].target, NOBODY, run.cells)
+
+    def _advanced(
+        self, mode: str, number: int, item: int, cells: Cells
+    ) -> tuple[Stand, tuple[Group, ...], Interval | None]:
+        """The run at the next item from `item` on that writes something, its groups, and the waits before it."""
+        line = self._lines[number]
+        wait: Interval | None = None
+        groups: tuple[Group, ...] = ()
+        count = len(line.steps) + 1
+        while item < count:
+            step = line.steps[item] if item < len(line.steps) else None
+            if isinstance(step, WaitStep):
+                wait = (wait or INSTANT) + self._kept(step.time)
+            else:
+                row = zip(self._drive.columns, self._drive.modes[line.target].cells, strict=True)
+                groups = self._groups(tuple(row) if step is None else step.writes, cells)
+                if groups:
+                    break
+            item += 1
+        return Stand(mode, number, item, (), 0, None, NOBODY, cells), groups, wait
+
+    def _groups(self, item: tuple[tuple[str, Cell], ...], cells: Cells) -> tuple[Group, ...]:
+        last = dict(zip(self._drive.columns, cells.written, strict=True))
+        wanted = dict(item)
+        changes = {
+            switch: wanted[switch]
+            for switch in self._drive.columns
+            if switch in wanted and cell_text(wanted[switch]) not in ("keep", last[switch])
+        }
+        groups = grouped(self._drive, changes)
+        return tuple(tuple((switch, cell_text(cell)) for switch, cell in group.items()) for group in groups)
+
+    def _next(self, left: tuple[Group, ...]) -> list[Group]:
+        as_cells = [{switch: self._cell(word) for switch, word in group} for group in left]
+        chosen = may_come_next(self._drive, as_cells)
+        return [group for group, cells in zip(left, as_cells, strict=True) if cells in chosen]
+
+    def _cell(self, word: str) -> Cell:
+        carrier = self._writes.carrier_of(word)
+        return Fixed(word) if carrier is None else Follow(carrier, word != carrier)
+
+    def known(self, stand: Stand) -> tuple[Known, ...]:
+        """What is known of the sources in a stand."""
+        if stand.line != REST:
+            return self._lines[stand.line].known
+        return self._drive.modes[stand.mode].known

@@ -1,0 +1,108 @@
+"""What the prover hands out of a safe search: the zones that it stored, as plain data in the drive's own words."""
+
+from seqcheck.drive import Command, cell_text
+from seqcheck.proving.keys import (
+    C_BOTH,
+    C_OFF,
+    C_ON,
+    CARRIER,
+    CODES,
+    DRIVEN,
+    FALL,
+    HOLD,
+    LOCK,
+    PIN,
+    RISE,
+    Key,
+    X,
+    Y,
+)
+from seqcheck.proving.location import Location
+from seqcheck.proving.projection import Projection
+from seqcheck.zones import INFINITE
+
+Data = dict[str, object]
+
+_CARRIERS = ("high dead", "high", "low dead", "low", "anywhere")
+_LOCKS = ("blocked", "waiting", "clear")
+_LITERALS = ("out", "entering", "in", "leaving", "blip")
+_COMMANDS = {CODES[one]: one.value for one in Command}
+_CLOCKS = {CARRIER: "carrier", HOLD: "held", PIN: "pin", LOCK: "guard", RISE: "in", FALL: "out"}
+
+assert tuple(CODES[one] for one in (Command.OFF, Command.ON, Command.UNKNOWN)) == (C_OFF, C_ON, C_BOTH)
+
+
+def cover(projection: Projection, however_late: bool) -> Data:
+    """The cover of a search that ran to its end and found no hazard, for `evidence.certificate`."""
+    view = projection.view
+    stored = sorted(
+        (place for place in projection.locations() if place.passed),
+        key=lambda place: repr(place.key),
+    )
+    return {
+        "however late": however_late,
+        "switches": list(view.switches),
+        "carriers": list(view.carriers),
+        "entries": [_entry(projection, location) for location in stored],
+    }
+
+
+def _entry(projection: Projection, location: Location) -> Data:
+    key = location.key
+    assert isinstance(key, Key)
+    size = location.size
+    return {
+        "state": _state(projection, key),
+        "clocks": [_clock(projection.clock_name(key, place)) for place in range(1, size)],
+        "zones": [_bounds(zone, size) for zone in sorted(zone for zone, _ in location.passed)],
+    }
+
+
+def _clock(name: int) -> str:
+    if name in (X, Y):
+        return "x" if name == X else "y"
+    return f"{_CLOCKS[name - name % 100]} {name % 100}"
+
+
+def _bounds(zone: list[int], size: int) -> list[list[int]]:
+    """The bounds that say something: clocks are never negative, and none is above itself."""
+    return [
+        [upper, lower, zone[upper * size + lower]]
+        for upper in range(size)
+        for lower in range(size)
+        if upper != lower and zone[upper * size + lower] < INFINITE and (upper or zone[lower] < 0)
+    ]
+
+
+def _state(projection: Projection, key: Key) -> Data:
+    writing, state = projection.firmware.writing, key.state
+    columns = projection.view.drive.columns
+
+    def words(cells: tuple[int, ...]) -> list[str]:
+        return [cell_text(writing.cell(cell)) for cell in cells]
+
+    written, effective, holds = state.put
+    return {
+        "mode": state.mode,
+        "run": state.run,
+        "item": state.item,
+        "left": [[[columns[switch], cell_text(writing.cell(cell))] for switch, cell in group] for group in state.left],
+        "next": [state.soonest, state.latest],
+        "hand": state.hand,
+        "written": words(written),
+        "effective": words(effective),
+        "held": [
+            [writing.carriers[carrier], [name for place, name in enumerate(columns) if bits >> place & 1]]
+            for carrier, bits in holds
+        ],
+        "carriers": [_CARRIERS[one] for one in key.carriers],
+        "pins": [_pin(one) for one in key.pins],
+        "guards": [_LOCKS[one] for one in key.locks],
+        "literals": [_LITERALS[one] for one in key.literals],
+    }
+
+
+def _pin(state: int) -> str:
+    if state == DRIVEN:
+        return "driven"
+    return _COMMANDS[state >> 1] + (" going" if state & 1 else "")

@@ -196,7 +196,7 @@ class Projection:
         edges, deadline = self._timing(key, hot)
         lower = max((edge.lo for edge in edges), default=0)
         highs = [edge.hi for edge in edges if edge.hi is not None]
-        if self._cutting is not None and deadline is None and self.firmware.deadline(key.state) is not None:
+        if self._cutting is not None and deadline is None and not highs and self._bounded(key.state):
             highs.append(self._cutting.length)  # where an overlap begins in this stay, the bounds come back
         if deadline is not None or highs or lower:
             upper = max([*highs, deadline or 0])
@@ -204,6 +204,11 @@ class Projection:
         hand = self.firmware.hand_deadline(key.state)
         if hand is not None:
             yield Clock(Y, 0, hand, hand)
+
+    def _bounded(self, state: State) -> bool:
+        """Whether the file gives the stay, or an edge out of it, an upper bound."""
+        some = any(edge.hi is not None for edge in self.firmware.edges(state))
+        return some or self.firmware.deadline(state) is not None
 
     def _period(self, number: int) -> int:
         period = self._references[self._wiring.place[number]].carrier.period.hi

@@ -173,7 +173,8 @@ class Asking(NamedTuple):
         if said != right and proof.greatest:
             return f"an overlap of {said} ps, but the judge says {right}"
         try:
-            replay(self.drive, proof.trace if proof.held is None and proof.greatest else from_its_beginning(self.drive, proof.trace))
+            found_as_longest = proof.held is None and proof.greatest
+            replay(self.drive, proof.trace if found_as_longest else from_its_beginning(self.drive, proof.trace))
         except NotPermitted as refusal:
             return f"does not replay: {refusal}"
         return ""

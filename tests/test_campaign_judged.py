@@ -3,8 +3,8 @@
     SEQCHECK_SEEDS=0-20000 pytest -m campaign tests/test_campaign_judged.py -n auto
 
 Each chunk prints its numbers and its table of constructs (`-rP` shows them); all of them are added up at the end.
-`SEQCHECK_ZONES` and `SEQCHECK_STATES` say where a comparison
-gives up; then it counts as undecided. A disagreement fails with a drive that was made small.
+`SEQCHECK_ZONES` and `SEQCHECK_STATES` say where a comparison gives up; then it counts as undecided. A disagreement
+fails with a drive that was made small.
 """
 
 import json

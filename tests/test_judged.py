@@ -117,11 +117,20 @@ class _Comparison(NamedTuple):
         right = self._judged(bounded=True)
         if right is None:
             return self._named(gave_up="judge")
+        if isinstance(proof, Refuted) and not proof.greatest:
+            return self._at_least(proof, right)
         said = self._said(proof)
         if said != right:
             return self._named(differs=f"the prover says {said}, the judge {right}")
         why = self._lateness(proof) if isinstance(proof, Proven) else self._refusal(proof)
         return self._named(said=said, differs=why)
+
+    def _at_least(self, proof: Refuted, right: Answer) -> Compared:
+        """A run that is no longer than the judge's longest, where the prover gave up looking for a longer one."""
+        said = self._said(proof)
+        if rank(said) > rank(right):
+            return self._named(differs=f"the prover says at least {said}, the judge {right}")
+        return self._named(gave_up="prover", differs=self._refusal(proof))
 
     def _said(self, proof: Proven | Refuted) -> Answer:
         if isinstance(proof, Proven):
@@ -171,6 +180,11 @@ def outcomes(text: str, limits: Limits) -> list[Compared]:
         raise
     except Exception as error:
         return [Compared("all", True, differs=f"ends with {type(error).__name__}: {error}")]
+
+
+def rank(answer: Answer) -> float:
+    """Answers in order: safe, then by overlap."""
+    return {SAFE: -1.0, ENDLESS: float("inf")}[answer] if isinstance(answer, str) else float(answer)
 
 
 def differences(text: str, limits: Limits) -> list[str]:

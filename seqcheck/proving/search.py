@@ -194,12 +194,14 @@ def _measured(node: Node) -> int:
     if not location.hot or not ticks(location, node.zone):
         return 0
     time = node.zone[location.measure * location.size]
-    return INFINITE if time < INFINITE and _pumps(node) else time
+    return INFINITE if time < INFINITE and endless_circle(node) else time
 
 
-def _pumps(node: Node) -> bool:
-    """Whether the overlap of a run has come through a circle that it can go through without end."""
+def endless_circle(node: Node) -> list[Hop]:
+    """The circle through which the overlap of a run has come and can go without end; empty if there is none."""
     location, size, measure = node.location, node.location.size, node.location.measure
+    if not measure:
+        return []
     others = [place for place in range(size * size) if measure not in (place // size, place % size)]
     time = node.zone[measure * size]
     circle = [node.hop]
@@ -208,10 +210,10 @@ def _pumps(node: Node) -> bool:
         if ancestor.location is location and ancestor.zone[measure * size] < time:
             again = all(node.zone[place] >= ancestor.zone[place] for place in others)
             if again and goes_on(location, node.zone, circle[::-1], successor):
-                return True
+                return circle[::-1]
         circle.append(ancestor.hop)
         ancestor = ancestor.parent
-    return False
+    return []
 
 
 def hops_out(node: Node) -> list[Hop]:

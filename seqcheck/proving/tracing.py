@@ -9,7 +9,7 @@ from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
 from seqcheck.proving.schedule import Path, constraints_of, scheduled
-from seqcheck.proving.search import Node, hops_out
+from seqcheck.proving.search import Node, endless_circle, hops_out
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
 
@@ -24,10 +24,16 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     first = len(nodes) - 1
     while first > 0 and nodes[first - 1].location.overlapping:
         first -= 1
+    circling = endless and bool(node.location.bounds)
     ending = [] if endless else hops_out(node)
     hops = [*(one.hop for one in nodes), *ending]
     path, times = _timed(projection, hops, first)
-    circling = endless and bool(node.location.bounds)
+    circle = endless_circle(node) if circling else []
+    for _ in range(2 * node.location.size * bool(circle)):
+        if times[len(hops) - 1] > times[first]:
+            break
+        hops += circle  # a round may take no time before one that does
+        path, times = _timed(projection, hops, first)
     end = times[len(hops) - 1] if ending or circling else times[path.end]
     timed = list(enumerate(zip(hops, times, strict=False)))[1:]
     events = tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))

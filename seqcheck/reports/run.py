@@ -49,7 +49,7 @@ def run_of(verdict: Unsafe, drive: Drive) -> Run:
         notes.setdefault(event.time, []).extend(own)
     instants = [_before(drive, trace, found)]
     for time in _times(trace, notes, found):
-        instants.append(_instant(time, notes.get(time, []), instants[-1], trace, found))
+        instants.append(_instant(time, notes.get(time, []), instants[-1], verdict, found))
     instants = folded(instants, trace.events)
     first, last = _window(instants, trace)
     unit = shown(max(1, _time(instants[last]) - _time(instants[first]))).split()[1]
@@ -101,7 +101,8 @@ def _states(found: tuple[Lane, ...], time: int | None) -> tuple[State, ...]:
     return tuple(State(lane.commands_at(time), lane.conduct_at(time)) for lane in found)
 
 
-def _instant(time: int, notes: list[Note], before: Instant, trace: Trace, found: tuple[Lane, ...]) -> Instant:
+def _instant(time: int, notes: list[Note], before: Instant, verdict: Unsafe, found: tuple[Lane, ...]) -> Instant:
+    trace = verdict.trace
     states = _states(found, time)
     overlap = trace.overlap_from <= time and (trace.overlap_to is None or time < trace.overlap_to)
     seen = list(notes or _commanded(found, time))
@@ -110,7 +111,8 @@ def _instant(time: int, notes: list[Note], before: Instant, trace: Trace, found:
         endless = ", without end" if trace.overlap_to is None else ""
         seen.append(Note(f"overlap begins{endless}", None, Tone.BAD))
     if before.overlap and not overlap:
-        seen.append(Note("overlap ends", None, Tone.BAD))
+        cut_off = verdict.overlap is None and trace.overlap_to == trace.end
+        seen.append(Note("overlap goes on, the run round again" if cut_off else "overlap ends", None, Tone.BAD))
     return Instant(before.number + 1, time, tuple(note for note in seen if note.text), states, overlap)
 
 

@@ -21,6 +21,29 @@ _SHARE = 10
 """A dead time above this part of the period would eat up the duty: no cure anyone would take."""
 
 
+_MOST_ZONES = 10_000
+"""Zones for all proposals to one hazard together: a cure must not cost more than what it cures."""
+
+
+@dataclass(slots=True)
+class _Budget:
+    """An observer that ends the search for a cure after so many zones over all proposals."""
+
+    observer: Observer
+    left: int
+    last: int = 0
+
+    def __call__(self, count: int) -> None:
+        self.last = count
+        self.observer(count)
+        if count > self.left:
+            raise LimitReached("zones for a cure")
+
+    def next_proposal(self) -> None:
+        self.left -= self.last
+        self.last = 0
+
+
 @dataclass(frozen=True, slots=True)
 class _Proposal:
     """A drive with one time made longer, and how to say so."""
@@ -38,11 +61,13 @@ def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cu
     """
     if proof.overlap is None:
         return None
+    spending = _Budget(observer, _MOST_ZONES)
     for proposal in _proposals(drive, proof.trace, proof.overlap):
         try:
-            holds = Prover(proposal.drive).holds(hazard, observer)
+            holds = Prover(proposal.drive).holds(hazard, spending)
         except LimitReached:
             return None
+        spending.next_proposal()
         if holds:
             return Cure(proposal.place, proof.overlap, proposal.words)
     return None

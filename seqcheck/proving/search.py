@@ -14,7 +14,7 @@ from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limi
 
 Observer = Callable[[int], None]
 
-MOST_MEASURED = 10_000
+MOST_MEASURED = 6_000
 """Zones after which a search for the longest overlap rests content with what it has found."""
 
 

@@ -9,8 +9,8 @@ from collections.abc import Sequence
 
 Zone = list[int]
 
-INFINITE = 1 << 60
-"""Stands for no bound; above every sum of times that a file can hold."""
+INFINITE = 1 << 5000
+"""Stands for no bound; above every sum of times that a file can hold, since the reader takes none of over 4096 bits."""
 
 FRESH = -1
 """In a renaming: a clock of which nothing is known, but that it is not negative."""

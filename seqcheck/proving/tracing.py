@@ -54,7 +54,8 @@ def _timed(projection: Projection, hops: list[Hop], origin: int) -> tuple[Path, 
     """The path with times; where long stays were cut before an overlap began in them, with what was cut left out."""
     for asked in (hops, [projection.eased(hop) for hop in hops]):
         path = constraints_of(asked)
-        times = scheduled(path, origin, max(1, longest_memory(projection.view)))
+        asked_for = sum(value for hop in asked for _, value in (*hop.least, *hop.after))
+        times = scheduled(path, origin, 1 + longest_memory(projection.view) + asked_for)
         if times is not None:
             return path, times
     raise Infeasible

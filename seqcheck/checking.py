@@ -41,7 +41,8 @@ def check(
 ) -> Outcome:
     """Everything about one drive.
 
-    `only` limits what is said to these checks; empty means all. `observer` is told the number of zones stored for a
+    `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
+    that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
     proof and may raise LimitReached. `kept` takes up the proof of every hazard, for evidence of them. Raises Problems
     for what cannot be proven, Fault if a trace does not replay.
     """
@@ -61,9 +62,8 @@ def check(
 def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
     if not only:
         return outcome
-    verdicts = tuple(one for one in outcome.verdicts if not isinstance(one, Unsafe) or one.check in only)
     findings = tuple(one for one in outcome.findings if one.check in only)
-    return replace(outcome, verdicts=verdicts, findings=findings)
+    return replace(outcome, findings=findings)
 
 
 def refuse(drive: Drive) -> None:

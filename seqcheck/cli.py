@@ -95,7 +95,7 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("paths", nargs="*", metavar="PATH", default=[])
     lint.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
     lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
-    lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="say only this; may be repeated")
+    lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="besides hazards say only this")
     lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")

@@ -54,6 +54,8 @@ def with_full_dwells(projection: Projection, hops: Sequence[Hop], run: Run) -> R
         if missing > 0:
             overlap_within = entered < run.hot_place < place
             dwell = Dwell(entered, run.hot_place if overlap_within else place)
+            if overlap_within and not _can_cycle(projection, dwell, run):
+                dwell = Dwell(entered, place)  # the overlap itself goes through whole cycles
             run = _lengthened(projection, dwell, run, missing)
         entered = place
     return run
@@ -79,6 +81,14 @@ def _lengthened(projection: Projection, dwell: Dwell, run: Run, missing: int) ->
     times = tuple(time + longer if place >= dwell.left else time for place, time in enumerate(run.times))
     hot = run.hot + longer if run.hot >= run.times[dwell.left] else run.hot
     return Run(times, events, run.hot_place, hot, run.end + longer)
+
+
+def _can_cycle(projection: Projection, dwell: Dwell, run: Run) -> bool:
+    """Whether every carrier that moves has an edge in the settled part of a stay."""
+    settled = run.times[dwell.entered] + longest_memory(projection.view)
+    carriers = [projection.view.drive.carriers[name] for name in projection.view.carriers]
+    moving = [carrier for carrier in carriers if Reference(carrier).moving]
+    return all(_first_edge(run, dwell, carrier, settled) is not None for carrier in moving)
 
 
 def _first_edge(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> int | None:

@@ -5,7 +5,7 @@ The system is feasible if it has no negative circle, and shortest-path potential
 late after it as the system allows (Bellman-Ford; Dechter, Meiri and Pearl 1991).
 """
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from seqcheck.proving.location import Hop
@@ -101,6 +101,3 @@ def scheduled(path: Path, origin: int, patience: int) -> list[int] | None:
     return [value - values[0] for value in values]
 
 
-def total(hops: Iterable[Hop]) -> int:
-    """How many moves a path begins."""
-    return sum(hop.cost for hop in hops)

@@ -20,7 +20,25 @@ class Act(Enum):
     OUTPUT = "output"  # the dead time of carrier `name` since its last edge is over
     UPDATES = "updates"  # the writes held for carrier `name` act (`updates within a period`)
     RESTS = "rests"  # the released pin of switch `name` reaches its resting level
+    CYCLES = "cycles"  # from this edge on carrier `name` runs the whole cycles in `cycles`, with no other event of it
     CLEARS = "clears"  # interlock: the partner of switch `name` has been off for the dead time
+
+
+@dataclass(frozen=True, slots=True)
+class Cycles:
+    """Equal cycles of a carrier, one after another: how many, and how long (ps) the present level and the other last.
+
+    The dead time after each edge is the shortest that the carrier may have.
+    """
+
+    count: int
+    first: int
+    second: int
+
+    @property
+    def length(self) -> int:
+        """How long they take together, in ps."""
+        return self.count * (self.first + self.second)
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,6 +49,8 @@ class Event:
     (if no wait precedes it) has the time of BEGINS, and ENTERS the time of its last write unless a wait follows it. A
     trip is ARRIVES, later BEGINS with `trip` set (at the same time where it has no `within`; a trip that is `at once`
     has no ARRIVES), WRITES…, ENTERS. A move or trip to `reset` is BEGINS, ENTERS with `writes` that free every pin.
+    CYCLES comes in the instant of an edge; the last of its cycles ends with an edge of the same kind, and until then
+    nothing but carriers moves.
     """
 
     time: int
@@ -40,6 +60,7 @@ class Event:
     trip: bool = False
     writes: tuple[tuple[str, Cell], ...] = ()
     place: Place | None = None
+    cycles: Cycles | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,10 +186,10 @@ Verdict = Safe | Unsafe | Undecided
 
 @dataclass(frozen=True, slots=True)
 class Cure:
-    """What would cure an overlap: the shortage of dead time in ps at `place`, described in `words`."""
+    """What would cure an overlap, in `words`: the shortage of dead time in ps at `place`, None where it has no end."""
 
     place: Place
-    shortage: int
+    shortage: int | None
     words: str
 
 

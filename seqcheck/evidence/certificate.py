@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from seqcheck.drive import Above, Cell, Drive, Fixed, Follow, cell_text
 from seqcheck.evidence.digest import digest
 from seqcheck.hazards import Hazard, Literal
-from seqcheck.verdict import Act, Event, Phase, Trace
+from seqcheck.verdict import Act, Cycles, Event, Phase, Trace
 
 FORMAT = "seqcheck evidence 1"
 MOST_TIME = 1 << 61
@@ -151,7 +151,9 @@ def _run(trace: Trace) -> dict[str, object]:
 
 
 def _event(event: Event) -> dict[str, object]:
+    cycles = event.cycles
     return {
+        **({} if cycles is None else {"cycles": [cycles.count, cycles.first, cycles.second]}),
         "time": event.time,
         "act": event.act.value,
         "name": event.name,
@@ -239,7 +241,13 @@ def _happened(event: Fields) -> Event:
         event.number("index"),
         event.flag("trip"),
         tuple((switch, _cell(word)) for switch, word in writes),
+        cycles=_cycles(event) if act is Act.CYCLES else None,
     )
+
+
+def _cycles(event: Fields) -> Cycles:
+    count, first, second = (event.whole(one, "cycles") for one in event.listed(event.of("cycles"), "cycles", 3))
+    return Cycles(count, first, second)
 
 
 def _cell(word: str) -> Cell:

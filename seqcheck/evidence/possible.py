@@ -40,15 +40,21 @@ def stretches(timeline: Timeline[T], holds: Callable[[T], bool]) -> list[Stretch
 
 def possible(pieces: Iterable[Stretch], delays: Delays) -> list[Stretch]:
     """The stretches of positive length at which that is possible which is wanted in `pieces`, given in order."""
+    longer = prolonged(pieces, delays.fall)
+    late = (Stretch(one.start if one.start is None else one.start + delays.rise, one.end) for one in longer)
+    return [one for one in late if one.start is None or one.end is None or one.start < one.end]
+
+
+def prolonged(pieces: Iterable[Stretch], fall: int) -> list[Stretch]:
+    """`pieces`, given in order, each longer by `fall`, those that now touch made one."""
     joined: list[Stretch] = []
     for piece in pieces:
-        longer = Stretch(piece.start, None if piece.end is None else piece.end + delays.fall)
+        longer = Stretch(piece.start, None if piece.end is None else piece.end + fall)
         if joined and _touch(joined[-1], longer):
             joined[-1] = Stretch(joined[-1].start, _later(joined[-1].end, longer.end))
         else:
             joined.append(longer)
-    late = (Stretch(one.start if one.start is None else one.start + delays.rise, one.end) for one in joined)
-    return [one for one in late if one.start is None or one.end is None or one.start < one.end]
+    return joined
 
 
 def _touch(earlier: Stretch, later: Stretch) -> bool:

@@ -3,6 +3,7 @@
 from dataclasses import replace
 
 from seqcheck.drive import Drive
+from seqcheck.evidence.cycles import bridged
 from seqcheck.evidence.endless import require_endless
 from seqcheck.evidence.facts import asked_for
 from seqcheck.evidence.possible import Stretch, delays, possible, stretches, together, wanted, within_trace
@@ -78,6 +79,8 @@ def _walked(drive: Drive, trace: Trace) -> Walk:
 
 def _possible(walk: Walk, literal: Literal, times: Delays, end: int) -> tuple[Span, ...]:
     pieces: list[Stretch] = stretches(walk.commands[literal.switch], lambda command: wanted(literal, command))
+    for gap in walk.gaps[literal.switch]:
+        pieces = bridged(pieces, gap, times.fall)
     return within_trace(possible(pieces, times), end)
 
 

@@ -2,9 +2,11 @@
 
 from collections.abc import Iterator
 
-from seqcheck.drive import Command, Drive, Known
+from seqcheck.drive import Command, Drive, Follow, Known
+from seqcheck.evidence.cycles import Gap, unrolled
 from seqcheck.evidence.interlocks import Interlocks
 from seqcheck.evidence.pins import Pins
+from seqcheck.evidence.possible import delays
 from seqcheck.evidence.references import references
 from seqcheck.evidence.refusal import Due, NotPermitted, described
 from seqcheck.evidence.sequence import Sequence
@@ -15,7 +17,8 @@ from seqcheck.verdict import Act, Event, Trace
 class Walk:
     """The concrete state of a drive at one moment of a trace, and what was seen until then.
 
-    `commands` and `known` are timelines: the passed command of each switch of the hazard, and what was known.
+    `commands` and `known` are timelines: the passed command of each switch of the hazard, and what was known; `gaps`
+    are the times that the commands leave out, since cycles in them repeat those before.
     Raises NotPermitted from the start on where the trace is none of the drive.
     """
 
@@ -30,6 +33,8 @@ class Walk:
         self.commands: dict[str, list[tuple[int | None, Command]]] = {
             switch: [(None, self.passed(switch))] for switch in sorted(self.judged)
         }
+        self._memory = sum(time for one in delays(drive, trace.hazard).values() for time in (one.rise, one.fall))
+        self.gaps: dict[str, list[Gap]] = {switch: [] for switch in self.judged}
         self.known: list[tuple[int | None, tuple[Known, ...]]] = [(None, self.sequence.known)]
 
     def passed(self, switch: str) -> Command:
@@ -41,6 +46,7 @@ class Walk:
         try:
             self._pass_to(event.time)
             self.sequence.require_no_break(event.act)
+            self._require_rest(event)
             self._apply(event)
         except NotPermitted as why:
             at = f"Event {number} ({described(event)}) at {shown(event.time)}"
@@ -93,6 +99,9 @@ class Walk:
     def _apply_to_carrier(self, event: Event) -> None:
         if event.name not in self.references:
             raise NotPermitted(f"the trace gives no phase of carrier {event.name}")
+        if event.act is Act.CYCLES:
+            self._cycle(event)
+            return
         acts = {
             Act.RISES: self.pins.rises,
             Act.FALLS: self.pins.falls,
@@ -100,6 +109,34 @@ class Walk:
             Act.UPDATES: self.pins.update,
         }
         acts[event.act](event.time, event.name)
+
+    def _cycle(self, event: Event) -> None:
+        """A carrier begins whole cycles: what they make of the commands is known at once, up to their end."""
+        if event.cycles is None:
+            raise NotPermitted("it does not say which cycles")
+        if self.interlocks.guards:
+            raise NotPermitted("with interlocks every edge counts")
+        if any(held.carrier == event.name for held in self.pins.held.values()):
+            raise NotPermitted(f"writes are held for carrier {event.name}")
+        reference = self.references[event.name]
+        reference.cycle(event.time, event.cycles)
+        for switch, timeline in self.commands.items():
+            cell = self.pins.effective[switch]
+            if isinstance(cell, Follow) and cell.carrier == event.name:
+                told = reference.outputs(cell.inverted, event.cycles)
+                found, gap = unrolled(event.time, event.cycles, told, self._memory)
+                self.gaps[switch] += [gap] if gap is not None else []
+                for time, command in (*found, (reference.edge, reference.output(cell.inverted))):
+                    if timeline[-1][1] is not command:
+                        timeline.append((time, command))
+
+    def _require_rest(self, event: Event) -> None:
+        """While a carrier runs whole cycles only carriers may move, and no held write may act."""
+        cycling = [name for name, one in self.references.items() if one.edge > event.time]
+        edges = (Act.RISES, Act.FALLS, Act.OUTPUT, Act.CYCLES)
+        acts = event.act is Act.RISES and any(held.carrier == event.name for held in self.pins.held.values())
+        if cycling and (event.act not in edges or acts):
+            raise NotPermitted(f"{cycling[0]} is in the middle of whole cycles")
 
     def _note(self) -> None:
         self.interlocks.see(self.now, self.pins.commands)

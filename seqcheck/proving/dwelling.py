@@ -6,6 +6,7 @@ its cycle after its first edge in the settled dwell; what comes after the dwell 
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from math import lcm
 from typing import NamedTuple
 
 from seqcheck.drive import Carrier
@@ -14,7 +15,8 @@ from seqcheck.proving.keys import Happening
 from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import Reference
-from seqcheck.verdict import Act, Event
+from seqcheck.quantities import Interval
+from seqcheck.verdict import Act, Cycles, Event
 
 _EDGES = (Act.RISES, Act.FALLS)
 
@@ -54,8 +56,6 @@ def with_full_dwells(projection: Projection, hops: Sequence[Hop], run: Run) -> R
         if missing > 0:
             overlap_within = entered < run.hot_place < place
             dwell = Dwell(entered, run.hot_place if overlap_within else place)
-            if overlap_within and not _can_cycle(projection, dwell, run):
-                dwell = Dwell(entered, place)  # the overlap itself goes through whole cycles
             run = _lengthened(projection, dwell, run, missing)
         entered = place
     return run
@@ -83,14 +83,6 @@ def _lengthened(projection: Projection, dwell: Dwell, run: Run, missing: int) ->
     return Run(times, events, run.hot_place, hot, run.end + longer)
 
 
-def _can_cycle(projection: Projection, dwell: Dwell, run: Run) -> bool:
-    """Whether every carrier that moves has an edge in the settled part of a stay."""
-    settled = run.times[dwell.entered] + longest_memory(projection.view)
-    carriers = [projection.view.drive.carriers[name] for name in projection.view.carriers]
-    moving = [carrier for carrier in carriers if Reference(carrier).moving]
-    return all(_first_edge(run, dwell, carrier, settled) is not None for carrier in moving)
-
-
 def _first_edge(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> int | None:
     return next(
         (
@@ -108,41 +100,46 @@ def _first_edge(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> int |
 def _comes_later(place: int, event: Event, dwell: Dwell, splices: dict[str, int | None]) -> bool:
     if place >= dwell.left:
         return True
-    splice = splices.get(event.name) if event.act in (*_EDGES, Act.OUTPUT) else None
+    splice = splices.get(event.name) if event.act in (*_EDGES, Act.OUTPUT, Act.CYCLES) else None
     return splice is not None and place > splice
 
 
 def _whole_cycles(carriers: Sequence[Carrier], least: int) -> int:
     """The least time from `least` on that is a whole number of cycles of every carrier."""
-    time = least
+    references = [Reference(carrier) for carrier in carriers]
+    common = lcm(*(one.shortest_cycle for one in references if one.shortest_cycle == one.longest_cycle))
+    time = -(-least // common) * common
     while True:
-        later = time
-        for carrier in carriers:
-            longest = Reference(carrier).longest_cycle
-            count = 1 if longest is None else -(-later // longest)
-            later = max(later, count * Reference(carrier).shortest_cycle)
-        if later == time:
+        soonest = max((_count(one, time) * one.shortest_cycle for one in references), default=time)
+        if soonest <= time:
             return time
-        time = later
+        time = -(-soonest // common) * common
+
+
+def _count(reference: Reference, time: int) -> int:
+    """The least number of cycles that can last so long."""
+    return 1 if reference.longest_cycle is None else -(-time // reference.longest_cycle)
 
 
 def _cycles(carrier: Carrier, edge: Event, longer: int) -> list[Event]:
-    """Whole cycles that take exactly `longer`, after an edge; the last event is an edge of the same kind."""
-    longest = Reference(carrier).longest_cycle
-    count = 1 if longest is None else -(-longer // longest)
-    high_first = edge.act is Act.RISES
-    levels = [carrier.high, carrier.low] if high_first else [carrier.low, carrier.high]
-    acts = (Act.FALLS, Act.RISES) if high_first else (Act.RISES, Act.FALLS)
-    slack = longer - count * Reference(carrier).shortest_cycle
+    """Whole cycles that take exactly `longer`, after an edge; the last of them ends with an edge of the same kind."""
+    length, rest = divmod(longer, _count(Reference(carrier), longer))
+    levels = (carrier.high, carrier.low) if edge.act is Act.RISES else (carrier.low, carrier.high)
+    counts = ((rest, length + 1), (_count(Reference(carrier), longer) - rest, length))
     time, events = edge.time, []
-    for _ in range(count):
-        for level, act in zip(levels, acts, strict=True):
-            assert level is not None
-            extra = slack if level.hi is None else min(slack, level.hi - level.lo)
-            slack -= extra
-            length = level.lo + extra
-            if carrier.dead.hi != 0 and length >= carrier.dead.lo:
-                events.append(Event(time + carrier.dead.lo, Act.OUTPUT, carrier.name))
-            time += length
-            events.append(Event(time, act, carrier.name))
+    for count, each in counts:
+        if count:
+            cycles = _equal(levels, count, each)
+            events.append(Event(time, Act.CYCLES, carrier.name, cycles=cycles))
+            time += cycles.length
     return events
+
+
+def _equal(levels: tuple[Interval | None, Interval | None], count: int, length: int) -> Cycles:
+    """Cycles of one length; what is above the shortest goes to the first level as far as it may."""
+    first, second = levels
+    assert first is not None
+    assert second is not None
+    extra = length - first.lo - second.lo
+    own = first.lo + (extra if first.hi is None else min(extra, first.hi - first.lo))
+    return Cycles(count, own, length - own)

@@ -218,12 +218,13 @@ class Projection:
     def _timing(self, key: Key, hot: bool) -> tuple[tuple[Edge, ...], int | None]:
         """The firmware's edges and deadline, long stays cut short where that changes nothing.
 
-        Where all literals are possible a stay keeps its bounds, since its length is the overlap.
+        Where all literals are possible a stay keeps its times: an overlap that comes from before the stay has settled
+        must last as long as the stay, and one that ends with it does not outlast it.
         """
         edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
-        if self._cutting is None or key.state.hand >= 0:
+        if self._cutting is None or key.state.hand >= 0 or hot:
             return edges, deadline
-        return self._cutting.cut(edges, deadline, hot)
+        return self._cutting.cut(edges, deadline)
 
     # For traces and certificates
 
@@ -235,14 +236,24 @@ class Projection:
         """The identity of a location's clock."""
         return self._clocks[key][place - 1].name
 
-    def eased(self, hop: Hop) -> Hop:
-        """A hop of the firmware that asks for no longer a stay than a cut one."""
-        happening = hop.event
+    def eased(self, hop: Hop, location: Location) -> Hop:
+        """A hop of the firmware out of a location that asks for no longer a stay than a cut one."""
+        happening, key = hop.event, location.key
         assert isinstance(happening, Happening)
-        if happening.edge is None or self._cutting is None:
+        assert isinstance(key, Key)
+        if happening.edge is None:
             return hop
-        length = self._cutting.length
-        return hop._replace(least=tuple(Bound(clock, min(value, length)) for clock, value in hop.least))
+        step = happening.edge.step
+        cut = min((one.lo for one in self._timing(key, False)[0] if one.step == step), default=happening.edge.lo)
+        least = tuple(
+            Bound(clock, min(value, cut) if self.clock_name(key, clock) == X else value) for clock, value in hop.least
+        )
+        return hop._replace(least=least)
+
+    @property
+    def settled(self) -> int:
+        """A stay that may be cut and has lasted for so long may have lasted for any time."""
+        return self._cutting.length + 1 if self._cutting is not None else 0
 
     def full_dwell(self, edge: Edge, location: Location) -> int:
         """How long a stay the file asks for before an edge that the search may have let come sooner."""

@@ -87,7 +87,7 @@ class Prover:
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         count, keep = _Count(observer), self.keep and interlocks
-        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+        if screened(looking, self._map(self._firmware(looking, punctual=False), count)):
             return Proven("screen", 0, True, self._cover_of_screened(looking, count) if keep else None)
         for punctual in (False, True):
             for manner in _manners(looking):
@@ -101,7 +101,7 @@ class Prover:
         """Whether the hazard happens in no run, with the drive's interlocks and firmware in time; without a trace."""
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = _Count(observer)
-        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+        if screened(looking, self._map(self._firmware(looking, punctual=False), count)):
             return True
         return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
 
@@ -178,9 +178,9 @@ class Prover:
             self._firmwares[key] = Firmware(self.drive, *key)
         return self._firmwares[key]
 
-    def _map(self, firmware: Firmware) -> Map:
+    def _map(self, firmware: Firmware, observer: Observer) -> Map:
         if firmware not in self._maps:
-            self._maps[firmware] = Map(firmware)
+            self._maps[firmware] = Map(firmware, observer)
         return self._maps[firmware]
 
 

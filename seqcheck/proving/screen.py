@@ -8,7 +8,7 @@ Interlocks are left out: they only shorten pulses.
 """
 
 from collections import deque
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from heapq import heappop, heappush
 from itertools import combinations
 from typing import NamedTuple
@@ -33,14 +33,18 @@ class Arc(NamedTuple):
 
 
 class Map:
-    """All states of a firmware with the least times between them."""
+    """All states of a firmware with the least times between them.
 
-    def __init__(self, firmware: Firmware) -> None:
+    The observer is called for every state, with no zone, so that it may stop the work by raising.
+    """
+
+    def __init__(self, firmware: Firmware, observer: Callable[[int], None]) -> None:
         self.firmware = firmware
         self.states: list[State] = [firmware.start()]
         self.arcs: list[tuple[Arc, ...]] = []
         numbers = {self.states[0]: 0}
         while len(self.arcs) < len(self.states):
+            observer(0)
             state = self.states[len(self.arcs)]
             arcs = []
             for least, target, restarts in _next(firmware, state):

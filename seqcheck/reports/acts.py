@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 from seqcheck.drive import RESET, After, Cell, Drive, Move, SetStep, Step, Trip, WaitStep, When, cell_text
 from seqcheck.quantities import shown
-from seqcheck.reports.pieces import Tone, listed
+from seqcheck.reports.pieces import Tone, counted, listed
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Trace
 
@@ -110,6 +110,8 @@ class Teller:
                 return f"{event.name} falls"
             case Act.OUTPUT:
                 return f"{event.name}: its dead time is over"
+            case Act.CYCLES:
+                return _cycling(event)
             case Act.UPDATES:
                 return f"{event.name} updates what is held"
             case Act.RESTS:
@@ -117,6 +119,14 @@ class Teller:
                 return f"pin {pin.name} of {event.name} is at rest" if pin else f"pin of {event.name} is at rest"
             case _:
                 return f"interlock lets {event.name} through"
+
+
+def _cycling(event: Event) -> str:
+    cycles = event.cycles
+    if cycles is None:
+        return f"{event.name} runs on"
+    each = f"{shown(cycles.first)} and {shown(cycles.second)}"
+    return f"{event.name} runs {counted(cycles.count, 'whole cycle')} of {each}, {shown(cycles.length)} in all"
 
 
 def begun_by(drive: Drive, event: Event) -> Move | Trip | None:

@@ -69,14 +69,16 @@ def _time(instant: Instant) -> int:
 
 
 def _times(trace: Trace, notes: dict[int, list[Note]], found: tuple[Lane, ...]) -> list[int]:
-    """All times of the run worth a row: events, changes of the lanes, the ends of the overlap."""
+    """All times of the run worth a row: events, changes of the lanes but for whole cycles, the ends of the overlap."""
     times = set(notes) | {trace.overlap_from}
     if trace.overlap_to is not None:
         times.add(trace.overlap_to)
+    always = frozenset(times)
     end = max([trace.end, *times])
+    cycling = [(one.time, one.time + one.cycles.length) for one in trace.events if one.cycles is not None]
     for lane in found:
         times.update(time for time in lane.times() if 0 <= time <= end and _differs(lane, time))
-    return sorted(times)
+    return sorted(time for time in times if time in always or not any(start < time <= stop for start, stop in cycling))
 
 
 def _differs(lane: Lane, time: int) -> bool:

@@ -72,11 +72,15 @@ def condition(hazard: Hazard) -> str:
 def cure(verdict: Unsafe, drive: Drive) -> str:
     """What would cure it, with the number, as a sentence without full stop."""
     if verdict.cure is not None:
-        missing = f"{shown(verdict.cure.shortage)} missing at {verdict.cure.place}"
-        return f"{verdict.cure.words} ({missing})"
+        shortage = verdict.cure.shortage
+        missing = "" if shortage is None else f"{shown(shortage)} missing "
+        return f"{verdict.cure.words} ({missing}at {verdict.cure.place})"
     if (row := shorted_row(verdict, drive)) is not None:
         return f"no wait cures this; row '{row.name}' must leave one of {switches(verdict.hazard)} off"
     if verdict.overlap is None:
-        return f"no wait cures this; nothing ends it once {switches(verdict.hazard)} are so together"
+        return (
+            f"no single longer wait was found to do it: once {switches(verdict.hazard)} are so together this run never "
+            "parts them; one must be taken back before the other is commanded"
+        )
     bound = "up to" if verdict.greatest else "at least"
     return f"{switches(verdict.hazard)} must be kept apart {bound} {shown(verdict.overlap)} longer"

@@ -127,10 +127,40 @@ def test_a_move_after_the_last_cycle_is_permitted() -> None:
     _walked(modulated(), with_cycles("40 rises k", 40, Cycles(2, 25, 45), 190, joined))
 
 
-def test_with_an_interlock_every_edge_counts() -> None:
-    built = modulated(interlocks=(interlock("X", "Y"),))
-    with pytest.raises(NotPermitted, match="every edge counts"):
-        _walked(built, with_cycles("40 rises k", 40, Cycles(2, 25, 45), 190))
+@pytest.mark.parametrize("number", range(40))
+def test_interlocks_clear_in_every_cycle(number: int) -> None:
+    """X clears D after each rise, when Y has been off for so long, and Y D after each fall."""
+    rng = Random(number)
+    dead, off = rng.randint(1, 19), rng.randint(1, 200)
+    built = modulated(INSTANT, rng.randint(0, 60), off, interlocks=(interlock("X", "Y", span(dead, dead + 3)),))
+    cycles = Cycles(rng.randint(1, 40), rng.randint(20, 30), rng.randint(40, 50))
+    end = 40 + cycles.length + 26
+    first = trace(JOINED + "40 rises k", end, phases=LOW)
+    whole = unfolded(replace(first, events=(*first.events, Event(40, Act.CYCLES, "k", cycles=cycles))), None)
+    clears = [Event(one.time + dead, Act.CLEARS, "X" if one.act is Act.RISES else "Y") for one in whole.events[3:]]
+    whole = replace(whole, events=tuple(sorted((*whole.events, *clears), key=lambda one: one.time)))
+    short = replace(
+        first,
+        events=(*first.events, Event(40, Act.CYCLES, "k", cycles=cycles), replace(clears[-1], time=end - 26 + dead)),
+    )
+    found, right = possible(built, short), possible(built, whole)
+    last = end - 26 - cycles.first - cycles.second
+    for switch in "XY":
+        assert within(found[switch], 0, end) <= within(right[switch], 0, end)
+        assert within(found[switch], last, end) == within(right[switch], last, end)
+
+
+def test_interlocked_switches_on_other_carriers_are_refused() -> None:
+    """Then no cycle is like the one before."""
+    carriers = tuple(carrier(name, span(20, 30), span(40, 50), period=70) for name in ("k", "m"))
+    built = drive(
+        "X Y", {"idle": "off off", "run": "k m"}, moves=(move("idle", "run"),), carriers=carriers,
+        writes=writes(How.TOGETHER), interlocks=(interlock("X", "Y"),),
+    )  # fmt: skip
+    lines = "0 begins 0; 0 writes X k, Y m; 0 enters run; 40 rises k"
+    one = with_cycles(lines, 40, Cycles(2, 25, 45), 60)
+    with pytest.raises(NotPermitted, match="follow other carriers"):
+        _walked(built, replace(one, phases=(*LOW, Phase("m", False, 0, True))))
 
 
 def test_no_held_write_acts_within_cycles() -> None:

@@ -25,8 +25,8 @@ Told = list[tuple[int, Command]]
 """The commands of a switch in one cycle, and when they come after its beginning."""
 
 
-def unrolled(start: int, cycles: Cycles, told: Told, memory: int) -> tuple[Told, Gap | None]:
-    """The commands of a switch, and when, in the first and the last of some cycles; the gap between, if there is one.
+def looked_at(start: int, cycles: Cycles, memory: int) -> tuple[list[int], Gap | None]:
+    """When the first and the last of some cycles begin; the gap between, if there is one.
 
     On either side of the gap the cycles last for longer than `memory` and one cycle.
     """
@@ -34,8 +34,18 @@ def unrolled(start: int, cycles: Cycles, told: Told, memory: int) -> tuple[Told,
     shown = memory // length + 2
     last = cycles.count - shown
     kept = [*range(min(shown, cycles.count)), *range(max(shown, last), cycles.count)]
-    found = [(start + number * length + after, command) for number in kept for after, command in told]
-    return found, Gap(start + shown * length, start + last * length, length) if last > shown else None
+    gap = Gap(start + shown * length, start + last * length, length) if last > shown else None
+    return [start + number * length for number in kept], gap
+
+
+def merged(told: dict[str, Told]) -> list[tuple[int, dict[str, Command]]]:
+    """What several switches are told in one cycle, in time order; an instant can hold two of a switch."""
+    found: list[tuple[int, dict[str, Command]]] = []
+    for after in sorted({after for one in told.values() for after, _ in one}):
+        at = {switch: [command for when, command in one if when == after] for switch, one in told.items()}
+        for turn in range(max(map(len, at.values()))):
+            found.append((after, {switch: own[turn] for switch, own in at.items() if turn < len(own)}))
+    return found
 
 
 def bridged(pieces: list[Stretch], gap: Gap, fall: int) -> list[Stretch]:

@@ -3,7 +3,7 @@
 from collections.abc import Iterator
 
 from seqcheck.drive import Command, Drive, Follow, Known
-from seqcheck.evidence.cycles import Gap, unrolled
+from seqcheck.evidence.cycles import Gap, looked_at, merged
 from seqcheck.evidence.interlocks import Interlocks
 from seqcheck.evidence.pins import Pins
 from seqcheck.evidence.possible import delays
@@ -34,6 +34,7 @@ class Walk:
             switch: [(None, self.passed(switch))] for switch in sorted(self.judged)
         }
         self._memory = sum(time for one in delays(drive, trace.hazard).values() for time in (one.rise, one.fall))
+        self._memory += sum(guard.dead.lo for guard in self.interlocks.guards)
         self.gaps: dict[str, list[Gap]] = {switch: [] for switch in self.judged}
         self.known: list[tuple[int | None, tuple[Known, ...]]] = [(None, self.sequence.known)]
 
@@ -51,7 +52,7 @@ class Walk:
         except NotPermitted as why:
             at = f"Event {number} ({described(event)}) at {shown(event.time)}"
             raise NotPermitted(f"{at} is not permitted: {why}.") from None
-        self._note()
+        self._note(self.now)
 
     def finish(self, end: int) -> None:
         """The trace ends; NotPermitted where something should have happened before."""
@@ -111,24 +112,41 @@ class Walk:
         acts[event.act](event.time, event.name)
 
     def _cycle(self, event: Event) -> None:
-        """A carrier begins whole cycles: what they make of the commands is known at once, up to their end."""
-        if event.cycles is None:
+        """A carrier begins whole cycles: what they make of the commands is worked out at once, up to their end."""
+        cycles, reference = event.cycles, self.references[event.name]
+        if cycles is None:
             raise NotPermitted("it does not say which cycles")
-        if self.interlocks.guards:
-            raise NotPermitted("with interlocks every edge counts")
         if any(held.carrier == event.name for held in self.pins.held.values()):
             raise NotPermitted(f"writes are held for carrier {event.name}")
-        reference = self.references[event.name]
-        reference.cycle(event.time, event.cycles)
-        for switch, timeline in self.commands.items():
-            cell = self.pins.effective[switch]
-            if isinstance(cell, Follow) and cell.carrier == event.name:
-                told = reference.outputs(cell.inverted, event.cycles)
-                found, gap = unrolled(event.time, event.cycles, told, self._memory)
-                self.gaps[switch] += [gap] if gap is not None else []
-                for time, command in (*found, (reference.edge, reference.output(cell.inverted))):
-                    if timeline[-1][1] is not command:
-                        timeline.append((time, command))
+        cells = {switch: self.pins.effective[switch] for switch in sorted(self.concerned)}
+        followed = {switch: cell for switch, cell in cells.items() if isinstance(cell, Follow)}
+        if self.interlocks.guards and any(cell.carrier != event.name for cell in followed.values()):
+            raise NotPermitted("interlocked switches follow other carriers, so that no cycle is like the one before")
+        reference.cycle(event.time, cycles)
+        mine = {switch: cell.inverted for switch, cell in followed.items() if cell.carrier == event.name}
+        told = merged({switch: reference.outputs(inverted, cycles) for switch, inverted in mine.items()})
+        kept, gap = looked_at(event.time, cycles, self._memory)
+        for start in kept:
+            if gap is not None and start == gap.end:
+                self._over(gap.start)
+                self.interlocks.repeat(gap.end - gap.start)
+            for after, commands in told:
+                self._told(start + after, commands)
+        self._told(reference.edge, {switch: reference.output(inverted) for switch, inverted in mine.items()})
+        if gap is not None:
+            for gaps in self.gaps.values():
+                gaps.append(gap)
+
+    def _told(self, time: int, commands: dict[str, Command]) -> None:
+        """Within whole cycles some switches are told this; interlocks clear at the soonest."""
+        self._over(time)
+        self.pins.commands.update(commands)
+        self._note(time)
+
+    def _over(self, time: int) -> None:
+        """Dead times of interlocks that are over before `time` within whole cycles."""
+        while (due := self.interlocks.clear_before(time)) is not None:
+            self._note(due)
 
     def _require_rest(self, event: Event) -> None:
         """While a carrier runs whole cycles only carriers may move, and no held write may act."""
@@ -138,13 +156,13 @@ class Walk:
         if cycling and (event.act not in edges or acts):
             raise NotPermitted(f"{cycling[0]} is in the middle of whole cycles")
 
-    def _note(self) -> None:
-        self.interlocks.see(self.now, self.pins.commands)
+    def _note(self, time: int) -> None:
+        self.interlocks.see(time, self.pins.commands)
         for switch, timeline in self.commands.items():
             if timeline[-1][1] is not self.passed(switch):
-                timeline.append((self.now, self.passed(switch)))
+                timeline.append((time, self.passed(switch)))
         if self.known[-1][1] != self.sequence.known:
-            self.known.append((self.now, self.sequence.known))
+            self.known.append((time, self.sequence.known))
 
 
 def _partners(drive: Drive, judged: frozenset[str]) -> frozenset[str]:

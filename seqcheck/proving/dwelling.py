@@ -100,7 +100,10 @@ def _first_edge(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> int |
 def _comes_later(place: int, event: Event, dwell: Dwell, splices: dict[str, int | None]) -> bool:
     if place >= dwell.left:
         return True
-    splice = splices.get(event.name) if event.act in (*_EDGES, Act.OUTPUT, Act.CYCLES) else None
+    if event.act is Act.CLEARS:  # of a switch whose partner follows the one carrier, or long before
+        splice = next((one for one in splices.values() if one is not None), None)
+    else:
+        splice = splices.get(event.name) if event.act in (*_EDGES, Act.OUTPUT, Act.CYCLES) else None
     return splice is not None and place > splice
 
 

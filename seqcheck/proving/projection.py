@@ -62,7 +62,9 @@ class Projection:
         self._references = tuple(Reference(drive.carriers[name]) for name in view.carriers)
         self._spans = tuple(drive.carriers[name].update is Update.WITHIN_PERIOD for name in view.carriers)
         self._rises = tuple(drive.carriers[name].update is Update.AT_RISE for name in view.carriers)
-        self._cutting = Cutting(view, self._references) if manner.cut and not view.locks else None
+        # where interlocked switches follow different carriers, no cycle is like the one before
+        repeats = not view.locks or len(view.carriers) <= 1
+        self._cutting = Cutting(view, self._references) if manner.cut and repeats else None
         self._locations: dict[Key, Location] = {}
         self._clocks: dict[Key, tuple[Clock, ...]] = {}
 

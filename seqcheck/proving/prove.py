@@ -4,9 +4,9 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from seqcheck.drive import Drive, Fixed, Follow, Update
+from seqcheck.drive import Cell, Drive, Fixed, Follow, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.certify import Data, cover
@@ -193,10 +193,12 @@ def _may_hold(looking: View) -> bool:
     """Whether some row could command all literals at once."""
     drive = looking.drive
     columns = [drive.columns.index(one.switch) for one in looking.hazard.literals]
-    sides = (Fixed.OFF, Fixed.ON)
+    sides: dict[Cell, bool] = {Fixed.OFF: False, Fixed.ON: True}
     for mode in drive.modes.values():
         cells = [(mode.cells[column], one.on) for column, one in zip(columns, looking.hazard.literals, strict=True)]
-        if all(isinstance(cell, Follow) or cell not in sides or (cell is Fixed.ON) == on for cell, on in cells):
+        on = {cell for cell, wanted_on in cells if wanted_on}
+        opposites = any(isinstance(cell, Follow) and replace(cell, inverted=not cell.inverted) in on for cell in on)
+        if not opposites and all(sides.get(cell, wanted) == wanted for cell, wanted in cells):
             return True
     return False
 

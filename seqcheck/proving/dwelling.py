@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 from math import lcm
 from typing import NamedTuple
 
-from seqcheck.drive import Carrier
+from seqcheck.drive import Carrier, Update
 from seqcheck.proving.cutting import longest_memory
 from seqcheck.proving.keys import Happening
 from seqcheck.proving.location import Hop
@@ -61,16 +61,29 @@ def with_full_dwells(projection: Projection, hops: Sequence[Hop], run: Run) -> R
     return run
 
 
+@dataclass(frozen=True, slots=True)
+class Splice:
+    """Where a stay is made longer for a carrier: the number of the hop of an edge, and whether whole cycles follow
+    it; else the level before it, which may last for ever, lasts longer."""
+
+    place: int
+    cycling: bool
+
+    def puts_off(self, place: int) -> bool:
+        """Whether an event of the carrier comes later."""
+        return place > self.place if self.cycling else place >= self.place
+
+
 def _lengthened(projection: Projection, dwell: Dwell, run: Run, missing: int) -> Run:
     settled = run.times[dwell.entered] + longest_memory(projection.view)
     carriers = [projection.view.drive.carriers[name] for name in projection.view.carriers]
-    splices = {carrier.name: _first_edge(run, dwell, carrier, settled) for carrier in carriers}
-    cycling = [carrier for carrier in carriers if splices[carrier.name] is not None]
+    found = {carrier.name: _splice(run, dwell, carrier, settled) for carrier in carriers}
+    splices = {name: splice for name, splice in found.items() if splice is not None}
+    cycling = [carrier for carrier in carriers if carrier.name in splices and splices[carrier.name].cycling]
     longer = _whole_cycles(cycling, missing)
     inserted: list[tuple[int, Event]] = []
     for carrier in cycling:
-        place = splices[carrier.name]
-        assert place is not None
+        place = splices[carrier.name].place
         edge = next(event for at, event in run.events if at == place)
         inserted += [(place, event) for event in _cycles(carrier, edge, longer)]
     moved = [
@@ -83,28 +96,31 @@ def _lengthened(projection: Projection, dwell: Dwell, run: Run, missing: int) ->
     return Run(times, events, run.hot_place, hot, run.end + longer)
 
 
-def _first_edge(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> int | None:
-    return next(
-        (
-            place
-            for place, event in run.events
-            if dwell.entered < place < dwell.left
-            and event.act in _EDGES
-            and event.name == carrier.name
-            and event.time >= settled
-        ),
-        None,
-    )
+def _splice(run: Run, dwell: Dwell, carrier: Carrier, settled: int) -> Splice | None:
+    """After the first edge in the settled part of a stay, or before it; None where the carrier need not move in it.
+
+    Writes held for a rise may wait for the first one even there.
+    """
+    for place, event in run.events:
+        if not dwell.entered < place < dwell.left or event.name != carrier.name or event.time < settled:
+            continue
+        if event.act in _EDGES:
+            ended = carrier.low if event.act is Act.RISES else carrier.high
+            if ended is not None and ended.hi is None:
+                return Splice(place, cycling=False)
+            if event.act is Act.RISES or carrier.update is not Update.AT_RISE:
+                return Splice(place, cycling=True)
+    return None
 
 
-def _comes_later(place: int, event: Event, dwell: Dwell, splices: dict[str, int | None]) -> bool:
+def _comes_later(place: int, event: Event, dwell: Dwell, splices: dict[str, Splice]) -> bool:
     if place >= dwell.left:
         return True
     if event.act is Act.CLEARS:  # of a switch whose partner follows the one carrier, or long before
-        splice = next((one for one in splices.values() if one is not None), None)
+        splice = next(iter(splices.values()), None)
     else:
         splice = splices.get(event.name) if event.act in (*_EDGES, Act.OUTPUT, Act.CYCLES) else None
-    return splice is not None and place > splice
+    return splice is not None and splice.puts_off(place)
 
 
 def _whole_cycles(carriers: Sequence[Carrier], least: int) -> int:

@@ -19,7 +19,7 @@ from seqcheck.drive import Drive
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
-from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
+from seqcheck.verdict import WARNINGS, Check, Finding, Outcome, Undecided, Unsafe
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
@@ -309,9 +309,11 @@ def _observer(limits: Limits) -> Callable[[int], None]:
 
 
 def _exit_of(outcome: Outcome) -> int:
-    if any(isinstance(one, Unsafe) for one in outcome.verdicts):
-        return FOUND
-    if any(finding.check not in WARNINGS for finding in outcome.findings):
+    from seqcheck.reports.waived import reason
+
+    found: list[Unsafe | Finding] = [one for one in outcome.verdicts if isinstance(one, Unsafe)]
+    found += (one for one in outcome.findings if one.check not in WARNINGS)
+    if any(reason(outcome.drive, one) is None for one in found):
         return FOUND
     return UNDECIDED if any(isinstance(one, Undecided) for one in outcome.verdicts) else PROVEN
 

@@ -37,8 +37,8 @@ Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove 
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
-input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the program itself is at fault. Where several
-files differ the worst counts, in the order 4, 2, 1, 3, 0."""
+input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
+program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 3, 0."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,10 +8,12 @@ from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, 
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem, Problems
+from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
 from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
+from seqcheck.reports.waived import lets_pass
 from seqcheck.sizing import cure
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Trace, Undecided, Unsafe, Verdict
@@ -20,7 +22,18 @@ Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
 """A hazard with its cover, the run that shows it, or None where neither is at hand."""
 
-PROVEN_CHECKS = (Check.SHORT, Check.OVERLAP, Check.NO_PATH, Check.HELD_BY_INTERLOCK, Check.PUNCTUAL)
+PROVEN_CHECKS = (
+    Check.SHORT,
+    Check.OVERLAP,
+    Check.UNREACHABLE,
+    Check.NO_WAY_BACK,
+    Check.AMBIGUOUS,
+    Check.STALLED,
+    Check.IDLE_WAIVER,
+    Check.NO_PATH,
+    Check.HELD_BY_INTERLOCK,
+    Check.PUNCTUAL,
+)
 """What this version looks for; a file or a call that asks for another check is refused."""
 
 _RULES: dict[type[Rule], str] = {
@@ -49,13 +62,14 @@ def check(
     refuse(drive)
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
-    findings: list[Finding] = list(_without_path(drive))
+    findings: list[Finding] = [*graph_findings(drive), *_without_path(drive)]
     for hazard in shorting_sets(drive.stage):
         verdict = _judged(prover, hazard, observer, kept)
         verdicts.append(verdict)
         if isinstance(verdict, Safe):
             findings += _held_by_interlock(prover, hazard, observer)
     findings += _punctual(drive, verdicts)
+    findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
 
 
@@ -82,9 +96,6 @@ def refuse(drive: Drive) -> None:
         Problem(mode.means.place, "not-proven-yet", "'means' cannot be proven yet", way_out)
         for mode in drive.modes.values()
         if mode.means
-    ]
-    found += [
-        Problem(waiver.place, "not-proven-yet", "'waive' is not served yet", way_out) for waiver in drive.waivers
     ]
     if found:
         raise Problems(found)
@@ -189,3 +200,23 @@ def _punctual(drive: Drive, verdicts: list[Verdict]) -> Iterator[Finding]:
         place = drive.clock.place if drive.clock else drive.place
         names = tuple(literal.switch for literal in hazard.literals)
         yield Finding(Check.PUNCTUAL, place, text, "say how late it can be: 'clock ..., late by at most ...'", names)
+
+
+_OF_A_VERDICT = frozenset(
+    {Check.SHORT.value, Check.OVERLAP.value, Check.HELD_BY_INTERLOCK.value, Check.PUNCTUAL.value}
+)
+"""Checks whose findings are not all known while a hazard is undecided."""
+
+
+def _idle_waivers(drive: Drive, verdicts: list[Verdict], findings: list[Finding]) -> list[Finding]:
+    """A waiver that lets nothing pass is out of date or says the wrong name. No waiver lets such a finding pass."""
+    found: list[Unsafe | Finding] = [*findings, *(one for one in verdicts if isinstance(one, Unsafe))]
+    open_yet = _OF_A_VERDICT if any(isinstance(one, Undecided) for one in verdicts) else frozenset()
+    idle = [
+        one
+        for one in drive.waivers
+        if one.check not in open_yet and not any(lets_pass(one, drive, other) for other in found)
+    ]
+    text = "this waiver matches nothing: there is no '{0.check}' that names '{0.name}'"
+    way_out = "take it out, or name what the finding names"
+    return [Finding(Check.IDLE_WAIVER, one.place, text.format(one), way_out) for one in idle]

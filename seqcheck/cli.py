@@ -19,7 +19,7 @@ from seqcheck.drive import Drive
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
-from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
+from seqcheck.verdict import WARNINGS, Check, Finding, Outcome, Undecided, Unsafe
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
@@ -36,9 +36,9 @@ _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
 _EXITS = """\
-exit codes: 0 everything asked is proven; 1 a hazard is possible; 2 the input or the call is wrong, nothing was judged;
-3 undecided within the limits given, never to be taken for proven; 4 the program itself is at fault. Where several
-files differ the worst counts, in the order 4, 2, 1, 3, 0."""
+exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
+input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
+program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 3, 0."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -309,9 +309,11 @@ def _observer(limits: Limits) -> Callable[[int], None]:
 
 
 def _exit_of(outcome: Outcome) -> int:
-    if any(isinstance(one, Unsafe) for one in outcome.verdicts):
-        return FOUND
-    if any(finding.check not in WARNINGS for finding in outcome.findings):
+    from seqcheck.reports.waived import reason
+
+    found: list[Unsafe | Finding] = [one for one in outcome.verdicts if isinstance(one, Unsafe)]
+    found += (one for one in outcome.findings if one.check not in WARNINGS)
+    if any(reason(outcome.drive, one) is None for one in found):
         return FOUND
     return UNDECIDED if any(isinstance(one, Undecided) for one in outcome.verdicts) else PROVEN
 

@@ -2,6 +2,7 @@
 
 import ast
 import json
+import re
 from collections.abc import Callable, Iterator
 from copy import deepcopy
 from pathlib import Path
@@ -31,6 +32,7 @@ from seqcheck.verdict import Trace
 SAMPLES = Path(__file__).parent.parent / "samples"
 GOOD = sorted(SAMPLES.glob("*.dseq"))
 TWINS = [path for path in sorted((SAMPLES / "faulty").glob("*.dseq")) if not path.stem.startswith("charger")]
+SHORTING = [path for path in TWINS if re.match(r"# finding: .*(short|overlap)", path.read_text("utf-8"))]
 HOUSE = Path(seqcheck.__file__).parent
 SEEDS = range(60)
 CAREFUL = leg(
@@ -72,11 +74,24 @@ def test_the_evidence_of_a_sample_is_accepted(sample: Path, tmp_path: Path, caps
     assert said.err == ""
 
 
-@pytest.mark.parametrize("twin", TWINS[::3], ids=lambda path: path.stem)
+@pytest.mark.parametrize("twin", SHORTING[::3], ids=lambda path: path.stem)
 def test_the_run_of_a_twin_is_replayed(twin: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["lint", str(twin), "--evidence", str(tmp_path), "--as", "lines"]) == 1
     assert main(["audit", str(twin), str(tmp_path / f"{twin.name}.json")]) == 1
     assert "unsafe, with their runs" in capsys.readouterr().out
+
+
+def test_evidence_knows_no_waivers_and_nothing_but_shorts(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """An unsafe hazard that is waived is still unsafe there; a mode that cannot be reached is no matter of evidence."""
+    head = "clock 1 GHz, late by at most 0 ps\nwrites together"
+    moves = "  start a\n  a -> b when e\n  b -> a when f\n  c -> a when f"
+    text = leg("a on off\nb off on\nc off off", moves, head=head)
+    waivers = 'rules\n  waive overlap for U because "x"\n  waive unreachable for c because "x"\n'
+    for name, rows, code, proven in (("w", text + waivers, 0, 1), ("u", text.replace("b off on", "b off off"), 1, 0)):
+        file = tmp_path / f"{name}.dseq"
+        file.write_text(rows, encoding="utf-8")
+        assert main(["lint", str(file), "--evidence", str(tmp_path)]) == code
+        assert main(["audit", str(file), f"{file}.json"]) == proven
 
 
 @pytest.mark.parametrize("seed", SEEDS)

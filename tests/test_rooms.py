@@ -20,6 +20,7 @@ LOW_TO_HIGH = (
     "verdict",
     "writing",
     "firmware",
+    "modegraph",
     "zones",
     "proving",
     "evidence",
@@ -31,9 +32,9 @@ LOW_TO_HIGH = (
 )
 
 APART = {
-    "evidence": {"writing", "firmware", "zones", "proving", "circuit"},
+    "evidence": {"writing", "firmware", "modegraph", "zones", "proving", "circuit"},
     "proving": {"language", "evidence"},
-    "reports": {"language", "circuit", "writing", "firmware", "zones", "proving", "evidence", "sizing"},
+    "reports": {"language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence", "sizing"},
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the
 prover, the prover knows no file, and a report reads verdicts and never reasons."""

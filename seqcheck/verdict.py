@@ -80,7 +80,8 @@ class Trace:
     Only carriers with a phase are followed; writes of other carriers' switches act at once. From `overlap_from` to
     `overlap_to` all literals of `hazard` are possible; `overlap_to` is None where that lasts without end if the run
     stays where it is. A run that must go round in a circle for that stops with `end`, after one round.
-    `interlocked` tells whether the run is one of the drive with its interlocks.
+    `interlocked` tells whether the run is one of the drive with its interlocks. `prolonged`: a literal, and by how much
+    (ps) each end of its possibility counts as later, as where a margin is not kept.
     """
 
     hazard: Hazard
@@ -90,6 +91,7 @@ class Trace:
     overlap_from: int
     overlap_to: int | None
     interlocked: bool = True
+    prolonged: tuple[Literal, int] | None = None
 
 
 @dataclass(frozen=True, slots=True)

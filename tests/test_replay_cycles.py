@@ -61,7 +61,7 @@ def possible(built: Drive, one: Trace) -> dict[str, tuple[Span, ...]]:
     """Where each switch can conduct."""
     walk = _walked(built, one)
     times = delays(built, one.hazard)
-    return {literal.switch: _possible(walk, literal, times[literal], one.end) for literal in times}
+    return {literal.switch: _possible(walk, literal, times[literal], one) for literal in times}
 
 
 def within(spans: tuple[Span, ...], start: int, end: int) -> set[int]:

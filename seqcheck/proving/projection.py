@@ -13,12 +13,17 @@ from seqcheck.firmware import Edge, Firmware, State
 from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts
 from seqcheck.proving.cutting import Cutting
 from seqcheck.proving.keys import (
+    CAPPED,
     CARRIER,
     CLEAR,
     CODES,
     FALL,
+    GAP,
     HOLD,
+    LATELY,
     LOCK,
+    LONG_AGO,
+    NOT_ENDED,
     OVER,
     PAUSE,
     PIN,
@@ -43,11 +48,17 @@ from seqcheck.zones import FRESH, INFINITE
 
 @dataclass(frozen=True, slots=True)
 class Manner:
-    """How to look: `forget` the phase of carriers nobody follows; `cut` long dwells; `measure` the overlap."""
+    """How to look: `forget` the phase of carriers nobody follows; `cut` long dwells; `measure` the overlap.
+
+    Or, with `gap`, measure how long after the possibility of the literal at that place all others are possible and
+    the hazard is asked for; gaps of `cap` ps and more are one.
+    """
 
     forget: bool
     cut: bool
     measure: bool
+    gap: int | None = None
+    cap: int = 0
 
 
 class Projection:
@@ -111,6 +122,10 @@ class Projection:
     ) -> Hop:
         if self.manner.measure and old is not None and event is not OVER:
             key = key._replace(paused=self._pauses(old, key))
+        if self.manner.gap is not None and old is not None and event is not CAPPED:
+            key = key._replace(ended=self._ended(old, key, self.manner.gap))
+            if key.ended == LATELY and POSSIBLE[old.literals[self.manner.gap]]:
+                resets |= {GAP}
         target = self._location(key)
         names = {} if old is None else {clock.name: place for place, clock in enumerate(self._clocks[old], 1)}
         renaming = _holds(old, key, written)
@@ -158,8 +173,17 @@ class Projection:
         possible = all(POSSIBLE[literal] for literal in key.literals)
         return possible and not self._hot(key) and (old.paused or self._hot(old))
 
+    def _ended(self, old: Key, key: Key, watched: int) -> int:
+        if POSSIBLE[key.literals[watched]]:
+            return NOT_ENDED
+        return LATELY if POSSIBLE[old.literals[watched]] else old.ended
+
     def _hot(self, key: Key) -> bool:
-        if not all(POSSIBLE[literal] for literal in key.literals):
+        """Whether all literals are possible and asked for; for a gap, all others after the one that is watched."""
+        possible = [POSSIBLE[literal] for literal in key.literals]
+        if self.manner.gap is not None:
+            possible[self.manner.gap] = key.ended != NOT_ENDED
+        if not all(possible):
             return False
         facts = [fact for fact in self.firmware.facts(key.state) if isinstance(fact, Above)]
         return not contradicted(self.view.hazard, facts)
@@ -193,6 +217,8 @@ class Projection:
             yield Clock(Z, INFINITE, INFINITE, INFINITE)
         if key.paused:
             yield Clock(PAUSE, 0, 0, 0)
+        if key.ended == LATELY:
+            yield Clock(GAP, self.manner.cap, self.manner.cap, self.manner.cap)
 
     def _firmware_clocks(self, key: Key, hot: bool) -> Iterator[Clock]:
         edges, deadline = self._timing(key, hot)
@@ -221,10 +247,11 @@ class Projection:
         """The firmware's edges and deadline, long stays cut short where that changes nothing.
 
         Where all literals are possible a stay keeps its times: an overlap that comes from before the stay has settled
-        must last as long as the stay, and one that ends with it does not outlast it.
+        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured.
         """
         edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
-        if self._cutting is None or key.state.hand >= 0 or hot:
+        measured = hot or key.ended == LATELY
+        if self._cutting is None or key.state.hand >= 0 or measured:
             return edges, deadline
         return self._cutting.cut(edges, deadline)
 
@@ -270,6 +297,7 @@ class Projection:
         assert isinstance(key, Key)
         return (
             *self._pause_over(key),
+            *self._gap_capped(key),
             *self._conducting(key),
             *self._firmware_hops(key),
             *self._carrier_hops(key),
@@ -281,6 +309,11 @@ class Projection:
     def _pause_over(self, key: Key) -> Iterator[Hop]:
         if key.paused:
             yield self._hop(key, key._replace(paused=False), frozenset(), (), (), 0, OVER)
+
+    def _gap_capped(self, key: Key) -> Iterator[Hop]:
+        if key.ended == LATELY:
+            capped = key._replace(ended=LONG_AGO)
+            yield self._hop(key, capped, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED)
 
     def _conducting(self, key: Key) -> Iterator[Hop]:
         for place, state in enumerate(key.literals):

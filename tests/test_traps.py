@@ -30,7 +30,7 @@ def looking_at(drive: Drive) -> View:
 def settled_by_screen(text: str) -> bool:
     """Whether the screen alone settles a drive."""
     drive = drive_of(text)
-    return screened(looking_at(drive), Map(Firmware(drive, frozenset(), frozenset(), punctual=False)))
+    return screened(looking_at(drive), Map(Firmware(drive, frozenset(), frozenset(), punctual=False))) is not None
 
 
 def proved_by(text: str) -> str:

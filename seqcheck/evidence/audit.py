@@ -8,9 +8,9 @@ from seqcheck.evidence.cover.apart import Ground, require_apart
 from seqcheck.evidence.cover.behaviour import Behaviour
 from seqcheck.evidence.cover.check import NotCovered, check
 from seqcheck.evidence.cover.reading import entries, points, stand
-from seqcheck.evidence.cover.scope import scope
+from seqcheck.evidence.cover.scope import Scope, scope
 from seqcheck.evidence.cover.shorts import TooLarge, first_uncovered, shorts
-from seqcheck.evidence.cover.stand import Stand
+from seqcheck.evidence.cover.stand import Firmware, Stand
 from seqcheck.evidence.digest import digest
 from seqcheck.evidence.replay import NotPermitted, replay
 from seqcheck.hazards import Hazard
@@ -77,7 +77,8 @@ class _Auditor:
         self._drive = drive
         self._evidence = evidence
         self._lists: dict[int, list[Stand]] = {}
-        self._grounds: dict[tuple[object, ...], Ground] = {}
+        self._firmwares: dict[tuple[object, ...], Firmware] = {}
+        self._grounds: dict[tuple[int, Firmware], Ground] = {}
 
     def holds_however_late(self, claim: Claim) -> bool:
         """Whether a claim holds however late the firmware is; NotProven if it does not hold at all."""
@@ -88,7 +89,7 @@ class _Auditor:
             elif isinstance(proof, Cover):
                 late = proof.data.flag("however late")
                 looking = scope(self._drive, claim.hazard, in_time=not late)
-                check(Behaviour(looking), entries(proof.data, looking))
+                check(Behaviour(looking, self._firmware(looking)), entries(proof.data, looking))
                 return late
             elif isinstance(proof, Potentials):
                 self._require_apart(claim.hazard, proof)
@@ -101,13 +102,19 @@ class _Auditor:
 
     def _require_apart(self, hazard: Hazard, proof: Potentials) -> None:
         looking = scope(self._drive, hazard, in_time=False)
+        firmware = self._firmware(looking)
         if proof.stands not in self._lists:
             self._lists[proof.stands] = [stand(one) for one in self._evidence.stands[proof.stands]]
-        key = (proof.stands, looking.carriers, looking.waiting, looking.held)
-        if key not in self._grounds:
-            self._grounds[key] = Ground(looking, self._lists[proof.stands])
+        if (proof.stands, firmware) not in self._grounds:
+            self._grounds[proof.stands, firmware] = Ground(firmware, self._lists[proof.stands])
         pair, said = points(proof.data, len(hazard.literals))
-        require_apart(looking, self._grounds[key], pair, said)
+        require_apart(looking, self._grounds[proof.stands, firmware], pair, said)
+
+    def _firmware(self, looking: Scope) -> Firmware:
+        key = looking.firmware()
+        if key not in self._firmwares:
+            self._firmwares[key] = Firmware(looking)
+        return self._firmwares[key]
 
 
 def _named(hazard: Hazard) -> str:

@@ -87,9 +87,9 @@ class Fields:
 
     def whole(self, value: object, name: str) -> int:
         """A value as a whole number that a time can be."""
-        if not isinstance(value, int) or isinstance(value, bool) or abs(value) > MOST_TIME:
-            raise self.wrong(name)
-        return value
+        if type(value) is int and -MOST_TIME <= value <= MOST_TIME:  # no bool
+            return value
+        raise self.wrong(name)
 
     def objects(self, name: str) -> "list[Fields]":
         """A list of objects."""

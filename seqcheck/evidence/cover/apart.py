@@ -14,8 +14,7 @@ from seqcheck.drive import Command
 from seqcheck.evidence.cover.check import NotCovered
 from seqcheck.evidence.cover.matrix import NO_BOUND
 from seqcheck.evidence.cover.scope import Scope
-from seqcheck.evidence.cover.stand import Firmware, Stand
-from seqcheck.evidence.cover.writes import Held, Writes
+from seqcheck.evidence.cover.stand import Firmware, Stand, placed
 
 UNKNOWN = -1
 """As a potential: nothing is known of x. Whatever is below 0 is taken so."""
@@ -41,10 +40,9 @@ class Arc(NamedTuple):
 class Ground:
     """Where the firmware can stand, by number, with all that leads from there to elsewhere."""
 
-    def __init__(self, scope: Scope, stands: list[Stand]) -> None:
+    def __init__(self, firmware: Firmware, stands: list[Stand]) -> None:
         """Work it out; `stands` only gives numbers. NotCovered if the firmware can stand where none of them is."""
-        self._writes = Writes(scope)
-        self._firmware = Firmware(scope, self._writes)
+        self._firmware = firmware
         self._numbers = {stand: number for number, stand in enumerate(stands)}
         self.start = self._number(self._firmware.start())
         self.rows: dict[int, tuple[str, ...]] = {}
@@ -54,20 +52,21 @@ class Ground:
             number = waiting.pop()
             if number not in self.arcs:
                 self.rows[number] = stands[number].cells.effective
-                self.arcs[number] = tuple(dict.fromkeys(self._leading(stands[number])))
+                self.arcs[number] = self._leading(stands[number])
                 waiting += [arc.target for arc in self.arcs[number]]
 
-    def _leading(self, stand: Stand) -> list[Arc]:
-        cells = stand.cells
-        acted = [self._writes.acted(cells, carrier) for carrier in self._writes.waiting_for(cells)]
-        return [
-            *(Arc(edge.lo, self._number(edge.target)) for edge in self._firmware.edges(stand)),
-            *(Arc(None, self._number(stand._replace(cells=one))) for one in acted),
-        ]
+    def _leading(self, stand: Stand) -> tuple[Arc, ...]:
+        soonest: dict[int, int] = {}
+        for edge in self._firmware.edges(stand):
+            target = self._number(edge.target)
+            soonest[target] = min(edge.lo, soonest.get(target, edge.lo))
+        writes, cells = self._firmware.writes, stand.cells
+        acted = [stand._replace(cells=writes.acted(cells, carrier)) for carrier in writes.waiting_for(cells)]
+        silent = dict.fromkeys(map(self._number, acted))
+        return *(Arc(least, target) for target, least in soonest.items()), *(Arc(None, target) for target in silent)
 
     def _number(self, stand: Stand) -> int:
-        held = tuple(Held(one.carrier, one.switches, place) for place, one in enumerate(stand.cells.held))
-        number = self._numbers.get(stand._replace(cells=stand.cells._replace(held=held)))
+        number = self._numbers.get(placed(stand))
         if number is None:
             where = "at rest" if stand.line < 0 else f"in run {stand.line}"
             raise NotCovered(f"Where the firmware comes to stand is not listed: {where} in {stand.mode}.")
@@ -129,28 +128,29 @@ class _Apart:
     def _leave(self, point: Point) -> None:
         """Everything that can come next at a point."""
         number, pair = point
-        for arc in (Arc(None, number), *self._ground.arcs[number]):
-            for after in self._after(pair, self._cells(arc.target)):
-                there = (arc.target, after)
+        for least, target in (Arc(None, number), *self._ground.arcs[number]):
+            since = self._since(point, least, 0), self._since(point, least, 1)
+            for after in self._after(pair, self._cells(target)):
+                there = (target, after)
                 self._reach(there)
                 for leaving in (0, 1):
-                    if not _commanded(after[leaving]):
-                        self._require_since(point, arc.least, there, leaving)
+                    if since[leaving] and not _commanded(after[leaving]):
+                        comes = _commanded(after[1 - leaving]) and not _commanded(pair[1 - leaving])
+                        self._require_since(since[leaving], there, leaving, comes)
 
-    def _require_since(self, point: Point, least: int | None, there: Point, leaving: int) -> None:
-        """Hold the times since one switch was last commanded, after an event, against what is said of them."""
-        coming = 1 - leaving
-        comes = _commanded(there[1][coming]) and not _commanded(point[1][coming])
+    def _require_since(self, since: Times, there: Point, leaving: int, comes: bool) -> None:
+        """Hold the times since one switch was last commanded against what is said of a point; the other one's command
+        may come there just now."""
         claimed = self._said[there][leaving]
-        for cell, time in self._since(point, least, leaving).items():
+        for cell, time in since.items():
             if comes:
-                floor = self._floor(cell, self._cells(there[0])[coming])
+                floor = self._floor(cell, self._cells(there[0])[1 - leaving])
                 self._least[leaving] = min(self._least[leaving], max(time, floor))
             if time < claimed.get(cell, NO_BOUND):
                 raise NotCovered(f"{self._names[leaving]} may have been commanded sooner before than is said.")
 
     def _since(self, point: Point, least: int | None, leaving: int) -> Times:
-        """The potentials of one switch that is not commanded after an event, as the event makes them."""
+        """The potentials of one switch after an event, if it is not commanded then."""
         if _commanded(point[1][leaving]):
             cell = self._cells(point[0])[leaving]
             return {cell if self._dead.get(cell) else "": UNKNOWN if least is None else 0}

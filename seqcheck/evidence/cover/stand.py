@@ -61,16 +61,25 @@ class Edge(NamedTuple):
     target: Stand
 
 
-class Firmware:
-    """What firmware and break inputs can do in a drive."""
+def placed(stand: Stand) -> Stand:
+    """A stand after an event, its held groups counted anew."""
+    held = tuple(one._replace(place=place) for place, one in enumerate(stand.cells.held))
+    return stand._replace(cells=stand.cells._replace(held=held)) if held else stand
 
-    def __init__(self, scope: Scope, writes: Writes) -> None:
+
+class Firmware:
+    """What firmware and break inputs can do in a drive; of a scope it knows what holds writes and whether it is in time.
+
+    So scopes can share it that differ in nothing else: see `Scope.firmware`.
+    """
+
+    def __init__(self, scope: Scope) -> None:
         self._drive: Drive = scope.drive
         self._in_time = scope.in_time
-        self._writes = writes
+        self.writes = Writes(scope)
         self._lines: tuple[Move | Trip, ...] = (*scope.drive.moves, *scope.drive.trips)
         self._first_trip = len(scope.drive.moves)
-        self._rows = {name: writes.row(mode.cells) for name, mode in scope.drive.modes.items()}
+        self._rows = {name: self.writes.row(mode.cells) for name, mode in scope.drive.modes.items()}
         self._late = (scope.drive.clock.late or 0) if scope.drive.clock else 0
         self._known: dict[Stand, tuple[Edge, ...]] = {}
 
@@ -204,10 +213,10 @@ class Firmware:
     def _break_in(self, stand: Stand, number: int) -> Stand:
         if self._drive.trips[number].target == RESET:
             return self._resting(RESET, NOBODY, self._settled(RESET))
-        cells = self._writes.cancelled(stand.cells)
+        cells = self.writes.cancelled(stand.cells)
         run, groups, wait = self._advanced(stand.mode, self._first_trip + number, 0, cells)
         if groups and wait is None:
-            forced = self._writes.forced(cells, [write for group in groups for write in group])
+            forced = self.writes.forced(cells, [write for group in groups for write in group])
             return self._after(run._replace(cells=forced, left=()))
         return self._waiting(run, groups, wait)
 
@@ -234,7 +243,7 @@ class Firmware:
         """What the run is after each group that may be written next."""
         for group in self._next(run.left):
             left = tuple(one for one in run.left if one != group)
-            yield self._after(run._replace(left=left, cells=self._writes.write(run.cells, group)))
+            yield self._after(run._replace(left=left, cells=self.writes.write(run.cells, group)))
 
     def _after(self, run: Stand) -> Stand:
         """What the run is just after a write."""
@@ -286,7 +295,7 @@ class Firmware:
         return [group for group, cells in zip(left, as_cells, strict=True) if cells in chosen]
 
     def _cell(self, word: str) -> Cell:
-        carrier = self._writes.carrier_of(word)
+        carrier = self.writes.carrier_of(word)
         return Fixed(word) if carrier is None else Follow(carrier, word != carrier)
 
     def known(self, stand: Stand) -> tuple[Known, ...]:

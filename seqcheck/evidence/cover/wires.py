@@ -120,8 +120,7 @@ class Wires:
         """An event has made `new` of `old`, as to stand, carriers, ended releases and ended dead times; what follows
         from it for pins, guards and literals, and the clocks that it starts."""
         started: set[str] = set()
-        before = self.commands(old)
-        pins = tuple(self._pin(place, new, before[place], started) for place in range(len(self._columns)))
+        pins = tuple(self._pin(place, old, new, started) for place in range(len(self._columns)))
         new = new._replace(pins=pins)
         commands = self.commands(new)
         guards = tuple(self._guard(place, new.guards[place], commands, started) for place in range(len(new.guards)))
@@ -131,12 +130,13 @@ class Wires:
         )
         return new._replace(guards=guards, literals=literals), started
 
-    def _pin(self, place: int, new: Point, before: str, started: set[str]) -> str:
+    def _pin(self, place: int, old: Point, new: Point, started: set[str]) -> str:
         if new.stand.cells.effective[self._columns[place]] != "free":
             return DRIVEN
         if new.pins[place] != DRIVEN:
             return new.pins[place]
         pin = self._scope.drive.pins[self._scope.switches[place]]
+        before = self.commands(old)[place]
         if pin.after.hi == 0 or Command(before) is pin.resting:
             return pin.resting.value
         started.add(f"pin {place}")

@@ -71,7 +71,7 @@ def _require_all_shorts(drive: Drive, evidence: Evidence) -> None:
 
 
 class _Auditor:
-    """The claims of one file's evidence, one by one; what firmware can do is worked out once for those that share it."""
+    """The claims of one file's evidence, one by one; firmware is worked out once for those that share it."""
 
     def __init__(self, drive: Drive, evidence: Evidence) -> None:
         self._drive = drive

@@ -7,6 +7,7 @@ from dataclasses import fields, is_dataclass
 from enum import Enum
 from fractions import Fraction
 from functools import cache
+from typing import Any
 
 from seqcheck.drive import Drive
 from seqcheck.source import Place
@@ -20,15 +21,16 @@ def digest(drive: Drive) -> str:
 
 
 def _rendered(value: object) -> object:
-    if value is None or isinstance(value, (str, int)):  # noqa: UP038 - much quicker than a union, and most values are such
+    if value is None or isinstance(value, (str, int)):
         return value
     if isinstance(value, Enum):
         return [type(value).__name__, value.name]
     if isinstance(value, tuple):
         return [_rendered(part) for part in value]
-    names = _said(type(value))
+    kind: type[Any] = type(value)
+    names = _said(kind)
     if names is not None:
-        return [type(value).__name__, *([name, _rendered(getattr(value, name))] for name in names)]
+        return [kind.__name__, *([name, _rendered(getattr(value, name))] for name in names)]
     if isinstance(value, frozenset):
         return sorted(map(str, value))
     if isinstance(value, Fraction):

@@ -37,6 +37,14 @@ class Arc(NamedTuple):
     target: int
 
 
+class Next(NamedTuple):
+    """What both switches may be commanded after an event; `off` are those not commanded on then, each with whether the
+    other's command has just come."""
+
+    pair: Pair
+    off: tuple[tuple[int, bool], ...]
+
+
 class Ground:
     """Where the firmware can stand, by number, with all that leads from there to elsewhere."""
 
@@ -87,20 +95,21 @@ class _Apart:
         self._names = tuple(scope.hazard.literals[place].switch for place in places)
         self._columns = tuple(drive.columns.index(name) for name in self._names)
         pins = [drive.pins.get(name) for name in self._names]
-        self._rests = tuple((Command.OFF if pin is None else pin.resting).value for pin in pins)
+        one, other = ((Command.OFF if pin is None else pin.resting).value for pin in pins)
+        self._rests: Pair = (one, other)
         self._complement: dict[str, str] = {}
         self._dead: dict[str, int] = {}
         for name, carrier in drive.carriers.items():
             self._complement |= {name: f"~{name}", f"~{name}": name}
             self._dead |= {name: carrier.dead.lo, f"~{name}": carrier.dead.lo}
-        self._commands: dict[tuple[Pair, Pair], list[Pair]] = {}
+        self._nexts: dict[tuple[Pair, Pair], list[Next]] = {}
         self._least = [NO_BOUND, NO_BOUND]
         self._waiting: list[Point] = []
         self._seen: set[Point] = set()
 
     def require(self) -> None:
         """Go through all points that can be reached, then hold the least times against what must pass."""
-        for pair in self._after(self._rests, self._cells(self._ground.start)):
+        for pair, _ in self._after(self._rests, self._cells(self._ground.start)):
             self._reach((self._ground.start, pair))
         while self._waiting:
             self._leave(self._waiting.pop())
@@ -115,39 +124,31 @@ class _Apart:
         if sum(self._least) <= max(one.fall, other.fall):
             raise NotCovered("One switch may outlast a whole pulse of the other.")
 
-    def _reach(self, point: Point) -> None:
-        if point in self._seen:
-            return
-        self._seen.add(point)
-        self._waiting.append(point)
-        if _commanded(point[1][0]) and _commanded(point[1][1]):
-            raise NotCovered(f"{' and '.join(self._names)} may be commanded on at once.")
-        if point not in self._said:
-            raise NotCovered("A point that can be reached is not spoken of.")
+    def _reach(self, point: Point) -> tuple[Times, Times]:
+        """What is said of a point that can be reached."""
+        if point not in self._seen:
+            self._seen.add(point)
+            self._waiting.append(point)
+            if _commanded(point[1][0]) and _commanded(point[1][1]):
+                raise NotCovered(f"{' and '.join(self._names)} may be commanded on at once.")
+            if point not in self._said:
+                raise NotCovered("A point that can be reached is not spoken of.")
+        return self._said[point]
 
     def _leave(self, point: Point) -> None:
         """Everything that can come next at a point."""
         number, pair = point
         for least, target in (Arc(None, number), *self._ground.arcs[number]):
+            cells = self._cells(target)
             since = self._since(point, least, 0), self._since(point, least, 1)
-            for after in self._after(pair, self._cells(target)):
-                there = (target, after)
-                self._reach(there)
-                for leaving in (0, 1):
-                    if since[leaving] and not _commanded(after[leaving]):
-                        comes = _commanded(after[1 - leaving]) and not _commanded(pair[1 - leaving])
-                        self._require_since(since[leaving], there, leaving, comes)
-
-    def _require_since(self, since: Times, there: Point, leaving: int, comes: bool) -> None:
-        """Hold the times since one switch was last commanded against what is said of a point; the other one's command
-        may come there just now."""
-        claimed = self._said[there][leaving]
-        for cell, time in since.items():
-            if comes:
-                floor = self._floor(cell, self._cells(there[0])[1 - leaving])
-                self._least[leaving] = min(self._least[leaving], max(time, floor))
-            if time < claimed.get(cell, NO_BOUND):
-                raise NotCovered(f"{self._names[leaving]} may have been commanded sooner before than is said.")
+            for after, off in self._after(pair, cells):
+                claimed = self._reach((target, after))
+                for leaving, comes in off:
+                    for cell, time in since[leaving].items():
+                        if time < claimed[leaving].get(cell, NO_BOUND):
+                            raise NotCovered(f"{self._names[leaving]} may have been on sooner before than is said.")
+                        if comes:
+                            self._comes(leaving, max(time, self._floor(cell, cells[1 - leaving])))
 
     def _since(self, point: Point, least: int | None, leaving: int) -> Times:
         """The potentials of one switch after an event, if it is not commanded then."""
@@ -155,9 +156,13 @@ class _Apart:
             cell = self._cells(point[0])[leaving]
             return {cell if self._dead.get(cell) else "": UNKNOWN if least is None else 0}
         times = self._said[point][leaving]
-        if least is None:
+        if least is None or not times:
             return times
         return {cell: 0 if time < 0 else time + least for cell, time in times.items()}
+
+    def _comes(self, leaving: int, time: int) -> None:
+        """The other switch's command comes so long after one's went away, or later."""
+        self._least[leaving] = min(self._least[leaving], time)
 
     def _floor(self, left: str, joined: str) -> int:
         """An output that was on is followed by its complement no sooner than a dead time after."""
@@ -167,13 +172,13 @@ class _Apart:
         row = self._ground.rows[number]
         return row[self._columns[0]], row[self._columns[1]]
 
-    def _after(self, before: Pair, cells: Pair) -> list[Pair]:
+    def _after(self, before: Pair, cells: Pair) -> list[Next]:
         """What both may be commanded under `cells`, once they were `before`."""
-        known = self._commands.get((before, cells))
+        known = self._nexts.get((before, cells))
         if known is None:
             one, other = (self._may_be(place, before[place], cells[place]) for place in (0, 1))
-            known = [(a, b) for a in one for b in other if self._agree(cells, (a, b))]
-            self._commands[before, cells] = known
+            pairs = [(a, b) for a in one for b in other if self._agree(cells, (a, b))]
+            known = self._nexts[before, cells] = [Next(after, _off(before, after)) for after in pairs]
         return known
 
     def _may_be(self, place: int, before: str, cell: str) -> set[str]:
@@ -191,3 +196,11 @@ class _Apart:
 def _commanded(command: str) -> bool:
     """Whether a switch is, or may be, commanded on."""
     return command != "off"
+
+
+def _off(before: Pair, after: Pair) -> tuple[tuple[int, bool], ...]:
+    return tuple(
+        (place, _commanded(after[1 - place]) and not _commanded(before[1 - place]))
+        for place in (0, 1)
+        if not _commanded(after[place])
+    )

@@ -42,13 +42,14 @@ _MOST_HELD = 100
 
 
 def _zone(entry: Fields, value: object, clocks: int) -> Bounds:
-    found = []
-    for one in entry.listed(value, "zones"):
-        upper, lower, most = [entry.whole(part, "zones") for part in entry.listed(one, "zones", 3)]
-        if not (0 <= upper <= clocks and 0 <= lower <= clocks):
-            raise entry.wrong("zones")
-        found.append((upper, lower, most))
-    return tuple(found)
+    return tuple(_bound(entry, one, clocks) for one in entry.listed(value, "zones"))
+
+
+def _bound(entry: Fields, value: object, clocks: int) -> tuple[int, int, int]:
+    upper, lower, most = entry.listed(value, "zones", 3)
+    if type(upper) is not int or type(lower) is not int or not (0 <= upper <= clocks and 0 <= lower <= clocks):
+        raise entry.wrong("zones")
+    return upper, lower, entry.whole(most, "zones")
 
 
 def _point(state: Fields, scope: Scope) -> Point:

@@ -27,7 +27,7 @@ def _rendered(value: object) -> object:
         return [type(value).__name__, value.name]
     if isinstance(value, tuple):
         return [_rendered(part) for part in value]
-    kind: type[Any] = type(value)
+    kind: Any = type(value)
     names = _said(kind)
     if names is not None:
         return [kind.__name__, *([name, _rendered(getattr(value, name))] for name in names)]
@@ -40,7 +40,7 @@ def _rendered(value: object) -> object:
 
 
 @cache
-def _said(kind: type) -> tuple[str, ...] | None:
+def _said(kind: Any) -> tuple[str, ...] | None:
     """The fields of a dataclass that are part of its meaning; None for any other type."""
     assert kind is not Place
     return tuple(one.name for one in fields(kind) if one.name not in _UNSAID) if is_dataclass(kind) else None

@@ -97,7 +97,7 @@ def _group(state: Fields, value: object) -> Group:
 def points(potentials: Fields, literals: int) -> tuple[tuple[int, int], Said]:
     """The places of the two literals that potentials are about, and what is said of each point."""
     first, second = potentials.listed(potentials.of("pair"), "pair", 2)
-    if not isinstance(first, int) or not isinstance(second, int) or not 0 <= first < second < literals:
+    if type(first) is not int or type(second) is not int or not 0 <= first < second < literals:
         raise potentials.wrong("pair")
     return (first, second), dict(_said(potentials, one) for one in potentials.rows("points"))
 

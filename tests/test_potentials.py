@@ -63,7 +63,7 @@ HASTY = {
         parts="p on 5 ps off 5 ps",
     ),
 }
-SEEDS = range(40)
+SEEDS = range(14)
 
 good = pytest.mark.parametrize("text", GOOD.values(), ids=GOOD)
 hasty = pytest.mark.parametrize("text", HASTY.values(), ids=HASTY)
@@ -177,7 +177,7 @@ def test_what_the_screen_settles_of_drawn_drives_is_borne_out() -> None:
         data = whole(drive, kept)
         screened += sum("potentials" in claim for claim in data["claims"])
         assert accepts(drive, data), seed
-    assert screened >= 20
+    assert screened >= 8
 
 
 def test_hazards_share_the_list_of_stands() -> None:
@@ -233,7 +233,7 @@ def test_a_lowered_potential_is_accepted_only_if_it_still_proves(text: str) -> N
                     points_of(copy)[number][place][cell] = other  # type: ignore[index]
                     found.append(accepts(drive, copy))
                     assert found[-1] == again.still_proves(copy), (point, place, cell, other)
-    assert False in found
+    assert set(found) == {True, False}
 
 
 @good

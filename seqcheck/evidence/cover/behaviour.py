@@ -172,7 +172,9 @@ class Behaviour:
         fresh = {f"held {place}" for place, one in enumerate(held) if one.place == NEW}
         if held:
             new = new._replace(stand=placed(new.stand))
-        unknown = [place for place in self.wires.followed(new.stand) if new.carriers[place] == ANYWHERE]
+        unknown: list[int] = []
+        if ANYWHERE in new.carriers:
+            unknown = [place for place in self.wires.followed(new.stand) if new.carriers[place] == ANYWHERE]
         for one in self.somewhere(new, unknown):
             target, set_off = self.wires.after(old, one)
             yield Change(needs, target, started.union(fresh, set_off), tuple(renamed))

@@ -8,7 +8,7 @@ to the other's coming, potentials are kept apart by the cell of which the comman
 from heapq import heappop, heappush
 
 from seqcheck.proving.certify import COMMANDS, Data, stand, word
-from seqcheck.proving.screen import Map, Pairing, Places, Point
+from seqcheck.proving.screen import Arc, Map, Pairing, Places, Point
 from seqcheck.proving.views import View
 from seqcheck.writing import carrier_of
 from seqcheck.zones import INFINITE
@@ -17,6 +17,8 @@ UNKNOWN = -1
 
 Since = dict[Point, dict[str, int]]
 """By point, and by the cell that the command went away from: the potential."""
+Steps = dict[Point, tuple[tuple[Arc | None, Point, bool], ...]]
+"""By point: what can come next, as the screen has it."""
 
 
 def stands(here: Map) -> list[Data]:
@@ -29,7 +31,8 @@ def potentials(view: View, here: Map, places: Places) -> Data:
     pairing = Pairing(view, here, *places)
     points = pairing.points()
     assert points is not None, "the screen settled it"
-    one, other = _since(pairing, points, 0), _since(pairing, points, 1)
+    steps = {point: tuple(pairing.steps(point)) for point in points}
+    one, other = _since(pairing, steps, 0), _since(pairing, steps, 1)
     return {
         "pair": list(places),
         "points": [
@@ -39,9 +42,9 @@ def potentials(view: View, here: Map, places: Places) -> Data:
     }
 
 
-def _since(pairing: Pairing, points: set[Point], leaving: int) -> Since:
+def _since(pairing: Pairing, steps: Steps, leaving: int) -> Since:
     """The potentials since one of the literals went away; Dijkstra's algorithm, from all that its going leads to."""
-    found: Since = {point: {} for point in points}
+    found: Since = {point: {} for point in steps}
     queue: list[tuple[int, Point, str]] = []
 
     def reached(point: Point, cell: str, time: int) -> None:
@@ -49,16 +52,16 @@ def _since(pairing: Pairing, points: set[Point], leaving: int) -> Since:
             found[point][cell] = time
             heappush(queue, (time, point, cell))
 
-    for point in points:
+    for point, following in steps.items():
         if pairing.wanted(point[1], leaving):
             cell = _cell(pairing, pairing.cells(point[0])[leaving])
-            for _, target, restarts in pairing.steps(point):
+            for _, target, restarts in following:
                 reached(target, cell, 0 if restarts else UNKNOWN)
     while queue:
         time, point, cell = heappop(queue)
         if time > found[point][cell]:
             continue
-        for arc, target, restarts in pairing.steps(point):
+        for arc, target, restarts in steps[point]:
             later = time if arc is None or not restarts else time + arc.least if time != UNKNOWN else 0
             reached(target, cell, later)
     return found

@@ -20,7 +20,7 @@ from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Trace
 
 Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
-"""A hazard with its cover, the run that shows it, or None where neither is at hand."""
+"""A hazard with the proof that it is safe as data, the run that shows it, or None where neither is at hand."""
 
 PROVEN_CHECKS = (
     Check.SHORT,
@@ -102,14 +102,14 @@ def refuse(drive: Drive) -> None:
 
 
 def _judged(prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None) -> Verdict:
-    verdict, cover = _with_cover(prover, hazard, observer)
+    verdict, proof = _with_proof(prover, hazard, observer)
     if kept is not None:
-        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else cover))
+        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
     return verdict
 
 
-def _with_cover(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Verdict, Data | None]:
-    """The verdict on a hazard, and its cover where it is safe and the prover keeps it."""
+def _with_proof(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Verdict, Data | None]:
+    """The verdict on a hazard, and its proof as data where it is safe and the prover keeps it."""
     seen = 0
 
     def counting(count: int) -> None:
@@ -124,7 +124,7 @@ def _with_cover(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Ver
     except Infeasible as fault:
         raise Fault(f"a path to {_named(hazard)} has no times") from fault
     if isinstance(proof, Proven):
-        return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.cover
+        return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.data
     return _unsafe(prover.drive, hazard, proof, observer), None
 
 

@@ -31,7 +31,7 @@ def settled_by_screen(text: str) -> bool:
     """Whether the screen alone settles a drive."""
     drive = drive_of(text)
     firmware = Firmware(drive, frozenset(), frozenset(), punctual=False)
-    return screened(looking_at(drive), Map(firmware, lambda count: None))
+    return screened(looking_at(drive), Map(firmware, lambda count: None)) is not None
 
 
 def proved_by(text: str) -> str:

@@ -11,8 +11,9 @@ from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.keys import Key
+from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
-from seqcheck.proving.screen import Map, screened
+from seqcheck.proving.screen import Map, Places, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
 from seqcheck.proving.tracing import trace_of
 from seqcheck.proving.views import View, view
@@ -25,13 +26,13 @@ Observer = Callable[[int], None]
 class Proven:
     """No run brings the hazard; `method` is "screen" or "zones".
 
-    `cover` is the proof as data (see certify), where the prover keeps proofs and a limit did not end the search for it.
+    `data` is the proof as data (see certify and potentials), where the prover keeps proofs.
     """
 
     method: str
     zones: int
     however_late: bool
-    cover: Data | None = None
+    data: Data | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -71,7 +72,7 @@ class _Count:
 class Prover:
     """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
-    With `keep` the proofs that hazards are safe (interlocks included) are kept, for a certificate.
+    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate.
     """
 
     def __init__(self, drive: Drive, keep: bool = False) -> None:
@@ -79,6 +80,7 @@ class Prover:
         self.keep = keep
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
+        self._stands: dict[Map, list[Data]] = {}
 
     def prove(self, hazard: Hazard, interlocks: bool, observer: Observer) -> Proven | Refuted:
         """Prove or refute one hazard, with the drive's interlocks or as if it had none.
@@ -87,8 +89,10 @@ class Prover:
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         count, keep = _Count(observer), self.keep and interlocks
-        if screened(looking, self._map(self._firmware(looking, punctual=False), count)):
-            return Proven("screen", 0, True, self._cover_of_screened(looking, count) if keep else None)
+        here = self._map(self._firmware(looking, punctual=False), count)
+        apart = screened(looking, here)
+        if apart is not None:
+            return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
         for punctual in (False, True):
             for manner in _manners(looking):
                 projection = self._searched(looking, punctual, manner, count)
@@ -101,7 +105,7 @@ class Prover:
         """Whether the hazard happens in no run, with the drive's interlocks and firmware in time; without a trace."""
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = _Count(observer)
-        if screened(looking, self._map(self._firmware(looking, punctual=False), count)):
+        if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
             return True
         return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
 
@@ -114,14 +118,11 @@ class Prover:
         projection = Projection(looking, self._firmware(looking, punctual), manner)
         return projection if first_hazard(projection.initial(), count) is None else None
 
-    def _cover_of_screened(self, looking: View, count: _Count) -> Data | None:
-        """What the screen has settled, shown by zones; None where a limit ends that, which leaves the verdict."""
-        try:
-            found = (self._searched(looking, False, manner, count) for manner in _manners(looking))
-            projection = next((one for one in found if one is not None), None)
-        except LimitReached:
-            return None
-        return cover(projection, True) if projection is not None else None
+    def _screened(self, looking: View, here: Map, apart: Places) -> Data:
+        """The proof of the screen as data; hazards that share a map share the list of its states."""
+        if here not in self._stands:
+            self._stands[here] = stands(here)
+        return {**potentials(looking, here, apart), "stands": self._stands[here]}
 
     def _refute(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
         try:

@@ -109,7 +109,7 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
     changed = False
     far = [-first_row[clock] > lower[clock] for clock in range(size)]
     high = [-first_row[clock] > upper[clock] for clock in range(size)]
-    far[0] = high[0] = False
+    high[0] = False
     for clock in range(1, size):
         start = clock * size
         loose = far[clock]

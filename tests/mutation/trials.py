@@ -14,7 +14,7 @@ import signal
 import subprocess
 import sys
 import time
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 from types import CodeType, FrameType, FunctionType
@@ -28,7 +28,7 @@ SLOWEST = 10.0
 """A test that takes longer than this many times its usual time, and PATIENCE more, counts as failed."""
 PATIENCE = 3.0
 _MEMORY = 3 << 30  # bytes
-_FAILED, _LATE = 1, 2
+_FAILED, _LATE, _NOWHERE = 1, 2, 3
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,26 +70,29 @@ def codes_in(code: CodeType) -> Iterator[CodeType]:
             yield const
 
 
-def put(code: CodeType, name: str, functions: dict[tuple[str, str, int], list[FunctionType]]) -> None:
-    """Puts the faulty code of the function so named in the place of the right one."""
+def put(code: CodeType, name: str, functions: dict[tuple[str, str, int], list[FunctionType]]) -> int:
+    """Puts the faulty code of the function so named in the place of the right one; returns how often that was."""
+    found = 0
     for one in codes_in(code):
         if one.co_qualname == name:
             for function in functions.get((one.co_filename, name, one.co_firstlineno), []):
                 function.__code__ = one
+                found += 1
+    return found
 
 
-def calls_and_times(items: Sequence[pytest.Item], house: Path, into: Path) -> None:
-    """Runs tests in a child and writes for each, in a line, its time and the functions of the house that it calls."""
+def calls_and_times(items: Sequence[pytest.Item], marks: Mapping[str, str], house: Path, into: Path) -> None:
+    """Runs tests in a child; a line for each has its mark, its time and the functions of the house that it calls."""
     child = os.fork()
     if not child:
         _quiet()
         with into.open("a", encoding="utf-8") as file:
             for at, item in enumerate(items):
-                began = time.perf_counter()
+                began = time.process_time()
                 seen = _calls(item, items[at + 1] if at + 1 < len(items) else None)
                 inside = {code for code in seen if code.co_filename.startswith(str(house))}
                 names = sorted({f"{_module(code, house)}:{_outermost(code)}" for code in inside})
-                print(json.dumps([item.nodeid, time.perf_counter() - began, names]), file=file, flush=True)
+                print(json.dumps([marks[item.nodeid], time.process_time() - began, names]), file=file, flush=True)
         os._exit(0)
     os.waitpid(child, 0)
 
@@ -138,7 +141,8 @@ class Putting:
     functions: dict[tuple[str, str, int], list[FunctionType]]
 
     def __call__(self) -> None:
-        put(self.code, self.name, self.functions)
+        if not put(self.code, self.name, self.functions):
+            os._exit(_NOWHERE)
 
 
 def _run(
@@ -150,8 +154,8 @@ def _run(
         session.config._tmp_path_factory._given_basetemp = base / str(os.getpid())  # type: ignore[attr-defined]
         begin()
         for at, (item, usual) in enumerate(items):
-            signal.signal(signal.SIGALRM, lambda *_: _end(pipe, item, _LATE))  # noqa: B023 - run at once
-            signal.setitimer(signal.ITIMER_REAL, usual * SLOWEST + PATIENCE)
+            signal.signal(signal.SIGPROF, lambda *_: _end(pipe, item, _LATE))  # noqa: B023 - run at once
+            signal.setitimer(signal.ITIMER_PROF, usual * SLOWEST + PATIENCE)
             following = items[at + 1][0] if at + 1 < len(items) else None
             item.config.hook.pytest_runtest_protocol(item=item, nextitem=following)
             if session.testsfailed:
@@ -189,6 +193,8 @@ def ended(running: Sequence[Trial]) -> Iterator[tuple[Trial, Verdict]]:
 
 def _verdict(trial: Trial, code: int) -> Verdict:
     seconds, late = time.monotonic() - trial.began, time.monotonic() > trial.latest
+    if code == _NOWHERE:
+        raise LookupError("a function with a fault is not found among those that are alive")
     outcomes = {0: SURVIVED, _FAILED: KILLED, _LATE: TIMED_OUT}
     return Verdict(TIMED_OUT if late else outcomes.get(code, DIED), trial.said.decode(), seconds)
 
@@ -202,11 +208,17 @@ module, code, *tests = sys.argv[1:]
 class Loader(importlib.machinery.SourceFileLoader):
     def get_code(self, name):
         with open(code, "rb") as file:
-            return marshal.load(file) if name == module else super().get_code(name)
+            return marshal.load(file)
 
-hook = importlib.machinery.FileFinder.path_hook((Loader, [".py"]))
-sys.path_hooks.insert(0, hook)
-sys.path_importer_cache.clear()
+class Finder(importlib.machinery.PathFinder):
+    @classmethod
+    def find_spec(cls, name, path=None, target=None):
+        spec = super().find_spec(name, path, target) if name == module else None
+        if spec is not None:
+            spec.loader = Loader(name, spec.origin)
+        return spec
+
+sys.meta_path.insert(0, Finder)
 sys.exit(pytest.main([*tests, "-x", "-p", "no:cacheprovider", "-p", "no:xdist", "-o", "addopts=-q"]))
 """
 

@@ -121,7 +121,7 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
             if value < INFINITE and (loose or value > limit or high[end]):
                 zone[start + end] = INFINITE
                 changed = True
-        if high[clock] and first_row[clock] < -upper[clock] - 1:
+        if first_row[clock] < -upper[clock] - 1:
             zone[clock] = -upper[clock] - 1
             changed = True
     if changed:

@@ -259,7 +259,8 @@ def report(wanted: Sequence[Case], outcomes: dict[str, Judged], explained: Expla
     ]
     for case in unexplained:
         mutant = case.mutant
-        print(f"\nseqcheck/{case.file}:{mutant.line} {mutant.function}\n  {mutant.text}\n  {mutant.change}")
+        print(f"\n# seqcheck/{case.file}:{mutant.line}\n{case.file} {mutant.function}".rstrip())
+        print(f"  line: {mutant.text}\n  change: {mutant.change}")
     survived = {(case.file, *case.mutant.name) for case in wanted if outcomes[case.key].outcome == trials.SURVIVED}
     stale = [name for name in explained.names({case.file for case in wanted}) if name not in survived]
     for name in stale:

@@ -258,6 +258,14 @@ def test_no_more_is_needed_than_the_least() -> None:
     assert hazard.needs == (frozenset({Above("a", "b")}),)
 
 
+def test_a_larger_set_is_kept_for_the_polarity_that_a_smaller_one_leaves() -> None:
+    """A alone shorts with a above b; with B it does so too through the second supply, and with b above a by way of y."""
+    one = stage("", "a b, c d", "", "A a-b/b-y/a-c one way, B y-a/d-b one way")
+    alone, both = shorting_sets(one)
+    assert alone.needs == (frozenset({Above("a", "b")}),)
+    assert not contradicted(both, [Above("b", "a")])
+
+
 def test_needs_of_a_matrix_leg() -> None:
     """Af with Br back to back: each way shorts under one polarity only, and both together under any."""
     one = stage("", "a b", "", "Af a-x one way, Ar x-a one way, Bf b-x one way, Br x-b one way")

@@ -259,11 +259,25 @@ def test_no_more_is_needed_than_the_least() -> None:
 
 
 def test_a_larger_set_is_kept_for_the_polarity_that_a_smaller_one_leaves() -> None:
-    """A alone shorts with a above b; with B it does so too through the second supply, and with b above a by way of y."""
+    """A alone shorts with a above b; with B so it does through the second supply, and with b above a by way of y."""
     one = stage("", "a b, c d", "", "A a-b/b-y/a-c one way, B y-a/d-b one way")
     alone, both = shorting_sets(one)
     assert alone.needs == (frozenset({Above("a", "b")}),)
     assert not contradicted(both, [Above("b", "a")])
+
+
+def test_a_short_of_either_supply_is_ruled_out_only_by_both_polarities() -> None:
+    """What is known of one supply says nothing about the other."""
+    (hazard,) = shorting_sets(stage("", "a b, c d", "", "S a-b/c-d one way"))
+    assert not contradicted(hazard, [Above("b", "a")])
+    assert not contradicted(hazard, [Above("d", "c")])
+    assert contradicted(hazard, [Above("b", "a"), Above("d", "c")])
+
+
+def test_a_larger_set_goes_where_a_smaller_one_shorts_already() -> None:
+    """With as much known: by one of two polarities, or by the same one at other supplies."""
+    assert sets(stage("", "a b, c d, e f", "", "S a-b/c-d/a-e one way, T f-b one way")) == ["S"]
+    assert sets(stage("P N", "a b", "", "S a-b/P-b one way, T a-N one way")) == ["S"]
 
 
 def test_needs_of_a_matrix_leg() -> None:

@@ -96,7 +96,7 @@ def shorting_sets(stage: Stage) -> tuple[Hazard, ...]:
                 found.setdefault(switches, ((upper, lower), set()))[1].add(needs | first)
     rank = {switch.name: place for place, switch in enumerate(stage.switches)}
     hazards = [_hazard(switches, joins, alternatives, rank) for switches, (joins, alternatives) in found.items()]
-    kept = [one for one in hazards if not any(_implies(other, one) for other in hazards if other is not one)]
+    kept = [one for one in hazards if not any(_implies(other, one) for other in hazards)]
     if len(kept) > MOST_SETS:
         raise Problems([_too_many(_stiff(stage)[0], len(kept))])
     return tuple(sorted(kept, key=lambda one: (len(one.literals), [rank[lit.switch] for lit in one.literals])))
@@ -135,7 +135,7 @@ def _paths(
     waiting = deque([start])
     while waiting:
         node = waiting.popleft()
-        for _, end, data in sorted(graph.out_edges(node, data=True), key=_edge_key):
+        for _, end, data in graph.out_edges(node, data=True):
             if data["element"] in barred:
                 continue
             switch = frozenset() if data["switch"] is None else frozenset({data["switch"]})
@@ -145,10 +145,6 @@ def _paths(
             if len(labels[end]) > MOST_SETS:
                 raise Problems([_too_many(element, len(labels[end]))])
     return labels
-
-
-def _edge_key(edge: tuple[str, str, dict[str, object]]) -> tuple[str, str]:
-    return edge[1], str(edge[2]["switch"])
 
 
 def _merge(kept: list[Label], grown: Iterable[Label]) -> bool:

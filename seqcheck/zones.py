@@ -109,7 +109,7 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
     changed = False
     far = [-first_row[clock] > lower[clock] for clock in range(size)]
     high = [-first_row[clock] > upper[clock] for clock in range(size)]
-    far[0] = high[0] = False
+    high[0] = False
     for clock in range(1, size):
         start = clock * size
         loose = far[clock]
@@ -121,7 +121,7 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
             if value < INFINITE and (loose or value > limit or high[end]):
                 zone[start + end] = INFINITE
                 changed = True
-        if high[clock] and first_row[clock] < -upper[clock] - 1:
+        if first_row[clock] < -upper[clock] - 1:
             zone[clock] = -upper[clock] - 1
             changed = True
     if changed:

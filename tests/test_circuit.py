@@ -142,9 +142,20 @@ def said(hazards: tuple[Hazard, ...], on: frozenset[str], orders: Orders) -> boo
 
 def drawn(rng: Random) -> Stage:
     """A stage with up to four switches, any supplies, now and then capacitors, diodes and contactors of two poles."""
-    kind = rng.choice(("rails", "rails", "three rails", "two supplies", "sources", "sources", "three sources", "both"))
+    kinds = (
+        "rails",
+        "rails",
+        "three rails",
+        "two supplies",
+        "sources",
+        "sources",
+        "three sources",
+        "two lines",
+        "both",
+    )
+    kind = rng.choice(kinds)
     rails = {"rails": "P N", "three rails": "P O N", "two supplies": "P N, Q M", "both": "P N"}.get(kind, "")
-    sources = {"sources": "a b", "three sources": "a b c", "both": "a b"}.get(kind, "")
+    sources = {"sources": "a b", "three sources": "a b c", "two lines": "a b, c d", "both": "a b"}.get(kind, "")
     stiff = f"{rails} {sources}".replace(",", " ").split()
     nodes = [*stiff, *("x", "y", "z")[: rng.randint(1, 3)]]
     caps = [" ".join(rng.sample(nodes, 2)) for _ in range(rng.choice((0, 0, 1, 1, 2)))]
@@ -230,6 +241,45 @@ def test_known_stages(one: Stage, right: list[str]) -> None:
     assert sets(one) == right
 
 
+def test_sources_pass_each_other_one_way() -> None:
+    """Two supplies of their own in a ring of one-way switches: it is closed where both drive it."""
+    (hazard,) = shorting_sets(stage("", "a b, c d", "", "A a-c one way, B d-b one way"))
+    assert not contradicted(hazard, [Above("a", "b"), Above("d", "c")])
+    assert contradicted(hazard, [Above("b", "a")])
+    assert contradicted(hazard, [Above("c", "d")])
+    (hazard,) = shorting_sets(stage("", "a b, c d", "", "A b-d one way, B c-a one way"))
+    assert not contradicted(hazard, [Above("b", "a"), Above("c", "d")])
+    assert contradicted(hazard, [Above("a", "b")])
+
+
+def test_no_more_is_needed_than_the_least() -> None:
+    """The way through the second supply as well asks for more, so that it tells nothing new."""
+    (hazard,) = shorting_sets(stage("", "a b, c d", "", "S a-b/a-c/d-b one way"))
+    assert hazard.needs == (frozenset({Above("a", "b")}),)
+
+
+def test_a_larger_set_is_kept_for_the_polarity_that_a_smaller_one_leaves() -> None:
+    """A alone shorts with a above b; with B so it does through the second supply, and with b above a by way of y."""
+    one = stage("", "a b, c d", "", "A a-b/b-y/a-c one way, B y-a/d-b one way")
+    alone, both = shorting_sets(one)
+    assert alone.needs == (frozenset({Above("a", "b")}),)
+    assert not contradicted(both, [Above("b", "a")])
+
+
+def test_a_short_of_either_supply_is_ruled_out_only_by_both_polarities() -> None:
+    """What is known of one supply says nothing about the other."""
+    (hazard,) = shorting_sets(stage("", "a b, c d", "", "S a-b/c-d one way"))
+    assert not contradicted(hazard, [Above("b", "a")])
+    assert not contradicted(hazard, [Above("d", "c")])
+    assert contradicted(hazard, [Above("b", "a"), Above("d", "c")])
+
+
+def test_a_larger_set_goes_where_a_smaller_one_shorts_already() -> None:
+    """With as much known: by one of two polarities, or by the same one at other supplies."""
+    assert sets(stage("", "a b, c d, e f", "", "S a-b/c-d/a-e one way, T f-b one way")) == ["S"]
+    assert sets(stage("P N", "a b", "", "S a-b/P-b one way, T a-N one way")) == ["S"]
+
+
 def test_needs_of_a_matrix_leg() -> None:
     """Af with Br back to back: each way shorts under one polarity only, and both together under any."""
     one = stage("", "a b", "", "Af a-x one way, Ar x-a one way, Bf b-x one way, Br x-b one way")
@@ -288,7 +338,39 @@ def test_too_many_sets_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
         shorting_sets(ladder)
     (problem,) = caught.value.found
     assert problem.kind == "too-many-sets"
-    assert "8" in problem.text
+    assert "more than 8 " in problem.text
+    monkeypatch.setattr(circuit, "MOST_SETS", 9)
+    assert len(shorting_sets(ladder)) == 9
+
+
+def test_sets_that_are_not_minimal_do_not_count(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Of three switches that a way through two diodes makes needless."""
+    one = stage("P N", switches="A P-x one way, B P-x one way, C P-x one way, T x-N one way", diodes="P-d, d-x")
+    monkeypatch.setattr(circuit, "MOST_SETS", 3)
+    assert sets(one) == ["T"]
+
+
+def test_sets_are_counted_over_all_supplies(monkeypatch: pytest.MonkeyPatch) -> None:
+    """No node has more than three, but there are six."""
+    bridges = ", ".join(f"A{k} P-N, B{k} Q-M" for k in range(3))
+    two = stage("P N, Q M", switches=bridges)
+    monkeypatch.setattr(circuit, "MOST_SETS", 6)
+    assert len(shorting_sets(two)) == 6
+    monkeypatch.setattr(circuit, "MOST_SETS", 5)
+    with pytest.raises(Problems) as caught:
+        shorting_sets(two)
+    assert "more than 5 " in caught.value.found[0].text
+
+
+def test_sets_are_counted_where_no_way_leads_on(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Else a stage could cost any time and memory before its few sets are known."""
+    blind = [*(f"A{k} P-x one way" for k in range(3)), *(f"B{k} x-y one way" for k in range(3))]
+    one = stage("P N", switches=", ".join(blind))
+    monkeypatch.setattr(circuit, "MOST_SETS", 9)
+    assert sets(one) == []
+    monkeypatch.setattr(circuit, "MOST_SETS", 8)
+    with pytest.raises(Problems):
+        shorting_sets(one)
 
 
 def test_many_switches_in_reasonable_time() -> None:

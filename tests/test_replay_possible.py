@@ -3,10 +3,12 @@
 import pytest
 from build import drive, hazard, part
 
-from seqcheck.drive import Above, Command, CurrentOut
+from seqcheck import hazards
+from seqcheck.drive import Above, Command, CurrentOut, Drive
+from seqcheck.evidence import possible as replayed
 from seqcheck.evidence.facts import asked_for
-from seqcheck.evidence.possible import Stretch, delays, possible, stretches, together, wanted, within_trace
-from seqcheck.hazards import Delays, Literal
+from seqcheck.evidence.possible import Stretch, possible, stretches, together, wanted, within_trace
+from seqcheck.hazards import Delays, Hazard, Literal
 from seqcheck.verdict import Span
 
 ON, OFF, UNKNOWN = Command.ON, Command.OFF, Command.UNKNOWN
@@ -112,6 +114,14 @@ def test_together() -> None:
     assert together([one, (Span(4, 8), Span(9, 10))]) == (Span(4, 5), Span(7, 8), Span(9, 10))
     assert together([one, (Span(5, 7),)]) == ()
     assert together([one, (Span(3, None),), (Span(8, None),)]) == (Span(8, None),)
+
+
+def delays(built: Drive, asked: Hazard) -> dict[Literal, Delays]:
+    """The delays of each literal, in which prover and replay agree."""
+    found = replayed.delays(built, asked)
+    paths = {one.switch: built.paths.get(one.switch, ()) for one in asked.literals}
+    assert hazards.delays(asked, paths) == tuple(found.values())
+    return found
 
 
 def test_delays_of_series() -> None:

@@ -1,6 +1,6 @@
 """Zones against sets of points: every operation does to a small zone what its words say of each whole point."""
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from itertools import product
 from random import Random
 
@@ -15,6 +15,7 @@ GRID = 14
 SEEDS = range(300)
 
 Point = tuple[int, ...]
+Draw = Callable[[int], tuple[Random, int, Zone]]
 
 
 def points(zone: Zone, size: int, most: int = GRID) -> set[Point]:
@@ -50,6 +51,19 @@ def drawn(seed: int) -> tuple[Random, int, Zone]:
         zone = closed(raw(rng, size), size)
         if zone is not None:
             return rng, size, zone
+
+
+def wide(seed: int) -> tuple[Random, int, Zone]:
+    """The same, but half of the clocks have no upper bound, nor have many differences."""
+    rng, size, _ = drawn(seed)
+    while True:
+        zone = raw(rng, size)
+        for clock in range(1, size):
+            if rng.random() < 0.5:
+                zone[clock * size] = INFINITE
+        done = closed(zone, size)
+        if done is not None:
+            return rng, size, done
 
 
 def tight(zone: Zone, size: int, inside: set[Point]) -> bool:
@@ -93,10 +107,11 @@ def test_worked_example() -> None:
     assert closed([0, 0, 0, 19, 0, -10, 20, 10, 0], 3) == [0, 0, -10, 10, 0, -10, 20, 10, 0]
 
 
+@pytest.mark.parametrize("draw", [drawn, wide])
 @pytest.mark.parametrize("seed", SEEDS)
-def test_limited(seed: int) -> None:
+def test_limited(seed: int, draw: Draw) -> None:
     """One more bound leaves exactly the points that keep it, in canonical form, and does not change the old zone."""
-    rng, size, zone = drawn(seed)
+    rng, size, zone = draw(seed)
     upper, lower = rng.sample(range(size), 2)
     bound = rng.randint(-MOST, MOST)
     before = zone[:]
@@ -120,10 +135,11 @@ def later(inside: set[Point], bounds: list[tuple[int, int]]) -> set[Point]:
     return found
 
 
+@pytest.mark.parametrize("draw", [drawn, wide])
 @pytest.mark.parametrize("seed", SEEDS)
-def test_delayed(seed: int) -> None:
+def test_delayed(seed: int, draw: Draw) -> None:
     """Time passes for all clocks alike, as long as each bounded one stays within its bound."""
-    rng, size, zone = drawn(seed)
+    rng, size, zone = draw(seed)
     clocks = rng.sample(range(1, size), rng.randint(0, size - 1))
     bounds = [(clock, rng.randint(0, MOST + 2)) for clock in clocks]
     right = later(points(zone, size), bounds)
@@ -198,6 +214,31 @@ def test_extrapolated(seed: int) -> None:
     inside = points(zone, size, 2 * GRID)  # what simulates a point may lie beyond it
     for point in points(done, size) - inside:
         assert like(point, lower, upper, inside), point
+
+
+def widened(zone: Zone, size: int, lower: list[int], upper: list[int]) -> Zone:
+    """Extra_LU+ by its four cases, over whole numbers (Behrmann, Bouyer, Larsen and Pelánek 2006, section 4)."""
+
+    def bound(i: int, j: int) -> int:
+        far_above = j > 0 and -zone[j] > upper[j]
+        if i == j or i == 0:
+            return -upper[j] - 1 if far_above and i == 0 else zone[i * size + j]
+        return INFINITE if zone[i * size + j] > lower[i] or -zone[i] > lower[i] or far_above else zone[i * size + j]
+
+    done = closed([bound(i, j) for i, j in product(range(size), repeat=2)], size)
+    assert done is not None
+    return done
+
+
+@pytest.mark.parametrize("draw", [drawn, wide])
+@pytest.mark.parametrize("seed", SEEDS)
+def test_extrapolated_as_far_as_defined(seed: int, draw: Draw) -> None:
+    """It is as coarse as its definition lets it be, whatever stands in the places of no clock."""
+    rng, size, zone = draw(seed)
+    lower, upper = constants(rng, size), constants(rng, size)
+    right = widened(zone, size, lower, upper)
+    lower[0], upper[0] = rng.choice((-1, MOST)), rng.choice((-1, MOST))
+    assert extrapolated(zone[:], size, lower, upper) == right
 
 
 def chains() -> Iterator[Zone]:

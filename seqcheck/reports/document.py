@@ -1,6 +1,7 @@
 """The form for programs: one JSON document with everything that was found, as `outcome.schema.json` describes it.
 
-All times are whole picoseconds. The text is pure ASCII, so that it is JSON whatever the encoding of the output.
+All times are whole picoseconds. The text is pure ASCII, so that it is JSON whatever the encoding of the output, and on
+one line, since the run of a carrier can have tens of thousands of events.
 """
 
 import json
@@ -47,7 +48,7 @@ def report(answers: Sequence[Answer]) -> str:
         "caution": CAUTION,
         "files": [_file(one) for one in answers],
     }
-    return json.dumps(data, indent=2) + "\n"
+    return json.dumps(data, separators=(",", ":")) + "\n"
 
 
 def _file(answer: Answer) -> Fields:
@@ -200,7 +201,9 @@ def _event(event: Event, notes: Iterable[Note]) -> Fields:
         found["trip" if event.trip else "move"] = event.index
     if event.writes:
         found["writes"] = [{"switch": switch, "cell": cell_text(cell)} for switch, cell in event.writes]
-    return {**found, "place": _placed(event.place), "text": [note.text for note in notes]}
+    if event.place is not None:
+        found["place"] = _place(event.place)
+    return {**found, "text": [note.text for note in notes]}
 
 
 def _switch(lane: Lane) -> Fields:

@@ -5,6 +5,7 @@ from enum import Enum
 
 from seqcheck.drive import Cell, Command, Drive
 from seqcheck.hazards import Hazard, Literal
+from seqcheck.messages import Problem
 from seqcheck.source import Place
 
 
@@ -214,3 +215,23 @@ class Outcome:
     drive: Drive
     verdicts: tuple[Verdict, ...]
     findings: tuple[Finding, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Unread:
+    """A file that could not be read, or asks for what cannot be proven: nothing of it was judged."""
+
+    file: str
+    problems: tuple[Problem, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Failed:
+    """A file on which the program itself failed, and how: whatever was found of it may not be shown."""
+
+    file: str
+    fault: str
+
+
+Answer = Outcome | Unread | Failed
+"""What there is to say of one file."""

@@ -5,11 +5,10 @@ by anything more it does. A gap is looked for below a cap; where there is none b
 raised. What is found with carriers' phases forgotten is a lower bound only, but that nothing ever follows holds.
 """
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable
 from dataclasses import dataclass
 
 from seqcheck.proving.keys import GAP, LATELY, Key
-from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.search import Node, nodes, ticks
 
@@ -34,31 +33,39 @@ def least_gap(look: Look, watched: int, carriers: bool, floor: int, observer: Ob
     `look` makes a projection, `carriers` tells whether phases can be forgotten. What the observer raises passes
     through.
     """
-    cap = max(floor, 0) + 1
+    known = max(floor, 0)
+    cap = known + 1
     while True:
         for forget in (True, False) if carriers else (False,):
             projection = look(Manner(forget, True, False, watched, cap))
-            best, later = _below_cap(projection.initial(), projection, observer)
+            best, later = _below_cap(projection, known, observer)
             if best is None and not later:
                 return Least(0, None, projection)
             if best is None:
+                known = cap
                 break
+            known = gap_in(projection, best)
             if not forget:
-                return Least(gap_in(projection, best), best, projection)
+                return Least(known, best, projection)
         cap *= _WIDER
 
 
-def _below_cap(initial: Iterable[Hop], projection: Projection, observer: Observer) -> tuple[Node | None, bool]:
-    """The node with the least gap below the cap, and whether something follows at the cap or later."""
+def _below_cap(projection: Projection, known: int, observer: Observer) -> tuple[Node | None, bool]:
+    """The node with the least gap below the cap, and whether something follows at the cap or later.
+
+    No gap is shorter than `known`: the search ends with one that is as short.
+    """
     best: Node | None = None
     later = False
-    for node in nodes(initial, observer):
+    for node in nodes(projection.initial(), observer):
         if not node.location.hot or not ticks(node.location, node.zone):
             continue
         if _key(node).ended != LATELY:
             later = True
         elif best is None or gap_in(projection, node) < gap_in(projection, best):
             best = node
+            if gap_in(projection, best) <= known:
+                break
     return best, later
 
 

@@ -10,14 +10,16 @@ from seqcheck.drive import Cell, Drive, Fixed, Follow, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.certify import Data, cover
+from seqcheck.proving.gaps import least_gap
 from seqcheck.proving.keys import Key
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
-from seqcheck.proving.screen import Map, Places, screened
+from seqcheck.proving.screen import Map, Places, least_after, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
-from seqcheck.proving.tracing import trace_of
+from seqcheck.proving.tracing import gap_trace, trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
+from seqcheck.zones import INFINITE
 
 Observer = Callable[[int], None]
 
@@ -47,6 +49,17 @@ class Refuted:
     overlap: int | None
     zones: int
     greatest: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Gap:
+    """How soon after one literal of a safe hazard all others can be possible, at the soonest (ps); None: never.
+
+    In `trace` the literal, prolonged by 1 ps more than that, meets the others.
+    """
+
+    time: int | None
+    trace: Trace | None
 
 
 @dataclass(slots=True)
@@ -117,6 +130,30 @@ class Prover:
         count.next_search()
         projection = Projection(looking, self._firmware(looking, punctual), manner)
         return projection if first_hazard(projection.initial(), count) is None else None
+
+    def gap(self, hazard: Hazard, watched: int, observer: Observer) -> Gap:
+        """The least gap of a safe hazard after the literal at place `watched`: its margin in that direction.
+
+        With interlocks and with firmware as late as the drive allows. What the observer raises passes through.
+        """
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+        count = _Count(observer)
+        floor = 0
+        if len(hazard.literals) == 2 and not looking.locks:
+            bound = least_after(looking, self._map(self._firmware(looking, punctual=False), count), watched)
+            if bound is not None and bound >= INFINITE:
+                return Gap(None, None)
+            floor = bound or 0
+        firmware = self._firmware(looking, punctual=True)
+
+        def look(manner: Manner) -> Projection:
+            count.next_search()
+            return Projection(looking, firmware, manner)
+
+        least = least_gap(look, watched, bool(looking.carriers), floor, count)
+        if least.node is None:
+            return Gap(None, None)
+        return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
 
     def _screened(self, looking: View, here: Map, apart: Places) -> Data:
         """The proof of the screen as data; hazards that share a map share the list of its states."""

@@ -76,6 +76,23 @@ def screened(view: View, here: Map) -> Places | None:
     return next((pair for pair in pairs if Pairing(view, here, *pair).apart()), None)
 
 
+def least_after(view: View, here: Map, leaving: int) -> int | None:
+    """A lower bound of the gap after one of two literals that the screen keeps apart, INFINITE where the other never
+    comes after it; None where it does not keep them apart.
+
+    Between their commands lies the least time found; the possibility of the one outlasts its command by `fall` at most,
+    that of the other lags behind by `rise`. The third condition of the screen leaves no earlier command to reckon with.
+    """
+    pairing = Pairing(view, here, 0, 1)
+    points = pairing.points()
+    if points is None or not pairing.apart():
+        return None
+    least = pairing.least(points, leaving)
+    if least >= INFINITE:
+        return least
+    return least + pairing.delays[1 - leaving].rise - pairing.delays[leaving].fall
+
+
 class Pairing:
     """Two literals over the map of a firmware."""
 
@@ -95,7 +112,7 @@ class Pairing:
         points = self.points()
         if points is None:
             return False
-        one_way, other_way = self._least(points, 0), self._least(points, 1)
+        one_way, other_way = self.least(points, 0), self.least(points, 1)
         first, second = self.delays
         if one_way < first.fall - second.rise or other_way < second.fall - first.rise:
             return False
@@ -177,7 +194,7 @@ class Pairing:
             return True
         return pair[0] == pair[1] if cells[0] == cells[1] else pair != (C_ON, C_ON)
 
-    def _least(self, points: set[Point], leaving: int) -> int:
+    def least(self, points: set[Point], leaving: int) -> int:
         """The least time from the command of one literal going away to the other's coming."""
         sources: dict[int, set[tuple[int, Pair, bool]]] = {}
         coming = 1 - leaving

@@ -3,7 +3,7 @@
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 
-from seqcheck.circuit import shorting_sets
+from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, NeverRule, Rule
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
@@ -20,7 +20,15 @@ Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
 """A hazard with its cover, the run that shows it, or None where neither is at hand."""
 
-PROVEN_CHECKS = (Check.SHORT, Check.OVERLAP, Check.NO_PATH, Check.HELD_BY_INTERLOCK, Check.PUNCTUAL)
+PROVEN_CHECKS = (
+    Check.SHORT,
+    Check.OVERLAP,
+    Check.OPEN_WINDING,
+    Check.ROW_MEANING,
+    Check.NO_PATH,
+    Check.HELD_BY_INTERLOCK,
+    Check.PUNCTUAL,
+)
 """What this version looks for; a file or a call that asks for another check is refused."""
 
 _RULES: dict[type[Rule], str] = {
@@ -50,10 +58,10 @@ def check(
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
     findings: list[Finding] = list(_without_path(drive))
-    for hazard in shorting_sets(drive.stage):
+    for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)):
         verdict = _judged(prover, hazard, observer, kept)
         verdicts.append(verdict)
-        if isinstance(verdict, Safe):
+        if isinstance(verdict, Safe) and not hazard.currents:
             findings += _held_by_interlock(prover, hazard, observer)
     findings += _punctual(drive, verdicts)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
@@ -72,16 +80,6 @@ def refuse(drive: Drive) -> None:
     found = [
         Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
         for rule in drive.rules
-    ]
-    found += [
-        Problem(one.place, "not-proven-yet", "'must flow' cannot be proven yet", way_out)
-        for one in drive.stage.windings
-        if one.must_flow
-    ]
-    found += [
-        Problem(mode.means.place, "not-proven-yet", "'means' cannot be proven yet", way_out)
-        for mode in drive.modes.values()
-        if mode.means
     ]
     found += [
         Problem(waiver.place, "not-proven-yet", "'waive' is not served yet", way_out) for waiver in drive.waivers
@@ -123,9 +121,15 @@ def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) ->
         replayed = replay(drive, trace)
     except NotPermitted as fault:
         raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
-    check = Check.SHORT if proof.held else Check.OVERLAP
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
-    return Unsafe(hazard, check, _place(drive, proof, replayed), trace, replayed, proof.overlap, remedy, proof.greatest)
+    place, check = _place(drive, proof, replayed), _check_of(hazard, proof.held)
+    return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held)
+
+
+def _check_of(hazard: Hazard, held: str | None) -> Check:
+    if hazard.currents:
+        return Check.OPEN_WINDING
+    return Check.SHORT if held else Check.OVERLAP
 
 
 def _named(hazard: Hazard) -> str:

@@ -7,8 +7,7 @@ from random import Random
 import pytest
 from reading import drive_of
 
-from seqcheck import circuit
-from seqcheck.circuit import contradicted, shorting_sets
+from seqcheck.circuit import contradicted, graph, shorting_sets
 from seqcheck.drive import Above, Capacitor, Conducts, Diode, Rails, Sources, Stage, Switch
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problems
@@ -283,7 +282,7 @@ def test_too_many_sets_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
     """Never cut short: 3 · 3 = 9 sets are listed or refused."""
     ladder = stage("P N", switches=", ".join([*(f"A{k} P-x" for k in range(3)), *(f"B{k} x-N" for k in range(3))]))
     assert len(shorting_sets(ladder)) == 9
-    monkeypatch.setattr(circuit, "MOST_SETS", 8)
+    monkeypatch.setattr(graph, "MOST_SETS", 8)
     with pytest.raises(Problems) as caught:
         shorting_sets(ladder)
     (problem,) = caught.value.found

@@ -62,8 +62,11 @@ def _next(firmware: Firmware, state: State) -> Iterator[tuple[int, State, bool]]
 
 
 def screened(view: View, here: Map) -> bool:
-    """Whether some pair of the hazard's literals never meets."""
-    places = range(len(view.hazard.literals))
+    """Whether some pair of the hazard's literals never meets.
+
+    Only switches that are wanted on are looked at: what a carrier's dead time keeps apart is their conduction.
+    """
+    places = [place for place, literal in enumerate(view.hazard.literals) if literal.on]
     return any(_Pairing(view, here, first, second).apart() for first, second in combinations(places, 2))
 
 

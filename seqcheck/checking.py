@@ -57,7 +57,7 @@ def check(
     refuse(drive)
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
-    findings: list[Finding] = list(_without_path(drive))
+    findings: list[Finding] = [*_row_meanings(drive), *_without_path(drive)]
     for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)):
         verdict = _judged(prover, hazard, observer, kept)
         verdicts.append(verdict)
@@ -164,6 +164,23 @@ def _without_path(drive: Drive) -> Iterator[Finding]:
         if not drive.paths[switch.name]:
             text = f"'{switch.name}' has no path, so its delays are taken as zero"
             yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
+
+
+def _row_meanings(drive: Drive) -> Iterator[Finding]:
+    """Rows that do not do what their `means` says, with what they do instead."""
+    saying = [mode for mode in drive.modes.values() if mode.means]
+    if not saying:
+        return
+    from seqcheck.circuit.reading import RowReader
+    from seqcheck.reports.does import does, meant
+
+    reader = RowReader(drive)
+    for mode in saying:
+        row = reader.row(mode)
+        if row.amiss and mode.means:
+            text = f"row '{mode.name}' means {meant(mode.means)}, but {row.amiss}; what it does: {does(row)}"
+            way_out = "correct its cells, or what it means"
+            yield Finding(Check.ROW_MEANING, mode.means.place, text, way_out, (mode.name,))
 
 
 def _held_by_interlock(prover: Prover, hazard: Hazard, observer: Observer) -> Iterator[Finding]:

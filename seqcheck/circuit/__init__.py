@@ -1,4 +1,4 @@
-"""The stage as a directed graph: shorting sets, opening sets, what contradicts them, and what a row of the table does."""
+"""The stage as a directed graph: shorting and opening sets, what contradicts them, and what a row of the table does."""
 
 from seqcheck.circuit.facts import contradicted
 from seqcheck.circuit.opening import opening_sets

@@ -59,6 +59,11 @@ def stiff(stage: Stage) -> tuple[Stiff, ...]:
     return (*stage.rails, *stage.sources, *stage.capacitors)
 
 
+def nodes_of(element: Stiff) -> tuple[str, ...]:
+    """The nodes of a stiff element."""
+    return (element.positive, element.negative) if isinstance(element, Capacitor) else element.nodes
+
+
 def stiff_edges(number: int, element: Stiff) -> Iterator[Edge]:
     """Passing a supply from its lower to its upper end; sources and capacitors pass either way."""
     if isinstance(element, Capacitor):

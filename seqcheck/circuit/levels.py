@@ -32,7 +32,8 @@ def links(stage: Stage, on: frozenset[str]) -> list[Link]:
 
 def supplies(stage: Stage) -> frozenset[str]:
     """The nodes of rails and sources."""
-    return frozenset(node for line in (*stage.rails, *stage.sources) for node in line.nodes)
+    lines = [line.nodes for line in stage.rails] + [line.nodes for line in stage.sources]
+    return frozenset(node for nodes in lines for node in nodes)
 
 
 class Order:

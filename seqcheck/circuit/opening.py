@@ -8,7 +8,7 @@ from collections import Counter
 from collections.abc import Iterable, Iterator
 
 from seqcheck.circuit import graph as graphs
-from seqcheck.circuit.graph import NOTHING, Edge, Graph, Needs, conducting, graph_of, least, least_ways, stiff
+from seqcheck.circuit.graph import NOTHING, Edge, Graph, Needs, conducting, graph_of, least, least_ways, nodes_of, stiff
 from seqcheck.drive import Capacitor, CurrentInto, CurrentOut, Stage, Winding
 from seqcheck.hazards import Current, Hazard, Literal
 from seqcheck.messages import Problem, Problems
@@ -58,8 +58,7 @@ def currents(stage: Stage, winding: Winding) -> Iterator[Current]:
 def attached_nodes(stage: Stage) -> set[str]:
     """The nodes at which a switch, a diode or a stiff element stands."""
     found = {node for edge in conducting(stage) for node in (edge.start, edge.end)}
-    found |= {node for line in (*stage.rails, *stage.sources) for node in line.nodes}
-    return found | {node for one in stage.capacitors for node in (one.positive, one.negative)}
+    return found | {node for element in stiff(stage) for node in nodes_of(element)}
 
 
 def needed(stage: Stage, winding: Winding, current: Current) -> Needs:
@@ -86,9 +85,8 @@ def flow_edges(stage: Stage, joined: bool) -> Iterator[Edge]:
     yield from conducting(stage)
     for number, element in enumerate(stiff(stage)):
         capacitor = isinstance(element, Capacitor)
-        nodes = (element.positive, element.negative) if isinstance(element, Capacitor) else element.nodes
-        for start in nodes:
-            yield from (Edge(start, end, None, NOTHING, number) for end in nodes if end != start)
+        for start in nodes_of(element):
+            yield from (Edge(start, end, None, NOTHING, number) for end in nodes_of(element) if end != start)
             if joined and not capacitor:
                 yield Edge(_SUPPLY, start, None, NOTHING, number)
                 yield Edge(start, _SUPPLY, None, NOTHING, number)

@@ -28,6 +28,9 @@ def read_back(drive: Drive, file: str) -> Table:
     return Table(file, drive.title, drive.columns, ends, rows, tuple(_swaps(drive, rows, reader.sets)))
 
 
+_SIDES: tuple[tuple[Cell, Command], ...] = ((Fixed.ON, Command.ON), (Fixed.OFF, Command.OFF))
+
+
 class RowReader:
     """Reads rows of one drive back; `sets` are its shorting sets."""
 
@@ -40,7 +43,8 @@ class RowReader:
         self._ends = tuple(end for end in named if end in attached)
         free = tuple(end for end in self._ends if end not in self._stiff)
         self._phases = free if len(free) == 3 and len(drive.stage.rails) == 1 else ()
-        self._plates = tuple(dict.fromkeys(end for one in drive.stage.capacitors for end in (one.positive, one.negative)))
+        plates = [end for one in drive.stage.capacitors for end in (one.positive, one.negative)]
+        self._plates = tuple(dict.fromkeys(plates))
         self._flow = {joint: list(flow_edges(drive.stage, joint)) for joint in (False, True)}
 
     def row(self, mode: Mode) -> Row:
@@ -86,9 +90,7 @@ class RowReader:
         vector = self._vector([by_name[name] for name in self._phases]) if self._phases and not shorts else None
         return Word(on, shorts, nodes, plates, windings, tuple(dict.fromkeys(stuck)), vector)
 
-    def _node(
-        self, edges: list[Link], order: Order, name: str, flowing: dict[Winding, tuple[Current, ...]]
-    ) -> Node:
+    def _node(self, edges: list[Link], order: Order, name: str, flowing: dict[Winding, tuple[Current, ...]]) -> Node:
         own = [one for winding, possible in flowing.items() if name in winding.ends for one in possible]
         out, into = sources_of(edges, self._stiff, name), sinks_of(edges, self._stiff, name)
         knows_out = any(one.out_of == name for one in own)
@@ -150,7 +152,8 @@ class RowReader:
 def _between(ends: tuple[str, ...], first: Node, second: Node, order: Order) -> Wound:
     """A winding between two levels: braked where they are one, else driven from the higher to the lower."""
     one, other = first.level, second.level
-    assert one is not None and other is not None
+    assert one is not None
+    assert other is not None
     if one == other:
         return Wound(ends, Kind.BRAKED, (), (one,))
     if order.above(other, one):
@@ -200,12 +203,13 @@ def _alternatives(drive: Drive, mode: Mode) -> Iterator[tuple[Cell, ...]]:
 def _choices(drive: Drive, switch: str, cell: Cell) -> list[Cell]:
     if cell is Fixed.FREE:
         resting = drive.pins[switch].resting
-        return {Command.ON: [Fixed.ON], Command.OFF: [Fixed.OFF]}.get(resting, [Fixed.ON, Fixed.OFF])
+        return [side for side, command in _SIDES if resting in (command, Command.UNKNOWN)]
     if cell is not Fixed.KEEP:
         return [cell]
     place = drive.columns.index(switch)
     written: list[Cell] = [mode.cells[place] for mode in drive.modes.values()]
-    for steps in (line.steps for line in (*drive.moves, *drive.trips)):
+    runs = [move.steps for move in drive.moves] + [trip.steps for trip in drive.trips]
+    for steps in runs:
         for step in steps:
             written += [new for name, new in step.writes if name == switch] if isinstance(step, SetStep) else []
     found = [one for old in written if old is not Fixed.KEEP for one in _choices(drive, switch, old)]

@@ -5,6 +5,7 @@ so shorting sets are the minimal sets of switches over all paths.
 """
 
 from collections.abc import Iterator
+from functools import partial
 
 from seqcheck.circuit import graph as graphs
 from seqcheck.circuit.graph import NOTHING, Needs, Stiff, conducting, graph_of, least, least_ways, stiff, stiff_edges
@@ -24,7 +25,7 @@ def shorting_sets(stage: Stage) -> tuple[Hazard, ...]:
     for number, element in enumerate(stiff(stage)):
         for upper, lower, first in _ends(element):
             barred = _barred(stage, number, element)
-            ways = least_ways(graph, upper, barred, lambda count, one=element: _too_many(one, count))
+            ways = least_ways(graph, upper, barred, partial(_too_many, element))
             for switches, needs in ways.get(lower, ()):
                 if not switches:
                     raise Problems([_always(element, upper, lower)])
@@ -62,9 +63,7 @@ def _barred(stage: Stage, number: int, element: Stiff) -> frozenset[int]:
     return frozenset({number, *range(supplies)})
 
 
-def _hazard(
-    switches: frozenset[str], joins: tuple[str, str], alternatives: set[Needs], rank: dict[str, int]
-) -> Hazard:
+def _hazard(switches: frozenset[str], joins: tuple[str, str], alternatives: set[Needs], rank: dict[str, int]) -> Hazard:
     literals = tuple(Literal(name) for name in sorted(switches, key=rank.__getitem__))
     fewest = [one for one in alternatives if not any(other < one for other in alternatives)]
     single = {one for needs in fewest if len(needs) == 1 for one in needs if isinstance(one, Above)}

@@ -17,7 +17,8 @@ def report(table: Table) -> list[Line]:
     found = [*head, (), *_rows(table), *_dead_times(table.rows)]
     if table.swaps:
         found += [(), *_swaps(table)]
-    return [*found, (), *paragraph("What a row does at rest, by the circuit alone; lint proves the rest.", 0, Tone.FAINT)]
+    last = "What a row does at rest, by the circuit alone; lint proves the rest."
+    return [*found, (), *paragraph(last, 0, Tone.FAINT)]
 
 
 def shorting(table: Table) -> list[Row]:

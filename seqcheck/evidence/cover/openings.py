@@ -88,7 +88,7 @@ def opens(stage: Stage, hazard: Hazard) -> bool:
 
 def _flows(stage: Stage) -> Iterator[_Flow]:
     """Every current that must flow, in either direction."""
-    supplies = frozenset(node for line in (*stage.rails, *stage.sources) for node in line.nodes)
+    supplies = frozenset(node for nodes in _supplies(stage) for node in nodes)
     for winding in stage.windings:
         if not winding.must_flow:
             continue
@@ -103,9 +103,7 @@ def _flows(stage: Stage) -> Iterator[_Flow]:
             yield _flow(stage, winding, Current(None, own[0]), end, supplies)
 
 
-def _flow(
-    stage: Stage, winding: Winding, current: Current, starts: frozenset[str], goals: frozenset[str]
-) -> _Flow:
+def _flow(stage: Stage, winding: Winding, current: Current, starts: frozenset[str], goals: frozenset[str]) -> _Flow:
     """A current with what is so meanwhile at the ends of its winding, where no other winding ends."""
     needs: set[Known] = set()
     for end in winding.ends:
@@ -117,10 +115,15 @@ def _flow(
 
 def _attached(stage: Stage, node: str) -> bool:
     """Whether more than windings stands at a node."""
-    lines = [*stage.rails, *stage.sources]
-    pairs = [*((one.positive, one.negative) for one in stage.capacitors), *((one.start, one.end) for one in stage.diodes)]
+    pairs = [(one.positive, one.negative) for one in stage.capacitors]
+    pairs += [(one.start, one.end) for one in stage.diodes]
     pairs += [pole for switch in stage.switches for pole in switch.poles]
-    return any(node in one.nodes for one in lines) or any(node in pair for pair in pairs)
+    return any(node in nodes for nodes in (*_supplies(stage), *pairs))
+
+
+def _supplies(stage: Stage) -> list[tuple[str, ...]]:
+    """The nodes of each line of rails and of sources."""
+    return [one.nodes for one in stage.rails] + [one.nodes for one in stage.sources]
 
 
 def _edges(stage: Stage) -> Iterator[tuple[str, str, str | None]]:
@@ -132,9 +135,7 @@ def _edges(stage: Stage) -> Iterator[tuple[str, str, str | None]]:
                 yield end, start, None if switch.conducts is Conducts.DIODE else switch.name
     for diode in stage.diodes:
         yield diode.start, diode.end, None
-    lines = [one.nodes for one in (*stage.rails, *stage.sources)]
-    lines += [(one.positive, one.negative) for one in stage.capacitors]
-    for nodes in lines:
+    for nodes in (*_supplies(stage), *((one.positive, one.negative) for one in stage.capacitors)):
         yield from ((one, other, None) for one in nodes for other in nodes if one != other)
 
 

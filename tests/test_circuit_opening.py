@@ -176,11 +176,24 @@ def test_known_directions() -> None:
     assert not contradicted(into, [])
 
 
-def test_a_winding_that_nothing_feeds_is_refused() -> None:
+@pytest.mark.parametrize("ends", ["Z", "U Z", "P Z"])
+def test_a_winding_that_stands_alone_at_its_end_is_refused(ends: str) -> None:
+    one = wound(stage("P N", switches="UH P-U"), ends)
     with pytest.raises(Problems) as caught:
-        opening_sets(wound(stage("P N", switches="UH P-U"), "Z"))
+        opening_sets(one)
     (problem,) = caught.value.found
     assert problem.kind == "always-open"
+    assert "at 'Z'" in problem.text
+    assert first_unclaimed(one, ()) is not None
+
+
+def test_a_winding_between_supplies_that_nothing_joins_is_refused() -> None:
+    one = wound(stage("P N, Q M", switches="A P-U one way, B V-M one way"), "U V")
+    with pytest.raises(Problems) as caught:
+        opening_sets(one)
+    (problem,) = caught.value.found
+    assert problem.kind == "always-open"
+    assert first_unclaimed(one, ()) is not None
 
 
 def test_too_many_sets_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:

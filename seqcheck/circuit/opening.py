@@ -21,12 +21,15 @@ def opening_sets(stage: Stage) -> tuple[Hazard, ...]:
     """All minimal sets of switches that open a winding that `must flow`, in the order of the stage's switches.
 
     A direction in which no current can flow whatever the switches do needs no way. Raises Problems if that is so of
-    both directions of a winding, or if there are more ways or sets than MOST_SETS.
+    both directions of a winding, if one stands alone at its end, or if there are more ways or sets than MOST_SETS.
     """
     found: dict[frozenset[str], tuple[list[Current], list[Needs]]] = {}
     for winding in stage.windings:
         if not winding.must_flow:
             continue
+        for end in winding.ends:
+            if end not in attached_nodes(stage) and sum(end in one.ends for one in stage.windings) == 1:
+                raise Problems([_loose(winding, end)])
         flows = [(current, ways) for current in currents(stage, winding) if (ways := _ways(stage, winding, current))]
         if not flows:
             raise Problems([_always(winding)])
@@ -127,6 +130,11 @@ def _hazard(stage: Stage, switches: frozenset[str], opened: list[Current], needs
 def _always(winding: Winding) -> Problem:
     text = "no current can flow through this winding, whatever the switches do"
     return Problem(winding.place, "always-open", text, "check the nodes of the stage, or take 'must flow' out")
+
+
+def _loose(winding: Winding, end: str) -> Problem:
+    text = f"nothing but this winding stands at '{end}', so that no current can flow through it"
+    return Problem(winding.place, "always-open", text, "check its name, or name the other end alone")
 
 
 def _too_many_ways(winding: Winding, count: int) -> Problem:

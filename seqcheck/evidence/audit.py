@@ -75,6 +75,8 @@ def _require_all_shorts(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
 
 def _require_all_openings(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
     missing = first_unclaimed(drive.stage, hazards)
+    if missing is not None and not missing.switches:
+        raise NotProven("No current can flow through a winding that must flow.")
     if missing is not None:
         which = " and ".join(sorted(missing.switches))
         raise NotProven(f"Nothing is said of the winding that is open while none of {which} conducts.")

@@ -33,8 +33,14 @@ _Edges = list[tuple[str, str, str | None]]
 
 
 def first_unclaimed(stage: Stage, hazards: tuple[Hazard, ...]) -> Opening | None:
-    """An open winding that may happen while none of the hazards does; None if there is none. Raises TooLarge."""
+    """An open winding that may happen while none of the hazards does; None if there is none. Raises TooLarge.
+
+    A winding through which no current can ever flow is one that no switch needs to open.
+    """
     edges = list(_edges(stage))
+    for winding in (one for one in stage.windings if one.must_flow):
+        if all(_way(edges, flow, frozenset()) is None for flow in _flows_of(stage, winding)):
+            return Opening(frozenset(), Current(None, None), frozenset())
     for flow in _flows(stage):
         if _way(edges, flow, frozenset()) is None:
             continue  # a current that no switch lets flow never begins
@@ -88,19 +94,23 @@ def opens(stage: Stage, hazard: Hazard) -> bool:
 
 def _flows(stage: Stage) -> Iterator[_Flow]:
     """Every current that must flow, in either direction."""
-    supplies = frozenset(node for nodes in _supplies(stage) for node in nodes)
     for winding in stage.windings:
-        if not winding.must_flow:
-            continue
-        own = [end for end in winding.ends if _attached(stage, end)]
-        if len(own) == 2:
-            one, other = own
-            yield _flow(stage, winding, Current(one, other), frozenset({other}), frozenset({one}))
-            yield _flow(stage, winding, Current(other, one), frozenset({one}), frozenset({other}))
-        elif own:
-            end = frozenset(own)
-            yield _flow(stage, winding, Current(own[0], None), supplies, end)
-            yield _flow(stage, winding, Current(None, own[0]), end, supplies)
+        if winding.must_flow:
+            yield from _flows_of(stage, winding)
+
+
+def _flows_of(stage: Stage, winding: Winding) -> Iterator[_Flow]:
+    own = [end for end in winding.ends if _attached(stage, end)]
+    stars = [end for end in winding.ends if end not in own and sum(end in one.ends for one in stage.windings) > 1]
+    if len(own) == 2:
+        one, other = own
+        yield _flow(stage, winding, Current(one, other), frozenset({other}), frozenset({one}))
+        yield _flow(stage, winding, Current(other, one), frozenset({one}), frozenset({other}))
+    elif own and len(own) + len(stars) == len(winding.ends):
+        supplies = frozenset(node for nodes in _supplies(stage) for node in nodes)
+        end = frozenset(own)
+        yield _flow(stage, winding, Current(own[0], None), supplies, end)
+        yield _flow(stage, winding, Current(None, own[0]), end, supplies)
 
 
 def _flow(stage: Stage, winding: Winding, current: Current, starts: frozenset[str], goals: frozenset[str]) -> _Flow:

@@ -28,7 +28,7 @@ class Node:
 
     `out` are the levels from which current out of the node comes (the highest that have a way; several where their
     order is not known), `into` those to which current into it goes (the lowest); empty where it has no way. `knows_out`
-    and `knows_into` tell which current is possible by what the row knows.
+    and `knows_into` tell which current is possible by what the row knows. `loose`: free over the whole of a supply.
     """
 
     name: str
@@ -36,6 +36,7 @@ class Node:
     into: Levels
     knows_out: bool = True
     knows_into: bool = True
+    loose: bool = False
 
     @property
     def held(self) -> Level | None:
@@ -64,7 +65,7 @@ class Kind(Enum):
 class Wound:
     """A winding of two ends in one word.
 
-    DRIVEN: from `nodes[0]`, at `levels[0]`, to `nodes[1]`. BRAKED: both ends at `levels[0]`, or without a level where
+    DRIVEN: from `nodes[0]`, at `levels[0]`, to `nodes[1]`; or the other way, where it is not `ordered` by what is known. BRAKED: both ends at `levels[0]`, or without a level where
     they are joined by switches alone. HELD: `nodes[0]` at `levels[0]`.
     """
 
@@ -72,6 +73,7 @@ class Wound:
     kind: Kind
     nodes: tuple[str, ...] = ()
     levels: tuple[Level, ...] = ()
+    ordered: bool = True
 
 
 @dataclass(frozen=True, slots=True)

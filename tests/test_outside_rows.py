@@ -178,6 +178,8 @@ def test_the_sixteen_words_of_a_three_level_leg() -> None:
         for node in word.nodes
         if not node.held
     }
+    loose = {bits for bits, word in found.items() if any(node.loose for node in word.nodes) and not word.shorts}
+    assert loose == {bits for bits, levels in between.items() if levels == "NP"}
     assert between == {
         "0000": "NP",
         "1000": "NP",

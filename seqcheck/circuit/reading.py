@@ -7,12 +7,13 @@ from itertools import product
 from math import prod
 
 from seqcheck.circuit.facts import contradicted, opposite
+from seqcheck.circuit.graph import Edge
 from seqcheck.circuit.levels import Link, Order, joined, links, sinks_of, sources_of, supplies
 from seqcheck.circuit.meaning import amiss
 from seqcheck.circuit.opening import attached_nodes, currents, flow_edges, needed
 from seqcheck.circuit.shorting import shorting_sets
 from seqcheck.drive import Carrier, Cell, Command, Drive, Fixed, Follow, Known, Mode, SetStep, Winding
-from seqcheck.effects import Kind, Node, Row, Swap, Table, Vector, Word, Wound
+from seqcheck.effects import Kind, Level, Node, Row, Swap, Table, Vector, Word, Wound
 from seqcheck.hazards import Current, Hazard
 from seqcheck.messages import Problem, Problems
 
@@ -86,7 +87,7 @@ class RowReader:
         shorts = tuple(
             one for one in self.sets if {lit.switch for lit in one.literals} <= on and not contradicted(one, known)
         )
-        stuck = [one for own in flowing.values() for one in own if not self._has_way(one, on)]
+        stuck = [one for winding, own in flowing.items() for one in own if self._stuck(winding, one, on)]
         vector = self._vector([by_name[name] for name in self._phases]) if self._phases and not shorts else None
         return Word(on, shorts, nodes, plates, windings, tuple(dict.fromkeys(stuck)), vector)
 
@@ -95,7 +96,9 @@ class RowReader:
         out, into = sources_of(edges, self._stiff, name), sinks_of(edges, self._stiff, name)
         knows_out = any(one.out_of == name for one in own)
         knows_into = any(one.into == name for one in own)
-        return Node(name, order.highest(out), order.lowest(into), knows_out, knows_into)
+        highest, lowest = order.highest(out), order.lowest(into)
+        ends = [(frozenset({Level(one.nodes[-1])}), frozenset({Level(one.nodes[0])})) for one in self.drive.stage.rails]
+        return Node(name, highest, lowest, knows_out, knows_into, (highest, lowest) in ends)
 
     def _wound(
         self,
@@ -110,7 +113,7 @@ class RowReader:
         if first.held and second.held:
             return _between(ends, first, second, order)
         if possible and all(joined(edges, self._stiff, one.into or "", one.out_of or "") for one in possible):
-            return Wound(ends, Kind.BRAKED)
+            return Wound(ends, Kind.BRAKED, (), (first.level,) if first.level and first.level == second.level else ())
         if len(possible) == 1:
             start, end = (nodes[name] for name in (possible[0].out_of or "", possible[0].into or ""))
             if start.level and end.level and (start.level == end.level or order.above(start.level, end.level)):
@@ -120,19 +123,14 @@ class RowReader:
                 return Wound(ends, Kind.HELD, (node.name,), (node.held,))
         return Wound(ends, Kind.FREE)
 
-    def _has_way(self, current: Current, on: frozenset[str]) -> bool:
-        edges = self._flow[None in (current.out_of, current.into)]
-        goal, start = current.out_of or "", current.into or ""
-        seen, waiting = {start}, [start]
-        while waiting:
-            here = waiting.pop()
-            if here == goal:
-                return True
-            for edge in edges:
-                if edge.start == here and edge.end not in seen and (edge.switch is None or edge.switch in on):
-                    seen.add(edge.end)
-                    waiting.append(edge.end)
-        return False
+    def _stuck(self, winding: Winding, current: Current, on: frozenset[str]) -> bool:
+        """Whether a current that some word lets flow has no way in this one, not through other windings either."""
+        edges = list(self._flow[None in (current.out_of, current.into)])
+        for other in self.drive.stage.windings:
+            if len(other.ends) == 2 and other is not winding:
+                ends = (other.ends, other.ends[::-1])
+                edges += [Edge(start, end, None, frozenset(), None) for start, end in ends]
+        return not _has_way(edges, current, on) and _has_way(edges, current, frozenset(self.drive.columns))
 
     def _vector(self, nodes: list[Node]) -> Vector | None:
         """The voltage of three held phases, or of two with the third free, by the share of the supply at each."""
@@ -149,6 +147,20 @@ class RowReader:
         return Vector(round(phase(whole) * 180 / pi) % 360 if length else None, length)
 
 
+def _has_way(edges: list[Edge], current: Current, on: frozenset[str]) -> bool:
+    goal, start = current.out_of or "", current.into or ""
+    seen, waiting = {start}, [start]
+    while waiting:
+        here = waiting.pop()
+        if here == goal:
+            return True
+        for edge in edges:
+            if edge.start == here and edge.end not in seen and (edge.switch is None or edge.switch in on):
+                seen.add(edge.end)
+                waiting.append(edge.end)
+    return False
+
+
 def _between(ends: tuple[str, ...], first: Node, second: Node, order: Order) -> Wound:
     """A winding between two levels: braked where they are one, else driven from the higher to the lower."""
     one, other = first.level, second.level
@@ -158,7 +170,7 @@ def _between(ends: tuple[str, ...], first: Node, second: Node, order: Order) -> 
         return Wound(ends, Kind.BRAKED, (), (one,))
     if order.above(other, one):
         first, second, one, other = second, first, other, one
-    return Wound(ends, Kind.DRIVEN, (first.name, second.name), (one, other))
+    return Wound(ends, Kind.DRIVEN, (first.name, second.name), (one, other), order.above(one, other))
 
 
 def _possible(drive: Drive, winding: Winding, known: tuple[Known, ...]) -> tuple[Current, ...]:

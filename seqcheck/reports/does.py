@@ -30,7 +30,11 @@ def word_does(word: Word) -> str:
     else:
         paired = {end for one in word.windings for end in one.ends}
         name_them = len(word.windings) + sum(node.name not in paired for node in word.nodes) > 1
-        parts += [(f"{' '.join(one.ends)} " if name_them else "") + _winding(one) for one in word.windings]
+        by_name = {node.name: node for node in word.nodes}
+        for one in word.windings:
+            own = [node for end in one.ends if (node := by_name[end]).level is None and not node.loose]
+            ways = [_node(node) for node in own if node.out or node.into] if one.kind is Kind.FREE else []
+            parts.append((f"{' '.join(one.ends)} " if name_them else "") + ", ".join([_winding(one), *ways]))
         parts += [_node(node) for node in word.nodes if node.name not in paired]
     if word.stuck:
         parts.append(f"no way for {flowing(word.stuck)}")
@@ -42,6 +46,8 @@ def _while(said: str) -> str:
 
 
 def _winding(one: Wound) -> str:
+    if one.kind is Kind.DRIVEN and not one.ordered:
+        return f"driven either way, {one.nodes[0]} at {one.levels[0]}, {one.nodes[1]} at {one.levels[1]}"
     if one.kind is Kind.DRIVEN:
         return f"driven from {one.nodes[0]} to {one.nodes[1]} ({one.levels[0]} to {one.levels[1]})"
     if one.kind is Kind.BRAKED:
@@ -54,6 +60,8 @@ def _winding(one: Wound) -> str:
 def _node(node: Node) -> str:
     if node.level is not None:
         return f"{node.name} at {node.level}"
+    if node.loose:
+        return f"{node.name} free"
     if node.out and node.into:
         return f"{node.name} free between {_several(node.out, 'the highest')} and {_several(node.into, 'the lowest')}"
     if node.out:

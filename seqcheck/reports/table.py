@@ -34,7 +34,7 @@ def _standing(table: Table) -> list[Line]:
         return paragraph(f"{count}. A supply is shorted in {listed(shorts)}.", 0, Tone.BAD)
     if stuck:
         return paragraph(f"{count}. No row shorts a supply. Some current has no way in {listed(stuck)}.", 0, Tone.DOUBT)
-    ways = "; current has a way both ways in all" if table.ends else ""
+    ways = "; every current has a way in all" if table.ends else ""
     return paragraph(f"{count}. No row shorts a supply{ways}.", 0, Tone.GOOD)
 
 

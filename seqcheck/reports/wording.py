@@ -25,14 +25,17 @@ def subject(hazard: Hazard) -> str:
 
 
 def flowing(currents: tuple[Current, ...]) -> str:
-    """Currents in a sentence: `current out of X or into X`, `current from U to V`."""
-    return f"current {listed([_way(one) for one in currents], 'or')}"
+    """Currents in a sentence: `current out of X or into X`, `current from U to V`, `current between U and V`."""
+    return f"current {listed(list(dict.fromkeys(_way(one, currents) for one in currents)), 'or')}"
 
 
-def _way(current: Current) -> str:
-    if current.into is None:
-        return f"out of {current.out_of}"
-    return f"into {current.into}" if current.out_of is None else f"from {current.out_of} to {current.into}"
+def _way(current: Current, among: tuple[Current, ...]) -> str:
+    start, end = current.out_of, current.into
+    if start is None or end is None:
+        return f"into {end}" if start is None else f"out of {start}"
+    if Current(end, start) in among:
+        return f"between {min(start, end)} and {max(start, end)}"
+    return f"from {start} to {end}"
 
 
 def _named(hazard: Hazard) -> str:

@@ -65,8 +65,9 @@ class Kind(Enum):
 class Wound:
     """A winding of two ends in one word.
 
-    DRIVEN: from `nodes[0]`, at `levels[0]`, to `nodes[1]`; or the other way, where it is not `ordered` by what is known. BRAKED: both ends at `levels[0]`, or without a level where
-    they are joined by switches alone. HELD: `nodes[0]` at `levels[0]`.
+    DRIVEN: from `nodes[0]`, at `levels[0]`, to `nodes[1]`, or the other way where it is not `ordered` by what is known.
+    BRAKED: both ends at `levels[0]`, or without a level where they are joined by switches alone. HELD: `nodes[0]` at
+    `levels[0]`.
     """
 
     ends: tuple[str, ...]

@@ -3,7 +3,7 @@
 from cmath import exp, phase, pi
 from collections.abc import Iterator
 from dataclasses import replace
-from itertools import product
+from itertools import combinations, product
 from math import prod
 
 from seqcheck.circuit.facts import contradicted, opposite
@@ -46,6 +46,7 @@ class RowReader:
         self._phases = free if len(free) == 3 and len(drive.stage.rails) == 1 else ()
         plates = [end for one in drive.stage.capacitors for end in (one.positive, one.negative)]
         self._plates = tuple(dict.fromkeys(plates))
+        self._flowing: dict[tuple[Known, ...], dict[Winding, tuple[Current, ...]]] = {}
         self._flow = {joint: list(flow_edges(drive.stage, joint)) for joint in (False, True)}
 
     def row(self, mode: Mode) -> Row:
@@ -75,7 +76,9 @@ class RowReader:
         """What a word of switches does while this is known."""
         stage = self.drive.stage
         edges, order = links(stage, on), Order(stage, known)
-        flowing = {winding: _possible(self.drive, winding, known) for winding in stage.windings}
+        if known not in self._flowing:
+            self._flowing[known] = {winding: _possible(self.drive, winding, known) for winding in stage.windings}
+        flowing = self._flowing[known]
         nodes = tuple(self._node(edges, order, end, flowing) for end in self._ends)
         plates = tuple(self._node(edges, order, name, flowing) for name in self._plates)
         by_name = {node.name: node for node in nodes}
@@ -233,23 +236,24 @@ def _choices(drive: Drive, switch: str, cell: Cell) -> list[Cell]:
 
 def _swaps(drive: Drive, rows: tuple[Row, ...], sets: tuple[Hazard, ...]) -> Iterator[Swap]:
     joins = _joins(drive)
-    for place, first in enumerate(rows):
-        for second in rows[place + 1 :]:
-            names = first.mode.name, second.mode.name
-            direct = names in joins or names[::-1] in joins
-            for one in sets:
-                found = _swapped(drive, first, second, frozenset(literal.switch for literal in one.literals))
-                if found is not None:
-                    yield Swap(*names, *found, direct)
+    owns = [frozenset(literal.switch for literal in one.literals) for one in sets]
+    held = [[{word.on & own for word in row.words} for own in owns] for row in rows]
+    for first, second in combinations(range(len(rows)), 2):
+        names = rows[first].mode.name, rows[second].mode.name
+        direct = names in joins or names[::-1] in joins
+        for place, own in enumerate(owns):
+            found = _swapped(drive, held[first][place], held[second][place], own)
+            if found is not None:
+                yield Swap(*names, *found, direct)
 
 
 Sides = tuple[tuple[str, ...], tuple[str, ...], tuple[str, ...]]
 
 
-def _swapped(drive: Drive, first: Row, second: Row, own: frozenset[str]) -> Sides | None:
-    """How the switches of a shorting set change sides between two rows that do not hold it themselves."""
-    before = {word.on & own for word in first.words}
-    after = {word.on & own for word in second.words}
+def _swapped(
+    drive: Drive, before: set[frozenset[str]], after: set[frozenset[str]], own: frozenset[str]
+) -> Sides | None:
+    """How the switches of a shorting set change sides between two rows, given which of them are on in their words."""
     for one, other in product(before, after):
         if one | other == own and one != own and other != own:
             sides = one - other, other - one, one & other

@@ -3,7 +3,7 @@
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 
-from seqcheck.circuit import shorting_sets
+from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, NeverRule, Rule
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
@@ -30,6 +30,8 @@ PROVEN_CHECKS = (
     Check.AMBIGUOUS,
     Check.STALLED,
     Check.IDLE_WAIVER,
+    Check.OPEN_WINDING,
+    Check.ROW_MEANING,
     Check.NO_PATH,
     Check.HELD_BY_INTERLOCK,
     Check.PUNCTUAL,
@@ -62,11 +64,11 @@ def check(
     refuse(drive)
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
-    findings: list[Finding] = [*graph_findings(drive), *_without_path(drive)]
-    for hazard in shorting_sets(drive.stage):
+    findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
+    for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)):
         verdict = _judged(prover, hazard, observer, kept)
         verdicts.append(verdict)
-        if isinstance(verdict, Safe):
+        if isinstance(verdict, Safe) and not hazard.currents:
             findings += _held_by_interlock(prover, hazard, observer)
     findings += _punctual(drive, verdicts)
     findings += _idle_waivers(drive, verdicts, findings)
@@ -86,16 +88,6 @@ def refuse(drive: Drive) -> None:
     found = [
         Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
         for rule in drive.rules
-    ]
-    found += [
-        Problem(one.place, "not-proven-yet", "'must flow' cannot be proven yet", way_out)
-        for one in drive.stage.windings
-        if one.must_flow
-    ]
-    found += [
-        Problem(mode.means.place, "not-proven-yet", "'means' cannot be proven yet", way_out)
-        for mode in drive.modes.values()
-        if mode.means
     ]
     if found:
         raise Problems(found)
@@ -134,9 +126,15 @@ def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) ->
         replayed = replay(drive, trace)
     except NotPermitted as fault:
         raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
-    check = Check.SHORT if proof.held else Check.OVERLAP
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
-    return Unsafe(hazard, check, _place(drive, proof, replayed), trace, replayed, proof.overlap, remedy, proof.greatest)
+    place, check = _place(drive, proof, replayed), _check_of(hazard, proof.held)
+    return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held)
+
+
+def _check_of(hazard: Hazard, held: str | None) -> Check:
+    if hazard.currents:
+        return Check.OPEN_WINDING
+    return Check.SHORT if held else Check.OVERLAP
 
 
 def _named(hazard: Hazard) -> str:
@@ -171,6 +169,23 @@ def _without_path(drive: Drive) -> Iterator[Finding]:
         if not drive.paths[switch.name]:
             text = f"'{switch.name}' has no path, so its delays are taken as zero"
             yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
+
+
+def _row_meanings(drive: Drive) -> Iterator[Finding]:
+    """Rows that do not do what their `means` says, with what they do instead."""
+    saying = [mode for mode in drive.modes.values() if mode.means]
+    if not saying:
+        return
+    from seqcheck.circuit.reading import RowReader
+    from seqcheck.reports.does import does, meant
+
+    reader = RowReader(drive)
+    for mode in saying:
+        row = reader.row(mode)
+        if row.amiss and mode.means:
+            text = f"row '{mode.name}' means {meant(mode.means)}, but {row.amiss}; what it does: {does(row)}"
+            way_out = "correct its cells, or what it means"
+            yield Finding(Check.ROW_MEANING, mode.means.place, text, way_out, (mode.name,))
 
 
 def _held_by_interlock(prover: Prover, hazard: Hazard, observer: Observer) -> Iterator[Finding]:

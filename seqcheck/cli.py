@@ -39,6 +39,9 @@ folder you are in, '-' standard input."""
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
+_ROWS = """\
+Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
+way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -115,6 +118,10 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
+    rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
+    rows.add_argument("file", metavar="FILE")
+    rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
@@ -128,6 +135,8 @@ def _run(arguments: list[str]) -> int:
         asked = _parser().parse_args(arguments)
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
+        if asked.command == "rows":
+            return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         form = _one_of("--as", asked.form, FORMS)
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         only = frozenset(_check(name) for name in asked.only)
@@ -306,6 +315,22 @@ def _borne_out(found: "Audited") -> str:
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
+
+
+def _rows(file: str, colour: str, out: str | None) -> int:
+    """Read the table of a file back; the exit code."""
+    from seqcheck.circuit.reading import read_back
+    from seqcheck.language import read
+    from seqcheck.reports import screen, table
+
+    try:
+        found = read_back(read(_text(file), file, _text), file)
+    except Problems as problems:
+        return _mistaken(problems)
+    report = table.report(found)
+    painted = _wants_colour(colour, sys.stdout) and not out
+    code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
+    return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
 
 
 def _text(file: str) -> str:

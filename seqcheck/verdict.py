@@ -160,9 +160,9 @@ class Safe:
 class Unsafe:
     """In some run the hazard happens; `trace` is one, replayed.
 
-    `check` is SHORT or OVERLAP (TOGETHER for a `never` rule). `place` is where it happens: the row for SHORT, the move
-    or trip whose run leads to it for OVERLAP. `overlap` is the greatest, in ps, None without end;
-    with `greatest` False a limit was reached, and there may be a longer one.
+    `check` is SHORT or OVERLAP (TOGETHER for a `never` rule, OPEN_WINDING for a winding). `place` is where it happens:
+    the row that itself holds it, named in `row`, else the move or trip whose run leads to it. `overlap` is the
+    greatest, in ps, None without end; with `greatest` False a limit was reached, and there may be a longer one.
     """
 
     hazard: Hazard
@@ -173,6 +173,7 @@ class Unsafe:
     overlap: int | None
     cure: "Cure | None" = None
     greatest: bool = True
+    row: str | None = None
 
 
 @dataclass(frozen=True, slots=True)

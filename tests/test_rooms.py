@@ -17,6 +17,7 @@ LOW_TO_HIGH = (
     "drive",
     "language",
     "hazards",
+    "effects",
     "circuit",
     "verdict",
     "writing",

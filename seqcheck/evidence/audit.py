@@ -7,6 +7,7 @@ from seqcheck.evidence.certificate import Claim, Cover, Evidence, NoEvidence, Po
 from seqcheck.evidence.cover.apart import Ground, require_apart
 from seqcheck.evidence.cover.behaviour import Behaviour
 from seqcheck.evidence.cover.check import NotCovered, check
+from seqcheck.evidence.cover.openings import first_unclaimed, opens
 from seqcheck.evidence.cover.reading import entries, points, stand
 from seqcheck.evidence.cover.scope import Scope, scope
 from seqcheck.evidence.cover.shorts import TooLarge, first_uncovered, shorts
@@ -32,14 +33,14 @@ class Audited:
 
 
 def audit(drive: Drive, evidence: Evidence) -> Audited:
-    """Check all claims and that they are about all shorts of the stage.
+    """Check all claims and that they are about all shorts and open windings of the stage.
 
     Raises NoEvidence where the evidence is of another drive or malformed, NotProven where it does not prove what it
     says.
     """
     if evidence.digest != digest(drive):
         raise NoEvidence("it is of a file that means something else")
-    _require_all_shorts(drive, evidence)
+    _require_all_hazards(drive, evidence)
     auditor = _Auditor(drive, evidence)
     late = [auditor.holds_however_late(claim) for claim in evidence.claims]
     proofs = [claim.proof for claim in evidence.claims]
@@ -51,23 +52,40 @@ def audit(drive: Drive, evidence: Evidence) -> Audited:
     )
 
 
-def _require_all_shorts(drive: Drive, evidence: Evidence) -> None:
+def _require_all_hazards(drive: Drive, evidence: Evidence) -> None:
     hazards = tuple(claim.hazard for claim in evidence.claims)
     for hazard in hazards:
         names = [one.switch for one in hazard.literals]
         if not names or len(set(names)) < len(names) or not set(names) <= set(drive.columns):
             raise NoEvidence("it names switches that the file has not, or none")
-        if not all(one.on for one in hazard.literals):
-            raise NoEvidence("it is about a hazard that is no short")
+        if any(one.on == bool(hazard.currents) for one in hazard.literals):
+            raise NoEvidence("it is about a hazard that is no short and no open winding")
     try:
-        missing = first_uncovered(drive.stage, hazards)
-        wrong = next((hazard for hazard in hazards if not shorts(drive.stage, hazard)), None)
+        _require_all_shorts(drive, tuple(one for one in hazards if not one.currents))
+        _require_all_openings(drive, tuple(one for one in hazards if one.currents))
     except TooLarge as why:
         raise NotProven("The stage has too many ways for current to be walked one by one.") from why
+
+
+def _require_all_shorts(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
+    missing = first_uncovered(drive.stage, hazards)
     if missing is not None:
         raise NotProven(f"Nothing is said of the short through {' and '.join(sorted(missing.switches))}.")
-    if wrong is not None:
-        raise NotProven(f"{_named(wrong)} together short nothing.")
+    for hazard in hazards:
+        if not shorts(drive.stage, hazard):
+            raise NotProven(f"{_named(hazard)} together short nothing.")
+
+
+def _require_all_openings(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
+    missing = first_unclaimed(drive.stage, hazards)
+    if missing is not None and not missing.switches:
+        raise NotProven("No current can flow through a winding that must flow.")
+    if missing is not None:
+        which = " and ".join(sorted(missing.switches))
+        raise NotProven(f"Nothing is said of the winding that is open while none of {which} conducts.")
+    for hazard in hazards:
+        if not opens(drive.stage, hazard):
+            raise NotProven(f"{_named(hazard)} together do not open what is said.")
 
 
 class _Auditor:

@@ -7,9 +7,9 @@ import json
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from seqcheck.drive import Above, Cell, Drive, Fixed, Follow, cell_text
+from seqcheck.drive import Above, Cell, CurrentInto, CurrentOut, Drive, Fixed, Follow, Known, cell_text, fact_words
 from seqcheck.evidence.digest import digest
-from seqcheck.hazards import Hazard, Literal
+from seqcheck.hazards import Current, Hazard, Literal
 from seqcheck.verdict import Act, Cycles, Event, Phase, Trace
 
 FORMAT = "seqcheck evidence 2"
@@ -145,8 +145,10 @@ def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None, lists: list[
     said: dict[str, object] = {
         "literals": [[one.switch, one.on] for one in hazard.literals],
         "joins": list(hazard.joins),
-        "needs": [sorted([one.upper, one.lower] for one in needs) for needs in hazard.needs],
+        "needs": [sorted(list(fact_words(one)) for one in needs) for needs in hazard.needs],
     }
+    if hazard.currents:
+        said["opens"] = [[one.out_of, one.into] for one in hazard.currents]
     if proof is None:
         return {**said, "verdict": "undecided"}
     if isinstance(proof, Trace):
@@ -215,6 +217,7 @@ def _claimed(claim: Fields, lists: int) -> Claim:
         tuple(_literal(claim, one) for one in claim.rows("literals")),
         claim.texts("joins"),
         tuple(_needs(claim, one) for one in claim.rows("needs")),
+        tuple(_current(claim, one) for one in claim.rows("opens")) if "opens" in claim.data else (),
     )
     verdict = claim.text("verdict")
     if verdict == "undecided":
@@ -239,11 +242,26 @@ def _literal(claim: Fields, value: object) -> Literal:
     return Literal(switch, on)
 
 
-def _needs(claim: Fields, value: object) -> frozenset[Above]:
-    pairs = [claim.strings(one, "needs") for one in claim.listed(value, "needs")]
-    if not all(len(pair) == 2 for pair in pairs):
-        raise claim.wrong("needs")
-    return frozenset(Above(*pair) for pair in pairs)
+def _needs(claim: Fields, value: object) -> frozenset[Known]:
+    return frozenset(_known(claim, claim.strings(one, "needs")) for one in claim.listed(value, "needs"))
+
+
+def _known(claim: Fields, words: tuple[str, ...]) -> Known:
+    match words:
+        case (upper, "above", lower):
+            return Above(upper, lower)
+        case ("current", "out of", node):
+            return CurrentOut(node)
+        case ("current", "into", node):
+            return CurrentInto(node)
+    raise claim.wrong("needs")
+
+
+def _current(claim: Fields, value: object) -> Current:
+    out_of, into = claim.listed(value, "opens", 2)
+    if not all(one is None or isinstance(one, str) for one in (out_of, into)):
+        raise claim.wrong("opens")
+    return Current(out_of, into)  # type: ignore[arg-type]
 
 
 def _trace(hazard: Hazard, run: Fields) -> Trace:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from itertools import product
 
 from seqcheck.circuit import contradicted
-from seqcheck.drive import Above, Update
+from seqcheck.drive import Update
 from seqcheck.firmware import Edge, Firmware, State
 from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts
 from seqcheck.proving.cutting import Cutting
@@ -185,8 +185,7 @@ class Projection:
             possible[self.manner.gap] = key.ended != NOT_ENDED
         if not all(possible):
             return False
-        facts = [fact for fact in self.firmware.facts(key.state) if isinstance(fact, Above)]
-        return not contradicted(self.view.hazard, facts)
+        return not contradicted(self.view.hazard, self.firmware.facts(key.state))
 
     def _clocks_of(self, key: Key) -> Iterator[Clock]:
         hot = self._hot(key)

@@ -71,8 +71,11 @@ def _next(firmware: Firmware, state: State) -> Iterator[tuple[int, State, bool]]
 
 
 def screened(view: View, here: Map) -> Places | None:
-    """The places of two of the hazard's literals that never meet, if least times alone show it."""
-    pairs = combinations(range(len(view.hazard.literals)), 2)
+    """The places of two of the hazard's literals that never meet, if least times alone show it.
+
+    Only switches that are wanted on are looked at: what a carrier's dead time keeps apart is their conduction.
+    """
+    pairs = combinations((place for place, literal in enumerate(view.hazard.literals) if literal.on), 2)
     return next((pair for pair in pairs if Pairing(view, here, *pair).apart()), None)
 
 

@@ -8,7 +8,7 @@ import json
 from collections.abc import Iterable, Iterator, Sequence
 
 from seqcheck import __version__
-from seqcheck.drive import Drive, cell_text
+from seqcheck.drive import Drive, cell_text, fact_words
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem
 from seqcheck.reports.acts import Note, told
@@ -120,7 +120,7 @@ def _hazard(hazard: Hazard) -> Fields:
     return {
         "literals": [{"switch": one.switch, "on": one.on} for one in hazard.literals],
         "joins": list(hazard.joins),
-        "needs": [[[one.upper, one.lower] for one in sorted(way, key=str)] for way in hazard.needs],
+        "needs": [[list(fact_words(one)) for one in sorted(way, key=str)] for way in hazard.needs],
         "text": subject(hazard),
         "condition": condition(hazard),
     }

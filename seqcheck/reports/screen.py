@@ -94,8 +94,11 @@ def _proven(safe: Sequence[Safe]) -> list[Line]:
     if not safe:
         return []
     shorts = sum(1 for one in safe if one.hazard.joins)
+    openings = sum(1 for one in safe if one.hazard.currents)
+    others = len(safe) - shorts - openings
     kinds = [counted(shorts, "shorting set")] if shorts else []
-    kinds += [counted(len(safe) - shorts, "forbidden combination")] if len(safe) > shorts else []
+    kinds += [counted(openings, "opening set")] if openings else []
+    kinds += [counted(others, "forbidden combination")] if others else []
     found = [line(Piece("proven", Tone.GOOD), f"  {listed(kinds)}: possible in no run")]
     zoned = [one for one in safe if one.method != "screen"]
     ways = [f"{len(safe) - len(zoned)} by least times alone"] if len(safe) > len(zoned) else []

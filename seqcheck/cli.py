@@ -15,11 +15,11 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
-from seqcheck.drive import Drive
+from seqcheck.drive import Drive, Library
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
-from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
+from seqcheck.verdict import WARNINGS, Answer, Check, Outcome, Undecided, Unsafe
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
@@ -31,7 +31,7 @@ _STDIN = "-"
 
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
-folder you are in, '-' standard input."""
+folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove."""
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
@@ -121,9 +121,9 @@ def _run(arguments: list[str]) -> int:
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
         return int(stop.code or 0)
-    outcomes, code = _lint(files, only, limits, shelf)
-    if outcomes:
-        text = _written(outcomes, form, _wants_colour(colour, sys.stdout) and not asked.out)
+    answers, code = _lint(files, only, limits, shelf)
+    if answers:
+        text = _written(answers, form, _wants_colour(colour, sys.stdout) and not asked.out)
         code = _worse(code, _deliver(text, asked.out))
     return code
 
@@ -210,24 +210,26 @@ class _Shelf:
 
 def _lint(
     files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None
-) -> tuple[list[Outcome], int]:
-    outcomes, code = [], PROVEN
+) -> tuple[list[Answer], int]:
+    answers, code = [], PROVEN
     for file in files:
         answer, own = _one_file(file, only, limits, shelf)
         code = _worse(code, own)
         if answer is not None:
-            outcomes.append(answer)
-    return outcomes, code
+            answers.append(answer)
+    return answers, code
 
 
 def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
-) -> tuple[Outcome | None, int]:
+) -> tuple[Answer | None, int]:
     from seqcheck.checking import Fault, check
-    from seqcheck.language import read
+    from seqcheck.language import read_any
 
     try:
-        drive = read(_text(file), file, _text)
+        drive = read_any(_text(file), file, _text)
+        if isinstance(drive, Library):
+            return drive, PROVEN
         kept: list[Kept] | None = None if shelf is None else []
         outcome = check(drive, file, only, _observer(limits), kept)
     except Problems as problems:
@@ -323,14 +325,14 @@ def _worse(one: int, other: int) -> int:
 # Answering
 
 
-def _written(outcomes: list[Outcome], form: str, colour: bool) -> str:
+def _written(answers: list[Answer], form: str, colour: bool) -> str:
     if form == "lines":
         from seqcheck.reports import lines
 
-        return lines.report(outcomes)
+        return lines.report(answers)
     from seqcheck.reports import screen
 
-    report = screen.report(outcomes)
+    report = screen.report(answers)
     return screen.coloured(report) if colour else screen.plain(report)
 
 

@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 from enum import Enum
 
-from seqcheck.drive import Cell, Command, Drive
+from seqcheck.drive import Cell, Command, Drive, Library
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.source import Place
 
@@ -191,3 +191,7 @@ class Outcome:
     drive: Drive
     verdicts: tuple[Verdict, ...]
     findings: tuple[Finding, ...] = ()
+
+
+Answer = Outcome | Library
+"""What there is to say of one file: a library has nothing to prove."""

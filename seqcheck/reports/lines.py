@@ -1,25 +1,32 @@
 """The form for other programs' error lists: one finding a line, as the GNU coding standards set out (section 4.4).
 
 `file:line:column: severity: message [check]`; the column counts code points from 1. A severity is `error` for what
-keeps the file from being proven, `warning`, or `note` for what a waiver lets pass.
+keeps the file from being proven, `warning`, or `note` for what a waiver lets pass and for a file with nothing to prove.
 """
 
 from collections.abc import Iterator, Sequence
 
-from seqcheck.drive import Drive
+from seqcheck.drive import Drive, Library
 from seqcheck.reports.pieces import visible
 from seqcheck.reports.waived import reason
-from seqcheck.reports.wording import cure, happens, subject, where
+from seqcheck.reports.wording import NOTHING, SERVES, cure, happens, subject, where
 from seqcheck.source import Place
-from seqcheck.verdict import WARNINGS, Finding, Outcome, Undecided, Unsafe
+from seqcheck.verdict import WARNINGS, Answer, Finding, Outcome, Undecided, Unsafe
 
 
-def report(outcomes: Sequence[Outcome]) -> str:
+def report(answers: Sequence[Answer]) -> str:
     """All findings, in the order of the files and of their places in each; empty where everything is proven."""
-    return "".join(f"{text}\n" for one in outcomes for _, text in sorted(_found(one), key=lambda pair: pair[0]))
+    return "".join(f"{text}\n" for one in answers for _, text in sorted(_found(one), key=lambda pair: pair[0]))
 
 
-def _found(outcome: Outcome) -> Iterator[tuple[Place, str]]:
+def _found(outcome: Answer) -> Iterator[tuple[Place, str]]:
+    if isinstance(outcome, Library):
+        yield outcome.place, _line(outcome.place, "note", [f"{NOTHING}: {SERVES}"], "nothing-to-prove")
+        return
+    yield from _judged(outcome)
+
+
+def _judged(outcome: Outcome) -> Iterator[tuple[Place, str]]:
     drive = outcome.drive
     for verdict in outcome.verdicts:
         if isinstance(verdict, Unsafe):

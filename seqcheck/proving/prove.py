@@ -87,7 +87,7 @@ class Prover:
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         count, keep = _Count(observer), self.keep and interlocks
-        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+        if self._screened(looking):
             return Proven("screen", 0, True, self._cover_of_screened(looking, count) if keep else None)
         for punctual in (False, True):
             for manner in _manners(looking):
@@ -101,12 +101,12 @@ class Prover:
         """Whether the hazard happens in no run, with the drive's interlocks and firmware in time; without a trace."""
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = _Count(observer)
-        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+        if self._screened(looking):
             return True
-        return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
+        return any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking))
 
-    def _safe(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> bool:
-        return self._searched(looking, punctual, manner, count) is not None
+    def _screened(self, looking: View) -> bool:
+        return screened(looking, self._map(self._firmware(looking, punctual=False)))
 
     def _searched(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> Projection | None:
         """The projection with all that its search stored, if no run in it brings the hazard."""

@@ -19,11 +19,13 @@ from seqcheck.proving.keys import (
     FALL,
     HOLD,
     LOCK,
+    NEVER_HELD,
     OVER,
     PAUSE,
     PIN,
     RISE,
     SILENT,
+    SPAN,
     WAITING,
     Clock,
     Happening,
@@ -55,6 +57,7 @@ class Projection:
 
     def __init__(self, view: View, firmware: Firmware, manner: Manner) -> None:
         drive = view.drive
+        assert max(len(drive.columns), len(drive.carriers), len(view.locks)) < SPAN - 1, "each clock has its name"
         self.view = view
         self.firmware = firmware
         self.manner = manner
@@ -352,7 +355,7 @@ def _holds(old: Key | None, key: Key, written: int) -> dict[int, int]:
     """Where the clock of each held group comes from; groups written just now have a name that none had before."""
     renaming = {}
     for place, (number, bits) in enumerate(key.state.put[2]):
-        renaming[HOLD + place] = HOLD + 99
+        renaming[HOLD + place] = NEVER_HELD
         if old is None or bits & written:
             continue
         for before, (other, were) in enumerate(old.state.put[2]):

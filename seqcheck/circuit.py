@@ -2,11 +2,9 @@
 
 Every edge carries the switch that must be on for it to conduct (none: it always conducts) and the polarity that it
 needs. A short is a closed way through a stiff element; by breaking the way open at that element it becomes a directed
-path, so shorting sets are the minimal sets of switches over all paths, found by a label-correcting search whose labels
-are antichains of sets (the multi-criteria form of Bellman-Ford's algorithm).
+path, so shorting sets are the minimal sets of switches over all paths.
 """
 
-from collections import deque
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
@@ -15,12 +13,14 @@ import networkx as nx
 from seqcheck.drive import Above, Capacitor, Conducts, Rails, Sources, Stage, Switch
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.messages import Problem, Problems
+from seqcheck.ways import Passage, Quest, Steps, TooMuch, least_ways
 
 MOST_SETS = 1000
-"""More minimal sets than this at one node, or in all, are refused."""
+"""More minimal sets than this are refused, with their number."""
+MOST_STEPS = 3_000_000
+"""Comparisons of sets, two seconds or three, after which counting is given up, and the stage is refused."""
 
 Needs = frozenset[Above]
-Label = tuple[frozenset[str], Needs]
 Graph = nx.MultiDiGraph  # nodes are names of the stage; edges carry `switch`, `needs` and `element`
 
 NOTHING: Needs = frozenset()
@@ -83,23 +83,104 @@ def _stiff_edges(number: int, element: Rails | Sources | Capacitor) -> Iterator[
 def shorting_sets(stage: Stage) -> tuple[Hazard, ...]:
     """All minimal sets of switches that short the stage, in the order of the stage's switches.
 
-    Raises Problems if a supply is shorted whatever the switches do, or if there are more sets than MOST_SETS.
+    Raises Problems if a supply is shorted whatever the switches do, or if there are more sets than MOST_SETS: with
+    their number, or with the number counted where MOST_STEPS are not enough to count them all.
     """
-    graph = conduction_graph(stage)
-    found: dict[frozenset[str], tuple[tuple[str, str], set[Needs]]] = {}
+    rank = {switch.name: place for place, switch in enumerate(stage.switches)}
+    found, whole = _found(stage)
+    kept: list[Hazard] = []
+    try:
+        for hazard in _least([_hazard(switches, *one, rank) for switches, one in found.items()]):
+            kept.append(hazard)
+    except TooMuch:
+        whole = False
+    if not whole or len(kept) > MOST_SETS:
+        raise Problems([_too_many(stage, len(kept), whole)])
+    return tuple(sorted(kept, key=lambda one: (len(one.literals), [rank[lit.switch] for lit in one.literals])))
+
+
+def _found(stage: Stage) -> tuple[dict[frozenset[str], tuple[tuple[str, str], set[Needs]]], bool]:
+    """By switches what they join and the conditions under which they do, fewest switches first; whether that is all.
+
+    Of several supplies that the same switches short the first of the file is named.
+    """
+    quests, elements = [], []
     for number, element in enumerate(_stiff(stage)):
         for upper, lower, first in _ends(element):
-            barred = _barred(stage, number, element)
-            for switches, needs in _paths(graph, upper, barred, element).get(lower, ()):
-                if not switches:
-                    raise Problems([_always(element, upper, lower)])
-                found.setdefault(switches, ((upper, lower), set()))[1].add(needs | first)
-    rank = {switch.name: place for place, switch in enumerate(stage.switches)}
-    hazards = [_hazard(switches, joins, alternatives, rank) for switches, (joins, alternatives) in found.items()]
-    kept = [one for one in hazards if not any(_implies(other, one) for other in hazards if other is not one)]
-    if len(kept) > MOST_SETS:
-        raise Problems([_too_many(_stiff(stage)[0], len(kept))])
-    return tuple(sorted(kept, key=lambda one: (len(one.literals), [rank[lit.switch] for lit in one.literals])))
+            avoided = _nodes(element) - {upper, lower}
+            quests.append(Quest(upper, lower, _barred(stage, number, element), avoided, first))
+            elements.append(element)
+    numbers: dict[frozenset[str], int] = {}
+    needed: dict[frozenset[str], set[Needs]] = {}
+    whole = True
+    try:
+        for number, (switches, needs) in least_ways(_passages(stage), quests, Steps(MOST_STEPS)):
+            if not switches:
+                raise Problems([_always(elements[number], quests[number].start, quests[number].end)])
+            numbers[switches] = min(number, numbers.get(switches, number))
+            needed.setdefault(switches, set()).add(needs)
+    except TooMuch:
+        whole = False
+    joined = {switches: (quests[number].start, quests[number].end) for switches, number in numbers.items()}
+    return {switches: (joined[switches], needs) for switches, needs in needed.items()}, whole
+
+
+def _passages(stage: Stage) -> dict[str, list[Passage]]:
+    """The graph as the search reads it."""
+    graph = conduction_graph(stage)
+    return {
+        node: [
+            Passage(end, frozenset(filter(None, (data["switch"],))), data["needs"], data["element"])
+            for _, end, data in sorted(graph.out_edges(node, data=True), key=_edge_key)
+        ]
+        for node in graph
+    }
+
+
+def _least(hazards: list[Hazard]) -> Iterator[Hazard]:
+    """Those that some polarity brings without any smaller one; `hazards` come fewest switches first.
+
+    Raises TooMuch after all that the steps were enough for.
+    """
+    steps = Steps(MOST_STEPS)
+    sizes: dict[int, list[tuple[frozenset[str], Hazard]]] = {}
+    for hazard in hazards:
+        switches = frozenset(one.switch for one in hazard.literals)
+        smaller: list[Hazard] = []
+        for size, others in sizes.items():
+            if size < len(switches):
+                steps.spend(len(others))
+                smaller += [other for some, other in others if some < switches]
+        sizes.setdefault(len(switches), []).append((switches, hazard))
+        if not _happens_only_with(hazard, smaller, steps):
+            yield hazard
+
+
+def _happens_only_with(hazard: Hazard, smaller: list[Hazard], steps: Steps) -> bool:
+    """Whether one of the smaller sets shorts under every polarity under which the hazard's does.
+
+    A polarity is an order of the sources; an order that a relation leaves open can be completed, so it is enough to
+    look for a relation without circle that holds what the hazard needs and excludes all that the smaller ones need.
+    """
+    if not smaller or any(not one.needs for one in smaller):
+        return bool(smaller)
+    avoided = [needs for one in smaller for needs in one.needs]
+    return not any(_avoids(needs, avoided, steps) for needs in hazard.needs or (NOTHING,))
+
+
+def _avoids(known: Needs, needs: list[Needs], steps: Steps) -> bool:
+    """Whether an order of the sources has all that is known and none of the needs as a whole."""
+    steps.spend(len(needs) + 1)
+    if not _possible(known):
+        return False
+    still = [one for one in needs if _possible(known | one)]
+    if not still:
+        return True
+    return any(_avoids(known | {Above(one.lower, one.upper)}, still, steps) for one in still[0])
+
+
+def _possible(above: Needs) -> bool:
+    return not _circle({(one.upper, one.lower) for one in above})
 
 
 def _ends(element: Rails | Sources | Capacitor) -> Iterator[tuple[str, str, Needs]]:
@@ -116,6 +197,14 @@ def _ends(element: Rails | Sources | Capacitor) -> Iterator[tuple[str, str, Need
                 yield lower, upper, frozenset({Above(lower, upper)})
 
 
+def _nodes(element: Rails | Sources | Capacitor) -> frozenset[str]:
+    """The nodes of an element; a path that passes one between its ends consists of two that short the element too.
+
+    Under every polarity under which the whole shorts, one of the two does.
+    """
+    return frozenset((element.positive, element.negative) if isinstance(element, Capacitor) else element.nodes)
+
+
 def _barred(stage: Stage, number: int, element: Rails | Sources | Capacitor) -> frozenset[int]:
     """Stiff elements that a path may not pass: the one it shorts; for a capacitor also every supply.
 
@@ -127,44 +216,8 @@ def _barred(stage: Stage, number: int, element: Rails | Sources | Capacitor) -> 
     return frozenset({number, *range(supplies)})
 
 
-def _paths(
-    graph: "Graph[str]", start: str, barred: frozenset[int], element: Rails | Sources | Capacitor
-) -> dict[str, list[Label]]:
-    """For every node the minimal (switches, needs) of the paths from `start` to it."""
-    labels: dict[str, list[Label]] = {start: [(frozenset(), NOTHING)]}
-    waiting = deque([start])
-    while waiting:
-        node = waiting.popleft()
-        for _, end, data in sorted(graph.out_edges(node, data=True), key=_edge_key):
-            if data["element"] in barred:
-                continue
-            switch = frozenset() if data["switch"] is None else frozenset({data["switch"]})
-            grown = [(switches | switch, needs | data["needs"]) for switches, needs in labels[node]]
-            if _merge(labels.setdefault(end, []), grown) and end not in waiting:
-                waiting.append(end)
-            if len(labels[end]) > MOST_SETS:
-                raise Problems([_too_many(element, len(labels[end]))])
-    return labels
-
-
 def _edge_key(edge: tuple[str, str, dict[str, object]]) -> tuple[str, str]:
     return edge[1], str(edge[2]["switch"])
-
-
-def _merge(kept: list[Label], grown: Iterable[Label]) -> bool:
-    """Add what no kept label dominates, drop what the new ones dominate; whether anything was added."""
-    added = False
-    for label in grown:
-        if any(_dominates(one, label) for one in kept):
-            continue
-        kept[:] = [one for one in kept if not _dominates(label, one)]
-        kept.append(label)
-        added = True
-    return added
-
-
-def _dominates(one: Label, other: Label) -> bool:
-    return one[0] <= other[0] and one[1] <= other[1]
 
 
 def _hazard(
@@ -176,15 +229,6 @@ def _hazard(
     always = NOTHING in least or any(Above(one.lower, one.upper) in single for one in single)
     needs = () if always else tuple(sorted(least, key=lambda one: sorted(map(str, one))))
     return Hazard(literals, joins, needs)
-
-
-def _implies(smaller: Hazard, larger: Hazard) -> bool:
-    """Whether `smaller` happens whenever `larger` does: fewer switches, and no more needs."""
-    few = {one.switch for one in smaller.literals}
-    many = {one.switch for one in larger.literals}
-    if not few < many:
-        return False
-    return not smaller.needs or (bool(larger.needs) and all(any(n <= m for n in smaller.needs) for m in larger.needs))
 
 
 def contradicted(hazard: Hazard, facts: Iterable[Above]) -> bool:
@@ -199,7 +243,14 @@ def contradicted(hazard: Hazard, facts: Iterable[Above]) -> bool:
 
 
 def _circle(above: set[tuple[str, str]]) -> bool:
-    return not nx.is_directed_acyclic_graph(nx.DiGraph(above))
+    """Whether something would be above itself: what has nothing above it is taken away while there is such."""
+    while above:
+        lowers = {lower for _, lower in above}
+        rest = {pair for pair in above if pair[0] in lowers}
+        if len(rest) == len(above):
+            return True
+        above = rest
+    return False
 
 
 def _always(element: Rails | Sources | Capacitor, upper: str, lower: str) -> Problem:
@@ -207,6 +258,11 @@ def _always(element: Rails | Sources | Capacitor, upper: str, lower: str) -> Pro
     return Problem(element.place, "always-shorted", text, "check the diodes and capacitors of the stage")
 
 
-def _too_many(element: Rails | Sources | Capacitor, count: int) -> Problem:
-    text = f"the stage has more than {count - 1} minimal shorting sets; at most {MOST_SETS} are proven"
-    return Problem(element.place, "too-many-sets", text, "describe the stage in several files")
+def _too_many(stage: Stage, count: int, whole: bool) -> Problem:
+    text = f"the stage has {count} minimal shorting sets; at most {MOST_SETS} are proven"
+    if not whole:
+        text = (
+            f"the stage has too many ways to count its minimal shorting sets; {count} were found when it was given up"
+            f" after {MOST_STEPS} steps, and at most {MOST_SETS} in all are proven"
+        )
+    return Problem(_stiff(stage)[0].place, "too-many-sets", text, "describe the stage in several files")

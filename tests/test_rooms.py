@@ -16,6 +16,7 @@ LOW_TO_HIGH = (
     "drive",
     "language",
     "hazards",
+    "ways",
     "circuit",
     "verdict",
     "writing",
@@ -31,7 +32,7 @@ LOW_TO_HIGH = (
 )
 
 APART = {
-    "evidence": {"writing", "firmware", "zones", "proving", "circuit"},
+    "evidence": {"writing", "firmware", "zones", "proving", "ways", "circuit"},
     "proving": {"language", "evidence"},
     "reports": {"language", "circuit", "writing", "firmware", "zones", "proving", "evidence", "sizing"},
 }

@@ -348,19 +348,33 @@ def _wants_colour(asked: str, stream: TextIO) -> bool:
 
 
 def _deliver(text: str, out: str | None) -> int:
-    if out is None:
-        sys.stdout.write(text)
-        return PROVEN
-    target = Path(out)
-    draft = target.parent / f".{target.name}.{os.getpid()}.part"
     try:
-        if not target.name or target.is_dir():
-            raise IsADirectoryError(errno.EISDIR, "it is a folder")
-        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
-        draft.replace(target)
+        if out is None:
+            sys.stdout.write(text)
+            sys.stdout.flush()
+        else:
+            _write(Path(out), text)
+    except BrokenPipeError:
+        raise
     except (OSError, ValueError) as refusal:
-        with contextlib.suppress(OSError, ValueError):
-            draft.unlink()
-        _complain(f"error: cannot write '{printable(out)}': {getattr(refusal, 'strerror', None) or refusal}")
+        name = "the answer" if out is None else f"'{printable(out)}'"
+        _complain(f"error: cannot write {name}: {getattr(refusal, 'strerror', None) or refusal}")
         return WRONG
     return PROVEN
+
+
+def _write(out: Path, text: str) -> None:
+    """Write a file whole or not at all, whatever stops it; what is no file, as a pipe or device, is written to."""
+    if not out.name or out.is_dir():
+        raise IsADirectoryError(errno.EISDIR, "it is a folder")
+    if out.exists() and not out.is_file():
+        out.write_text(text, encoding="utf-8", errors="backslashreplace")
+        return
+    target = Path(os.path.realpath(out))
+    draft = target.parent / f".{target.name}.{os.getpid()}.part"
+    try:
+        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
+        draft.replace(target)
+    finally:
+        with contextlib.suppress(OSError, ValueError):
+            draft.unlink()

@@ -109,7 +109,8 @@ def test_joining_takes_the_level_of_the_moment() -> None:
 def test_switches_that_follow_nothing_known() -> None:
     refused(modulated(), JOINED, 9, "X follows k, whose phase the trace does not give")
     refused(modulated(), "0 begins 0; 0 writes X k, Y ~k", 9, "X follows k", literals="X, Z", phases=())
-    permitted(modulated(), JOINED, 9, literals="Z")
+    walk = permitted(modulated(), JOINED, 9, literals="Z")
+    assert walk.pins.commands == {"X": Command.UNKNOWN, "Y": Command.UNKNOWN, "Z": OFF}
     refused(modulated(), "0 rises m", 9, "no phase of carrier m", phases=LOW)
 
 
@@ -214,6 +215,14 @@ def test_the_oldest_write_still_held_counts() -> None:
     )
     permitted(built, back + "100 rises k; 100 updates k", 110, phases=LOW)
     refused(built, back + "100 rises k; 101 updates k", 110, "must act by 100 ps", phases=LOW)
+
+
+def test_writing_back_what_is_in_effect_holds_nothing() -> None:
+    built = modulated(Update.WITHIN_PERIOD)
+    back = "0 begins 0; 0 writes X k, Y ~k; 0 enters run; 20 updates k; 30 begins 3; 30 writes X on, Y off; "
+    back += "30 enters held; 35 begins 0; 35 writes X k, Y ~k; 35 enters run; 45 rises k; 70 falls k; "
+    permitted(built, back + "115 rises k; 140 falls k", 150, phases=LOW)
+    refused(built, back + "75 updates k", 80, "no write is held for carrier k", phases=LOW)
 
 
 # Released pins

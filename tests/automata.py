@@ -48,19 +48,19 @@ class Automaton:
     places: tuple[Place, ...]
     starts: tuple[Way, ...]
 
-    def initial(self) -> list[Hop]:
-        """The ways to start, over locations that have not been searched yet."""
+    def initial(self, *, measured: bool = True) -> list[Hop]:
+        """The ways to start, over locations that have not been searched yet; with a clock for overlaps if wanted."""
         locations: list[Location] = []
 
-        def hop(way: Way, measured: bool) -> Hop:
+        def hop(way: Way, going_on: bool) -> Hop:
             target = locations[way.to]
-            measure = ((MEASURE if measured else 0),) if target.measure else ()
+            measure = ((MEASURE if going_on else 0),) if target.measure else ()
             sources = (*way.sources, *measure)
             return Hop(way.least, way.most, sources, way.after, target, way.cost, way)
 
         for number, place in enumerate(self.places):
-            size = 4 if place.hot else 3
-            constants = [0, MOST, MOST, *([INFINITE] if place.hot else [])]
+            size = 4 if place.hot and measured else 3
+            constants = [0, MOST, MOST, *([INFINITE] if size == 4 else [])]
             locations.append(
                 Location(
                     number,
@@ -70,7 +70,7 @@ class Automaton:
                     constants,
                     place.hot,
                     place.held,
-                    MEASURE if place.hot else 0,
+                    MEASURE if size == 4 else 0,
                     lambda here: tuple(hop(way, here.hot) for way in self.places[number_of(here)].ways),
                 )
             )

@@ -49,7 +49,7 @@ def fewest(states: dict[State, int]) -> int | None:
 def test_first_hazard_and_first_held(seed: int) -> None:
     """They are found if and only if there are any, after the fewest moves."""
     one = drawn(seed)
-    hot, held = first_hazard(one.initial(), at_most(3000)), first_held(one.initial(), at_most(3000))
+    hot, held = (find(one.initial(measured=False), at_most(3000)) for find in (first_hazard, first_held))
     assert (None if hot is None else hot.moves) == fewest(overlapping(one))
     assert (None if held is None else held.moves) == fewest(overlapping(one, held=True))
     for node in (hot, held):

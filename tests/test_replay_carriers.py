@@ -217,6 +217,19 @@ def test_the_oldest_write_still_held_counts() -> None:
     refused(built, back + "100 rises k; 101 updates k", 110, "must act by 100 ps", phases=LOW)
 
 
+def test_each_carrier_has_its_own_oldest_write() -> None:
+    k = carrier("k", span(20, 30), span(40, 50), update=Update.WITHIN_PERIOD, period=100)
+    m = carrier("m", span(20, 30), span(40, 50), update=Update.WITHIN_PERIOD, period=70)
+    rows = {"idle": "off off", "one": "k off", "two": "k m"}
+    built = drive("X Y", rows, moves=(move("idle", "one"), move("one", "two")), carriers=(k, m))
+    begun = "0 begins 0; 0 writes X k; 0 enters one; 35 begins 1; 35 writes Y m; 35 enters two; "
+    begun += "40 rises k; 40 rises m; 60 falls k; 60 falls m; "
+    both = (*LOW, Phase("m", False, 0, True))
+    permitted(built, begun + "100 updates k; 105 updates m", 105, phases=both)
+    refused(built, begun + "106 rises m", 106, "the writes held for k must act by 100 ps", phases=both)
+    refused(built, begun + "100 updates k; 106 rises m", 106, "the writes held for m must act by 105 ps", phases=both)
+
+
 def test_writing_back_what_is_in_effect_holds_nothing() -> None:
     built = modulated(Update.WITHIN_PERIOD)
     back = "0 begins 0; 0 writes X k, Y ~k; 0 enters run; 20 updates k; 30 begins 3; 30 writes X on, Y off; "

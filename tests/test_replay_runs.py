@@ -51,9 +51,16 @@ def test_a_move_that_writes_once() -> None:
     refused(built, "7 begins 0: X on; 7 enters open", 9, "writes are events of their own")
 
 
+def test_without_a_clock_line_firmware_keeps_its_waits() -> None:
+    built = replace(drive("X Y", ROWS, moves=(move("idle", "open", steps=steps((5, 8))),)), clock=None)
+    permitted(built, "0 begins 0; 8 writes X on; 8 enters open", 9)
+    refused(built, "0 begins 0; 9 writes X on", 9, "must go on by 8 ps")
+
+
 def test_what_is_no_event_of_a_drive() -> None:
     built = drive("X Y", ROWS, moves=(move("idle", "open"), move("open", "idle")))
     refused(built, "7 begins 2", 9, "no such move")
+    refused(built, "7 begins -1", 9, "no such move")
     refused(built, "7 begins trip 0", 9, "no such move or trip")
     refused(built, "7 begins 1", 9, "rests in idle, which the move does not leave")
     refused(built, "7 writes X on", 9, "the firmware rests in idle")

@@ -33,12 +33,14 @@ class Way:
 
 @dataclass(frozen=True, slots=True)
 class Place:
-    """What a location is: an overlap (`hot`), one held by a mode, the bounds of its clocks, its ways out."""
+    """What a location is: an overlap (`hot`), one held by a mode, the bounds of its clocks, its ways out, or a pause in
+    an overlap (no drawn one is)."""
 
     hot: bool
     held: bool
     bounds: tuple[Bound, ...]
     ways: tuple[Way, ...]
+    paused: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,7 +61,7 @@ class Automaton:
             return Hop(way.least, way.most, sources, way.after, target, way.cost, way)
 
         for number, place in enumerate(self.places):
-            size = 4 if place.hot and measured else 3
+            size = 4 if (place.hot or place.paused) and measured else 3
             constants = [0, MOST, MOST, *([INFINITE] if size == 4 else [])]
             locations.append(
                 Location(
@@ -71,7 +73,7 @@ class Automaton:
                     place.hot,
                     place.held,
                     MEASURE if size == 4 else 0,
-                    lambda here: tuple(hop(way, here.hot) for way in self.places[number_of(here)].ways),
+                    lambda here: tuple(hop(way, here.measure > 0) for way in self.places[number_of(here)].ways),
                 )
             )
         return [hop(way, False) for way in self.starts]

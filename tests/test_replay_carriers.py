@@ -69,7 +69,8 @@ def test_the_age_at_time_0_counts() -> None:
 )
 def test_phases_that_no_carrier_has(phase: Phase, why: str) -> None:
     refused(modulated(dead=span(5, 10)), "", 9, why, phases=(phase,))
-    permitted(modulated(dead=span(5, 10)), "", 0, phases=(Phase("k", True, 10, False),))
+    for age in (0, 10):
+        permitted(modulated(dead=span(5, 10)), "", 0, phases=(Phase("k", True, age, False),))
 
 
 def test_phases_of_carriers_without_dead_time_or_level() -> None:

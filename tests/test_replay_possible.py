@@ -159,6 +159,13 @@ def test_difference_never_makes_a_short_pulse_vanish() -> None:
     assert delays(built, hazard("X, Y"))[Literal("Y")] == Delays(70, 70)  # 60 + 20, but no more than its out
 
 
+def test_a_part_may_stand_twice_on_a_path() -> None:
+    shared, twice = part((10, 40), (5, 60), difference=20), part((4, 5), (6, 7), name="twice")
+    built = drive("X Y", {"idle": "off off"}, paths={"X": (shared, twice, twice), "Y": (shared,)})
+    # X follows Y's 60 with 20 less and its own 2 · 4 more; Y follows X's 60 + 2 · 7 with 20 + 2 · 7 less
+    assert delays(built, hazard("X, Y")) == {Literal("X"): Delays(48, 74), Literal("Y"): Delays(40, 60)}
+
+
 def test_a_wide_difference_changes_nothing() -> None:
     shared = part((10, 40), (5, 60), difference=55)
     built = drive("X Y", {"idle": "off off"}, paths={"X": (shared,), "Y": (shared,)})

@@ -3,11 +3,12 @@
 from dataclasses import replace
 
 import pytest
-from automata import CLOCKS, Automaton, Place, State, Way, drawn
+from automata import CLOCKS, MEASURE, Automaton, Place, State, Way, drawn, number_of
 from proofs import at_most
 
 from seqcheck.proving import search
-from seqcheck.proving.location import Bound, Hop
+from seqcheck.proving.circles import goes_on
+from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.proving.schedule import Difference, Path, constraints_of, potentials, scheduled
 from seqcheck.proving.search import (
     LimitReached,
@@ -16,9 +17,10 @@ from seqcheck.proving.search import (
     first_held,
     hops_out,
     longest_overlap,
+    successor,
     ticks,
 )
-from seqcheck.zones import FRESH, INFINITE
+from seqcheck.zones import FRESH, INFINITE, delayed
 
 SEEDS = range(200)
 LONG = 40
@@ -148,6 +150,96 @@ def test_searches_come_to_all_kinds_of_ends() -> None:
     assert min(times.count(kind) for kind in ("none", "endless", "ends")) >= 10
 
 
+# Circles
+
+
+def ring(*hops: tuple[tuple[Bound, ...], tuple[Bound, ...], tuple[int, int]], bounds: tuple[Bound, ...]) -> bool:
+    """Whether an overlap goes on growing through locations with the same bounds, hop by hop in a circle.
+
+    A hop has least and most and the sources of clocks 1 and 2; all clocks are 0 at the beginning.
+    """
+    constants = [0, *[200] * 2, INFINITE]
+    count = len(hops)
+    here = [Location(at, 4, bounds, constants, constants, True, False, MEASURE, lambda _: ()) for at in range(count)]
+    circle = [
+        Hop(least, most, (*sources, MEASURE), (), here[(at + 1) % count], 0, None)
+        for at, (least, most, sources) in enumerate(hops)
+    ]
+    zone = delayed([0] * 16, 4, bounds)
+    assert zone is not None
+    return goes_on(here[0], zone, circle, successor)
+
+
+ONE = (Bound(2, 1),)
+"""A bound, or a guard, of 1 ps on clock 2."""
+FAR = (Bound(1, 100),)
+
+
+def test_a_circle_that_takes_time_goes_on() -> None:
+    """Each round takes 1 ps; clock 1 is started anew, or it runs through without any bound."""
+    assert ring((ONE, (), (0, 0)), bounds=ONE)
+    assert ring((ONE, (), (1, 0)), bounds=ONE)
+    assert ring((ONE, (), (FRESH, 0)), bounds=ONE)
+    assert ring((ONE, FAR, (0, 0)), bounds=ONE)
+    assert ring((ONE, (), (0, 0)), bounds=(*ONE, *FAR))
+
+
+def test_a_bound_on_a_clock_that_runs_through_ends_a_circle() -> None:
+    """In sight of the first rounds it grows; after a hundred it is over."""
+    assert not ring((ONE, FAR, (1, 0)), bounds=ONE)
+    assert not ring((ONE, (), (1, 0)), bounds=(*ONE, *FAR))
+    assert not ring((ONE, (), (1, 0)), (ONE, FAR, (1, 0)), bounds=ONE)
+
+
+def test_a_bound_on_a_clock_that_the_circle_starts_ends_nothing() -> None:
+    """It is over before the next round."""
+    assert ring((ONE, (), (0, 0)), (ONE, FAR, (1, 0)), bounds=ONE)
+    assert ring((ONE, (), (0, 0)), (ONE, FAR, (1, 0)), (ONE, (), (0, 0)), bounds=ONE)
+
+
+def test_a_circle_that_takes_no_time_or_cannot_be_taken_does_not_go_on() -> None:
+    """Nothing grows on it."""
+    assert not ring(((), (), (0, 0)), bounds=(Bound(2, 0),))
+    assert not ring(((Bound(2, 5),), (), (0, 0)), bounds=ONE)
+    assert not ring((ONE, (), (0, 0)), ((Bound(2, 5),), (), (0, 0)), bounds=ONE)
+
+
+# How an overlap ends
+
+
+def ending(one: Automaton) -> list[int]:
+    """The places to which the longest overlap's last hops lead."""
+    found = longest_overlap(one.initial(), at_most(50), None)
+    assert found is not None
+    return [number_of(hop.target) for hop in hops_out(found.node)]
+
+
+def test_the_longest_overlap_ends_by_a_hop_that_is_there_then() -> None:
+    """The first way out comes too soon, the second cannot be taken, the third is one of two steps."""
+    soon = Way(3, most=(Bound(1, 2),))
+    barred = Way(3, (Bound(2, 9),))
+    places = (
+        Place(True, False, (Bound(1, 3),), (soon, barred, Way(1, sources=(0, 2)))),
+        Place(True, False, (Bound(1, 0),), (Way(2, (Bound(1, 1),)), Way(3))),
+        Place(True, False, (), ()),
+        Place(False, False, (), ()),
+    )
+    assert ending(Automaton(places, CHAIN.starts)) == [1, 3]
+    assert ending(Automaton((replace(places[0], ways=(soon, barred)), *places[1:]), CHAIN.starts)) == []
+
+
+def test_an_ending_that_is_far_is_not_looked_for(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Of four steps that take no time; each is looked at with all before it."""
+    still = [Place(True, False, (Bound(1, 0),), (Way(to),)) for to in (3, 4, 1)]
+    first = Place(True, False, (Bound(1, 3),), (Way(2, sources=(0, 2)),))
+    one = Automaton((first, Place(False, False, (), ()), *still), CHAIN.starts)
+    assert ending(one) == [2, 3, 4, 1]
+    monkeypatch.setattr(search, "_MOST_ENDINGS", 4)
+    assert ending(one) == [2, 3, 4, 1]
+    monkeypatch.setattr(search, "_MOST_ENDINGS", 3)
+    assert ending(one) == []
+
+
 # Limits
 
 LINKS = [Place(True, False, (Bound(1, stay),), (Way(stay, sources=(0, 2)),)) for stay in (1, 2, 3)]
@@ -155,13 +247,51 @@ CHAIN = Automaton((*LINKS, Place(True, False, (Bound(1, 1),), ())), (Way(0, sour
 """Overlaps of 1, 3, 6 and 7 ps, a zone each."""
 
 
-def test_every_zone_is_told() -> None:
+@pytest.mark.parametrize("cost", [0, 1])
+def test_every_zone_is_told(cost: int) -> None:
     """The observer hears of each stored zone once, in order."""
     told: list[int] = []
-    found = longest_overlap(CHAIN.initial(), told.append, None)
+    links = tuple(replace(place, ways=tuple(replace(way, cost=cost) for way in place.ways)) for place in CHAIN.places)
+    found = longest_overlap(replace(CHAIN, places=links).initial(), told.append, None)
     assert found is not None
-    assert (found.time, found.greatest, found.node.moves) == (7, True, 3)
+    assert (found.time, found.greatest, found.node.moves) == (7, True, 3 * cost)
     assert told == [1, 2, 3, 4]
+
+
+@pytest.mark.parametrize("cost", [0, 1])
+def test_what_a_later_zone_includes_is_not_searched_further(cost: int) -> None:
+    """Two ways to a place, the later one with more of clock 1: from there on it is gone through once."""
+    late, any_time = Way(1, (Bound(1, 1),), sources=(1, 0)), Way(1, sources=(1, 0))
+    for ways, zones in (((late, any_time), 4), ((any_time, late), 3)):
+        places = [
+            Place(False, False, (Bound(1, 2),), tuple(replace(way, cost=cost) for way in ways)),
+            Place(False, False, (), (Way(2, (Bound(2, 1),), sources=(0, 0)),)),
+            Place(False, False, (), ()),
+        ]
+        told: list[int] = []
+        assert first_hazard(Automaton(tuple(places), CHAIN.starts).initial(), told.append) is None
+        assert len(told) == zones
+
+
+def test_a_pause_is_no_overlap() -> None:
+    """It counts where the overlap goes on after it for a while, not where it only comes back for no time."""
+    for stay, right in ((0, 1), (1, 7)):
+        places = (
+            Place(True, False, (Bound(1, 1),), (Way(1, sources=(0, 0)),)),
+            Place(False, False, (Bound(1, 5),), (Way(2, sources=(0, 0)),), paused=True),
+            Place(True, False, (Bound(1, stay),), ()),
+        )
+        found = longest_overlap(Automaton(places, CHAIN.starts).initial(), at_most(9), None)
+        assert found is not None
+        assert found.time == right
+
+
+def test_without_a_measuring_clock_there_is_no_circle_and_no_ending() -> None:
+    """Nothing tells how long the overlap has lasted."""
+    node = first_hazard(CHAIN.initial(measured=False), at_most(9))
+    assert node is not None
+    assert endless_circle(node) == []
+    assert hops_out(node) == []
 
 
 def test_a_limit_ends_a_search() -> None:

@@ -189,7 +189,7 @@ def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | N
         complete = False
     if best is None:
         return None
-    return Longest(None if most >= INFINITE else most, best, complete or most >= INFINITE)
+    return Longest(None if most >= INFINITE else most, best, complete)
 
 
 def _measured(node: Node) -> int:

@@ -3,24 +3,39 @@
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 
-from seqcheck.circuit import shorting_sets
+from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, NeverRule, Rule
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem, Problems
+from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
 from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
+from seqcheck.reports.waived import lets_pass
 from seqcheck.sizing import cure
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Trace, Undecided, Unsafe, Verdict
 
 Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
-"""A hazard with its cover, the run that shows it, or None where neither is at hand."""
+"""A hazard with the proof that it is safe as data, the run that shows it, or None where neither is at hand."""
 
-PROVEN_CHECKS = (Check.SHORT, Check.OVERLAP, Check.NO_PATH, Check.HELD_BY_INTERLOCK, Check.PUNCTUAL)
+PROVEN_CHECKS = (
+    Check.SHORT,
+    Check.OVERLAP,
+    Check.UNREACHABLE,
+    Check.NO_WAY_BACK,
+    Check.AMBIGUOUS,
+    Check.STALLED,
+    Check.IDLE_WAIVER,
+    Check.OPEN_WINDING,
+    Check.ROW_MEANING,
+    Check.NO_PATH,
+    Check.HELD_BY_INTERLOCK,
+    Check.PUNCTUAL,
+)
 """What this version looks for; a file or a call that asks for another check is refused."""
 
 _RULES: dict[type[Rule], str] = {
@@ -49,13 +64,14 @@ def check(
     refuse(drive)
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
-    findings: list[Finding] = list(_without_path(drive))
-    for hazard in shorting_sets(drive.stage):
+    findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
+    for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)):
         verdict = _judged(prover, hazard, observer, kept)
         verdicts.append(verdict)
-        if isinstance(verdict, Safe):
+        if isinstance(verdict, Safe) and not hazard.currents:
             findings += _held_by_interlock(prover, hazard, observer)
     findings += _punctual(drive, verdicts)
+    findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
 
 
@@ -73,32 +89,19 @@ def refuse(drive: Drive) -> None:
         Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
         for rule in drive.rules
     ]
-    found += [
-        Problem(one.place, "not-proven-yet", "'must flow' cannot be proven yet", way_out)
-        for one in drive.stage.windings
-        if one.must_flow
-    ]
-    found += [
-        Problem(mode.means.place, "not-proven-yet", "'means' cannot be proven yet", way_out)
-        for mode in drive.modes.values()
-        if mode.means
-    ]
-    found += [
-        Problem(waiver.place, "not-proven-yet", "'waive' is not served yet", way_out) for waiver in drive.waivers
-    ]
     if found:
         raise Problems(found)
 
 
 def _judged(prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None) -> Verdict:
-    verdict, cover = _with_cover(prover, hazard, observer)
+    verdict, proof = _with_proof(prover, hazard, observer)
     if kept is not None:
-        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else cover))
+        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
     return verdict
 
 
-def _with_cover(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Verdict, Data | None]:
-    """The verdict on a hazard, and its cover where it is safe and the prover keeps it."""
+def _with_proof(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Verdict, Data | None]:
+    """The verdict on a hazard, and its proof as data where it is safe and the prover keeps it."""
     seen = 0
 
     def counting(count: int) -> None:
@@ -113,7 +116,7 @@ def _with_cover(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Ver
     except Infeasible as fault:
         raise Fault(f"a path to {_named(hazard)} has no times") from fault
     if isinstance(proof, Proven):
-        return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.cover
+        return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.data
     return _unsafe(prover.drive, hazard, proof, observer), None
 
 
@@ -123,9 +126,15 @@ def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) ->
         replayed = replay(drive, trace)
     except NotPermitted as fault:
         raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
-    check = Check.SHORT if proof.held else Check.OVERLAP
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
-    return Unsafe(hazard, check, _place(drive, proof, replayed), trace, replayed, proof.overlap, remedy, proof.greatest)
+    place, check = _place(drive, proof, replayed), _check_of(hazard, proof.held)
+    return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held)
+
+
+def _check_of(hazard: Hazard, held: str | None) -> Check:
+    if hazard.currents:
+        return Check.OPEN_WINDING
+    return Check.SHORT if held else Check.OVERLAP
 
 
 def _named(hazard: Hazard) -> str:
@@ -162,6 +171,23 @@ def _without_path(drive: Drive) -> Iterator[Finding]:
             yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
 
 
+def _row_meanings(drive: Drive) -> Iterator[Finding]:
+    """Rows that do not do what their `means` says, with what they do instead."""
+    saying = [mode for mode in drive.modes.values() if mode.means]
+    if not saying:
+        return
+    from seqcheck.circuit.reading import RowReader
+    from seqcheck.reports.does import does, meant
+
+    reader = RowReader(drive)
+    for mode in saying:
+        row = reader.row(mode)
+        if row.amiss and mode.means:
+            text = f"row '{mode.name}' means {meant(mode.means)}, but {row.amiss}; what it does: {does(row)}"
+            way_out = "correct its cells, or what it means"
+            yield Finding(Check.ROW_MEANING, mode.means.place, text, way_out, (mode.name,))
+
+
 def _held_by_interlock(prover: Prover, hazard: Hazard, observer: Observer) -> Iterator[Finding]:
     """A short that only the interlock prevents is worth knowing."""
     drive = prover.drive
@@ -189,3 +215,23 @@ def _punctual(drive: Drive, verdicts: list[Verdict]) -> Iterator[Finding]:
         place = drive.clock.place if drive.clock else drive.place
         names = tuple(literal.switch for literal in hazard.literals)
         yield Finding(Check.PUNCTUAL, place, text, "say how late it can be: 'clock ..., late by at most ...'", names)
+
+
+_OF_A_VERDICT = frozenset(
+    {Check.SHORT.value, Check.OVERLAP.value, Check.HELD_BY_INTERLOCK.value, Check.PUNCTUAL.value}
+)
+"""Checks whose findings are not all known while a hazard is undecided."""
+
+
+def _idle_waivers(drive: Drive, verdicts: list[Verdict], findings: list[Finding]) -> list[Finding]:
+    """A waiver that lets nothing pass is out of date or says the wrong name. No waiver lets such a finding pass."""
+    found: list[Unsafe | Finding] = [*findings, *(one for one in verdicts if isinstance(one, Unsafe))]
+    open_yet = _OF_A_VERDICT if any(isinstance(one, Undecided) for one in verdicts) else frozenset()
+    idle = [
+        one
+        for one in drive.waivers
+        if one.check not in open_yet and not any(lets_pass(one, drive, other) for other in found)
+    ]
+    text = "this waiver matches nothing: there is no '{0.check}' that names '{0.name}'"
+    way_out = "take it out, or name what the finding names"
+    return [Finding(Check.IDLE_WAIVER, one.place, text.format(one), way_out) for one in idle]

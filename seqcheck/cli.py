@@ -19,15 +19,19 @@ from seqcheck.drive import Drive
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
-from seqcheck.verdict import WARNINGS, Check, Outcome, Undecided, Unsafe
+from seqcheck.verdict import WARNINGS, Answer, Check, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
     from seqcheck.evidence.audit import Audited
+    from seqcheck.reports.repository import Repository
 
 PROVEN, FOUND, WRONG, UNDECIDED, FAULT = 0, 1, 2, 3, 4
 _WORST_FIRST = (FAULT, WRONG, FOUND, UNDECIDED, PROVEN)
 _STDIN = "-"
+FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
+_WHATEVER_COMES = ("annotations", "json", "sarif")
+"""The forms that also say which files could not be judged."""
 
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
@@ -35,10 +39,13 @@ folder you are in, '-' standard input."""
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
+_ROWS = """\
+Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
+way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
 _EXITS = """\
-exit codes: 0 everything asked is proven; 1 a hazard is possible; 2 the input or the call is wrong, nothing was judged;
-3 undecided within the limits given, never to be taken for proven; 4 the program itself is at fault. Where several
-files differ the worst counts, in the order 4, 2, 1, 3, 0."""
+exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
+input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
+program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 3, 0."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,6 +54,15 @@ class Limits:
 
     zones: int | None
     seconds: float | None
+
+
+@dataclass(frozen=True, slots=True)
+class Answering:
+    """How to answer: in what form, with colour where the form has any, and the number of the run that a dump shows."""
+
+    form: str
+    colour: bool
+    run: int | None
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -93,13 +109,19 @@ def _parser() -> argparse.ArgumentParser:
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
     lint = commands.add_parser("lint", help="prove files", description=_LINT, epilog=_EXITS, allow_abbrev=False)
     lint.add_argument("paths", nargs="*", metavar="PATH", default=[])
-    lint.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
+    forms = f"{FORMS[0]} (the default), {_or(FORMS[1:])}"
+    lint.add_argument("--as", dest="form", metavar="FORM", default=FORMS[0], help=forms)
+    lint.add_argument("--run", metavar="N", help="with --as vcd: the N-th counterexample of the screen, not the worst")
     lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="besides hazards say only this")
     lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
+    rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
+    rows.add_argument("file", metavar="FILE")
+    rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
@@ -113,19 +135,24 @@ def _run(arguments: list[str]) -> int:
         asked = _parser().parse_args(arguments)
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
-        form = _one_of("--as", asked.form, ("screen", "lines"))
+        if asked.command == "rows":
+            return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        form = _one_of("--as", asked.form, FORMS)
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         only = frozenset(_check(name) for name in asked.only)
-        limits = Limits(_count(asked.most_zones), _seconds(asked.give_up_after))
+        limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+        answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
         files = list(dict.fromkeys(_files(asked.paths or ["."])))
+        _one_run(answering, files)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
         return int(stop.code or 0)
-    outcomes, code = _lint(files, only, limits, shelf)
-    if outcomes:
-        text = _written(outcomes, form, _wants_colour(colour, sys.stdout) and not asked.out)
-        code = _worse(code, _deliver(text, asked.out))
-    return code
+    answers, code = _lint(files, only, limits, shelf)
+    try:
+        text = _written(answers, answering)
+    except SystemExit as stop:
+        return _worse(code, int(stop.code or 0))
+    return code if text is None else _worse(code, _deliver(text, asked.out))
 
 
 def _wrong(text: str) -> Never:
@@ -150,11 +177,23 @@ def _check(name: str) -> Check:
     _wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
 
 
-def _count(text: str | None) -> int | None:
+def _or(names: Sequence[str]) -> str:
+    return f"{', '.join(names[:-1])} or {names[-1]}"
+
+
+def _one_run(answering: Answering, files: list[str]) -> None:
+    """Refuse what a dump of one run cannot do."""
+    if answering.run is not None and answering.form != "vcd":
+        _wrong("--run says which run '--as vcd' dumps; it needs that form")
+    if answering.form == "vcd" and len(files) > 1:
+        _wrong(f"--as vcd dumps one run of one file, but here are {len(files)} files; name one of them")
+
+
+def _count(option: str, text: str | None) -> int | None:
     if text is None:
         return None
     if not re.fullmatch(r"[0-9]{1,15}", text) or int(text) == 0:
-        _wrong(f"--most-zones must be a whole number above 0, not '{text}'")
+        _wrong(f"{option} must be a whole number above 0, not '{text}'")
     return int(text)
 
 
@@ -210,19 +249,18 @@ class _Shelf:
 
 def _lint(
     files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None
-) -> tuple[list[Outcome], int]:
-    outcomes, code = [], PROVEN
+) -> tuple[list[Answer], int]:
+    answers, code = [], PROVEN
     for file in files:
         answer, own = _one_file(file, only, limits, shelf)
         code = _worse(code, own)
-        if answer is not None:
-            outcomes.append(answer)
-    return outcomes, code
+        answers.append(answer)
+    return answers, code
 
 
 def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
-) -> tuple[Outcome | None, int]:
+) -> tuple[Answer, int]:
     from seqcheck.checking import Fault, check
     from seqcheck.language import read
 
@@ -231,10 +269,10 @@ def _one_file(
         kept: list[Kept] | None = None if shelf is None else []
         outcome = check(drive, file, only, _observer(limits), kept)
     except Problems as problems:
-        return None, _mistaken(problems)
+        return Unread(file, problems.found), _mistaken(problems)
     except Fault as fault:
         _complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
-        return None, FAULT
+        return Failed(file, str(fault)), FAULT
     stored = PROVEN if shelf is None or kept is None else shelf.put(file, drive, kept)
     return outcome, _worse(stored, _exit_of(outcome))
 
@@ -279,6 +317,22 @@ def _borne_out(found: "Audited") -> str:
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
 
 
+def _rows(file: str, colour: str, out: str | None) -> int:
+    """Read the table of a file back; the exit code."""
+    from seqcheck.circuit.reading import read_back
+    from seqcheck.language import read
+    from seqcheck.reports import screen, table
+
+    try:
+        found = read_back(read(_text(file), file, _text), file)
+    except Problems as problems:
+        return _mistaken(problems)
+    report = table.report(found)
+    painted = _wants_colour(colour, sys.stdout) and not out
+    code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
+    return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
+
+
 def _text(file: str) -> str:
     from seqcheck.language import decode
 
@@ -309,9 +363,11 @@ def _observer(limits: Limits) -> Callable[[int], None]:
 
 
 def _exit_of(outcome: Outcome) -> int:
-    if any(isinstance(one, Unsafe) for one in outcome.verdicts):
-        return FOUND
-    if any(finding.check not in WARNINGS for finding in outcome.findings):
+    from seqcheck.reports.waived import reason
+
+    found: list[Unsafe | Finding] = [one for one in outcome.verdicts if isinstance(one, Unsafe)]
+    found += (one for one in outcome.findings if one.check not in WARNINGS)
+    if any(reason(outcome.drive, one) is None for one in found):
         return FOUND
     return UNDECIDED if any(isinstance(one, Undecided) for one in outcome.verdicts) else PROVEN
 
@@ -323,15 +379,52 @@ def _worse(one: int, other: int) -> int:
 # Answering
 
 
-def _written(outcomes: list[Outcome], form: str, colour: bool) -> str:
-    if form == "lines":
-        from seqcheck.reports import lines
+def _written(answers: list[Answer], answering: Answering) -> str | None:
+    """The answer as a text; None where nothing was judged and the form has no word for that."""
+    judged = [one for one in answers if isinstance(one, Outcome)]
+    if not judged and answering.form not in _WHATEVER_COMES:
+        return None
+    match answering.form:
+        case "lines":
+            from seqcheck.reports import lines
 
-        return lines.report(outcomes)
+            return lines.report(judged)
+        case "annotations":
+            from seqcheck.reports import annotations
+
+            return annotations.report(answers, _repository())
+        case "json":
+            from seqcheck.reports import document
+
+            return document.report(answers)
+        case "sarif":
+            from seqcheck.reports import sarif
+
+            return sarif.report(answers, _repository())
+        case "vcd":
+            return _dump(judged[0], answering.run)
     from seqcheck.reports import screen
 
-    report = screen.report(outcomes)
-    return screen.coloured(report) if colour else screen.plain(report)
+    report = screen.report(judged)
+    return screen.coloured(report) if answering.colour else screen.plain(report)
+
+
+def _dump(outcome: Outcome, run: int | None) -> str:
+    from seqcheck.reports import vcd
+
+    try:
+        return vcd.report(outcome, run)
+    except ValueError as why:
+        _wrong(f"--run {run}: {why} of {printable(outcome.file)}")
+
+
+def _repository() -> "Repository":
+    """The repository that we are in: the nearest folder upwards with a `.git`, else the folder that we are in."""
+    from seqcheck.reports.repository import Repository
+
+    here = Path.cwd()
+    top = next((one for one in (here, *here.parents) if (one / ".git").exists()), here)
+    return Repository(str(here), str(top))
 
 
 def _wants_colour(asked: str, stream: TextIO) -> bool:

@@ -297,6 +297,13 @@ class Above:
 Known = CurrentOut | CurrentInto | Above
 
 
+def fact_words(fact: Known) -> tuple[str, str, str]:
+    """A fact in the words of the file: `a above b` or `current out of X`."""
+    if isinstance(fact, Above):
+        return fact.upper, "above", fact.lower
+    return "current", "out of" if isinstance(fact, CurrentOut) else "into", fact.node
+
+
 class Purpose(Enum):
     """What a row must do to the winding (`means`)."""
 

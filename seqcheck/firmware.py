@@ -128,7 +128,7 @@ class Firmware:
         """The bound on `x` in a state."""
         if state.run >= 0:
             return state.latest
-        spans = [self._trigger(move)[2] for move in self._leaving(state.mode)]
+        spans = [self.window(move)[2] for move in self._leaving(state.mode)]
         return min((hi for hi in spans if hi is not None), default=None)
 
     def hand_deadline(self, state: State) -> int | None:
@@ -142,6 +142,17 @@ class Firmware:
     def updated(self, state: State, carrier: int) -> State:
         """The state after the writes held for one carrier have acted."""
         return state._replace(put=self.writing.update(state.put, carrier))
+
+    def window(self, move: Move) -> tuple[int, int | None, int | None]:
+        """When a move may begin, in ps after entry: (soonest, latest, the bound that it puts on the stay)."""
+        if isinstance(move.trigger, AtOnce):
+            return 0, 0, 0
+        if isinstance(move.trigger, After):
+            lo, hi = self._bounds.of(move.trigger.span)
+            return lo, hi, hi
+        loop = self.drive.loop.lo if self.drive.loop else 0
+        assert isinstance(move.trigger, When)
+        return max(move.trigger.earliest, loop), move.trigger.latest, None
 
     # What can happen
 
@@ -167,7 +178,7 @@ class Firmware:
         found = []
         for number, move in enumerate(self.drive.moves):
             if state.mode in move.sources:
-                lo, hi, _ = self._trigger(move)
+                lo, hi, _ = self.window(move)
                 found += [Edge(lo, hi, None, False, True, step) for step in self._begin(state, number)]
         return found
 
@@ -184,17 +195,6 @@ class Firmware:
 
     def _edge(self, state: State, step: Step) -> Edge:
         return Edge(state.soonest, state.latest, None, False, False, step)
-
-    def _trigger(self, move: Move) -> tuple[int, int | None, int | None]:
-        """(soonest, latest, the bound that it puts on the stay in the mode)."""
-        if isinstance(move.trigger, AtOnce):
-            return 0, 0, 0
-        if isinstance(move.trigger, After):
-            lo, hi = self._bounds.of(move.trigger.span)
-            return lo, hi, hi
-        loop = self.drive.loop.lo if self.drive.loop else 0
-        assert isinstance(move.trigger, When)
-        return max(move.trigger.earliest, loop), move.trigger.latest, None
 
     def _leaving(self, mode: str) -> list[Move]:
         return [move for move in self.drive.moves if mode in move.sources]

@@ -4,7 +4,7 @@ from collections import Counter
 from collections.abc import Mapping
 from dataclasses import dataclass
 
-from seqcheck.drive import Above, Part
+from seqcheck.drive import Known, Part
 from seqcheck.quantities import INSTANT, Interval
 
 
@@ -20,6 +20,15 @@ class Literal:
 
 
 @dataclass(frozen=True, slots=True)
+class Current:
+    """A current through a winding, out of one node of the stage and into another; None where the file names none, or
+    one at which nothing but windings meets."""
+
+    out_of: str | None
+    into: str | None
+
+
+@dataclass(frozen=True, slots=True)
 class Delays:
     """The times of one literal: from command to possibility (`rise`, the `in` of the meaning) and back (`fall`, its
     `out`), in ps."""
@@ -32,14 +41,16 @@ class Delays:
 class Hazard:
     """Literals that must not be possible together for a positive time.
 
-    `joins` names the stiff nodes that a short would join, first the positive one, for people. `needs` are orientations
-    of sources: each entry is one set of conditions under which the short carries current; where all of them contradict
-    what is known, the hazard is not asked for. An empty `needs` means always.
+    `joins` names the stiff nodes that a short would join, first the positive one, for people. `needs` are facts, the
+    orientation of sources or directions of current: each entry is one set of them under which the hazard does harm;
+    where all entries contradict what is known, the hazard is not asked for. An empty `needs` means always. `currents`
+    are those that lose their way where the hazard is an open winding.
     """
 
     literals: tuple[Literal, ...]
     joins: tuple[str, ...]
-    needs: tuple[frozenset[Above], ...] = ()
+    needs: tuple[frozenset[Known], ...] = ()
+    currents: tuple[Current, ...] = ()
 
 
 def reach(parts: tuple[Part, ...]) -> tuple[Interval, Interval]:

@@ -3,14 +3,15 @@
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from itertools import permutations
 from math import ceil
 from typing import TypeVar
 
-from seqcheck.drive import Carrier, Drive, Move, Trip, WaitStep, When
-from seqcheck.hazards import Hazard
+from seqcheck.drive import RESET, Carrier, Drive, Fixed, Move, SetStep, Step, Trip, WaitStep, When
+from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.prove import Prover, Refuted
 from seqcheck.proving.search import LimitReached
-from seqcheck.quantities import Interval, shown
+from seqcheck.quantities import Interval, shown, widened
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Cure, Trace
 
@@ -54,15 +55,15 @@ class _Proposal:
 
 
 def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cure | None:
-    """The first time of the file that, made longer by the overlap, brings a proof; None if none does.
+    """The first time of the file that, made longer by what is missing, brings a proof; None if none does.
 
+    Missing is the overlap, or where it has no end the longest that one switch of the hazard can lag behind another.
     Waits of the runs on the way are tried, the last first, then the carriers' dead times, the beginning of the last
-    move and the spacing of writes.
+    move, the spacing of writes, and a pause in a run that has none.
     """
-    if proof.overlap is None:
-        return None
+    missing = _lag(drive, hazard) if proof.overlap is None else proof.overlap
     spending = _Budget(observer, _MOST_ZONES)
-    for proposal in _proposals(drive, proof.trace, proof.overlap):
+    for proposal in _proposals(drive, proof.trace, missing):
         try:
             holds = Prover(proposal.drive).holds(hazard, spending)
         except LimitReached:
@@ -71,6 +72,12 @@ def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cu
         if holds:
             return Cure(proposal.place, proof.overlap, proposal.words)
     return None
+
+
+def _lag(drive: Drive, hazard: Hazard) -> int:
+    """The longest that one literal can be possible after another that came when it went (ps, at least 1)."""
+    times = delays(hazard, drive.paths)
+    return max([1, *(one.fall - other.rise for one, other in permutations(times, 2))])
 
 
 def _proposals(drive: Drive, trace: Trace, missing: int) -> Iterator[_Proposal]:
@@ -93,6 +100,31 @@ def _proposals(drive: Drive, trace: Trace, missing: int) -> Iterator[_Proposal]:
         least = _nominal(drive, longer.gap.lo)
         words = f"put writes at least {shown(least)} apart"
         yield _Proposal(replace(drive, writes=longer), drive.writes.place, words)
+    for is_trip, index in _runs(trace):
+        run = drive.trips[index] if is_trip else drive.moves[index]
+        if run.target != RESET and not any(isinstance(step, WaitStep) for step in run.steps):
+            yield _with_pause(drive, is_trip, index, missing)
+
+
+def _with_pause(drive: Drive, is_trip: bool, index: int, missing: int) -> _Proposal:
+    """A run that turns everything off before all else, and waits."""
+    nominal = _nominal(drive, missing)
+    tolerance = drive.clock.tolerance if drive.clock else Fraction(0)
+    words = f"let this line begin with the steps 'set all off' and 'wait {shown(nominal)}'"
+    place = (drive.trips if is_trip else drive.moves)[index].place
+    pause = (
+        SetStep(place, tuple((switch, Fixed.OFF) for switch in drive.columns)),
+        WaitStep(place, widened(Fraction(nominal), Fraction(nominal), tolerance)),
+    )
+    if is_trip:
+        trips = tuple(_begun_with(run, pause) if at == index else run for at, run in enumerate(drive.trips))
+        return _Proposal(replace(drive, trips=trips), place, words)
+    moves = tuple(_begun_with(run, pause) if at == index else run for at, run in enumerate(drive.moves))
+    return _Proposal(replace(drive, moves=moves), place, words)
+
+
+def _begun_with(run: Run, steps: tuple[Step, ...]) -> Run:
+    return replace(run, steps=(*steps, *run.steps))
 
 
 def _later_begin(drive: Drive, index: int, missing: int) -> Iterator[_Proposal]:

@@ -5,6 +5,7 @@ from enum import Enum
 
 from seqcheck.drive import Cell, Command, Drive
 from seqcheck.hazards import Hazard, Literal
+from seqcheck.messages import Problem
 from seqcheck.source import Place
 
 
@@ -20,7 +21,25 @@ class Act(Enum):
     OUTPUT = "output"  # the dead time of carrier `name` since its last edge is over
     UPDATES = "updates"  # the writes held for carrier `name` act (`updates within a period`)
     RESTS = "rests"  # the released pin of switch `name` reaches its resting level
+    CYCLES = "cycles"  # from this edge on carrier `name` runs the whole cycles in `cycles`, with no other event of it
     CLEARS = "clears"  # interlock: the partner of switch `name` has been off for the dead time
+
+
+@dataclass(frozen=True, slots=True)
+class Cycles:
+    """Equal cycles of a carrier, one after another: how many, and how long (ps) the present level and the other last.
+
+    The dead time after each edge is the shortest that the carrier may have.
+    """
+
+    count: int
+    first: int
+    second: int
+
+    @property
+    def length(self) -> int:
+        """How long they take together, in ps."""
+        return self.count * (self.first + self.second)
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,6 +50,8 @@ class Event:
     (if no wait precedes it) has the time of BEGINS, and ENTERS the time of its last write unless a wait follows it. A
     trip is ARRIVES, later BEGINS with `trip` set (at the same time where it has no `within`; a trip that is `at once`
     has no ARRIVES), WRITES…, ENTERS. A move or trip to `reset` is BEGINS, ENTERS with `writes` that free every pin.
+    CYCLES comes in the instant of an edge; the last of its cycles ends with an edge of the same kind, and until then
+    nothing but carriers moves.
     """
 
     time: int
@@ -40,6 +61,7 @@ class Event:
     trip: bool = False
     writes: tuple[tuple[str, Cell], ...] = ()
     place: Place | None = None
+    cycles: Cycles | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,7 +81,8 @@ class Trace:
     Only carriers with a phase are followed; writes of other carriers' switches act at once. From `overlap_from` to
     `overlap_to` all literals of `hazard` are possible; `overlap_to` is None where that lasts without end if the run
     stays where it is. A run that must go round in a circle for that stops with `end`, after one round.
-    `interlocked` tells whether the run is one of the drive with its interlocks.
+    `interlocked` tells whether the run is one of the drive with its interlocks. `prolonged`: a literal, and by how much
+    (ps) each end of its possibility counts as later, as where a margin is not kept.
     """
 
     hazard: Hazard
@@ -69,6 +92,7 @@ class Trace:
     overlap_from: int
     overlap_to: int | None
     interlocked: bool = True
+    prolonged: tuple[Literal, int] | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -136,9 +160,9 @@ class Safe:
 class Unsafe:
     """In some run the hazard happens; `trace` is one, replayed.
 
-    `check` is SHORT or OVERLAP (TOGETHER for a `never` rule). `place` is where it happens: the row for SHORT, the move
-    or trip whose run leads to it for OVERLAP. `overlap` is the greatest, in ps, None without end;
-    with `greatest` False a limit was reached, and there may be a longer one.
+    `check` is SHORT or OVERLAP (TOGETHER for a `never` rule, OPEN_WINDING for a winding). `place` is where it happens:
+    the row that itself holds it, named in `row`, else the move or trip whose run leads to it. `overlap` is the
+    greatest, in ps, None without end; with `greatest` False a limit was reached, and there may be a longer one.
     """
 
     hazard: Hazard
@@ -149,6 +173,7 @@ class Unsafe:
     overlap: int | None
     cure: "Cure | None" = None
     greatest: bool = True
+    row: str | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -165,10 +190,10 @@ Verdict = Safe | Unsafe | Undecided
 
 @dataclass(frozen=True, slots=True)
 class Cure:
-    """What would cure an overlap: the shortage of dead time in ps at `place`, described in `words`."""
+    """What would cure an overlap, in `words`: the shortage of dead time in ps at `place`, None where it has no end."""
 
     place: Place
-    shortage: int
+    shortage: int | None
     words: str
 
 
@@ -191,3 +216,23 @@ class Outcome:
     drive: Drive
     verdicts: tuple[Verdict, ...]
     findings: tuple[Finding, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Unread:
+    """A file that could not be read, or asks for what cannot be proven: nothing of it was judged."""
+
+    file: str
+    problems: tuple[Problem, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Failed:
+    """A file on which the program itself failed, and how: whatever was found of it may not be shown."""
+
+    file: str
+    fault: str
+
+
+Answer = Outcome | Unread | Failed
+"""What there is to say of one file."""

@@ -16,12 +16,13 @@ from seqcheck.verdict import Check, Safe, Unsafe
 Switches = tuple[str, ...]
 
 
-def unsafe(text: str) -> dict[Switches, Unsafe]:
-    """What the whole program finds in a file, by switches; every other set that would short must be proven."""
+def unsafe(text: str, opened: bool = False) -> dict[Switches, Unsafe]:
+    """The shorts (or what is `opened`) that the whole program finds in a file, by switches; every other set must be
+    proven."""
     found: dict[Switches, Unsafe] = {}
     for verdict in check(drive_of(text), FILE, frozenset(), lambda _: None).verdicts:
         assert isinstance(verdict, Safe | Unsafe), verdict
-        if isinstance(verdict, Unsafe):
+        if isinstance(verdict, Unsafe) and (verdict.check is Check.OPEN_WINDING) == opened:
             found[tuple(literal.switch for literal in verdict.hazard.literals)] = verdict
     return found
 
@@ -29,6 +30,11 @@ def unsafe(text: str) -> dict[Switches, Unsafe]:
 def overlaps(text: str) -> dict[Switches, int | None]:
     """The greatest overlap of every set that is not proven, in ps, None without end; empty if the file is proven."""
     return {switches: verdict.overlap for switches, verdict in unsafe(text).items()}
+
+
+def openings(text: str) -> dict[Switches, int | None]:
+    """As `overlaps`, for the sets of switches that open a winding while they are off."""
+    return {switches: verdict.overlap for switches, verdict in unsafe(text, opened=True).items()}
 
 
 def shorts(text: str) -> set[Switches]:

@@ -14,7 +14,7 @@ from collections.abc import Callable
 from time import perf_counter
 
 import pytest
-from judge.draws import draw
+from judge.draws import draw, flowing
 from judge.features import features, table, tallied
 from judge.stretched import stretched
 from proofs import SAFE
@@ -42,6 +42,13 @@ def named(seeds: range) -> str:
 def test_drawn_drives(seeds: range, record_property: Record) -> None:
     """Short times: every construct."""
     run([(f"draw({seed})", draw(seed)) for seed in seeds], record_property)
+
+
+@pytest.mark.campaign
+@pytest.mark.parametrize("seeds", chunks(), ids=named)
+def test_drives_whose_winding_must_flow(seeds: range, record_property: Record) -> None:
+    """Open windings and directions of current."""
+    run([(f"flowing({seed})", flowing(seed)) for seed in seeds], record_property)
 
 
 @pytest.mark.campaign

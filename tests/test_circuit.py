@@ -7,8 +7,7 @@ from random import Random
 import pytest
 from reading import drive_of
 
-from seqcheck import circuit
-from seqcheck.circuit import contradicted, shorting_sets
+from seqcheck.circuit import contradicted, graph, shorting_sets
 from seqcheck.drive import Above, Capacitor, Conducts, Diode, Rails, Sources, Stage, Switch
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problems
@@ -333,20 +332,20 @@ def test_too_many_sets_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
     """Never cut short: 3 · 3 = 9 sets are listed or refused."""
     ladder = stage("P N", switches=", ".join([*(f"A{k} P-x" for k in range(3)), *(f"B{k} x-N" for k in range(3))]))
     assert len(shorting_sets(ladder)) == 9
-    monkeypatch.setattr(circuit, "MOST_SETS", 8)
+    monkeypatch.setattr(graph, "MOST_SETS", 8)
     with pytest.raises(Problems) as caught:
         shorting_sets(ladder)
     (problem,) = caught.value.found
     assert problem.kind == "too-many-sets"
     assert "more than 8 " in problem.text
-    monkeypatch.setattr(circuit, "MOST_SETS", 9)
+    monkeypatch.setattr(graph, "MOST_SETS", 9)
     assert len(shorting_sets(ladder)) == 9
 
 
 def test_sets_that_are_not_minimal_do_not_count(monkeypatch: pytest.MonkeyPatch) -> None:
     """Of three switches that a way through two diodes makes needless."""
     one = stage("P N", switches="A P-x one way, B P-x one way, C P-x one way, T x-N one way", diodes="P-d, d-x")
-    monkeypatch.setattr(circuit, "MOST_SETS", 3)
+    monkeypatch.setattr(graph, "MOST_SETS", 3)
     assert sets(one) == ["T"]
 
 
@@ -354,9 +353,9 @@ def test_sets_are_counted_over_all_supplies(monkeypatch: pytest.MonkeyPatch) -> 
     """No node has more than three, but there are six."""
     bridges = ", ".join(f"A{k} P-N, B{k} Q-M" for k in range(3))
     two = stage("P N, Q M", switches=bridges)
-    monkeypatch.setattr(circuit, "MOST_SETS", 6)
+    monkeypatch.setattr(graph, "MOST_SETS", 6)
     assert len(shorting_sets(two)) == 6
-    monkeypatch.setattr(circuit, "MOST_SETS", 5)
+    monkeypatch.setattr(graph, "MOST_SETS", 5)
     with pytest.raises(Problems) as caught:
         shorting_sets(two)
     assert "more than 5 " in caught.value.found[0].text
@@ -366,9 +365,9 @@ def test_sets_are_counted_where_no_way_leads_on(monkeypatch: pytest.MonkeyPatch)
     """Else a stage could cost any time and memory before its few sets are known."""
     blind = [*(f"A{k} P-x one way" for k in range(3)), *(f"B{k} x-y one way" for k in range(3))]
     one = stage("P N", switches=", ".join(blind))
-    monkeypatch.setattr(circuit, "MOST_SETS", 9)
+    monkeypatch.setattr(graph, "MOST_SETS", 9)
     assert sets(one) == []
-    monkeypatch.setattr(circuit, "MOST_SETS", 8)
+    monkeypatch.setattr(graph, "MOST_SETS", 8)
     with pytest.raises(Problems):
         shorting_sets(one)
 

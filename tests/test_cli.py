@@ -1,6 +1,7 @@
 """The command line: exit codes, where answers go, and input from a world that does not keep to the rules."""
 
 import io
+import json
 import os
 import re
 import subprocess
@@ -14,13 +15,14 @@ from seqcheck import checking, cli
 from seqcheck.evidence.replay import NotPermitted
 
 ROOT = Path(__file__).parent.parent
-STEPS = "  start a\n  a -> b when go\n    set A off\n    wait {} ps"
+STEPS = "  start a\n  a -> b when go\n    set A off\n    wait {} ps\n  b -> a when back\n    set B off\n    wait 9 ps"
 SAFE = leg("a on off\nb off on", STEPS.format(5), head="clock 1 GHz, late by at most 0 ps\nwrites together")
 UNSAFE = leg("a on off\nb off on", STEPS.format(4))
 WRONG = SAFE.replace("wait", "waits")
 ZONES = leg(
     "i off off\nw k off\nz keep off\nn off on",
-    "  start i\n  i -> w when go earliest 200 ps\n  w -> i after 4 ps\n  z -> n after 215 ps",
+    "  start i\n  i -> w when go earliest 200 ps\n  w -> i after 4 ps\n  z -> n after 215 ps\n"
+    "  n -> i when back earliest 1 ns",
     parts="p on 3 ps off 8 ps",
     more="carriers\n  k 50 GHz duty 50 % updates at rise",
     trips="  stop from w -> z at once",
@@ -290,6 +292,8 @@ def test_name_like_a_flag() -> None:
         ["lint", "--give-up-after", "1 hour", "x.dseq"],
         ["lint", "--give-up-after", "nan s", "x.dseq"],
         ["lint", "--color", "sometimes", "x.dseq"],
+        ["lint", "--run", "1", "x.dseq"],
+        ["lint", "--as", "vcd", "--run", "1", "x.dseq", "y.dseq"],
         ["lint", "--on", "short", "x.dseq"],
     ],
 )
@@ -358,7 +362,6 @@ def test_lines_of_a_proven_file(capsys: pytest.CaptureFixture[str]) -> None:
         ("rules\n  never A and B", "never"),
         ("rules\n  A on at most 1 ms", "on at most"),
         ("rules\n  a and b at least 1 ps apart", "apart"),
-        ('rules\n  waive overlap for A because "reason"', "waive"),
     ],
 )
 def test_rules_are_refused_by_name(added: str, said: str, capsys: pytest.CaptureFixture[str]) -> None:
@@ -371,13 +374,11 @@ def test_rules_are_refused_by_name(added: str, said: str, capsys: pytest.Capture
     assert re.match(rf"x\.dseq:{line}:\d+: error: .*{said}.*\[not-proven-yet\]\n\Z", err)
 
 
-def test_other_lines_are_refused_by_name(capsys: pytest.CaptureFixture[str]) -> None:
-    """`must flow` and `means` too."""
-    flows = SAFE.replace("  leg U A B", "  leg U A B\n  winding U must flow")
-    put(f=flows, m=SAFE.replace("a on off", "a on off means coast"))
-    for name, said in (("f", "must flow"), ("m", "means")):
-        assert lint(f"{name}.dseq") == 2
-        assert f"'{said}'" in capsys.readouterr().err
+def test_means_without_a_winding_is_a_finding(capsys: pytest.CaptureFixture[str]) -> None:
+    """Nothing is passed over: what cannot be told is said."""
+    put(m=SAFE.replace("a on off", "a on off means coast"))
+    assert lint("m.dseq", "--as", "lines") == 1
+    assert "but the stage names no winding" in capsys.readouterr().out
 
 
 # Where answers go
@@ -393,6 +394,87 @@ def test_out(capsys: pytest.CaptureFixture[str]) -> None:
     assert capsys.readouterr().out == ""
     assert Path("answer.txt").read_text(encoding="utf-8") == shown
     assert sorted(os.listdir()) == ["answer.txt", "u.dseq"]
+
+
+@pytest.mark.parametrize("form", ["annotations", "json", "sarif"])
+def test_a_form_for_programs_tells_of_every_file(form: str, capsys: pytest.CaptureFixture[str]) -> None:
+    """Also of one that could not be read: there, and on standard error as ever."""
+    put(u=UNSAFE, w=WRONG, s=SAFE)
+    assert lint("--as", form, "w.dseq", "u.dseq", "s.dseq") == 2
+    out, err = capsys.readouterr()
+    assert err.startswith("w.dseq:")
+    assert "w.dseq" in out
+    assert "u.dseq" in out
+    assert lint("--as", form, "w.dseq", "--out", "answer") == 2
+    assert "w.dseq" in Path("answer").read_text(encoding="utf-8")
+
+
+def test_json_and_sarif_of_a_fault(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
+    """What the program got wrong is said in the document too, and nothing else of the file."""
+    put(u=UNSAFE)
+    monkeypatch.setattr(checking, "replay", _refuses)
+    assert lint("--as", "json", "u.dseq") == 4
+    (entry,) = json.loads(capsys.readouterr().out)["files"]
+    assert (entry["standing"], set(entry)) == ("internal-error", {"file", "standing", "fault"})
+    assert lint("--as", "sarif", "u.dseq") == 4
+    (result,) = json.loads(capsys.readouterr().out)["runs"][0]["results"]
+    assert (result["ruleId"], result["level"]) == ("internal-error", "error")
+
+
+@pytest.mark.parametrize("form", ["annotations", "json", "sarif", "vcd"])
+def test_the_form_does_not_change_the_exit_code(form: str, capsys: pytest.CaptureFixture[str]) -> None:
+    """And colour changes no form for programs."""
+    put(u=UNSAFE, s=SAFE, z=ZONES, w=WRONG)
+    for name, code in (("u", 1), ("s", 0), ("z", 3), ("w", 2)):
+        assert lint("--as", form, "--most-zones", FEW, f"{name}.dseq", "--color", "always") == code
+        assert "\x1b" not in capsys.readouterr().out
+
+
+def test_a_dump_is_of_one_file(capsys: pytest.CaptureFixture[str]) -> None:
+    """Runs of several files have no common time; and what was not judged has no dump, nor does one that was dumped
+    earlier become another's."""
+    put(u=UNSAFE, w=WRONG)
+    assert lint("--as", "vcd") == 2
+    assert "2 files" in capsys.readouterr().err
+    Path("answer").write_text("older")
+    assert lint("--as", "vcd", "w.dseq", "--out", "answer") == 2
+    assert Path("answer").read_text() == "older"
+    assert lint("--as", "vcd", "u.dseq", "--out", "answer") == 1
+    assert Path("answer").read_text().startswith("$version seqcheck")
+
+
+def test_the_run_of_a_dump(capsys: pytest.CaptureFixture[str]) -> None:
+    """Counted from 1 as on the screen; what is not there is a wrong call, and nothing is written."""
+    put(u=UNSAFE)
+    assert lint("--as", "vcd", "--run", "1", "u.dseq") == 1
+    assert "run 1 of 1" in capsys.readouterr().out
+    dump = ["--as", "vcd", "--run"]
+    for call in ([*dump, "2"], [*dump, "0"], ["--run", "1"], dump):
+        assert lint(*call, "--out", "answer", "u.dseq") == 2
+        out, err = capsys.readouterr()
+        assert out == ""
+        assert re.fullmatch(r"seqcheck: error: [^\n]*--run[^\n]+\n", err)
+    assert not Path("answer").exists()
+
+
+def test_code_hosts_get_names_from_the_top_of_the_repository(
+    monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """However the file is named and wherever we are in the repository."""
+    Path(".git").mkdir()
+    Path("drives").mkdir()
+    Path("drives/u.dseq").write_text(UNSAFE)
+    whole = str(Path("drives/u.dseq").absolute())
+    below = os.path.join("..", "drives", "u.dseq")
+    top = Path.cwd()
+    calls = ((".", "drives/u.dseq"), (".", whole), ("drives", "u.dseq"), ("drives", whole), (".git", below))
+    for folder, name in calls:
+        monkeypatch.chdir(top / folder)
+        lint("--as", "annotations", name)
+        assert capsys.readouterr().out.startswith("::error file=drives/u.dseq,line=")
+        lint("--as", "sarif", name)
+        artifact = json.loads(capsys.readouterr().out)["runs"][0]["artifacts"][0]
+        assert artifact["location"] == {"uri": "drives/u.dseq", "uriBaseId": "%SRCROOT%"}
 
 
 def test_out_has_no_colour() -> None:
@@ -476,7 +558,7 @@ def test_ascii_only() -> None:
     """A locale that cannot show a character gets an escape in its place."""
     put(u=UMLAUT, w=UMLAUT.replace("wait", "wäit"))
     ascii_only = {"LC_ALL": "C", "PYTHONUTF8": "0", "PYTHONIOENCODING": "ascii", "PYTHONCOERCECLOCALE": "0"}
-    for form in ("screen", "lines"):
+    for form in ("screen", "lines", "annotations", "json", "sarif", "vcd"):
         result = started("lint", "--as", form, "u.dseq", env=ascii_only)
         assert (result.returncode, result.stderr) == (1, b"")
         result.stdout.decode("ascii")

@@ -1,18 +1,12 @@
-"""The grammar: found, built without conflicts, and in agreement with the list of reserved words."""
+"""The grammar: built without conflicts, and in agreement with the list of reserved words."""
 
-import subprocess
-import sys
 import time
-import zipfile
-from pathlib import Path
 
 import pytest
 from lark import GrammarError, Lark
 
 from seqcheck.language import grammar
 from seqcheck.language.words import NO_QUANTITY, RESERVED, SECTIONS, SINGLES
-
-ROOT = Path(__file__).parents[1]
 
 
 @pytest.fixture(scope="module")
@@ -28,35 +22,6 @@ def test_a_conflict_would_be_noticed() -> None:
     text = grammar.grammar_text().replace("names: NAME", "other: NAME\nnames: other\n    | NAME", 1)
     with pytest.raises(GrammarError, match="Reduce/Reduce collision"):
         grammar.built(text, None, strict=True)
-
-
-def test_it_is_found_beside_the_package_in_a_checkout() -> None:
-    code = "from seqcheck.language import grammar; print(grammar.PACKAGE); print(grammar.grammar_text(), end='')"
-    env = {"PYTHONPATH": str(ROOT)}
-    ran = subprocess.run([sys.executable, "-c", code], cwd=ROOT, env=env, capture_output=True, check=True)
-    package, text = ran.stdout.decode("utf-8").split("\n", 1)
-    assert Path(package) == ROOT / "seqcheck"
-    assert not (ROOT / "seqcheck" / "grammars").exists()
-    assert text == (ROOT / "grammars" / "drive.lark").read_text("utf-8")
-
-
-def test_it_is_found_in_the_package_where_a_wheel_puts_it(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    (tmp_path / "grammars").mkdir()
-    (tmp_path / "grammars" / "drive.lark").write_text("from the wheel", "utf-8")
-    monkeypatch.setattr(grammar, "PACKAGE", tmp_path)
-    assert grammar.grammar_text() == "from the wheel"
-
-
-def test_it_is_found_in_a_zip_file(tmp_path: Path) -> None:
-    archive = tmp_path / "seqcheck.zip"
-    with zipfile.ZipFile(archive, "w") as packed:
-        for path in sorted((ROOT / "seqcheck").rglob("*.py")):
-            packed.write(path, path.relative_to(ROOT))
-        packed.write(ROOT / "grammars" / "drive.lark", "seqcheck/grammars/drive.lark")
-    code = "from seqcheck.language import grammar; print(grammar.grammar_text(), end='')"
-    env = {"PYTHONPATH": str(archive)}
-    ran = subprocess.run([sys.executable, "-c", code], cwd=tmp_path, env=env, capture_output=True, check=True)
-    assert ran.stdout.decode("utf-8") == grammar.grammar_text()
 
 
 def words_of(parser: Lark) -> dict[str, str]:

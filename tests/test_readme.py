@@ -6,7 +6,7 @@ from pathlib import Path
 import pytest
 
 from seqcheck.checking import PROVEN_CHECKS
-from seqcheck.cli import main
+from seqcheck.cli import FORMS, main
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -41,3 +41,8 @@ def test_every_option_of_lint_is_named(capsys: pytest.CaptureFixture[str]) -> No
     main(["lint", "--help"])
     options = set(re.findall(r"--[a-z-]+", capsys.readouterr().out)) - {"--help"}
     assert options == set(re.findall(r"`(--[a-z-]+)", README)) - {"--help"}
+
+
+def test_every_form_has_its_row() -> None:
+    rows = re.findall(r"^\| `--as ([a-z-]+)`", README, re.MULTILINE)
+    assert tuple(rows) == FORMS

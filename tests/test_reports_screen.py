@@ -283,7 +283,7 @@ def test_without_a_cure_the_plain_fact_is_given() -> None:
         outcome(replace(cases.OVERLAP, cure=None))
     )
     endless = replace(cases.SHORT, check=Check.OVERLAP)
-    assert "nothing ends it once UH and UL are so together" in " ".join(text(outcome(endless)).split())
+    assert "once UH and UL are so together this run never parts them" in " ".join(text(outcome(endless)).split())
 
 
 def test_waits_are_told_without_places_too() -> None:

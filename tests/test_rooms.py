@@ -10,16 +10,19 @@ import seqcheck
 HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
+    "shipped",
     "quantities",
     "source",
     "messages",
     "drive",
     "language",
     "hazards",
+    "effects",
     "circuit",
     "verdict",
     "writing",
     "firmware",
+    "modegraph",
     "zones",
     "proving",
     "evidence",
@@ -31,9 +34,9 @@ LOW_TO_HIGH = (
 )
 
 APART = {
-    "evidence": {"writing", "firmware", "zones", "proving", "circuit"},
+    "evidence": {"writing", "firmware", "modegraph", "zones", "proving", "circuit"},
     "proving": {"language", "evidence"},
-    "reports": {"language", "circuit", "writing", "firmware", "zones", "proving", "evidence", "sizing"},
+    "reports": {"language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence", "sizing"},
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the
 prover, the prover knows no file, and a report reads verdicts and never reasons."""

@@ -29,7 +29,7 @@ def unpunctual(drive: Drive, looking: View) -> Firmware:
 def settled(drive: Drive, hazard: Hazard, interlocks: bool = True) -> bool:
     """Whether the screen settles a hazard."""
     looking = view(drive, hazard, delays(hazard, drive.paths), interlocks)
-    return screened(looking, Map(unpunctual(drive, looking)))
+    return screened(looking, Map(unpunctual(drive, looking), lambda count: None)) is not None
 
 
 def contradicted(drive: Drive, hazard: Hazard) -> bool | None:

@@ -30,7 +30,8 @@ def looking_at(drive: Drive) -> View:
 def settled_by_screen(text: str) -> bool:
     """Whether the screen alone settles a drive."""
     drive = drive_of(text)
-    return screened(looking_at(drive), Map(Firmware(drive, frozenset(), frozenset(), punctual=False)))
+    firmware = Firmware(drive, frozenset(), frozenset(), punctual=False)
+    return screened(looking_at(drive), Map(firmware, lambda count: None)) is not None
 
 
 def proved_by(text: str) -> str:
@@ -237,10 +238,10 @@ def test_timed_dwell_is_not_cut() -> None:
     cutting = Cutting(looking, [Reference(one) for one in drive.carriers.values()])
     start = firmware.start()
     dwelling = start._replace(mode="z")
-    kept = cutting.cut(firmware.edges(dwelling), firmware.deadline(dwelling), False)
+    kept = cutting.cut(firmware.edges(dwelling), firmware.deadline(dwelling))
     assert [(edge.lo, edge.hi) for edge in kept[0]] == [(215, 215)]
     assert kept[1] == 215
-    (first,), deadline = cutting.cut(firmware.edges(start), firmware.deadline(start), False)
+    (first,), deadline = cutting.cut(firmware.edges(start), firmware.deadline(start))
     assert (first.hi, deadline) == (None, None)
     assert 8 + 1 + 2 * 20 <= first.lo < 200, "not shorter than the longest delay, 1 and two longest periods"
 

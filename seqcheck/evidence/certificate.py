@@ -7,12 +7,12 @@ import json
 from collections.abc import Iterable
 from dataclasses import dataclass
 
-from seqcheck.drive import Above, Cell, Drive, Fixed, Follow, cell_text
+from seqcheck.drive import Above, Cell, CurrentInto, CurrentOut, Drive, Fixed, Follow, Known, cell_text, fact_words
 from seqcheck.evidence.digest import digest
-from seqcheck.hazards import Hazard, Literal
-from seqcheck.verdict import Act, Event, Phase, Trace
+from seqcheck.hazards import Current, Hazard, Literal
+from seqcheck.verdict import Act, Cycles, Event, Phase, Trace
 
-FORMAT = "seqcheck evidence 1"
+FORMAT = "seqcheck evidence 2"
 MOST_TIME = 1 << 61
 """No bound of an honest certificate is above this, in ps."""
 
@@ -22,18 +22,35 @@ class NoEvidence(Exception):  # noqa: N818 - it says what a text is, not that th
 
 
 @dataclass(frozen=True, slots=True)
+class Cover:
+    """That a hazard is safe, by zones that cover all that can be reached (as data)."""
+
+    data: "Fields"
+
+
+@dataclass(frozen=True, slots=True)
+class Potentials:
+    """That a hazard is safe, by least times between the commands of two of its switches (as data); `stands` numbers the
+    lists of Evidence."""
+
+    data: "Fields"
+    stands: int
+
+
+@dataclass(frozen=True, slots=True)
 class Claim:
-    """What is said of one hazard: a cover (as data) where it is safe, a trace where not, None where undecided."""
+    """What is said of one hazard: a proof where it is safe, a trace where not, None where undecided."""
 
     hazard: Hazard
-    proof: "Fields | Trace | None"
+    proof: Cover | Potentials | Trace | None
 
 
 @dataclass(frozen=True, slots=True)
 class Evidence:
-    """The claims about the drive whose meaning has this digest."""
+    """The claims about the drive whose meaning has this digest, and the lists of stands that potentials speak of."""
 
     digest: str
+    stands: "tuple[tuple[Fields, ...], ...]"
     claims: tuple[Claim, ...]
 
 
@@ -70,9 +87,9 @@ class Fields:
 
     def whole(self, value: object, name: str) -> int:
         """A value as a whole number that a time can be."""
-        if not isinstance(value, int) or isinstance(value, bool) or abs(value) > MOST_TIME:
-            raise self.wrong(name)
-        return value
+        if type(value) is int and -MOST_TIME <= value <= MOST_TIME:  # no bool
+            return value
+        raise self.wrong(name)
 
     def objects(self, name: str) -> "list[Fields]":
         """A list of objects."""
@@ -117,26 +134,37 @@ class Fields:
 
 
 def written(drive: Drive, claims: Iterable[tuple[Hazard, dict[str, object] | Trace | None]]) -> str:
-    """The text of the evidence: a cover as the prover hands it out, a trace, or None for an undecided hazard."""
-    data = {
-        "format": FORMAT,
-        "digest": digest(drive),
-        "claims": [_claim(hazard, proof) for hazard, proof in claims],
-    }
+    """The text of the evidence: a proof as the prover hands it out, a trace, or None for an undecided hazard."""
+    lists: list[object] = []
+    claimed = [_claim(hazard, proof, lists) for hazard, proof in claims]
+    data = {"format": FORMAT, "digest": digest(drive), "stands": lists, "claims": claimed}
     return json.dumps(data, ensure_ascii=False, separators=(",", ":")) + "\n"
 
 
-def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None) -> dict[str, object]:
+def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None, lists: list[object]) -> dict[str, object]:
     said: dict[str, object] = {
         "literals": [[one.switch, one.on] for one in hazard.literals],
         "joins": list(hazard.joins),
-        "needs": [sorted([one.upper, one.lower] for one in needs) for needs in hazard.needs],
+        "needs": [sorted(list(fact_words(one)) for one in needs) for needs in hazard.needs],
     }
+    if hazard.currents:
+        said["opens"] = [[one.out_of, one.into] for one in hazard.currents]
     if proof is None:
         return {**said, "verdict": "undecided"}
     if isinstance(proof, Trace):
         return {**said, "verdict": "unsafe", "run": _run(proof)}
-    return {**said, "verdict": "safe", "cover": proof}
+    if "stands" not in proof:
+        return {**said, "verdict": "safe", "cover": proof}
+    return {**said, "verdict": "safe", "potentials": {**proof, "stands": _number(proof["stands"], lists)}}
+
+
+def _number(stands: object, lists: list[object]) -> int:
+    """The number of a list of stands, which is written once for all claims that share it."""
+    known = next((number for number, one in enumerate(lists) if one is stands), None)
+    if known is not None:
+        return known
+    lists.append(stands)
+    return len(lists) - 1
 
 
 def _run(trace: Trace) -> dict[str, object]:
@@ -151,7 +179,9 @@ def _run(trace: Trace) -> dict[str, object]:
 
 
 def _event(event: Event) -> dict[str, object]:
+    cycles = event.cycles
     return {
+        **({} if cycles is None else {"cycles": [cycles.count, cycles.first, cycles.second]}),
         "time": event.time,
         "act": event.act.value,
         "name": event.name,
@@ -175,14 +205,19 @@ def read(text: str) -> Evidence:
     whole = Fields(data, "the evidence")
     if whole.of("format") != FORMAT:
         raise NoEvidence(f"its format is not '{FORMAT}'")
-    return Evidence(whole.text("digest"), tuple(_claimed(one) for one in whole.objects("claims")))
+    lists = tuple(
+        tuple(whole.inside(stand, f"stands {number}") for stand in whole.listed(one, "stands"))
+        for number, one in enumerate(whole.rows("stands"))
+    )
+    return Evidence(whole.text("digest"), lists, tuple(_claimed(one, len(lists)) for one in whole.objects("claims")))
 
 
-def _claimed(claim: Fields) -> Claim:
+def _claimed(claim: Fields, lists: int) -> Claim:
     hazard = Hazard(
         tuple(_literal(claim, one) for one in claim.rows("literals")),
         claim.texts("joins"),
         tuple(_needs(claim, one) for one in claim.rows("needs")),
+        tuple(_current(claim, one) for one in claim.rows("opens")) if "opens" in claim.data else (),
     )
     verdict = claim.text("verdict")
     if verdict == "undecided":
@@ -191,7 +226,13 @@ def _claimed(claim: Fields) -> Claim:
         return Claim(hazard, _trace(hazard, claim.field("run")))
     if verdict != "safe":
         raise claim.wrong("verdict")
-    return Claim(hazard, claim.field("cover"))
+    if "cover" in claim.data:
+        return Claim(hazard, Cover(claim.field("cover")))
+    potentials = claim.field("potentials")
+    stands = potentials.number("stands")
+    if not 0 <= stands < lists:
+        raise potentials.wrong("stands")
+    return Claim(hazard, Potentials(potentials, stands))
 
 
 def _literal(claim: Fields, value: object) -> Literal:
@@ -201,11 +242,26 @@ def _literal(claim: Fields, value: object) -> Literal:
     return Literal(switch, on)
 
 
-def _needs(claim: Fields, value: object) -> frozenset[Above]:
-    pairs = [claim.strings(one, "needs") for one in claim.listed(value, "needs")]
-    if not all(len(pair) == 2 for pair in pairs):
-        raise claim.wrong("needs")
-    return frozenset(Above(*pair) for pair in pairs)
+def _needs(claim: Fields, value: object) -> frozenset[Known]:
+    return frozenset(_known(claim, claim.strings(one, "needs")) for one in claim.listed(value, "needs"))
+
+
+def _known(claim: Fields, words: tuple[str, ...]) -> Known:
+    match words:
+        case (upper, "above", lower):
+            return Above(upper, lower)
+        case ("current", "out of", node):
+            return CurrentOut(node)
+        case ("current", "into", node):
+            return CurrentInto(node)
+    raise claim.wrong("needs")
+
+
+def _current(claim: Fields, value: object) -> Current:
+    out_of, into = claim.listed(value, "opens", 2)
+    if not all(one is None or isinstance(one, str) for one in (out_of, into)):
+        raise claim.wrong("opens")
+    return Current(out_of, into)  # type: ignore[arg-type]
 
 
 def _trace(hazard: Hazard, run: Fields) -> Trace:
@@ -239,7 +295,13 @@ def _happened(event: Fields) -> Event:
         event.number("index"),
         event.flag("trip"),
         tuple((switch, _cell(word)) for switch, word in writes),
+        cycles=_cycles(event) if act is Act.CYCLES else None,
     )
+
+
+def _cycles(event: Fields) -> Cycles:
+    count, first, second = (event.whole(one, "cycles") for one in event.listed(event.of("cycles"), "cycles", 3))
+    return Cycles(count, first, second)
 
 
 def _cell(word: str) -> Cell:

@@ -1,8 +1,8 @@
-"""When a hazard is asked for: what is known of the sources must leave the short one orientation."""
+"""When a hazard is asked for: what is known must leave the short an orientation, the open winding a current."""
 
 from collections.abc import Callable, Iterable
 
-from seqcheck.drive import Above, Known
+from seqcheck.drive import Above, CurrentInto, CurrentOut, Known
 from seqcheck.hazards import Hazard
 
 
@@ -10,10 +10,17 @@ def asked_for(hazard: Hazard) -> Callable[[tuple[Known, ...]], bool]:
     """The test whether `hazard` is asked for while given facts hold."""
 
     def asked(known: tuple[Known, ...]) -> bool:
-        facts = {fact for fact in known if isinstance(fact, Above)}
-        return not hazard.needs or any(_orderly(facts | need) for need in hazard.needs)
+        return not hazard.needs or any(_agree(known, need) for need in hazard.needs)
 
     return asked
+
+
+def _agree(known: tuple[Known, ...], need: frozenset[Known]) -> bool:
+    """Whether everything can be so at once: no current both ways, no source above itself."""
+    facts = need.union(known)
+    out = {fact.node for fact in facts if isinstance(fact, CurrentOut)}
+    into = {fact.node for fact in facts if isinstance(fact, CurrentInto)}
+    return not out & into and _orderly(fact for fact in facts if isinstance(fact, Above))
 
 
 def _orderly(facts: Iterable[Above]) -> bool:

@@ -69,6 +69,21 @@ class Interlocks:
         require_within(event.time, since, guard.dead, f"the end of the interlock's dead time for {event.name}")
         guard.clear, guard.off_since = True, None
 
+    def clear_before(self, time: int) -> int | None:
+        """Let the dead time that can be over first be over then, and say when; None if none can be before `time`."""
+        running = [(guard.off_since + guard.dead.lo, guard) for guard in self.guards if guard.off_since is not None]
+        first = min(running, key=lambda one: one[0], default=None)
+        if first is None or first[0] >= time:
+            return None
+        first[1].clear, first[1].off_since = True, None
+        return first[0]
+
+    def repeat(self, later: int) -> None:
+        """What goes on now goes on in the same way so much later."""
+        for guard in self.guards:
+            if guard.off_since is not None:
+                guard.off_since += later
+
     def passed(self, switch: str, commands: Mapping[str, Command]) -> Command:
         """The command that reaches the path of `switch`; UNKNOWN where it may be either."""
         command = commands[switch]

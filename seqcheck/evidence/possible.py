@@ -38,17 +38,27 @@ def stretches(timeline: Timeline[T], holds: Callable[[T], bool]) -> list[Stretch
     return [Stretch(start, end) for (start, value), end in zip(timeline, ends, strict=True) if holds(value)]
 
 
-def possible(pieces: Iterable[Stretch], delays: Delays) -> list[Stretch]:
-    """The stretches of positive length at which that is possible which is wanted in `pieces`, given in order."""
+def possible(pieces: Iterable[Stretch], delays: Delays, later: int = 0) -> list[Stretch]:
+    """The stretches of positive length at which that is possible which is wanted in `pieces`, given in order.
+
+    With `later` each of their ends, also that of one of no length, comes so much later.
+    """
+    longer = prolonged(pieces, delays.fall)
+    late = (Stretch(one.start if one.start is None else one.start + delays.rise, one.end) for one in longer)
+    there = [one for one in late if one.start is None or one.end is None or one.start <= one.end]
+    return [one for one in prolonged(there, later) if one.start is None or one.end is None or one.start < one.end]
+
+
+def prolonged(pieces: Iterable[Stretch], fall: int) -> list[Stretch]:
+    """`pieces`, given in order, each longer by `fall`, those that now touch made one."""
     joined: list[Stretch] = []
     for piece in pieces:
-        longer = Stretch(piece.start, None if piece.end is None else piece.end + delays.fall)
+        longer = Stretch(piece.start, None if piece.end is None else piece.end + fall)
         if joined and _touch(joined[-1], longer):
             joined[-1] = Stretch(joined[-1].start, _later(joined[-1].end, longer.end))
         else:
             joined.append(longer)
-    late = (Stretch(one.start if one.start is None else one.start + delays.rise, one.end) for one in joined)
-    return [one for one in late if one.start is None or one.end is None or one.start < one.end]
+    return joined
 
 
 def _touch(earlier: Stretch, later: Stretch) -> bool:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from seqcheck.drive import Carrier, Command, Drive, Update
 from seqcheck.evidence.refusal import Due, NotPermitted, due, require_within
 from seqcheck.quantities import Interval
-from seqcheck.verdict import Phase
+from seqcheck.verdict import Cycles, Phase
 
 
 @dataclass(slots=True)
@@ -49,6 +49,33 @@ class Reference:
             raise NotPermitted(f"the dead time of {self.carrier.name} since its last edge is over already")
         require_within(time, self.edge, self.carrier.dead, f"the end of the dead time of {self.carrier.name}")
         self.over = True
+
+    def cycle(self, time: int, cycles: Cycles) -> None:
+        """Whole cycles begin at `time` with the level that has just begun; their last edge is the last edge then.
+
+        Raises NotPermitted where no edge is at `time`, or a level is not as long as the carrier has it.
+        """
+        name, dead = self.carrier.name, self.carrier.dead
+        if time != self.edge or self.over != (dead.hi == 0):
+            raise NotPermitted(f"whole cycles of {name} begin with an edge")
+        other = self.carrier.low if self.high else self.carrier.high
+        if other is None or cycles.count < 1:
+            raise NotPermitted(f"{name} has no such cycles")
+        require_within(cycles.first, 0, self.span(), f"the edge of {name} after the first level of a cycle")
+        require_within(cycles.second, 0, other, f"the edge of {name} after the second level of a cycle")
+        self.edge = time + cycles.length
+
+    def outputs(self, inverted: bool, cycles: Cycles) -> list[tuple[int, Command]]:
+        """What a switch on this carrier is told in one such cycle: commands and when they come after its beginning."""
+        dead = self.carrier.dead
+        halves = ((0, cycles.first, self.high), (cycles.first, cycles.second, not self.high))
+        told: list[tuple[int, Command]] = []
+        for start, length, high in halves:
+            if dead.hi != 0 or high == inverted:
+                told.append((start, Command.OFF))
+            if high != inverted and length >= dead.lo:
+                told.append((start + dead.lo, Command.ON))
+        return told
 
     def dues(self) -> Iterator[Due]:
         """By when the next edge and the end of the dead time must come."""

@@ -3,6 +3,7 @@
 from dataclasses import replace
 
 from seqcheck.drive import Drive
+from seqcheck.evidence.cycles import bridged
 from seqcheck.evidence.endless import require_endless
 from seqcheck.evidence.facts import asked_for
 from seqcheck.evidence.possible import Stretch, delays, possible, stretches, together, wanted, within_trace
@@ -25,7 +26,7 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
     """
     walk = _walked(drive, trace)
     found = delays(drive, trace.hazard)
-    spans = {literal: _possible(walk, literal, found[literal], trace.end) for literal in found}
+    spans = {literal: _possible(walk, literal, found[literal], trace) for literal in found}
     overlaps = _overlaps(walk, trace, spans)
     claimed = Span(trace.overlap_from, trace.overlap_to)
     if claimed not in overlaps and not _cut_off(claimed, overlaps, trace.end):
@@ -48,7 +49,7 @@ def from_its_beginning(drive: Drive, trace: Trace) -> Trace:
     """
     walk = _walked(drive, trace)
     times = delays(drive, trace.hazard)
-    spans = {literal: _possible(walk, literal, times[literal], trace.end) for literal in times}
+    spans = {literal: _possible(walk, literal, times[literal], trace) for literal in times}
     around = [
         one
         for one in _overlaps(walk, trace, spans)
@@ -76,9 +77,12 @@ def _walked(drive: Drive, trace: Trace) -> Walk:
     return walk
 
 
-def _possible(walk: Walk, literal: Literal, times: Delays, end: int) -> tuple[Span, ...]:
+def _possible(walk: Walk, literal: Literal, times: Delays, trace: Trace) -> tuple[Span, ...]:
     pieces: list[Stretch] = stretches(walk.commands[literal.switch], lambda command: wanted(literal, command))
-    return within_trace(possible(pieces, times), end)
+    for gap in walk.gaps[literal.switch]:
+        pieces = bridged(pieces, gap, times.fall)
+    later = trace.prolonged[1] if trace.prolonged is not None and trace.prolonged[0] == literal else 0
+    return within_trace(possible(pieces, times, later), trace.end)
 
 
 def _cut_off(claimed: Span, overlaps: tuple[Span, ...], end: int) -> bool:

@@ -1,8 +1,7 @@
-"""Finding and building the grammar; parsing one line."""
+"""Building the grammar; parsing one line."""
 
 from collections.abc import Iterator
 from functools import lru_cache
-from pathlib import Path
 from typing import Any
 
 from lark import Lark, Token, UnexpectedInput
@@ -17,26 +16,15 @@ from seqcheck.language.mistakes import explained, reserved
 from seqcheck.language.syntax import Node
 from seqcheck.language.words import SECTIONS
 from seqcheck.messages import Problem
+from seqcheck.shipped import shipped
 
-PACKAGE = Path(__file__).parents[1]
 STATEMENT = "statement"
 STARTS = (STATEMENT, *(f"{section}_line" for section in SECTIONS))
 
 
 def grammar_text() -> str:
-    """The grammar: in the package, where a wheel puts it, else beside the package, as in a checkout.
-
-    Importing importlib.resources costs more than reading a small file does, so it is asked only where the package is
-    no folder, as in a zip file.
-    """
-    for folder in (PACKAGE, PACKAGE.parent):
-        try:
-            return (folder / "grammars" / "drive.lark").read_text("utf-8")
-        except OSError:
-            continue
-    from importlib.resources import files
-
-    return (files("seqcheck") / "grammars" / "drive.lark").read_text("utf-8")
+    """The grammar, as it is shipped."""
+    return shipped("drive.lark")
 
 
 class _WholeWords(PostLex):

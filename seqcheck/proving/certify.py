@@ -1,6 +1,7 @@
-"""What the prover hands out of a safe search: the zones that it stored, as plain data in the drive's own words."""
+"""What the prover hands out of a proof, as plain data in the drive's own words: here the zones that a search stored."""
 
 from seqcheck.drive import Command, cell_text
+from seqcheck.firmware import Firmware, State
 from seqcheck.proving.keys import (
     C_BOTH,
     C_OFF,
@@ -19,6 +20,7 @@ from seqcheck.proving.keys import (
 )
 from seqcheck.proving.location import Location
 from seqcheck.proving.projection import Projection
+from seqcheck.writing import Writing
 from seqcheck.zones import INFINITE
 
 Data = dict[str, object]
@@ -26,7 +28,7 @@ Data = dict[str, object]
 _CARRIERS = ("high dead", "high", "low dead", "low", "anywhere")
 _LOCKS = ("blocked", "waiting", "clear")
 _LITERALS = ("out", "entering", "in", "leaving", "blip")
-_COMMANDS = {CODES[one]: one.value for one in Command}
+COMMANDS = {CODES[one]: one.value for one in Command}
 _CLOCKS = {CARRIER: "carrier", HOLD: "held", PIN: "pin", LOCK: "guard", RISE: "in", FALL: "out"}
 
 assert tuple(CODES[one] for one in (Command.OFF, Command.ON, Command.UNKNOWN)) == (C_OFF, C_ON, C_BOTH)
@@ -75,26 +77,8 @@ def _bounds(zone: list[int], size: int) -> list[list[int]]:
 
 
 def _state(projection: Projection, key: Key) -> Data:
-    writing, state = projection.firmware.writing, key.state
-    columns = projection.view.drive.columns
-
-    def words(cells: tuple[int, ...]) -> list[str]:
-        return [cell_text(writing.cell(cell)) for cell in cells]
-
-    written, effective, holds = state.put
     return {
-        "mode": state.mode,
-        "run": state.run,
-        "item": state.item,
-        "left": [[[columns[switch], cell_text(writing.cell(cell))] for switch, cell in group] for group in state.left],
-        "next": [state.soonest, state.latest],
-        "hand": state.hand,
-        "written": words(written),
-        "effective": words(effective),
-        "held": [
-            [writing.carriers[carrier], [name for place, name in enumerate(columns) if bits >> place & 1]]
-            for carrier, bits in holds
-        ],
+        **stand(projection.firmware, key.state),
         "carriers": [_CARRIERS[one] for one in key.carriers],
         "pins": [_pin(one) for one in key.pins],
         "guards": [_LOCKS[one] for one in key.locks],
@@ -102,7 +86,32 @@ def _state(projection: Projection, key: Key) -> Data:
     }
 
 
+def stand(firmware: Firmware, state: State) -> Data:
+    """Where the firmware stands, what is written, in effect and held."""
+    columns, writing = firmware.drive.columns, firmware.writing
+    written, effective, holds = state.put
+    return {
+        "mode": state.mode,
+        "run": state.run,
+        "item": state.item,
+        "left": [[[columns[switch], word(writing, cell)] for switch, cell in group] for group in state.left],
+        "next": [state.soonest, state.latest],
+        "hand": state.hand,
+        "written": [word(writing, cell) for cell in written],
+        "effective": [word(writing, cell) for cell in effective],
+        "held": [
+            [writing.carriers[carrier], [name for place, name in enumerate(columns) if bits >> place & 1]]
+            for carrier, bits in holds
+        ],
+    }
+
+
+def word(writing: Writing, cell: int) -> str:
+    """A cell as the file writes it."""
+    return cell_text(writing.cell(cell))
+
+
 def _pin(state: int) -> str:
     if state == DRIVEN:
         return "driven"
-    return _COMMANDS[state >> 1] + (" going" if state & 1 else "")
+    return COMMANDS[state >> 1] + (" going" if state & 1 else "")

@@ -24,20 +24,13 @@ class Cutting:
         self.length = 2 * longest_memory(view) + 1 + 2 * cycles + dead
         self._round = max(cycles, 1)
 
-    def cut(
-        self, edges: tuple[Edge, ...], deadline: int | None, keep_bounds: bool
-    ) -> tuple[tuple[Edge, ...], int | None]:
-        """Edges and deadline with lower bounds no longer than needed, and without upper bounds that do not matter.
-
-        `keep_bounds` leaves a stay with a deadline as it is.
-        """
+    def cut(self, edges: tuple[Edge, ...], deadline: int | None) -> tuple[tuple[Edge, ...], int | None]:
+        """Edges and deadline with lower bounds no longer than needed, and without upper bounds that do not matter."""
         possible = tuple(edge for edge in edges if deadline is None or edge.lo <= deadline)
         windows = [(edge.lo, _least(edge.hi, deadline)) for edge in possible]
         if all(hi is None or hi < self.length for _, hi in windows) and deadline is None:
             return tuple(self._shortened(edge) if edge.hi is None else edge for edge in possible), None
         if not all(self._free(lo, hi) for lo, hi in windows):
-            return edges, deadline
-        if keep_bounds:
             return edges, deadline
         return tuple(self._shortened(edge)._replace(hi=None) for edge in possible), None
 

@@ -6,7 +6,7 @@ from seqcheck.drive import Command
 from seqcheck.firmware import Edge, State
 from seqcheck.verdict import Act
 
-X, Y, Z, PAUSE = 0, 1, 2, 3
+X, Y, Z, PAUSE, GAP = range(5)
 CARRIER, HOLD, PIN, LOCK, RISE, FALL = 100, 200, 300, 400, 500, 600
 
 C_OFF, C_ON, C_BOTH = 0, 1, 2
@@ -18,10 +18,15 @@ BLOCKED, WAITING, CLEAR = 0, 1, 2
 """An interlock direction: partner on; partner off, dead time running; dead time over."""
 
 
+NOT_ENDED, LATELY, LONG_AGO = 0, 1, 2
+"""When the possibility of a watched literal has ended: it goes on or never began, less than a cap ago, or longer."""
+
+
 class Key(NamedTuple):
     """A location's state. Entries follow the view's switches, carriers, locks and literals.
 
-    `paused`: an overlap has come to where the hazard is not asked for, and no time has passed there yet.
+    `paused`: an overlap has come to where the hazard is not asked for, and no time has passed there yet. `ended`: when
+    the possibility of the literal whose gaps are measured has ended.
     """
 
     state: State
@@ -30,6 +35,7 @@ class Key(NamedTuple):
     locks: tuple[int, ...]
     literals: tuple[int, ...]
     paused: bool = False
+    ended: int = NOT_ENDED
 
 
 class Happening(NamedTuple):
@@ -51,3 +57,4 @@ class Clock(NamedTuple):
 
 SILENT = Happening(None)
 OVER = Happening(None, "a pause lasts")
+CAPPED = Happening(None, "a gap is as long as anyone asks")

@@ -8,17 +8,22 @@ from dataclasses import dataclass
 from itertools import product
 
 from seqcheck.circuit import contradicted
-from seqcheck.drive import Above, Update
+from seqcheck.drive import Update
 from seqcheck.firmware import Edge, Firmware, State
 from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts
 from seqcheck.proving.cutting import Cutting
 from seqcheck.proving.keys import (
+    CAPPED,
     CARRIER,
     CLEAR,
     CODES,
     FALL,
+    GAP,
     HOLD,
+    LATELY,
     LOCK,
+    LONG_AGO,
+    NOT_ENDED,
     OVER,
     PAUSE,
     PIN,
@@ -43,11 +48,17 @@ from seqcheck.zones import FRESH, INFINITE
 
 @dataclass(frozen=True, slots=True)
 class Manner:
-    """How to look: `forget` the phase of carriers nobody follows; `cut` long dwells; `measure` the overlap."""
+    """How to look: `forget` the phase of carriers nobody follows; `cut` long dwells; `measure` the overlap.
+
+    Or, with `gap`, measure how long after the possibility of the literal at that place all others are possible and
+    the hazard is asked for; gaps of `cap` ps and more are one.
+    """
 
     forget: bool
     cut: bool
     measure: bool
+    gap: int | None = None
+    cap: int = 0
 
 
 class Projection:
@@ -62,7 +73,9 @@ class Projection:
         self._references = tuple(Reference(drive.carriers[name]) for name in view.carriers)
         self._spans = tuple(drive.carriers[name].update is Update.WITHIN_PERIOD for name in view.carriers)
         self._rises = tuple(drive.carriers[name].update is Update.AT_RISE for name in view.carriers)
-        self._cutting = Cutting(view, self._references) if manner.cut and not view.locks else None
+        # where interlocked switches follow different carriers, no cycle is like the one before
+        repeats = not view.locks or len(view.carriers) <= 1
+        self._cutting = Cutting(view, self._references) if manner.cut and repeats else None
         self._locations: dict[Key, Location] = {}
         self._clocks: dict[Key, tuple[Clock, ...]] = {}
 
@@ -109,6 +122,10 @@ class Projection:
     ) -> Hop:
         if self.manner.measure and old is not None and event is not OVER:
             key = key._replace(paused=self._pauses(old, key))
+        if self.manner.gap is not None and old is not None and event is not CAPPED:
+            key = key._replace(ended=self._ended(old, key, self.manner.gap))
+            if key.ended == LATELY and POSSIBLE[old.literals[self.manner.gap]]:
+                resets |= {GAP}
         target = self._location(key)
         names = {} if old is None else {clock.name: place for place, clock in enumerate(self._clocks[old], 1)}
         renaming = _holds(old, key, written)
@@ -156,11 +173,19 @@ class Projection:
         possible = all(POSSIBLE[literal] for literal in key.literals)
         return possible and not self._hot(key) and (old.paused or self._hot(old))
 
+    def _ended(self, old: Key, key: Key, watched: int) -> int:
+        if POSSIBLE[key.literals[watched]]:
+            return NOT_ENDED
+        return LATELY if POSSIBLE[old.literals[watched]] else old.ended
+
     def _hot(self, key: Key) -> bool:
-        if not all(POSSIBLE[literal] for literal in key.literals):
+        """Whether all literals are possible and asked for; for a gap, all others after the one that is watched."""
+        possible = [POSSIBLE[literal] for literal in key.literals]
+        if self.manner.gap is not None:
+            possible[self.manner.gap] = key.ended != NOT_ENDED
+        if not all(possible):
             return False
-        facts = [fact for fact in self.firmware.facts(key.state) if isinstance(fact, Above)]
-        return not contradicted(self.view.hazard, facts)
+        return not contradicted(self.view.hazard, self.firmware.facts(key.state))
 
     def _clocks_of(self, key: Key) -> Iterator[Clock]:
         hot = self._hot(key)
@@ -191,6 +216,8 @@ class Projection:
             yield Clock(Z, INFINITE, INFINITE, INFINITE)
         if key.paused:
             yield Clock(PAUSE, 0, 0, 0)
+        if key.ended == LATELY:
+            yield Clock(GAP, self.manner.cap, self.manner.cap, self.manner.cap)
 
     def _firmware_clocks(self, key: Key, hot: bool) -> Iterator[Clock]:
         edges, deadline = self._timing(key, hot)
@@ -218,12 +245,14 @@ class Projection:
     def _timing(self, key: Key, hot: bool) -> tuple[tuple[Edge, ...], int | None]:
         """The firmware's edges and deadline, long stays cut short where that changes nothing.
 
-        Where all literals are possible a stay keeps its bounds, since its length is the overlap.
+        Where all literals are possible a stay keeps its times: an overlap that comes from before the stay has settled
+        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured.
         """
         edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
-        if self._cutting is None or key.state.hand >= 0:
+        measured = hot or key.ended == LATELY
+        if self._cutting is None or key.state.hand >= 0 or measured:
             return edges, deadline
-        return self._cutting.cut(edges, deadline, hot)
+        return self._cutting.cut(edges, deadline)
 
     # For traces and certificates
 
@@ -235,14 +264,24 @@ class Projection:
         """The identity of a location's clock."""
         return self._clocks[key][place - 1].name
 
-    def eased(self, hop: Hop) -> Hop:
-        """A hop of the firmware that asks for no longer a stay than a cut one."""
-        happening = hop.event
+    def eased(self, hop: Hop, location: Location) -> Hop:
+        """A hop of the firmware out of a location that asks for no longer a stay than a cut one."""
+        happening, key = hop.event, location.key
         assert isinstance(happening, Happening)
-        if happening.edge is None or self._cutting is None:
+        assert isinstance(key, Key)
+        if happening.edge is None:
             return hop
-        length = self._cutting.length
-        return hop._replace(least=tuple(Bound(clock, min(value, length)) for clock, value in hop.least))
+        step = happening.edge.step
+        cut = min((one.lo for one in self._timing(key, False)[0] if one.step == step), default=happening.edge.lo)
+        least = tuple(
+            Bound(clock, min(value, cut) if self.clock_name(key, clock) == X else value) for clock, value in hop.least
+        )
+        return hop._replace(least=least)
+
+    @property
+    def settled(self) -> int:
+        """A stay that may be cut and has lasted for so long may have lasted for any time."""
+        return self._cutting.length + 1 if self._cutting is not None else 0
 
     def full_dwell(self, edge: Edge, location: Location) -> int:
         """How long a stay the file asks for before an edge that the search may have let come sooner."""
@@ -257,6 +296,7 @@ class Projection:
         assert isinstance(key, Key)
         return (
             *self._pause_over(key),
+            *self._gap_capped(key),
             *self._conducting(key),
             *self._firmware_hops(key),
             *self._carrier_hops(key),
@@ -268,6 +308,11 @@ class Projection:
     def _pause_over(self, key: Key) -> Iterator[Hop]:
         if key.paused:
             yield self._hop(key, key._replace(paused=False), frozenset(), (), (), 0, OVER)
+
+    def _gap_capped(self, key: Key) -> Iterator[Hop]:
+        if key.ended == LATELY:
+            capped = key._replace(ended=LONG_AGO)
+            yield self._hop(key, capped, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED)
 
     def _conducting(self, key: Key) -> Iterator[Hop]:
         for place, state in enumerate(key.literals):

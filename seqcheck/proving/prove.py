@@ -4,19 +4,22 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from seqcheck.drive import Drive, Fixed, Follow, Update
+from seqcheck.drive import Cell, Drive, Fixed, Follow, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.certify import Data, cover
+from seqcheck.proving.gaps import least_gap
 from seqcheck.proving.keys import Key
+from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
-from seqcheck.proving.screen import Map, screened
+from seqcheck.proving.screen import Map, Places, least_after, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
-from seqcheck.proving.tracing import trace_of
+from seqcheck.proving.tracing import gap_trace, trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
+from seqcheck.zones import INFINITE
 
 Observer = Callable[[int], None]
 
@@ -25,13 +28,13 @@ Observer = Callable[[int], None]
 class Proven:
     """No run brings the hazard; `method` is "screen" or "zones".
 
-    `cover` is the proof as data (see certify), where the prover keeps proofs and a limit did not end the search for it.
+    `data` is the proof as data (see certify and potentials), where the prover keeps proofs.
     """
 
     method: str
     zones: int
     however_late: bool
-    cover: Data | None = None
+    data: Data | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +49,17 @@ class Refuted:
     overlap: int | None
     zones: int
     greatest: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Gap:
+    """How soon after one literal of a safe hazard all others can be possible, at the soonest (ps); None: never.
+
+    In `trace` the literal, prolonged by 1 ps more than that, meets the others.
+    """
+
+    time: int | None
+    trace: Trace | None
 
 
 @dataclass(slots=True)
@@ -71,7 +85,7 @@ class _Count:
 class Prover:
     """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
-    With `keep` the proofs that hazards are safe (interlocks included) are kept, for a certificate.
+    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate.
     """
 
     def __init__(self, drive: Drive, keep: bool = False) -> None:
@@ -79,6 +93,7 @@ class Prover:
         self.keep = keep
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
+        self._stands: dict[Map, list[Data]] = {}
 
     def prove(self, hazard: Hazard, interlocks: bool, observer: Observer) -> Proven | Refuted:
         """Prove or refute one hazard, with the drive's interlocks or as if it had none.
@@ -87,8 +102,10 @@ class Prover:
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         count, keep = _Count(observer), self.keep and interlocks
-        if screened(looking, self._map(self._firmware(looking, punctual=False))):
-            return Proven("screen", 0, True, self._cover_of_screened(looking, count) if keep else None)
+        here = self._map(self._firmware(looking, punctual=False), count)
+        apart = screened(looking, here)
+        if apart is not None:
+            return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
         for punctual in (False, True):
             for manner in _manners(looking):
                 projection = self._searched(looking, punctual, manner, count)
@@ -101,7 +118,7 @@ class Prover:
         """Whether the hazard happens in no run, with the drive's interlocks and firmware in time; without a trace."""
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = _Count(observer)
-        if screened(looking, self._map(self._firmware(looking, punctual=False))):
+        if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
             return True
         return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
 
@@ -114,14 +131,35 @@ class Prover:
         projection = Projection(looking, self._firmware(looking, punctual), manner)
         return projection if first_hazard(projection.initial(), count) is None else None
 
-    def _cover_of_screened(self, looking: View, count: _Count) -> Data | None:
-        """What the screen has settled, shown by zones; None where a limit ends that, which leaves the verdict."""
-        try:
-            found = (self._searched(looking, False, manner, count) for manner in _manners(looking))
-            projection = next((one for one in found if one is not None), None)
-        except LimitReached:
-            return None
-        return cover(projection, True) if projection is not None else None
+    def gap(self, hazard: Hazard, watched: int, observer: Observer) -> Gap:
+        """The least gap of a safe hazard after the literal at place `watched`: its margin in that direction.
+
+        With interlocks and with firmware as late as the drive allows. What the observer raises passes through.
+        """
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+        count = _Count(observer)
+        floor = 0
+        if len(hazard.literals) == 2 and not looking.locks:
+            bound = least_after(looking, self._map(self._firmware(looking, punctual=False), count), watched)
+            if bound is not None and bound >= INFINITE:
+                return Gap(None, None)
+            floor = bound or 0
+        firmware = self._firmware(looking, punctual=True)
+
+        def look(manner: Manner) -> Projection:
+            count.next_search()
+            return Projection(looking, firmware, manner)
+
+        least = least_gap(look, watched, bool(looking.carriers), floor, count)
+        if least.node is None:
+            return Gap(None, None)
+        return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
+
+    def _screened(self, looking: View, here: Map, apart: Places) -> Data:
+        """The proof of the screen as data; hazards that share a map share the list of its states."""
+        if here not in self._stands:
+            self._stands[here] = stands(here)
+        return {**potentials(looking, here, apart), "stands": self._stands[here]}
 
     def _refute(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
         try:
@@ -178,9 +216,9 @@ class Prover:
             self._firmwares[key] = Firmware(self.drive, *key)
         return self._firmwares[key]
 
-    def _map(self, firmware: Firmware) -> Map:
+    def _map(self, firmware: Firmware, observer: Observer) -> Map:
         if firmware not in self._maps:
-            self._maps[firmware] = Map(firmware)
+            self._maps[firmware] = Map(firmware, observer)
         return self._maps[firmware]
 
 
@@ -193,10 +231,12 @@ def _may_hold(looking: View) -> bool:
     """Whether some row could command all literals at once."""
     drive = looking.drive
     columns = [drive.columns.index(one.switch) for one in looking.hazard.literals]
-    sides = (Fixed.OFF, Fixed.ON)
+    sides: dict[Cell, bool] = {Fixed.OFF: False, Fixed.ON: True}
     for mode in drive.modes.values():
         cells = [(mode.cells[column], one.on) for column, one in zip(columns, looking.hazard.literals, strict=True)]
-        if all(isinstance(cell, Follow) or cell not in sides or (cell is Fixed.ON) == on for cell, on in cells):
+        on = {cell for cell, wanted_on in cells if wanted_on}
+        opposites = any(isinstance(cell, Follow) and replace(cell, inverted=not cell.inverted) in on for cell in on)
+        if not opposites and all(sides.get(cell, wanted) == wanted for cell, wanted in cells):
             return True
     return False
 

@@ -8,7 +8,7 @@ Interlocks are left out: they only shorten pulses.
 """
 
 from collections import deque
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from heapq import heappop, heappush
 from itertools import combinations
 from typing import NamedTuple
@@ -22,6 +22,11 @@ from seqcheck.writing import FREE, ON, carrier_of
 from seqcheck.zones import INFINITE
 
 Pair = tuple[int, int]
+"""The commands of two switches."""
+Point = tuple[int, Pair]
+"""The number of a state, and the commands of both switches in it."""
+Places = tuple[int, int]
+"""Where two literals stand in a hazard."""
 
 
 class Arc(NamedTuple):
@@ -33,14 +38,18 @@ class Arc(NamedTuple):
 
 
 class Map:
-    """All states of a firmware with the least times between them."""
+    """All states of a firmware with the least times between them.
 
-    def __init__(self, firmware: Firmware) -> None:
+    The observer is called for every state, with no zone, so that it may stop the work by raising.
+    """
+
+    def __init__(self, firmware: Firmware, observer: Callable[[int], None]) -> None:
         self.firmware = firmware
         self.states: list[State] = [firmware.start()]
         self.arcs: list[tuple[Arc, ...]] = []
         numbers = {self.states[0]: 0}
         while len(self.arcs) < len(self.states):
+            observer(0)
             state = self.states[len(self.arcs)]
             arcs = []
             for least, target, restarts in _next(firmware, state):
@@ -61,14 +70,34 @@ def _next(firmware: Firmware, state: State) -> Iterator[tuple[int, State, bool]]
             yield 0, firmware.updated(state, number), False
 
 
-def screened(view: View, here: Map) -> bool:
-    """Whether some pair of the hazard's literals never meets."""
-    places = range(len(view.hazard.literals))
-    return any(_Pairing(view, here, first, second).apart() for first, second in combinations(places, 2))
+def screened(view: View, here: Map) -> Places | None:
+    """The places of two of the hazard's literals that never meet, if least times alone show it.
+
+    Only switches that are wanted on are looked at: what a carrier's dead time keeps apart is their conduction.
+    """
+    pairs = combinations((place for place, literal in enumerate(view.hazard.literals) if literal.on), 2)
+    return next((pair for pair in pairs if Pairing(view, here, *pair).apart()), None)
 
 
-class _Pairing:
-    """Two literals over the map of a firmware; a point is (state, commands of both)."""
+def least_after(view: View, here: Map, leaving: int) -> int | None:
+    """A lower bound of the gap after one of two literals that the screen keeps apart, INFINITE where the other never
+    comes after it; None where it does not keep them apart.
+
+    Between their commands lies the least time found; the possibility of the one outlasts its command by `fall` at most,
+    that of the other lags behind by `rise`. The third condition of the screen leaves no earlier command to reckon with.
+    """
+    pairing = Pairing(view, here, 0, 1)
+    points = pairing.points()
+    if points is None or not pairing.apart():
+        return None
+    least = pairing.least(points, leaving)
+    if least >= INFINITE:
+        return least
+    return least + pairing.delays[1 - leaving].rise - pairing.delays[leaving].fall
+
+
+class Pairing:
+    """Two literals over the map of a firmware."""
 
     def __init__(self, view: View, here: Map, first: int, second: int) -> None:
         drive = view.drive
@@ -83,43 +112,45 @@ class _Pairing:
         self.updates = tuple(carrier.update is not Update.AT_ONCE for carrier in carriers)
 
     def apart(self) -> bool:
-        points = self._points()
+        points = self.points()
         if points is None:
             return False
-        one_way, other_way = self._least(points, 0), self._least(points, 1)
+        one_way, other_way = self.least(points, 0), self.least(points, 1)
         first, second = self.delays
         if one_way < first.fall - second.rise or other_way < second.fall - first.rise:
             return False
         return one_way + other_way > max(first.fall, second.fall)
 
-    def _wanted(self, pair: Pair, which: int) -> bool:
+    def wanted(self, pair: Pair, which: int) -> bool:
+        """Whether one of the literals is commanded, or may be."""
         return pair[which] == C_BOTH or (pair[which] == C_ON) == self.literals[which].on
 
-    def _cells(self, state: int) -> Pair:
+    def cells(self, state: int) -> Pair:
+        """The cells of both switches that are in effect."""
         effective = self.here.states[state].put[1]
         return effective[self.columns[0]], effective[self.columns[1]]
 
-    def _points(self) -> set[tuple[int, Pair]] | None:
+    def points(self) -> set[Point] | None:
         """All points that can be reached; None if one of them commands both."""
         starts = [(0, pair) for pair in self._joined(0, None)]
         seen = set(starts)
         waiting = deque(starts)
         while waiting:
             point = waiting.popleft()
-            if self._wanted(point[1], 0) and self._wanted(point[1], 1):
+            if self.wanted(point[1], 0) and self.wanted(point[1], 1):
                 return None
-            for _, target, _ in self._steps(point):
+            for _, target, _ in self.steps(point):
                 if target not in seen:
                     seen.add(target)
                     waiting.append(target)
         return seen
 
-    def _steps(self, point: tuple[int, Pair]) -> Iterator[tuple[Arc | None, tuple[int, Pair], bool]]:
+    def steps(self, point: Point) -> Iterator[tuple[Arc | None, Point, bool]]:
         """What can come next: (the firmware's arc or None, the point after it, whether the arc restarts the clock)."""
         state, pair = point
         for other in self._drifting(state, pair):
             yield None, (state, other), False
-        before = self._cells(state)
+        before = self.cells(state)
         for arc in self.here.arcs[state]:
             kept = self._kept(before, pair, arc.target)
             for other in self._joined(arc.target, kept):
@@ -127,14 +158,14 @@ class _Pairing:
 
     def _kept(self, before: Pair, pair: Pair, target: int) -> tuple[int | None, int | None]:
         """The commands that an arc leaves as they were; None where the switch joins a carrier."""
-        after = self._cells(target)
+        after = self.cells(target)
         first = pair[0] if after[0] == before[0] or after[0] == FREE else None
         second = pair[1] if after[1] == before[1] or after[1] == FREE else None
         return first, second
 
     def _joined(self, state: int, kept: tuple[int | None, int | None] | None) -> list[Pair]:
         """The commands with which a state can begin."""
-        cells = self._cells(state)
+        cells = self.cells(state)
         choices = []
         for which in (0, 1):
             cell, old = cells[which], kept[which] if kept else None
@@ -148,7 +179,7 @@ class _Pairing:
 
     def _drifting(self, state: int, pair: Pair) -> list[Pair]:
         """The commands that carriers and resting pins can make of these without the firmware."""
-        cells = self._cells(state)
+        cells = self.cells(state)
         choices = []
         for which in (0, 1):
             if cells[which] <= ON:
@@ -166,29 +197,29 @@ class _Pairing:
             return True
         return pair[0] == pair[1] if cells[0] == cells[1] else pair != (C_ON, C_ON)
 
-    def _least(self, points: set[tuple[int, Pair]], leaving: int) -> int:
+    def least(self, points: set[Point], leaving: int) -> int:
         """The least time from the command of one literal going away to the other's coming."""
         sources: dict[int, set[tuple[int, Pair, bool]]] = {}
         coming = 1 - leaving
         best = INFINITE
         for point in points:
-            if not self._wanted(point[1], leaving):
+            if not self.wanted(point[1], leaving):
                 continue
-            cell = self._cells(point[0])[leaving]
-            for arc, target, restarts in self._steps(point):
-                if self._wanted(target[1], leaving):
+            cell = self.cells(point[0])[leaving]
+            for arc, target, restarts in self.steps(point):
+                if self.wanted(target[1], leaving):
                     continue
-                if not self._wanted(point[1], coming) and self._wanted(target[1], coming):
+                if not self.wanted(point[1], coming) and self.wanted(target[1], coming):
                     best = min(best, self._floor(cell, target, coming))
                 sources.setdefault(cell, set()).add((*target, arc is not None and restarts))
         for cell, starts in sources.items():
             best = min(best, self._shortest(cell, starts, coming, best))
         return best
 
-    def _floor(self, cell: int, target: tuple[int, Pair], coming: int) -> int:
+    def _floor(self, cell: int, target: Point, coming: int) -> int:
         """A dead time that lies between: one switch was on with an output, the other comes with its complement."""
         number = carrier_of(cell)
-        after = self._cells(target[0])[coming]
+        after = self.cells(target[0])[coming]
         opposite = number >= 0 and carrier_of(after) == number and after != cell
         return self.dead[number] if opposite else 0
 
@@ -203,9 +234,9 @@ class _Pairing:
             if time > best[here]:
                 continue
             state, pair, known = here
-            for arc, target, restarts in self._steps((state, pair)):
+            for arc, target, restarts in self.steps((state, pair)):
                 later = time + (arc.least if arc is not None and known and restarts else 0)
-                if not self._wanted(pair, coming) and self._wanted(target[1], coming):
+                if not self.wanted(pair, coming) and self.wanted(target[1], coming):
                     ceiling = min(ceiling, max(later, self._floor(cell, target, coming)))
                 there = (*target, restarts or known)
                 if later < best.get(there, INFINITE):

@@ -8,7 +8,7 @@ that keeps what can be reached (Alur and Dill 1994), and with it the fewest move
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 
-from seqcheck.proving.circles import goes_on
+from seqcheck.proving.circles import goes_on, idle
 from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limited, renamed
 
@@ -206,13 +206,15 @@ def endless_circle(node: Node) -> list[Hop]:
     location, size, measure = node.location, node.location.size, node.location.measure
     if not measure:
         return []
-    others = [place for place in range(size * size) if measure not in (place // size, place % size)]
     time = node.zone[measure * size]
     circle = [node.hop]
     ancestor = node.parent
     while ancestor is not None and ancestor.location.overlapping:
         if ancestor.location is location and ancestor.zone[measure * size] < time:
-            again = all(node.zone[place] >= ancestor.zone[place] for place in others)
+            passed_over = idle(location, circle[::-1]) | {measure}
+            asked = [clock for clock in range(size) if clock not in passed_over]
+            places = [one * size + other for one in asked for other in asked]
+            again = all(node.zone[place] >= ancestor.zone[place] for place in places)
             if again and goes_on(location, node.zone, circle[::-1], successor):
                 return circle[::-1]
         circle.append(ancestor.hop)

@@ -1,14 +1,17 @@
 """From a path of hops to a run with concrete times."""
 
+from dataclasses import replace
+
 from seqcheck.drive import Drive, Move, Trip
 from seqcheck.firmware import Deed
 from seqcheck.proving.cutting import longest_memory
 from seqcheck.proving.dwelling import Run, with_full_dwells
+from seqcheck.proving.gaps import ended_at
 from seqcheck.proving.keys import CARRIER, Happening, Key
 from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
-from seqcheck.proving.schedule import Path, constraints_of, scheduled
+from seqcheck.proving.schedule import Difference, Path, constraints_of, scheduled
 from seqcheck.proving.search import Node, endless_circle, hops_out
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
@@ -27,38 +30,98 @@ def trace_of(projection: Projection, node: Node, endless: bool, interlocked: boo
     circling = endless and bool(node.location.bounds)
     ending = [] if endless else hops_out(node)
     hops = [*(one.hop for one in nodes), *ending]
-    path, times = _timed(projection, hops, first)
+    to_last = bool(ending) or circling
+    path, times = _timed(projection, hops, first, to_last)
     circle = endless_circle(node) if circling else []
     for _ in range(2 * node.location.size * bool(circle)):
         if times[len(hops) - 1] > times[first]:
             break
         hops += circle  # a round may take no time before one that does
-        path, times = _timed(projection, hops, first)
-    end = times[len(hops) - 1] if ending or circling else times[path.end]
-    timed = list(enumerate(zip(hops, times, strict=False)))[1:]
-    events = tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))
-    key = hops[0].target.key
-    assert isinstance(key, Key)
-    births = {projection.clock_name(key, place): times[variable] for place, variable in path.births.items()}
-    phases = tuple(
-        _phase(projection, place, state, births) for place, state in enumerate(key.carriers) if state != FORGOTTEN
-    )
-    short = Run(tuple(times[: len(hops)]), events, first, times[first], end)
+        path, times = _timed(projection, hops, first, to_last)
+    end = times[len(hops) - 1 if to_last else path.end]
+    short = Run(tuple(times[: len(hops)]), _all_events(projection, hops, times), first, times[first], end)
     run = with_full_dwells(projection, hops, short)
-    happened = tuple(event for _, event in run.events)
     until = None if endless and not circling else run.end
+    happened = tuple(event for _, event in run.events)
+    phases = _phases(projection, hops[0], path, times)
     return Trace(projection.view.hazard, phases, happened, run.end, run.hot, until, interlocked)
 
 
-def _timed(projection: Projection, hops: list[Hop], origin: int) -> tuple[Path, list[int]]:
-    """The path with times; where long stays were cut before an overlap began in them, with what was cut left out."""
-    for asked in (hops, [projection.eased(hop) for hop in hops]):
-        path = constraints_of(asked)
-        asked_for = sum(value for hop in asked for _, value in (*hop.least, *hop.after))
-        times = scheduled(path, origin, 1 + longest_memory(projection.view) + asked_for)
-        if times is not None:
-            return path, times
-    raise Infeasible
+def gap_trace(projection: Projection, node: Node, watched: int, least: int) -> Trace:
+    """The run to a node that ends the least gap, in which the literal would meet the others if prolonged by 1 ps more.
+
+    Raises Infeasible.
+    """
+    nodes = node.path()
+    ended, met = ended_at(nodes), len(nodes) - 1
+    hops = [one.hop for one in nodes]
+    path, times = _timed(projection, hops, ended, True, met)
+    events = _all_events(projection, hops, times)
+    short = Run(tuple(times[: len(hops)]), events, ended, times[ended], times[met] + 1)
+    run = with_full_dwells(projection, hops, short)
+    happened = tuple(event for _, event in run.events)
+    phases = _phases(projection, hops[0], path, times)
+    hazard = projection.view.hazard
+    literal = hazard.literals[watched]
+    return Trace(hazard, phases, happened, run.end, run.end - 1, run.end, True, (literal, least + 1))
+
+
+def _all_events(projection: Projection, hops: list[Hop], times: list[int]) -> tuple[tuple[int, Event], ...]:
+    timed = list(enumerate(zip(hops, times, strict=False)))[1:]
+    return tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))
+
+
+def _phases(projection: Projection, start: Hop, path: Path, times: list[int]) -> tuple[Phase, ...]:
+    key = start.target.key
+    assert isinstance(key, Key)
+    births = {projection.clock_name(key, place): times[variable] for place, variable in path.births.items()}
+    return tuple(
+        _phase(projection, place, state, births) for place, state in enumerate(key.carriers) if state != FORGOTTEN
+    )
+
+
+def _timed(
+    projection: Projection, hops: list[Hop], origin: int, to_last: bool, met: int | None = None
+) -> tuple[Path, list[int]]:
+    """The path with times that make its overlap longest, its stays no longer than cut ones.
+
+    The overlap begins with hop `origin` and ends with the last one, or (not `to_last`) some time after it. With `met`
+    it is a gap from `origin` to that hop, and shortest; the run goes on after it.
+
+    A stay in which the overlap begins must be as long as the file asks, or else have settled before.
+    """
+    entered = max((place for place in range(origin + 1) if _by_firmware(hops[place])), default=0)
+    left = next((place for place in range(origin + 1, len(hops)) if _by_firmware(hops[place])), len(hops))
+    before = [hops[0], *(projection.eased(hops[at], hops[at - 1].target) for at in range(1, entered + 1))]
+    timed = [_scheduled(projection, [*before, *hops[entered + 1 :]], origin, (), met)]
+    if entered < origin and left < len(hops):
+        eased = projection.eased(hops[left], hops[left - 1].target)
+        if eased != hops[left]:
+            settled = Difference(entered, origin, -projection.settled)
+            all_eased = [*before, *hops[entered + 1 : left], eased, *hops[left + 1 :]]
+            timed.append(_scheduled(projection, all_eased, origin, (settled,), met))
+    found = [one for one in timed if one is not None]
+    if not found:
+        raise Infeasible
+    longest = max(found, key=lambda one: one[1][len(hops) - 1 if to_last else one[0].end] - one[1][origin])
+    return longest if met is None else min(found, key=lambda one: one[1][met] - one[1][origin])
+
+
+def _by_firmware(hop: Hop) -> bool:
+    happening = hop.event
+    assert isinstance(happening, Happening)
+    return happening.edge is not None
+
+
+def _scheduled(
+    projection: Projection, hops: list[Hop], origin: int, more: tuple[Difference, ...], met: int | None
+) -> tuple[Path, list[int]] | None:
+    path = constraints_of(hops)
+    lasting = () if met is None else (Difference(met, path.end, -1),)
+    path = replace(path, constraints=(*path.constraints, *more, *lasting))
+    asked_for = sum(value for hop in hops for _, value in (*hop.least, *hop.after)) + projection.settled
+    times = scheduled(path, origin if met is None else met, 1 + longest_memory(projection.view) + asked_for)
+    return None if times is None else (path, times)
 
 
 def _phase(projection: Projection, place: int, state: int, births: dict[int, int]) -> Phase:

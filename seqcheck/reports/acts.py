@@ -5,18 +5,23 @@ from dataclasses import dataclass
 
 from seqcheck.drive import RESET, After, Cell, Drive, Move, SetStep, Step, Trip, WaitStep, When, cell_text
 from seqcheck.quantities import shown
-from seqcheck.reports.pieces import Tone, listed
+from seqcheck.reports.pieces import Tone, counted, listed
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Trace
 
 
 @dataclass(frozen=True, slots=True)
 class Note:
-    """Something that happens in an instant of a run, in words; `line` is that of the file, None where there is none."""
+    """Something that happens in an instant of a run, in words; `place` is behind it in the file, None for nothing."""
 
     text: str
-    line: int | None = None
+    place: Place | None = None
     tone: Tone = Tone.PLAIN
+
+    @property
+    def line(self) -> int | None:
+        """The line of the file, None where there is none."""
+        return self.place.line if self.place else None
 
 
 def written(writes: Sequence[tuple[str, Cell]]) -> str:
@@ -48,8 +53,7 @@ class Teller:
         return [self._note(event, self._outside(event)), *held]
 
     def _note(self, event: Event, text: str, tone: Tone = Tone.PLAIN, place: Place | None = None) -> Note:
-        found = event.place or place
-        return Note(text, found.line if found else None, tone)
+        return Note(text, event.place or place, tone)
 
     def _begins(self, event: Event) -> Note:
         run = begun_by(self._drive, event)
@@ -78,7 +82,7 @@ class Teller:
         self._done, self._since = max(self._done, reached), event.time
         if not waits:
             return []
-        return [Note(f"wait over, it took {shown(took)}", waits[0].place.line)]
+        return [Note(f"wait over, it took {shown(took)}", waits[0].place)]
 
     def _step_of(self, event: Event) -> int:
         """The index of the step that an event writes: by its place, else the first from here on that has these writes.
@@ -110,13 +114,25 @@ class Teller:
                 return f"{event.name} falls"
             case Act.OUTPUT:
                 return f"{event.name}: its dead time is over"
+            case Act.CYCLES:
+                return _cycling(event)
             case Act.UPDATES:
                 return f"{event.name} updates what is held"
             case Act.RESTS:
                 pin = self._drive.pins.get(event.name)
                 return f"pin {pin.name} of {event.name} is at rest" if pin else f"pin of {event.name} is at rest"
-            case _:
+            case Act.CLEARS:
                 return f"interlock lets {event.name} through"
+            case _:
+                return f"{event.name} {event.act.value}".strip()
+
+
+def _cycling(event: Event) -> str:
+    cycles = event.cycles
+    if cycles is None:
+        return f"{event.name} runs on"
+    each = f"{shown(cycles.first)} and {shown(cycles.second)}"
+    return f"{event.name} runs {counted(cycles.count, 'whole cycle')} of {each}, {shown(cycles.length)} in all"
 
 
 def begun_by(drive: Drive, event: Event) -> Move | Trip | None:
@@ -133,3 +149,8 @@ def told(drive: Drive, trace: Trace) -> list[tuple[Event, list[Note]]]:
     """Every event of a trace, in order, with its notes."""
     teller = Teller(drive)
     return [(event, teller.tell(event)) for event in trace.events]
+
+
+def entered(drive: Drive, trace: Trace) -> list[tuple[int | None, str]]:
+    """The mode that the drive is in and since when: from (None, start) on, where None is "for ever before"."""
+    return [(None, drive.start), *((one.time, one.name) for one in trace.events if one.act is Act.ENTERS)]

@@ -48,7 +48,9 @@ def _count_from(run: Run, verdict: Unsafe) -> list[Line]:
     span = verdict.replayed.overlap
     found = paragraph(f"{text}.", INDENT, Tone.FAINT)
     if verdict.overlap is not None and span.end is not None and span.end - span.start != verdict.overlap:
-        found += paragraph(f"In this run the overlap is {shown(span.end - span.start)}.", INDENT, Tone.FAINT)
+        found += paragraph(
+            f"In this run the {run.stretch} is {shown(span.end - span.start)}.", INDENT, Tone.FAINT
+        )
     return found
 
 

@@ -10,7 +10,7 @@ from seqcheck.reports.pieces import counted, listed
 from seqcheck.verdict import Act, Event
 
 _EDGES = (Act.RISES, Act.FALLS)
-_CARRIER = (*_EDGES, Act.OUTPUT)
+_CARRIER = (*_EDGES, Act.OUTPUT, Act.CYCLES)
 _FEW = 3  # so many quiet rows in a row are still shown one by one
 
 
@@ -47,6 +47,10 @@ def _one(members: list[Instant], acts: dict[int, list[Event]]) -> Instant:
     edges: dict[str, int] = {}
     for one in members:
         for event in acts[one.time or 0]:
-            edges[event.name] = edges.get(event.name, 0) + (event.act in _EDGES)
+            edges[event.name] = edges.get(event.name, 0) + _edges(event)
     said = [f"{name} runs on, {counted(count, 'edge')}" for name, count in edges.items()]
     return replace(members[-1], notes=(Note(f"{listed(said)}, heard by none of these switches"),))
+
+
+def _edges(event: Event) -> int:
+    return 2 * event.cycles.count if event.cycles is not None else int(event.act in _EDGES)

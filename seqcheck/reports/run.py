@@ -10,6 +10,7 @@ from seqcheck.reports.folding import folded
 from seqcheck.reports.instants import Instant, State
 from seqcheck.reports.lanes import Conduct, Lane, lanes
 from seqcheck.reports.pieces import Tone
+from seqcheck.reports.wording import stretch
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace, Unsafe
 
@@ -25,7 +26,7 @@ class Run:
     `titles` are what stands for each lane in tables and pictures: its switch, or a letter where the names are long.
     `origin` is the time that the report calls 0, and `origin_note` what happens there; `first` is the index of the
     instant from which on a picture is worth drawing, `last` of the one with which it may end. `unit` is the unit of
-    the time columns, for which `size` ps are one.
+    the time columns, for which `size` ps are one. `stretch` is what the time is called for which the hazard lasts.
     """
 
     lanes: tuple[Lane, ...]
@@ -37,6 +38,7 @@ class Run:
     last: int
     unit: str
     size: int
+    stretch: str
 
 
 def run_of(verdict: Unsafe, drive: Drive) -> Run:
@@ -53,7 +55,8 @@ def run_of(verdict: Unsafe, drive: Drive) -> Run:
     instants = folded(instants, trace.events)
     first, last = _window(instants, trace)
     unit = shown(max(1, _time(instants[last]) - _time(instants[first]))).split()[1]
-    return Run(found, _titles(found), tuple(instants), origin, origin_note, first, last, unit, int(PICOSECONDS[unit]))
+    size, called = int(PICOSECONDS[unit]), stretch(verdict.hazard)
+    return Run(found, _titles(found), tuple(instants), origin, origin_note, first, last, unit, size, called)
 
 
 def _titles(found: tuple[Lane, ...]) -> tuple[str, ...]:
@@ -69,14 +72,16 @@ def _time(instant: Instant) -> int:
 
 
 def _times(trace: Trace, notes: dict[int, list[Note]], found: tuple[Lane, ...]) -> list[int]:
-    """All times of the run worth a row: events, changes of the lanes, the ends of the overlap."""
+    """All times of the run worth a row: events, changes of the lanes but for whole cycles, the ends of the overlap."""
     times = set(notes) | {trace.overlap_from}
     if trace.overlap_to is not None:
         times.add(trace.overlap_to)
+    always = frozenset(times)
     end = max([trace.end, *times])
+    cycling = [(one.time, one.time + one.cycles.length) for one in trace.events if one.cycles is not None]
     for lane in found:
         times.update(time for time in lane.times() if 0 <= time <= end and _differs(lane, time))
-    return sorted(times)
+    return sorted(time for time in times if time in always or not any(start < time <= stop for start, stop in cycling))
 
 
 def _differs(lane: Lane, time: int) -> bool:
@@ -102,17 +107,17 @@ def _states(found: tuple[Lane, ...], time: int | None) -> tuple[State, ...]:
 
 
 def _instant(time: int, notes: list[Note], before: Instant, verdict: Unsafe, found: tuple[Lane, ...]) -> Instant:
-    trace = verdict.trace
+    trace, called = verdict.trace, stretch(verdict.hazard)
     states = _states(found, time)
     overlap = trace.overlap_from <= time and (trace.overlap_to is None or time < trace.overlap_to)
     seen = list(notes or _commanded(found, time))
     seen += (_conduct_note(found[index], before.states[index], state) for index, state in enumerate(states))
     if overlap and not before.overlap:
         endless = ", without end" if trace.overlap_to is None else ""
-        seen.append(Note(f"overlap begins{endless}", None, Tone.BAD))
+        seen.append(Note(f"{called} begins{endless}", None, Tone.BAD))
     if before.overlap and not overlap:
         cut_off = verdict.overlap is None and trace.overlap_to == trace.end
-        seen.append(Note("overlap goes on, the run round again" if cut_off else "overlap ends", None, Tone.BAD))
+        seen.append(Note(f"{called} {'goes on, the run round again' if cut_off else 'ends'}", None, Tone.BAD))
     return Instant(before.number + 1, time, tuple(note for note in seen if note.text), states, overlap)
 
 

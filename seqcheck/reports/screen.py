@@ -1,14 +1,12 @@
 """The form for people: every counterexample in full, what was proven and how, and a last word on each file."""
 
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
-from enum import Enum
 
 from seqcheck.reports.counterexample import counterexample, sentence
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
-from seqcheck.reports.waived import reason
+from seqcheck.reports.standing import Sorted, Standing, sorted_out
 from seqcheck.reports.wording import CAUTION, happens, subject
-from seqcheck.verdict import WARNINGS, Finding, Outcome, Safe, Undecided, Unsafe
+from seqcheck.verdict import Finding, Outcome, Safe, Undecided, Unsafe
 
 _STYLES = {
     Tone.STRONG: "bold",
@@ -17,15 +15,6 @@ _STYLES = {
     Tone.BAD: "bold red",
     Tone.DOUBT: "bold yellow",
 }
-
-
-class Standing(Enum):
-    """The last word on a file."""
-
-    UNSAFE = "UNSAFE"
-    AMISS = "not in order"
-    UNDECIDED = "undecided"
-    PROVEN = "proven"
 
 
 _TONES = {
@@ -68,36 +57,8 @@ def coloured(lines: Iterable[Line]) -> str:
 # One file
 
 
-@dataclass(frozen=True, slots=True)
-class _Sorted:
-    """The contents of an outcome by what they mean; `waived` counts what a waiver lets pass."""
-
-    unsafe: tuple[Unsafe, ...]
-    undecided: tuple[Undecided, ...]
-    safe: tuple[Safe, ...]
-    findings: tuple[Finding, ...]
-    warnings: tuple[Finding, ...]
-    waived: tuple[tuple[Unsafe | Finding, str], ...]
-
-
-def _sorted(outcome: Outcome) -> _Sorted:
-    unsafe = tuple(one for one in outcome.verdicts if isinstance(one, Unsafe))
-    found: list[Unsafe | Finding] = [*unsafe, *outcome.findings]
-    reasons = [(one, reason(outcome.drive, one)) for one in found]
-    counting = [one for one, why in reasons if why is None]
-    findings = [one for one in counting if isinstance(one, Finding)]
-    return _Sorted(
-        tuple(one for one in counting if isinstance(one, Unsafe)),
-        tuple(one for one in outcome.verdicts if isinstance(one, Undecided)),
-        tuple(one for one in outcome.verdicts if isinstance(one, Safe)),
-        tuple(one for one in findings if one.check not in WARNINGS),
-        tuple(one for one in findings if one.check in WARNINGS),
-        tuple((one, why) for one, why in reasons if why is not None),
-    )
-
-
 def _file(outcome: Outcome) -> list[Line]:
-    parts = _sorted(outcome)
+    parts = sorted_out(outcome)
     blocks = [[line(Piece(outcome.file, Tone.STRONG), f'  "{outcome.drive.title}"')]]
     blocks += (counterexample(one, outcome.drive) for one in parts.unsafe)
     blocks += (_undecided(one) for one in parts.undecided)
@@ -133,8 +94,11 @@ def _proven(safe: Sequence[Safe]) -> list[Line]:
     if not safe:
         return []
     shorts = sum(1 for one in safe if one.hazard.joins)
+    openings = sum(1 for one in safe if one.hazard.currents)
+    others = len(safe) - shorts - openings
     kinds = [counted(shorts, "shorting set")] if shorts else []
-    kinds += [counted(len(safe) - shorts, "forbidden combination")] if len(safe) > shorts else []
+    kinds += [counted(openings, "opening set")] if openings else []
+    kinds += [counted(others, "forbidden combination")] if others else []
     found = [line(Piece("proven", Tone.GOOD), f"  {listed(kinds)}: possible in no run")]
     zoned = [one for one in safe if one.method != "screen"]
     ways = [f"{len(safe) - len(zoned)} by least times alone"] if len(safe) > len(zoned) else []
@@ -147,16 +111,8 @@ def _proven(safe: Sequence[Safe]) -> list[Line]:
 # The last words
 
 
-def _standing(parts: _Sorted) -> Standing:
-    if parts.unsafe:
-        return Standing.UNSAFE
-    if parts.findings:
-        return Standing.AMISS
-    return Standing.UNDECIDED if parts.undecided else Standing.PROVEN
-
-
-def _closing(file: str, parts: _Sorted) -> list[Line]:
-    standing = _standing(parts)
+def _closing(file: str, parts: Sorted) -> list[Line]:
+    standing = parts.standing
     counts = [
         (len(parts.unsafe), "counterexample", ""),
         (len(parts.findings), "finding", ""),
@@ -173,7 +129,7 @@ def _closing(file: str, parts: _Sorted) -> list[Line]:
 
 def _all(outcomes: Sequence[Outcome]) -> Line:
     """How many files stand how."""
-    stands = [_standing(_sorted(one)) for one in outcomes]
+    stands = [sorted_out(one).standing for one in outcomes]
     cells: list[str | Piece] = [f"{counted(len(stands), 'file')}"]
     for standing in Standing:
         if number := stands.count(standing):

@@ -1,23 +1,35 @@
 """Which waiver of the file, if any, lets a finding pass."""
 
-from seqcheck.drive import Drive, When
-from seqcheck.verdict import Finding, Unsafe
+from seqcheck.drive import Drive, Waiver, When
+from seqcheck.verdict import WARNINGS, Finding, Unsafe
 
 
 def reason(drive: Drive, found: Unsafe | Finding) -> str | None:
     """The reason of the first `waive` line for this check and one of the names that the finding is about, or None."""
-    names = set(found.names) if isinstance(found, Finding) else names_of(drive, found)
-    fitting = (one for one in drive.waivers if one.check == found.check.value and one.name in names)
-    return next((one.reason for one in fitting), None)
+    return next((one.reason for one in drive.waivers if lets_pass(one, drive, found)), None)
+
+
+def lets_pass(waiver: Waiver, drive: Drive, found: Unsafe | Finding) -> bool:
+    """Whether a waiver is for this check and one of the names that the finding is about."""
+    if waiver.check != found.check.value:
+        return False
+    if isinstance(found, Unsafe):
+        return waiver.name in names_of(drive, found)
+    legs = _legs(drive, frozenset(found.names)) if found.check in WARNINGS else frozenset()  # these name switches
+    return waiver.name in legs.union(found.names)
 
 
 def names_of(drive: Drive, verdict: Unsafe) -> frozenset[str]:
     """The names that an unsafe hazard is about: its switches, the legs they make up, and the mode, event or trip at
     its place."""
-    concerned = {one.switch for one in verdict.hazard.literals}
-    legs = {leg.node for leg in drive.stage.legs if {leg.high, leg.low} <= concerned}
+    concerned = frozenset(one.switch for one in verdict.hazard.literals)
     modes = {mode.name for mode in drive.modes.values() if mode.place == verdict.place}
     trips = {trip.name for trip in drive.trips if trip.place == verdict.place}
     moves = (move for move in drive.moves if move.place == verdict.place)
     events = {move.trigger.event for move in moves if isinstance(move.trigger, When)}
-    return frozenset(concerned | legs | modes | trips | events)
+    return _legs(drive, concerned).union(concerned, modes, trips, events)
+
+
+def _legs(drive: Drive, switches: frozenset[str]) -> frozenset[str]:
+    """The legs both of whose switches are among these."""
+    return frozenset(leg.node for leg in drive.stage.legs if {leg.high, leg.low} <= switches)

@@ -1,7 +1,7 @@
 """Sentences about a hazard and its verdict that every form says alike."""
 
-from seqcheck.drive import Drive, Mode
-from seqcheck.hazards import Hazard
+from seqcheck.drive import Above, CurrentOut, Drive, Known, Mode
+from seqcheck.hazards import Current, Hazard
 from seqcheck.quantities import shown
 from seqcheck.reports.pieces import listed
 from seqcheck.verdict import Check, Unsafe
@@ -15,10 +15,42 @@ def switches(hazard: Hazard) -> str:
 
 
 def subject(hazard: Hazard) -> str:
-    """What the hazard is, as a noun: `P to N through UH and UL`, or the switches alone where nothing is joined."""
+    """What the hazard is, as a noun: `P to N through UH and UL`, `current out of X with Af and Bf off`, or the switches
+    alone where nothing is joined."""
+    if hazard.currents:
+        return f"{flowing(hazard.currents)} with {_named(hazard)} off"
     if not hazard.joins:
         return switches(hazard)
     return f"{' to '.join(hazard.joins)} through {switches(hazard)}"
+
+
+def flowing(currents: tuple[Current, ...]) -> str:
+    """Currents in a sentence: `current out of X or into X`, `current from U to V`, `current between U and V`."""
+    return f"current {listed(list(dict.fromkeys(_way(one, currents) for one in currents)), 'or')}"
+
+
+def _way(current: Current, among: tuple[Current, ...]) -> str:
+    start, end = current.out_of, current.into
+    if start is None or end is None:
+        return f"into {end}" if start is None else f"out of {start}"
+    if Current(end, start) in among:
+        return f"between {min(start, end)} and {max(start, end)}"
+    return f"from {start} to {end}"
+
+
+def _named(hazard: Hazard) -> str:
+    return listed([one.switch for one in hazard.literals])
+
+
+def _off(hazard: Hazard) -> str:
+    """The switches that are off, with their verb: `Af and Bf are both off`."""
+    count = len(hazard.literals)
+    return f"{_named(hazard)} {'is off' if count == 1 else 'are both off' if count == 2 else 'are all off'}"
+
+
+def stretch(hazard: Hazard) -> str:
+    """What the time is called for which the hazard lasts."""
+    return "opening" if hazard.currents else "overlap"
 
 
 def lasting(overlap: int | None, greatest: bool) -> str:
@@ -30,6 +62,8 @@ def lasting(overlap: int | None, greatest: bool) -> str:
 
 def happens(hazard: Hazard, overlap: int | None, greatest: bool = True) -> str:
     """One sentence without full stop: what can happen and for how long."""
+    if hazard.currents:
+        return f"{flowing(hazard.currents)} has no way while {_off(hazard)}, {lasting(overlap, greatest)}"
     if hazard.joins:
         return f"{_joined(hazard.joins)} through {switches(hazard)}, {lasting(overlap, greatest)}"
     each = [f"{one.switch} can {'conduct' if one.on else 'be off'}" for one in hazard.literals]
@@ -41,9 +75,9 @@ def _joined(nodes: tuple[str, ...]) -> str:
     return f"{nodes[0]} can be joined to {listed(nodes[1:])}" if len(nodes) > 1 else f"{nodes[0]} can be shorted"
 
 
-def shorted_row(verdict: Unsafe, drive: Drive) -> Mode | None:
-    """The row of the switching table that a SHORT points at, None for other checks."""
-    if verdict.check is not Check.SHORT:
+def row_at_fault(verdict: Unsafe, drive: Drive) -> Mode | None:
+    """The row of the switching table that itself holds the hazard, None where it comes in passing."""
+    if verdict.check is not Check.SHORT and verdict.row is None:
         return None
     rows = drive.modes.values()
     return next((row for row in rows if (row.place.file, row.place.line) == _line_of(verdict)), None)
@@ -54,29 +88,57 @@ def _line_of(verdict: Unsafe) -> tuple[str, int]:
 
 
 def where(verdict: Unsafe, drive: Drive) -> str:
-    """Which row of the table holds a SHORT, as a sentence without full stop; empty for other checks."""
-    row = shorted_row(verdict, drive)
+    """Which row of the table holds the hazard, as a sentence without full stop; empty where it comes in passing."""
+    row = row_at_fault(verdict, drive)
     if row is None:
         return ""
+    if verdict.hazard.currents:
+        together = " together" if len(verdict.hazard.literals) > 1 else ""
+        return f"row '{row.name}' of the table (line {row.place.line}) can leave {_named(verdict.hazard)} off{together}"
     return f"row '{row.name}' of the table (line {row.place.line}) commands {switches(verdict.hazard)} together"
 
 
 def condition(hazard: Hazard) -> str:
     """When the short carries current, as a sentence without full stop; empty where it always does."""
-    if not hazard.needs or frozenset() in hazard.needs:
+    if not hazard.needs or frozenset() in hazard.needs or hazard.currents:
         return ""
-    ways = sorted(listed(sorted(f"{one.upper} is above {one.lower}" for one in way)) for way in hazard.needs)
+    ways = sorted(listed(sorted(map(_so, way))) for way in hazard.needs)
     return f"it carries current while {listed(ways, 'or')}"
+
+
+def _so(fact: Known) -> str:
+    if isinstance(fact, Above):
+        return f"{fact.upper} is above {fact.lower}"
+    return f"current flows {'out of' if isinstance(fact, CurrentOut) else 'into'} {fact.node}"
 
 
 def cure(verdict: Unsafe, drive: Drive) -> str:
     """What would cure it, with the number, as a sentence without full stop."""
     if verdict.cure is not None:
-        missing = f"{shown(verdict.cure.shortage)} missing at {verdict.cure.place}"
-        return f"{verdict.cure.words} ({missing})"
-    if (row := shorted_row(verdict, drive)) is not None:
+        shortage = verdict.cure.shortage
+        missing = "" if shortage is None else f"{shown(shortage)} missing "
+        return f"{verdict.cure.words} ({missing}at {verdict.cure.place})"
+    if verdict.hazard.currents:
+        return _cure_of_opening(verdict, drive)
+    if (row := row_at_fault(verdict, drive)) is not None:
         return f"no wait cures this; row '{row.name}' must leave one of {switches(verdict.hazard)} off"
     if verdict.overlap is None:
-        return f"no wait cures this; nothing ends it once {switches(verdict.hazard)} are so together"
+        return (
+            f"no single longer wait was found to do it: once {switches(verdict.hazard)} are so together this run never "
+            "parts them; one must be taken back before the other is commanded"
+        )
     bound = "up to" if verdict.greatest else "at least"
     return f"{switches(verdict.hazard)} must be kept apart {bound} {shown(verdict.overlap)} longer"
+
+
+def _cure_of_opening(verdict: Unsafe, drive: Drive) -> str:
+    names, single = _named(verdict.hazard), len(verdict.hazard.literals) == 1
+    one_of = names if single else f"one of {names}"
+    if (row := row_at_fault(verdict, drive)) is not None:
+        return f"no wait cures this; row '{row.name}' must keep {one_of} on"
+    if verdict.overlap is None:
+        return f"no wait cures this; nothing ends it once {_off(verdict.hazard)}"
+    bound = f"{'up to' if verdict.greatest else 'at least'} {shown(verdict.overlap)}"
+    if single:
+        return f"{names} must stay on while this current flows"
+    return f"{one_of} must turn on {bound} sooner, or the others off {bound} later"

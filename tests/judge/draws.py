@@ -4,6 +4,7 @@ from dataclasses import dataclass, field
 from random import Random
 
 SYSTEMS = ("leg", "leg", "leg", "leg and high", "leg and low", "two legs", "two legs", "sources")
+FLOWING = ("two ways", "two ways", "current source", "one quadrant", "three levels", "flying", "chopper", "selector")
 PERIODS = {4: "250", 5: "200", 8: "125", 10: "100"}
 UPDATES = ("", " updates at once", " updates at rise", " updates at rise", " updates within a period")
 INEXACT = {6: "166.6", 7: "142.857", 12: "83.3", 14: "71.43"}
@@ -22,6 +23,7 @@ class Sketch:
     switches: list[str] = field(default_factory=list)
     pairs: list[tuple[str, str]] = field(default_factory=list)
     facts: tuple[str, ...] = ()
+    means: tuple[str, ...] = ()
     need: int = 0
     slack: int = 0
     carriers: list[str] = field(default_factory=list)
@@ -41,12 +43,23 @@ class Sketch:
 
 def draw(seed: int) -> str:
     """The text of a random small drive; the same seed gives the same text."""
+    return _drawn(seed, SYSTEMS)
+
+
+def flowing(seed: int) -> str:
+    """A random small drive whose winding must flow, with facts about its current, and rows that say what they mean."""
+    return _drawn(seed, FLOWING)
+
+
+def _drawn(seed: int, systems: tuple[str, ...]) -> str:
     rng = Random(seed)
     sketch = Sketch(rng, rng.choice((0.3, 0.5, 0.7, 0.8, 0.95, 1.0)))
-    stage = _stage(sketch)
+    stage = _stage(sketch, systems)
     parts, paths = _paths(sketch)
     sketch.free = sketch.chance(0.2)
     sketch.reset = sketch.chance(0.25)
+    if sketch.means and sketch.careful():
+        sketch.free = sketch.reset = False  # pins mostly rest off, which stops a current
     carriers = _carriers(sketch)
     sketch.modes = ["ma", "mb", "mc", "md"][: rng.choice((2, 2, 3, 3, 4))]
     sketch.start = "reset" if sketch.reset and sketch.chance(0.6) else "ma"
@@ -94,8 +107,10 @@ def _heads(sketch: Sketch) -> list[str]:
     return lines
 
 
-def _stage(sketch: Sketch) -> list[str]:
-    system = sketch.rng.choice(SYSTEMS)
+def _stage(sketch: Sketch, systems: tuple[str, ...]) -> list[str]:
+    system = sketch.rng.choice(systems)
+    if systems is FLOWING:
+        return _flowing(sketch, system)
     if system == "sources":
         sketch.switches, sketch.pairs = ["SA", "SB"], [("SA", "SB")]
         sketch.facts = ("a above b", "b above a")
@@ -116,6 +131,44 @@ def _stage(sketch: Sketch) -> list[str]:
         lines.append("  leg V VH VL")
     sketch.rng.shuffle(sketch.switches)
     return [*lines, f"  winding U{' V' if system == 'two legs' else ''}"]
+
+
+def _flowing(sketch: Sketch, system: str) -> list[str]:
+    """A stage with a winding that must flow. Its pairs short, or are never both to be off, or both."""
+    sketch.switches, sketch.pairs = ["SA", "SB"], [("SA", "SB")]
+    sketch.facts = ("current out of X", "current into X")
+    sketch.means = ("coast", "brake", "level {a}", "drive X to {a}")
+    levels, ends = "N", "X"
+    if system == "two ways":
+        lines = ["  sources a b", "  switch SA from a to X two way", "  switch SB from b to X two way"]
+        sketch.facts += ("a above b", "b above a")
+        levels = "a"
+    elif system == "selector":
+        sketch.switches, sketch.pairs = ["Af", "Ar", "Bf", "Br"], [("Af", "Br"), ("Ar", "Bf")]
+        lines = ["  sources a b", "  switch Af from a to X one way", "  switch Ar from X to a one way"]
+        lines += ["  switch Bf from b to X one way", "  switch Br from X to b one way"]
+        sketch.facts += ("a above b", "b above a")
+        levels = "a"
+    elif system == "current source":
+        lines = ["  rails P N", "  switch SA from X to N one way", "  switch SB from X to N one way"]
+        ends = "P X"
+    elif system == "one quadrant":
+        lines = ["  rails P N", "  switch SA from P to X one way", "  switch SB from X to N one way"]
+    elif system == "three levels":
+        sketch.switches.append("SC")
+        sketch.pairs += [("SC", "SA")]
+        lines = ["  rails P O N", "  switch SA from P to X", "  switch SB from X to N one way"]
+        lines += ["  switch SC from X to O two way", "  diode from N to X"]
+        levels = "O"
+    elif system == "flying":
+        lines = ["  rails P N", "  capacitor X Y", "  switch SA from P to X one way", "  switch SB from Y to N one way"]
+    else:
+        lines = ["  rails P N", "  switch SA from P to X one way", "  switch SB from Y to N one way"]
+        lines += ["  diode from N to X"]
+        ends = "X Y"
+    sketch.means = tuple(one.format(a=levels) for one in sketch.means)
+    sketch.rng.shuffle(sketch.switches)
+    return [*lines, f"  winding {ends} must flow"]
 
 
 def _paths(sketch: Sketch) -> tuple[list[str], list[str]]:
@@ -199,26 +252,32 @@ def _rows(sketch: Sketch) -> list[str]:
     for mode in sketch.modes:
         cells = _row(sketch, first=mode == sketch.start)
         words = [cells[switch] for switch in sketch.switches]
-        lines.append(f"  {mode} {' '.join(words)}{_known(sketch, 0.4)}")
+        means = f" means {sketch.rng.choice(sketch.means)}" if sketch.means and sketch.chance(0.2) else ""
+        lines.append(f"  {mode} {' '.join(words)}{_known(sketch, 0.4)}{means}")
     return lines
 
 
 def _known(sketch: Sketch, likely: float) -> str:
-    if sketch.facts and sketch.chance(likely):
+    if sketch.means and sketch.chance(likely):
+        return f" with {sketch.rng.choice(sketch.facts)}"
+    if sketch.facts and not sketch.means and sketch.chance(likely):
         return f" with {sketch.rng.choice((sketch.facts[0], sketch.facts[1], sketch.facts[1]))}"
     return ""
 
 
 def _row(sketch: Sketch, *, first: bool) -> dict[str, str]:
-    """One row; a careful author turns on no more than one of a pair."""
+    """One row; a careful author turns on no more than one of a pair, and where current must flow mostly one."""
     rng = sketch.rng
     cells: dict[str, str] = {}
     for one, other in sketch.pairs:
         choices = [("on", "off"), ("off", "on"), ("off", "off")]
+        choices = [("on", "on"), *choices[:2] * 3] if sketch.means else choices
         if not first:
             for name in sketch.carriers:
                 choices += [(name, f"~{name}"), (f"~{name}", name), (name, "off"), ("off", name), (f"~{name}", "off")]
             choices += [("keep", "off"), ("off", "keep"), ("keep", "keep")] if sketch.chance(0.3) else []
+            if sketch.means and sketch.careful():
+                choices = [("on", "off"), ("off", "on"), *((name, f"~{name}") for name in sketch.carriers)]
         choices += [("free", "free"), ("free", "off")] * 2 if sketch.free else []
         words = rng.choice(choices)
         if not sketch.careful():
@@ -292,6 +351,10 @@ def _steps(sketch: Sketch, *, leading_wait: bool = True) -> list[str]:
     """The steps of a move: mostly everything off and the dead time, else anything."""
     rng = sketch.rng
     wait = f"    wait {_range(rng, *_around(sketch))}"
+    if sketch.means and sketch.chance(0.85):
+        one, other = sketch.rng.choice(sketch.pairs)
+        first, last = rng.choice(((f"{one} on", f"{other} off"), (f"{other} on", f"{one} off")))
+        return [f"    set {first}", wait, f"    set {last}", wait][: rng.choice((2, 3, 4))]
     if sketch.careful():
         steps = ["    set all off", wait]
         if sketch.slack and sketch.chance(0.5):

@@ -38,6 +38,8 @@ DRAWN = (
     "carrier", "carrier within", "duty of one value", "duty of a range", "duty from 0 %", "duty to 100 %",
     "dead time", "no dead time", "updates at once", "updates at rise", "updates within a period",
     "two carriers",
+    "rails of three", "capacitor", "diode", "two way", "must flow", "row with current", "move with current",
+    "trip with current", "row means",
     "row on", "row off", "row keep", "row free", "row carrier", "row ~carrier", "row with above",
     "start reset", "start mode", "when", "earliest", "latest", "after", "at once", "move of several modes",
     "move into its own mode", "move to reset", "move out of reset", "unbroken", "move with above",
@@ -48,11 +50,8 @@ DRAWN = (
 )  # fmt: skip
 """What draws contain."""
 
-UNDRAWN = (
-    "rails of three", "capacitor", "diode", "two way", "several poles", "must flow", "row with current",
-    "row means", "rule", "waiver",
-)  # fmt: skip
-"""What draws do not contain: the judge knows no capacitors and no rules; the rest changes only the shorting sets."""
+UNDRAWN = ("several poles", "rule", "waiver")
+"""What draws do not contain: rules have no judge yet; several poles change only which sets there are."""
 
 
 def features(drive: Drive) -> Counter[str]:

@@ -1,12 +1,11 @@
 """All that can happen at a point, with the clocks that time it: the transition system that a cover is held against."""
 
 from collections.abc import Iterator
-from itertools import count
 from typing import NamedTuple
 
 from seqcheck.drive import Drive, Update
 from seqcheck.evidence.cover.scope import Scope
-from seqcheck.evidence.cover.stand import Firmware
+from seqcheck.evidence.cover.stand import Firmware, placed
 from seqcheck.evidence.cover.wires import (
     ANYWHERE,
     GOING,
@@ -23,7 +22,7 @@ from seqcheck.evidence.cover.wires import (
     phases,
     ripened,
 )
-from seqcheck.evidence.cover.writes import NEW, Held, Writes
+from seqcheck.evidence.cover.writes import NEW
 from seqcheck.evidence.facts import asked_for
 from seqcheck.quantities import Interval
 
@@ -39,15 +38,14 @@ class Change(NamedTuple):
 
 
 class Behaviour:
-    """The transition system of one scope."""
+    """The transition system of one scope, with a firmware of it."""
 
-    def __init__(self, scope: Scope) -> None:
+    def __init__(self, scope: Scope, firmware: Firmware) -> None:
         self.scope = scope
         self._drive: Drive = scope.drive
-        writes = Writes(scope)
-        self._writes = writes
-        self._firmware = Firmware(scope, writes)
-        self.wires = Wires(scope, writes)
+        self._writes = firmware.writes
+        self._firmware = firmware
+        self.wires = Wires(scope, firmware.writes)
         self._asked = asked_for(scope.hazard)
         self._carriers = [scope.drive.carriers[name] for name in scope.carriers]
 
@@ -172,12 +170,14 @@ class Behaviour:
         held = new.stand.cells.held
         renamed = [(f"held {place}", f"held {one.place}") for place, one in enumerate(held) if one.place != NEW]
         fresh = {f"held {place}" for place, one in enumerate(held) if one.place == NEW}
-        cells = new.stand.cells._replace(held=tuple(map(_placed, held, count())))
-        new = new._replace(stand=new.stand._replace(cells=cells))
-        unknown = [place for place in self.wires.followed(new.stand) if new.carriers[place] == ANYWHERE]
+        if held:
+            new = new._replace(stand=placed(new.stand))
+        unknown: list[int] = []
+        if ANYWHERE in new.carriers:
+            unknown = [place for place in self.wires.followed(new.stand) if new.carriers[place] == ANYWHERE]
         for one in self.somewhere(new, unknown):
             target, set_off = self.wires.after(old, one)
-            yield Change(needs, target, started | fresh | set_off, tuple(renamed))
+            yield Change(needs, target, started.union(fresh, set_off), tuple(renamed))
 
     def somewhere(self, point: Point, places: list[int]) -> list[Point]:
         """The point with each of the given carriers in every state in which it may be."""
@@ -193,7 +193,3 @@ class Behaviour:
 
 def _with(states: tuple[str, ...], place: int, state: str) -> tuple[str, ...]:
     return (*states[:place], state, *states[place + 1 :])
-
-
-def _placed(held: Held, place: int) -> Held:
-    return held._replace(place=place)

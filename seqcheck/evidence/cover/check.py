@@ -149,15 +149,16 @@ class _Cover:
 
     def _ends(self, point: Point) -> Iterator[Point]:
         """The point, if some entry holds it; else the points that it is once its carriers are somewhere."""
-        unknown = [place for place, state in enumerate(point.carriers) if state == ANYWHERE]
-        if not unknown or any(one in self._places for one in self._coarser(point)):
+        if ANYWHERE not in point.carriers or any(one in self._places for one in self._coarser(point)):
             yield point
             return
-        for one in self._behaviour.somewhere(point, unknown[:1]):
+        for one in self._behaviour.somewhere(point, [point.carriers.index(ANYWHERE)]):
             yield from self._ends(one)
 
     def _coarser(self, point: Point) -> Iterator[Point]:
         """The point itself, and with carriers that no looked-at switch follows left anywhere."""
+        if not point.carriers:
+            return iter((point,))
         followed = self._behaviour.wires.followed(point.stand)
         choices = [
             (state,) if state == ANYWHERE or place in followed else (state, ANYWHERE)
@@ -197,12 +198,14 @@ class _Cover:
 
     def _joined(self, source: Entry | None, target: Point, clock: str) -> int | None:
         """The least age of a carrier that was anywhere and is somewhere now; None for any other clock."""
-        word, _, number = clock.partition(" ")
-        if word == "carrier" and target.carriers[int(number)] == ANYWHERE:
-            raise NotCovered(f"A carrier that is left anywhere has an age: {_named(target)}.")
-        if word != "carrier" or (source is not None and source.point.carriers[int(number)] != ANYWHERE):
+        if not clock.startswith("carrier "):
             return None
-        return dict(self._behaviour.phases(int(number)))[target.carriers[int(number)]]
+        number = int(clock.removeprefix("carrier "))
+        if target.carriers[number] == ANYWHERE:
+            raise NotCovered(f"A carrier that is left anywhere has an age: {_named(target)}.")
+        if source is not None and source.point.carriers[number] != ANYWHERE:
+            return None
+        return dict(self._behaviour.phases(number))[target.carriers[number]]
 
 
 def _led(zone: Rows, goal: _Goal) -> bool:

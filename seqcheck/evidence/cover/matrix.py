@@ -6,6 +6,7 @@ it exactly if each bound does.
 """
 
 from collections.abc import Iterable, Sequence
+from operator import le
 
 Rows = list[list[int]]
 
@@ -100,6 +101,4 @@ def later(rows: Rows, limits: Sequence[tuple[int, int]]) -> Rows | None:
 
 def within(small: Rows, large: Rows) -> bool:
     """Whether a tight zone lies in a table."""
-    return all(
-        one <= other for row, wide in zip(small, large, strict=True) for one, other in zip(row, wide, strict=True)
-    )
+    return all(all(map(le, row, wide)) for row, wide in zip(small, large, strict=True))

@@ -1,6 +1,8 @@
-"""A cover out of a certificate's data; what is not as it should be is refused."""
+"""Covers and potentials out of a certificate's data; what is not as it should be is refused."""
 
 from seqcheck.evidence.certificate import Fields
+from seqcheck.evidence.cover.apart import Point as Bare
+from seqcheck.evidence.cover.apart import Said
 from seqcheck.evidence.cover.check import Bounds, Entry
 from seqcheck.evidence.cover.scope import Scope
 from seqcheck.evidence.cover.stand import Group, Stand
@@ -40,18 +42,19 @@ _MOST_HELD = 100
 
 
 def _zone(entry: Fields, value: object, clocks: int) -> Bounds:
-    found = []
-    for one in entry.listed(value, "zones"):
-        upper, lower, most = [entry.whole(part, "zones") for part in entry.listed(one, "zones", 3)]
-        if not (0 <= upper <= clocks and 0 <= lower <= clocks):
-            raise entry.wrong("zones")
-        found.append((upper, lower, most))
-    return tuple(found)
+    return tuple(_bound(entry, one, clocks) for one in entry.listed(value, "zones"))
+
+
+def _bound(entry: Fields, value: object, clocks: int) -> tuple[int, int, int]:
+    upper, lower, most = entry.listed(value, "zones", 3)
+    if type(upper) is not int or type(lower) is not int or not (0 <= upper <= clocks and 0 <= lower <= clocks):
+        raise entry.wrong("zones")
+    return upper, lower, entry.whole(most, "zones")
 
 
 def _point(state: Fields, scope: Scope) -> Point:
     point = Point(
-        _stand(state),
+        stand(state),
         state.texts("carriers"),
         state.texts("pins"),
         state.texts("guards"),
@@ -63,7 +66,8 @@ def _point(state: Fields, scope: Scope) -> Point:
     return point
 
 
-def _stand(state: Fields) -> Stand:
+def stand(state: Fields) -> Stand:
+    """Where the firmware stands; NoEvidence where it is malformed."""
     soonest, latest = state.listed(state.of("next"), "next", 2)
     held = []
     for place, one in enumerate(state.rows("held")):
@@ -88,3 +92,25 @@ def _group(state: Fields, value: object) -> Group:
     if not all(len(pair) == 2 for pair in pairs):
         raise state.wrong("left")
     return tuple((switch, cell) for switch, cell in pairs)
+
+
+def points(potentials: Fields, literals: int) -> tuple[tuple[int, int], Said]:
+    """The places of the two literals that potentials are about, and what is said of each point."""
+    first, second = potentials.listed(potentials.of("pair"), "pair", 2)
+    if type(first) is not int or type(second) is not int or not 0 <= first < second < literals:
+        raise potentials.wrong("pair")
+    return (first, second), dict(_said(potentials, one) for one in potentials.rows("points"))
+
+
+def _said(potentials: Fields, value: object) -> tuple[Bare, tuple[dict[str, int], dict[str, int]]]:
+    number, one, other, since, since_other = potentials.listed(value, "points", 5)
+    if not isinstance(one, str) or not isinstance(other, str):
+        raise potentials.wrong("points")
+    both = _times(potentials, since), _times(potentials, since_other)
+    return (potentials.whole(number, "points"), (one, other)), both
+
+
+def _times(potentials: Fields, value: object) -> dict[str, int]:
+    if not isinstance(value, dict):
+        raise potentials.wrong("points")
+    return {cell: potentials.whole(time, "points") for cell, time in value.items()}

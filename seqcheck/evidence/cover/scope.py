@@ -41,6 +41,10 @@ class Scope:
     waiting: frozenset[str]
     held: frozenset[str]
 
+    def firmware(self) -> tuple[object, ...]:
+        """What the firmware of the scope depends on, beside the drive: scopes that agree in it can share one."""
+        return self.in_time, self.carriers if self.waiting else (), self.waiting, self.held if self.waiting else ()
+
 
 def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
     """What is looked at for `hazard`."""

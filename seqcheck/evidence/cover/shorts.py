@@ -4,10 +4,10 @@ from collections.abc import Callable, Iterator
 from itertools import combinations
 from typing import NamedTuple
 
-from seqcheck.drive import Above, Conducts, Stage
+from seqcheck.drive import Above, Conducts, Known, Stage
 from seqcheck.hazards import Hazard
 
-Needs = frozenset[Above]
+Needs = frozenset[Known]
 NOTHING: Needs = frozenset()
 MOST_STEPS = 300_000
 
@@ -37,7 +37,7 @@ def first_uncovered(stage: Stage, hazards: tuple[Hazard, ...]) -> Way | None:
 
     def covered(way: Way) -> bool:
         return any(
-            {one.switch for one in hazard.literals} <= way.switches
+            all(one.on and one.switch in way.switches for one in hazard.literals)
             and (not hazard.needs or any(needs <= way.needs for needs in hazard.needs))
             for hazard in hazards
         )
@@ -51,7 +51,7 @@ def shorts(stage: Stage, hazard: Hazard) -> bool:
     found = {way.needs for way in _ways(stage, lambda way: not way.switches <= names) if way.switches <= names}
     if hazard.needs:
         return all(any(known <= needs for known in found) for needs in hazard.needs)
-    either = [one for needs in found if len(needs) == 1 for one in needs]
+    either = [one for needs in found if len(needs) == 1 for one in needs if isinstance(one, Above)]
     return NOTHING in found or any(frozenset({Above(one.lower, one.upper)}) in found for one in either)
 
 

@@ -61,18 +61,33 @@ class Edge(NamedTuple):
     target: Stand
 
 
-class Firmware:
-    """What firmware and break inputs can do in a drive."""
+def placed(stand: Stand) -> Stand:
+    """A stand after an event, its held groups counted anew."""
+    held = tuple(one._replace(place=place) for place, one in enumerate(stand.cells.held))
+    return stand._replace(cells=stand.cells._replace(held=held)) if held else stand
 
-    def __init__(self, scope: Scope, writes: Writes) -> None:
+
+class Firmware:
+    """What firmware and break inputs can do in a drive.
+
+    Of a scope it looks at what holds writes and whether firmware is in time; scopes that differ in nothing else can
+    share it: see `Scope.firmware`.
+    """
+
+    def __init__(self, scope: Scope) -> None:
         self._drive: Drive = scope.drive
         self._in_time = scope.in_time
-        self._writes = writes
+        self.writes = Writes(scope)
         self._lines: tuple[Move | Trip, ...] = (*scope.drive.moves, *scope.drive.trips)
         self._first_trip = len(scope.drive.moves)
-        self._rows = {name: writes.row(mode.cells) for name, mode in scope.drive.modes.items()}
+        self._rows = {name: self.writes.row(mode.cells) for name, mode in scope.drive.modes.items()}
         self._late = (scope.drive.clock.late or 0) if scope.drive.clock else 0
+        self._items = tuple(map(self._items_of, self._lines))
         self._known: dict[Stand, tuple[Edge, ...]] = {}
+        self._grouped: dict[tuple[Group, tuple[str, ...]], tuple[Group, ...]] = {}
+        self._cells: dict[str, Cell] = {}
+        self._begins: dict[tuple[str, int, Cells], tuple[Stand, ...]] = {}
+        self._broken_in: dict[tuple[str, int, tuple[str, ...]], Stand] = {}
 
     def start(self) -> Stand:
         """Time 0: the start mode, its row in effect."""
@@ -199,30 +214,37 @@ class Firmware:
     def _broken(self, stand: Stand) -> Iterator[Edge]:
         for number, trip in enumerate(self._drive.trips):
             if trip.at_once and self._hears(number, stand):
-                yield Edge(0, None, None, False, self._break_in(stand, number))
+                key = (stand.mode, number, stand.cells.effective)
+                if key not in self._broken_in:
+                    self._broken_in[key] = self._break_in(*key)
+                yield Edge(0, None, None, False, self._broken_in[key])
 
-    def _break_in(self, stand: Stand, number: int) -> Stand:
+    def _break_in(self, mode: str, number: int, effective: tuple[str, ...]) -> Stand:
         if self._drive.trips[number].target == RESET:
             return self._resting(RESET, NOBODY, self._settled(RESET))
-        cells = self._writes.cancelled(stand.cells)
-        run, groups, wait = self._advanced(stand.mode, self._first_trip + number, 0, cells)
+        cells = self.writes.cancelled(effective)
+        run, groups, wait = self._advanced(mode, self._first_trip + number, 0, cells)
         if groups and wait is None:
-            forced = self._writes.forced(cells, [write for group in groups for write in group])
+            forced = self.writes.forced(cells, [write for group in groups for write in group])
             return self._after(run._replace(cells=forced, left=()))
         return self._waiting(run, groups, wait)
 
     # Runs
 
-    def _begun(self, mode: str, number: int, cells: Cells) -> Iterator[Stand]:
+    def _begun(self, mode: str, number: int, cells: Cells) -> tuple[Stand, ...]:
         """A run begins; with its first write, if no wait stands before it."""
+        key = (mode, number, cells)
+        if key not in self._begins:
+            self._begins[key] = self._beginning(*key)
+        return self._begins[key]
+
+    def _beginning(self, mode: str, number: int, cells: Cells) -> tuple[Stand, ...]:
         if self._lines[number].target == RESET:
-            yield self._resting(RESET, NOBODY, self._settled(RESET))
-            return
+            return (self._resting(RESET, NOBODY, self._settled(RESET)),)
         run, groups, wait = self._advanced(mode, number, 0, cells)
         if groups and wait is None:
-            yield from self._written(run._replace(left=groups))
-        else:
-            yield self._waiting(run, groups, wait)
+            return tuple(self._written(run._replace(left=groups)))
+        return (self._waiting(run, groups, wait),)
 
     def _waiting(self, run: Stand, groups: tuple[Group, ...], wait: Interval | None) -> Stand:
         """A run before a wait; the mode that it enters if there is neither wait nor write."""
@@ -234,7 +256,7 @@ class Firmware:
         """What the run is after each group that may be written next."""
         for group in self._next(run.left):
             left = tuple(one for one in run.left if one != group)
-            yield self._after(run._replace(left=left, cells=self._writes.write(run.cells, group)))
+            yield self._after(run._replace(left=left, cells=self.writes.write(run.cells, group)))
 
     def _after(self, run: Stand) -> Stand:
         """What the run is just after a write."""
@@ -253,32 +275,41 @@ class Firmware:
         self, mode: str, number: int, item: int, cells: Cells
     ) -> tuple[Stand, tuple[Group, ...], Interval | None]:
         """The run at the next item from `item` on that writes something, its groups, and the waits before it."""
-        line = self._lines[number]
         wait: Interval | None = None
         groups: tuple[Group, ...] = ()
-        count = len(line.steps) + 1
-        while item < count:
-            step = line.steps[item] if item < len(line.steps) else None
-            if isinstance(step, WaitStep):
-                wait = (wait or INSTANT) + self._kept(step.time)
+        items = self._items[number]
+        while item < len(items):
+            one = items[item]
+            if isinstance(one, Interval):
+                wait = (wait or INSTANT) + one
             else:
-                row = zip(self._drive.columns, self._drive.modes[line.target].cells, strict=True)
-                groups = self._groups(tuple(row) if step is None else step.writes, cells)
+                groups = self._groups(one, cells.written)
                 if groups:
                     break
             item += 1
         return Stand(mode, number, item, (), 0, None, NOBODY, cells), groups, wait
 
-    def _groups(self, item: tuple[tuple[str, Cell], ...], cells: Cells) -> tuple[Group, ...]:
-        last = dict(zip(self._drive.columns, cells.written, strict=True))
-        wanted = dict(item)
-        changes = {
-            switch: wanted[switch]
-            for switch in self._drive.columns
-            if switch in wanted and cell_text(wanted[switch]) not in ("keep", last[switch])
-        }
-        groups = grouped(self._drive, changes)
-        return tuple(tuple((switch, cell_text(cell)) for switch, cell in group.items()) for group in groups)
+    def _items_of(self, line: Move | Trip) -> tuple[Group | Interval, ...]:
+        """The steps of a run, and its target's row: what each wants written, in column order, or the time it waits."""
+        found: list[Group | Interval] = []
+        for step in line.steps:
+            if isinstance(step, WaitStep):
+                found.append(self._kept(step.time))
+            else:
+                cells = dict(step.writes)
+                found.append(tuple((name, cell_text(cells[name])) for name in self._drive.columns if name in cells))
+        return (*found, tuple(zip(self._drive.columns, self._rows[line.target], strict=True)))
+
+    def _groups(self, item: Group, written: tuple[str, ...]) -> tuple[Group, ...]:
+        known = self._grouped.get((item, written))
+        if known is None:
+            last = dict(zip(self._drive.columns, written, strict=True))
+            changes = {switch: self._cell(word) for switch, word in item if word not in ("keep", last[switch])}
+            words = dict(item)
+            groups = grouped(self._drive, changes)
+            known = tuple(tuple((switch, words[switch]) for switch in group) for group in groups)
+            self._grouped[item, written] = known
+        return known
 
     def _next(self, left: tuple[Group, ...]) -> list[Group]:
         as_cells = [{switch: self._cell(word) for switch, word in group} for group in left]
@@ -286,8 +317,10 @@ class Firmware:
         return [group for group, cells in zip(left, as_cells, strict=True) if cells in chosen]
 
     def _cell(self, word: str) -> Cell:
-        carrier = self._writes.carrier_of(word)
-        return Fixed(word) if carrier is None else Follow(carrier, word != carrier)
+        if word not in self._cells:
+            carrier = self.writes.carrier_of(word)
+            self._cells[word] = Fixed(word) if carrier is None else Follow(carrier, word != carrier)
+        return self._cells[word]
 
     def known(self, stand: Stand) -> tuple[Known, ...]:
         """What is known of the sources in a stand."""

@@ -106,12 +106,12 @@ class Wires:
         return [self._passes(literal.switch, literal.on, commands, guards) for literal in self._scope.hazard.literals]
 
     def _passes(self, switch: str, on: bool, commands: list[str], guards: tuple[str, ...]) -> bool:
+        command = commands[self._at[switch]]
         mine = [
             (state, commands[self._at[guard.partner]])
             for guard, state in zip(self._scope.guards, guards, strict=True)
             if guard.guarded == switch
         ]
-        command = commands[self._at[switch]]
         if on:
             return command != "off" and all(state == CLEAR for state, _ in mine)
         return command != "on" or any(state != CLEAR or partner == "unknown" for state, partner in mine)
@@ -120,23 +120,22 @@ class Wires:
         """An event has made `new` of `old`, as to stand, carriers, ended releases and ended dead times; what follows
         from it for pins, guards and literals, and the clocks that it starts."""
         started: set[str] = set()
-        before = self.commands(old)
-        pins = tuple(self._pin(place, new, before[place], started) for place in range(len(self._columns)))
-        new = new._replace(pins=pins)
-        commands = self.commands(new)
-        guards = tuple(self._guard(place, new.guards[place], commands, started) for place in range(len(new.guards)))
-        wanted = self._wanted(commands, guards)
-        literals = tuple(
-            self._literal(place, old.literals[place], wanted[place], started) for place in range(len(wanted))
-        )
-        return new._replace(guards=guards, literals=literals), started
+        stand, carriers, pins, guards, _ = new
+        if self._scope.drive.pins:  # no other switch is ever released
+            pins = tuple([self._pin(place, old, new, started) for place in range(len(self._columns))])
+        commands = self.commands(Point(stand, carriers, pins, guards, ()))
+        guards = tuple([self._guard(place, state, commands, started) for place, state in enumerate(guards)])
+        states = zip(old.literals, self._wanted(commands, guards), strict=True)
+        literals = tuple([self._literal(place, state, one, started) for place, (state, one) in enumerate(states)])
+        return Point(stand, carriers, pins, guards, literals), started
 
-    def _pin(self, place: int, new: Point, before: str, started: set[str]) -> str:
+    def _pin(self, place: int, old: Point, new: Point, started: set[str]) -> str:
         if new.stand.cells.effective[self._columns[place]] != "free":
             return DRIVEN
         if new.pins[place] != DRIVEN:
             return new.pins[place]
         pin = self._scope.drive.pins[self._scope.switches[place]]
+        before = self.commands(old)[place]
         if pin.after.hi == 0 or Command(before) is pin.resting:
             return pin.resting.value
         started.add(f"pin {place}")

@@ -78,9 +78,9 @@ class Writes:
         fresh = [Held(carrier, tuple(new[carrier]), NEW) for carrier in self._scope.carriers if carrier in new]
         return Cells(tuple(written), tuple(effective), tuple(one for one in [*held, *fresh] if one.switches))
 
-    def cancelled(self, cells: Cells) -> Cells:
+    def cancelled(self, effective: tuple[str, ...]) -> Cells:
         """The cells after a break input: what is in effect counts as written."""
-        return Cells(cells.effective, cells.effective, ())
+        return Cells(effective, effective, ())
 
     def forced(self, cells: Cells, writes: Iterable[Write]) -> Cells:
         """The cells after a break input's first writes, which nothing holds; none was held before."""

@@ -1,0 +1,33 @@
+"""What contradicts a hazard: facts under which it is not asked for."""
+
+from collections.abc import Iterable
+
+import networkx as nx
+
+from seqcheck.drive import Above, CurrentInto, CurrentOut, Known
+from seqcheck.hazards import Hazard
+
+
+def contradicted(hazard: Hazard, facts: Iterable[Known]) -> bool:
+    """Whether the hazard cannot happen under these facts: every alternative of its needs is ruled out.
+
+    Current out of a node rules out current into it. `with a above b` and `with b above c` give a above c as well.
+    """
+    known = frozenset(facts)
+    if not hazard.needs or not known:
+        return False
+    return all(_excluded(known, needs) for needs in hazard.needs)
+
+
+def _excluded(known: frozenset[Known], needs: frozenset[Known]) -> bool:
+    if any(opposite(one) in known for one in needs):
+        return True
+    above = {(one.upper, one.lower) for one in known | needs if isinstance(one, Above)}
+    return not nx.is_directed_acyclic_graph(nx.DiGraph(above))
+
+
+def opposite(fact: Known) -> Known:
+    """The fact that cannot hold together with this one."""
+    if isinstance(fact, Above):
+        return Above(fact.lower, fact.upper)
+    return CurrentInto(fact.node) if isinstance(fact, CurrentOut) else CurrentOut(fact.node)

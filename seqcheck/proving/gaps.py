@@ -1,0 +1,90 @@
+"""The least gap from the end of one literal's possibility to the moment at which all others of a hazard are possible.
+
+It is the margin of a safe hazard in that direction: prolonged by as much the literal just does not meet the others, and
+by anything more it does. A gap is looked for below a cap; where there is none below it, but one above, the cap is
+raised. What is found with carriers' phases forgotten is a lower bound only, but that nothing ever follows holds.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+from seqcheck.proving.keys import GAP, LATELY, Key
+from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.search import Node, nodes, ticks
+
+Observer = Callable[[int], None]
+Look = Callable[[Manner], Projection]
+
+_WIDER = 16
+
+
+@dataclass(frozen=True, slots=True)
+class Least:
+    """The least gap (ps) and the node in which it ends; `node` None: nothing ever follows."""
+
+    time: int
+    node: Node | None
+    projection: Projection
+
+
+def least_gap(look: Look, watched: int, carriers: bool, floor: int, observer: Observer) -> Least:
+    """The least gap after the literal at place `watched`; `floor` is a lower bound known before.
+
+    `look` makes a projection, `carriers` tells whether phases can be forgotten. What the observer raises passes
+    through.
+    """
+    known = max(floor, 0)
+    cap = known + 1
+    while True:
+        for forget in (True, False) if carriers else (False,):
+            projection = look(Manner(forget, True, False, watched, cap))
+            best, later = _below_cap(projection, known, observer)
+            if best is None and not later:
+                return Least(0, None, projection)
+            if best is None:
+                known = cap
+                break
+            known = gap_in(projection, best)
+            if not forget:
+                return Least(known, best, projection)
+        cap *= _WIDER
+
+
+def _below_cap(projection: Projection, known: int, observer: Observer) -> tuple[Node | None, bool]:
+    """The node with the least gap below the cap, and whether something follows at the cap or later.
+
+    No gap is shorter than `known`: the search ends with one that is as short.
+    """
+    best: Node | None = None
+    later = False
+    for node in nodes(projection.initial(), observer):
+        if not node.location.hot or not ticks(node.location, node.zone):
+            continue
+        if _key(node).ended != LATELY:
+            later = True
+        elif best is None or gap_in(projection, node) < gap_in(projection, best):
+            best = node
+            if gap_in(projection, best) <= known:
+                break
+    return best, later
+
+
+def gap_in(projection: Projection, node: Node) -> int:
+    """The least gap with which a node can be come to."""
+    size, key = node.location.size, _key(node)
+    place = next(place for place in range(1, size) if projection.clock_name(key, place) == GAP)
+    return -node.zone[place]
+
+
+def ended_at(path: list[Node]) -> int:
+    """The place in a path at which the gap that its last node ends has begun."""
+    last = len(path) - 1
+    while _key(path[last - 1]).ended == LATELY:
+        last -= 1
+    return last
+
+
+def _key(node: Node) -> Key:
+    key = node.location.key
+    assert isinstance(key, Key)
+    return key

@@ -30,35 +30,14 @@ ROOT = Path(__file__).resolve().parents[2]
 HOUSE = ROOT / "seqcheck"
 KEPT = ROOT / ".mutation"
 
-ROOMS = (
-    "zones.py",
-    "hazards.py",
-    "circuit.py",
-    "proving/conduction.py",
-    "proving/schedule.py",
-    "proving/circles.py",
-    "proving/search.py",
-    "proving/screen.py",
-    *(
-        f"evidence/{name}.py"
-        for name in [
-            "possible",
-            "pins",
-            "sequence",
-            "runs",
-            "references",
-            "facts",
-            "groups",
-            "interlocks",
-            "endless",
-            "walk",
-            "replay",
-        ]
-    ),
-    *sorted(str(path.relative_to(HOUSE)) for path in (HOUSE / "evidence" / "cover").glob("[!_]*.py")),
-    "evidence/certificate.py",
-    "evidence/audit.py",
+PATTERNS = (
+    *("zones.py", "hazards.py", "circuit.py"),
+    *(f"proving/{name}.py" for name in ("conduction", "schedule", "circles", "search", "screen")),
+    *("evidence/[!_]*.py", "evidence/cover/[!_]*.py"),
 )
+ROOMS = tuple(str(path.relative_to(HOUSE)) for pattern in PATTERNS for path in sorted(HOUSE.glob(pattern)))
+"""The files of zones, hazards, circuit, screen, exploration, replay and audit."""
+
 LEFT_OUT = (
     *("test_cli.py", "test_readme.py", "test_rooms.py", "test_grammar.py", "test_cache.py", "test_mutation.py"),
     *("test_malformed.py", "test_campaign_reader.py"),

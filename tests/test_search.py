@@ -3,11 +3,11 @@
 from dataclasses import replace
 
 import pytest
-from automata import CLOCKS, MEASURE, Automaton, Place, State, Way, drawn, number_of
+from automata import CLOCKS, MEASURE, MOST, Automaton, Place, State, Way, drawn, number_of
 from proofs import at_most
 
 from seqcheck.proving import search
-from seqcheck.proving.circles import goes_on
+from seqcheck.proving.circles import goes_on, idle
 from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.proving.schedule import Difference, Path, constraints_of, potentials, scheduled
 from seqcheck.proving.search import (
@@ -126,7 +126,7 @@ def test_longest_overlap(seed: int) -> None:
     hops = [step.hop for step in nodes]
     if found.time is not None:
         assert lived_through(one, hops, first) == found.time
-        assert not endless_circle(found.node)
+        assert endless_circle(found.node) == []
         ending = hops_out(found.node)
         if ending:
             assert not ending[-1].target.hot
@@ -202,6 +202,45 @@ def test_a_circle_that_takes_no_time_or_cannot_be_taken_does_not_go_on() -> None
     assert not ring(((), (), (0, 0)), bounds=(Bound(2, 0),))
     assert not ring(((Bound(2, 5),), (), (0, 0)), bounds=ONE)
     assert not ring((ONE, (), (0, 0)), ((Bound(2, 5),), (), (0, 0)), bounds=ONE)
+
+
+Turn = tuple[tuple[Bound, ...], tuple[Bound, ...], tuple[int, int], tuple[Bound, ...], tuple[Bound, ...]]
+
+
+@pytest.mark.parametrize(
+    ("turns", "right"),
+    [
+        ([((), (), (1, 0), (), ())], {1, MEASURE}),
+        ([((), (), (1, 2), (), ())], {1, 2, MEASURE}),
+        ([((), (), (FRESH, 0), (), ())], {MEASURE}),
+        ([((), (), (2, 1), (), ())], {MEASURE}),  # each comes back as the other
+        ([((), (), (2, 1), (), ())] * 2, {1, 2, MEASURE}),
+        ([(FAR, (), (1, 2), (), ())], {2, MEASURE}),
+        ([((), FAR, (1, 2), (), ())], {2, MEASURE}),
+        ([((), (), (1, 2), FAR, ())], {2, MEASURE}),
+        ([((), (), (1, 2), (), FAR)], {2, MEASURE}),
+        ([((), (), (2, 1), (), ()), (FAR, (), (2, 1), (), ())], {1, MEASURE}),  # clock 2 under another number
+        ([((), (), (2, 0), (), ()), ((), (), (1, 2), (), FAR)], {MEASURE}),
+    ],
+)
+def test_clocks_that_nothing_on_a_circle_looks_at(turns: list[Turn], right: set[int]) -> None:
+    """They run through all of it and are compared with nothing, by no guard and no bound."""
+    constants = [0, MOST, MOST, INFINITE]
+    where = [Location(0, 4, turn[4], constants, constants, True, False, MEASURE, lambda _: ()) for turn in turns]
+    circle = [
+        Hop(turn[0], turn[1], (*turn[2], MEASURE), turn[3], at, 0, None) for turn, at in zip(turns, where, strict=True)
+    ]
+    assert idle(where[-1], circle) == right
+
+
+def test_a_circle_is_found_though_an_idle_clock_runs_on() -> None:
+    """Were it asked to come back as it was, the search would never end, its age being told exactly."""
+    round_again = Way(0, (Bound(2, 1),), sources=(1, 0))
+    starts = Automaton((Place(True, False, ONE, (round_again,)),), CHAIN.starts).initial()
+    starts[0].target.lower = starts[0].target.upper = [0, INFINITE, MOST, INFINITE]
+    found = longest_overlap(starts, at_most(20), None)
+    assert found is not None
+    assert (found.time, found.greatest) == (None, True)
 
 
 # How an overlap ends

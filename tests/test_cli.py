@@ -11,7 +11,7 @@ from pathlib import Path
 import pytest
 from proofs import leg
 
-from seqcheck import cli, confirming
+from seqcheck import checking, cli, confirming
 from seqcheck.evidence.replay import NotPermitted
 
 ROOT = Path(__file__).parent.parent

@@ -1,10 +1,10 @@
 """The pipeline from a drive to everything that is to be said about it, as one pure function."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
-from seqcheck.drive import ApartRule, ClearsRule, Drive, LastsRule, MarginRule, NeverRule, Rule
+from seqcheck.drive import ApartRule, ClearsRule, Drive, Interlock, LastsRule, MarginRule, NeverRule, Rule
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem, Problems
@@ -189,21 +189,67 @@ def _row_meanings(drive: Drive) -> Iterator[Finding]:
 
 
 def _held_by_interlock(prover: Prover, hazard: Hazard, observer: Observer) -> Iterator[Finding]:
-    """A short that only the interlock prevents is worth knowing."""
-    drive = prover.drive
+    """A short that only interlocks prevent is worth knowing, and which of them."""
     names = {literal.switch for literal in hazard.literals}
-    locks = [one for one in drive.interlocks if {one.first, one.second} & names]
-    if not locks:
+    inner = [one for one in prover.drive.interlocks if {one.first, one.second} <= names]
+    outer = [one for one in prover.drive.interlocks if one not in inner and {one.first, one.second} & names]
+    locks = inner + outer
+
+    def comes(without: Sequence[Interlock]) -> bool | None:
+        """Whether the hazard happens without these interlocks; None where a limit leaves that open."""
+        try:
+            return not prover.holds(hazard, observer, tuple(one for one in locks if one not in without))
+        except LimitReached:
+            return None
+
+    if not locks or (alone := comes(locks)) is False:
         return
-    try:
-        proof: Proven | Refuted | None = prover.prove(hazard, False, observer)
-    except LimitReached:
-        proof = None
-    if isinstance(proof, Proven):
-        return
-    said = "the firmware alone would bring" if proof else "whether the firmware alone would bring"
-    text = f"{said} {_named(hazard)} together" + ("; only the interlock prevents it" if proof else " is undecided")
+    together = f"would bring {' and '.join(map(str, hazard.literals))} together"
+    if alone is None:
+        text = f"whether the firmware alone {together} is undecided"
+    else:
+        locks, how = _needed(inner, outer, comes)
+        text = f"the firmware {together} without {how}"
     yield Finding(Check.HELD_BY_INTERLOCK, locks[0].place, text, "", tuple(sorted(names)))
+
+
+def _needed(
+    inner: list[Interlock], outer: list[Interlock], comes: Callable[[Sequence[Interlock]], bool | None]
+) -> tuple[list[Interlock], str]:
+    """The interlocks that matter, and in words how.
+
+    They are each one without which the hazard comes though all others are kept; where there is no such, some that
+    cannot all be left out. `inner` are between the hazard's own switches. More interlocks never let more pass.
+    """
+    every = inner + outer
+    tried = inner if inner and outer and comes(outer) is False else every
+    answers = [True] if len(every) == 1 else [comes([one]) for one in tried]
+    needed = [one for one, answer in zip(tried, answers, strict=True) if answer]
+    unsure = [one for one, answer in zip(tried, answers, strict=True) if answer is None]
+    if needed:
+        return needed, _or(needed) + (f"; without {_or(unsure)} that is undecided" if unsure else "")
+    left = every
+    for one in () if unsure else (*outer, *inner):
+        fewer = [other for other in left if other is not one]
+        if (answer := comes(fewer)) is None:
+            unsure.append(one)
+        elif answer:
+            left = fewer
+    if unsure:
+        return left, f"{_and(left)}; which of them is needed is undecided"
+    return left, f"{_and(left)}; any one of them is enough to prevent it"
+
+
+def _or(locks: Sequence[Interlock]) -> str:
+    return " or without ".join(f"the interlock {_of(one)}" for one in locks)
+
+
+def _and(locks: Sequence[Interlock]) -> str:
+    return "the interlocks " + " and ".join(map(_of, locks))
+
+
+def _of(lock: Interlock) -> str:
+    return f"of {lock.first} and {lock.second} (line {lock.place.line})"
 
 
 def _punctual(drive: Drive, verdicts: list[Verdict]) -> Iterator[Finding]:

@@ -15,7 +15,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
-from seqcheck.drive import Drive
+from seqcheck.drive import Drive, Library
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
@@ -35,7 +35,7 @@ _WHATEVER_COMES = ("annotations", "json", "sarif")
 
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
-folder you are in, '-' standard input."""
+folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove."""
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
@@ -262,10 +262,12 @@ def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
 ) -> tuple[Answer, int]:
     from seqcheck.checking import Fault, check
-    from seqcheck.language import read
+    from seqcheck.language import read_any
 
     try:
-        drive = read(_text(file), file, _text)
+        drive = read_any(_text(file), file, _text)
+        if isinstance(drive, Library):
+            return drive, PROVEN
         kept: list[Kept] | None = None if shelf is None else []
         outcome = check(drive, file, only, _observer(limits), kept)
     except Problems as problems:
@@ -381,7 +383,7 @@ def _worse(one: int, other: int) -> int:
 
 def _written(answers: list[Answer], answering: Answering) -> str | None:
     """The answer as a text; None where nothing was judged and the form has no word for that."""
-    judged = [one for one in answers if isinstance(one, Outcome)]
+    judged = [one for one in answers if isinstance(one, Outcome | Library)]
     if not judged and answering.form not in _WHATEVER_COMES:
         return None
     match answering.form:
@@ -402,16 +404,18 @@ def _written(answers: list[Answer], answering: Answering) -> str | None:
 
             return sarif.report(answers, _repository())
         case "vcd":
-            return _dump(judged[0], answering.run)
+            return _dump(answers[0], answering.run)
     from seqcheck.reports import screen
 
     report = screen.report(judged)
     return screen.coloured(report) if answering.colour else screen.plain(report)
 
 
-def _dump(outcome: Outcome, run: int | None) -> str:
+def _dump(outcome: Answer, run: int | None) -> str:
     from seqcheck.reports import vcd
 
+    if not isinstance(outcome, Outcome):
+        _wrong("--as vcd: a file that only serves 'use' has no run")
     try:
         return vcd.report(outcome, run)
     except ValueError as why:
@@ -439,19 +443,33 @@ def _wants_colour(asked: str, stream: TextIO) -> bool:
 
 
 def _deliver(text: str, out: str | None) -> int:
-    if out is None:
-        sys.stdout.write(text)
-        return PROVEN
-    target = Path(out)
-    draft = target.parent / f".{target.name}.{os.getpid()}.part"
     try:
-        if not target.name or target.is_dir():
-            raise IsADirectoryError(errno.EISDIR, "it is a folder")
-        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
-        draft.replace(target)
+        if out is None:
+            sys.stdout.write(text)
+            sys.stdout.flush()
+        else:
+            _write(Path(out), text)
+    except BrokenPipeError:
+        raise
     except (OSError, ValueError) as refusal:
-        with contextlib.suppress(OSError, ValueError):
-            draft.unlink()
-        _complain(f"error: cannot write '{printable(out)}': {getattr(refusal, 'strerror', None) or refusal}")
+        name = "the answer" if out is None else f"'{printable(out)}'"
+        _complain(f"error: cannot write {name}: {getattr(refusal, 'strerror', None) or refusal}")
         return WRONG
     return PROVEN
+
+
+def _write(out: Path, text: str) -> None:
+    """Write a file whole or not at all, whatever stops it; what is no file, as a pipe or device, is written to."""
+    if not out.name or out.is_dir():
+        raise IsADirectoryError(errno.EISDIR, "it is a folder")
+    if out.exists() and not out.is_file():
+        out.write_text(text, encoding="utf-8", errors="backslashreplace")
+        return
+    target = Path(os.path.realpath(out))
+    draft = target.parent / f".{target.name}.{os.getpid()}.part"
+    try:
+        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
+        draft.replace(target)
+    finally:
+        with contextlib.suppress(OSError, ValueError):
+            draft.unlink()

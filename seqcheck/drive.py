@@ -509,3 +509,17 @@ class Drive:
     trips: tuple[Trip, ...]
     rules: tuple[Rule, ...]
     waivers: tuple[Waiver, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Library:
+    """All that a file says which only serves `use`: names for other files, and nothing that could be proven.
+
+    The names are those of its quantities, parts and carriers, with those of the files that it uses itself.
+    """
+
+    place: Place
+    title: str
+    quantities: tuple[str, ...]
+    parts: tuple[str, ...]
+    carriers: tuple[str, ...]

@@ -3,7 +3,7 @@
 from dataclasses import dataclass
 from enum import Enum
 
-from seqcheck.drive import Cell, Command, Drive
+from seqcheck.drive import Cell, Command, Drive, Library
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.messages import Problem
 from seqcheck.source import Place
@@ -234,5 +234,5 @@ class Failed:
     fault: str
 
 
-Answer = Outcome | Unread | Failed
-"""What there is to say of one file."""
+Answer = Outcome | Library | Unread | Failed
+"""What there is to say of one file: a library has nothing to prove."""

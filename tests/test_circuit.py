@@ -1,6 +1,8 @@
 """Shorting sets against every subset of the switches of random small stages: is there a closed way, or not."""
 
+import re
 from collections.abc import Iterator
+from dataclasses import replace
 from itertools import combinations, permutations, product
 from random import Random
 
@@ -9,6 +11,7 @@ from reading import drive_of
 
 from seqcheck.circuit import contradicted, graph, shorting_sets
 from seqcheck.drive import Above, Capacitor, Conducts, Diode, Rails, Sources, Stage, Switch
+from seqcheck.evidence.cover.shorts import first_uncovered, shorts
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problems
 from seqcheck.source import Place
@@ -166,12 +169,22 @@ def drawn(rng: Random) -> Stage:
     return stage(rails, sources, ", ".join(caps), ", ".join(switches), ", ".join(diodes))
 
 
+def chained(rng: Random) -> Stage:
+    """Switches between the three or four nodes of one line of sources, directly or by another node."""
+    nodes = ["a", "b", "c", "d"][: rng.choice((3, 3, 4))]
+    switches = []
+    for number in range(rng.randint(2, 5)):
+        poles = "/".join("-".join(rng.sample([*nodes, "x"], 2)) for _ in range(rng.choice((1, 1, 1, 2))))
+        switches.append(f"S{number} {poles} {rng.choice(('one way', 'one way', 'two way'))}")
+    return stage("", " ".join(nodes), "", ", ".join(switches))
+
+
 @pytest.mark.parametrize("block", range(20))
 def test_sets_by_brute_force(block: int) -> None:
     """A set of switches shorts if and only if it holds a shorting set that the polarity does not rule out."""
     rng, compared = Random(block), 0
-    for _ in range(25):
-        one = drawn(rng)
+    for number in range(30):
+        one = drawn(rng) if number % 3 else chained(rng)
         always = any(shorted(one, frozenset(), orders) for orders in polarities(one))
         if always:
             with pytest.raises(Problems) as caught:
@@ -187,15 +200,10 @@ def test_sets_by_brute_force(block: int) -> None:
 
 @pytest.mark.parametrize("block", range(10))
 def test_sets_are_minimal(block: int) -> None:
-    """Without one of its switches a set does not short under a polarity for which it is there.
-
-    Of three sources in a row the outer two may be joined by a set whose parts short the inner ones: left out here.
-    """
+    """Without one of its switches a set does not short under a polarity for which it is there."""
     rng = Random(1000 + block)
-    for _ in range(25):
-        one = drawn(rng)
-        if any(len(line.nodes) > 2 for line in one.sources):
-            continue
+    for number in range(25):
+        one = drawn(rng) if number % 2 else chained(rng)
         try:
             hazards = shorting_sets(one)
         except Problems:
@@ -207,6 +215,22 @@ def test_sets_are_minimal(block: int) -> None:
                 shorted(one, on, orders) and not any(shorted(one, on - {name}, orders) for name in on)
                 for orders in needed
             ), (one, hazard)
+
+
+@pytest.mark.parametrize("block", range(10))
+def test_the_checker_of_evidence_finds_all_shorts_in_the_sets(block: int) -> None:
+    """Each closed way is one of a set that is asked for then, and no set could be left out."""
+    rng = Random(2000 + block)
+    for number in range(25):
+        one = drawn(rng) if number % 2 else chained(rng)
+        try:
+            hazards = shorting_sets(one)
+        except Problems:
+            continue
+        assert first_uncovered(one, hazards) is None, one
+        assert all(shorts(one, hazard) for hazard in hazards), one
+        for place in range(len(hazards)):
+            assert first_uncovered(one, hazards[:place] + hazards[place + 1 :]) is not None, (one, hazards[place])
 
 
 # Known stages
@@ -328,48 +352,94 @@ def test_always_shorted() -> None:
     assert "'P' and 'N'" in problem.text
 
 
-def test_too_many_sets_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
-    """Never cut short: 3 · 3 = 9 sets are listed or refused."""
-    ladder = stage("P N", switches=", ".join([*(f"A{k} P-x" for k in range(3)), *(f"B{k} x-N" for k in range(3))]))
-    assert len(shorting_sets(ladder)) == 9
-    monkeypatch.setattr(graph, "MOST_SETS", 8)
+def test_a_set_that_others_make_needless_is_left_out() -> None:
+    """One-way switches along three sources: if a is above c, a is above b or b above c, so one of the two shorts."""
+    one = stage("", "a b c", "", "S a-b one way, T b-c one way")
+    assert sets(one) == ["S", "T"]
+    assert first_uncovered(one, shorting_sets(one)[:1]) is not None
+
+
+def test_a_larger_set_stays_where_the_smaller_ones_do_not_short() -> None:
+    """With b above a and c above b only all three switches short, from c to a."""
+    one = stage("", "a b c", "", "S c-x one way, T x-a one way, U a-b one way")
+    found = {hazard.literals[-1].switch: hazard for hazard in shorting_sets(one)}
+    assert sets(one) == ["U", "S T"]
+    assert found["T"].needs == (frozenset({Above("c", "a")}),)
+    assert sets(stage("", "a b c", "", "S c-x one way, T x-a one way, U c-b one way")) == ["U", "S T"]
+
+
+def test_a_matrix_of_three_phases() -> None:
+    """From each of three inputs to each other one by the same output: 3 · 2 · 3 sets, and no way by a third input."""
+    switches = ", ".join(f"F{i}{o} {i}-{o} one way, R{i}{o} {o}-{i} one way" for i in "abc" for o in "xyz")
+    found = sets(stage("", "a b c", "", switches))
+    assert len(found) == 18
+    assert all(len(names.split()) == 2 and names[2] == names.split()[1][2] for names in found)
+
+
+def ladder(*widths: int) -> Stage:
+    """Between the rails groups of parallel switches in series: their product is the number of shorting sets."""
+    nodes = ["P", *(f"x{place}" for place in range(1, len(widths))), "N"]
+    groups = zip(widths, nodes, nodes[1:], strict=False)
+    names = [
+        f"S{place}_{number} {start}-{end}"
+        for place, (width, start, end) in enumerate(groups)
+        for number in range(width)
+    ]
+    return stage("P N", switches=", ".join(names))
+
+
+def refusal(one: Stage) -> str:
+    """Why a stage is refused: one message, whose kind is that there are too many sets."""
     with pytest.raises(Problems) as caught:
-        shorting_sets(ladder)
+        shorting_sets(one)
     (problem,) = caught.value.found
     assert problem.kind == "too-many-sets"
-    assert "more than 8 " in problem.text
-    monkeypatch.setattr(graph, "MOST_SETS", 9)
-    assert len(shorting_sets(ladder)) == 9
+    return problem.text
 
 
-def test_sets_that_are_not_minimal_do_not_count(monkeypatch: pytest.MonkeyPatch) -> None:
-    """Of three switches that a way through two diodes makes needless."""
-    one = stage("P N", switches="A P-x one way, B P-x one way, C P-x one way, T x-N one way", diodes="P-d, d-x")
-    monkeypatch.setattr(graph, "MOST_SETS", 3)
-    assert sets(one) == ["T"]
+def test_too_many_sets_are_refused_with_their_number() -> None:
+    """Never cut short: listed or refused."""
+    assert len(shorting_sets(ladder(25, 40))) == 1000
+    for widths, count in (((7, 11, 13), 1001), ((40, 40), 1600)):
+        assert refusal(ladder(*widths)) == f"the stage has {count} minimal shorting sets; at most 1000 are proven"
 
 
-def test_sets_are_counted_over_all_supplies(monkeypatch: pytest.MonkeyPatch) -> None:
-    """No node has more than three, but there are six."""
-    bridges = ", ".join(f"A{k} P-N, B{k} Q-M" for k in range(3))
-    two = stage("P N, Q M", switches=bridges)
-    monkeypatch.setattr(graph, "MOST_SETS", 6)
-    assert len(shorting_sets(two)) == 6
-    monkeypatch.setattr(graph, "MOST_SETS", 5)
-    with pytest.raises(Problems) as caught:
-        shorting_sets(two)
-    assert "more than 5 " in caught.value.found[0].text
+def test_what_cannot_be_counted_is_refused_with_what_was_counted() -> None:
+    """Singles are found first: they are no more than there are."""
+    many = ladder(60, 60, 60)
+    singles = stage("P N", switches=", ".join(f"T{place} P-N" for place in range(7)))
+    found = refusal(replace(many, switches=many.switches + singles.switches))
+    assert found == (
+        "the stage has too many ways to count its minimal shorting sets; 7 were found when it was given up after"
+        " 3000000 steps, and at most 1000 in all are proven"
+    )
 
 
-def test_sets_are_counted_where_no_way_leads_on(monkeypatch: pytest.MonkeyPatch) -> None:
-    """Else a stage could cost any time and memory before its few sets are known."""
-    blind = [*(f"A{k} P-x one way" for k in range(3)), *(f"B{k} x-y one way" for k in range(3))]
-    one = stage("P N", switches=", ".join(blind))
-    monkeypatch.setattr(graph, "MOST_SETS", 9)
-    assert sets(one) == []
-    monkeypatch.setattr(graph, "MOST_SETS", 8)
-    with pytest.raises(Problems):
-        shorting_sets(one)
+def test_few_steps_give_few_sets_and_never_a_wrong_list(monkeypatch: pytest.MonkeyPatch) -> None:
+    """However early it is given up: all sets, or a refusal that counts no more than there are."""
+    one = ladder(3, 3)
+    listed = 0
+    for steps in range(0, 1000, 7):
+        monkeypatch.setattr(graph, "MOST_STEPS", steps)
+        try:
+            assert len(shorting_sets(one)) == 9
+            listed += 1
+        except Problems as problems:
+            count = re.search(r"sets; (\d+) were found", problems.found[0].text)
+            assert count
+            assert int(count[1]) <= 9
+    assert 0 < listed < 140
+
+
+def test_many_ways_to_where_no_short_leads_are_no_hindrance() -> None:
+    """A thousand ways to a node that is only a dead end."""
+    many = ladder(40, 40)
+    dead = [
+        replace(one, poles=tuple((start, "x2" if end == "N" else end) for start, end in one.poles))
+        for one in many.switches
+    ]
+    leg = stage("P N", switches="H P-U, L U-N").switches
+    assert sets(replace(many, switches=(*(replace(one, conducts=Conducts.ONE_WAY) for one in dead), *leg))) == ["H L"]
 
 
 def test_many_switches_in_reasonable_time() -> None:
@@ -385,3 +455,20 @@ def test_stage_of_a_file() -> None:
         "  leg V C D between Q and M\nmodes A B C D\n  i off off off off\nmoves\n  start i\n"
     )
     assert sets(drive_of(text).stage) == ["A B", "C D"]
+
+
+def test_sets_that_are_not_minimal_do_not_count(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Of three switches that a way through two diodes makes needless."""
+    one = stage("P N", switches="A P-x one way, B P-x one way, C P-x one way, T x-N one way", diodes="P-d, d-x")
+    monkeypatch.setattr(graph, "MOST_SETS", 3)
+    assert sets(one) == ["T"]
+
+
+def test_sets_are_counted_over_all_supplies(monkeypatch: pytest.MonkeyPatch) -> None:
+    """No supply has more than three, but there are six."""
+    bridges = ", ".join(f"A{k} P-N, B{k} Q-M" for k in range(3))
+    two = stage("P N, Q M", switches=bridges)
+    monkeypatch.setattr(graph, "MOST_SETS", 6)
+    assert len(shorting_sets(two)) == 6
+    monkeypatch.setattr(graph, "MOST_SETS", 5)
+    assert "has 6 minimal shorting sets; at most 5 " in refusal(two)

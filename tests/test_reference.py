@@ -6,9 +6,10 @@ from pathlib import Path
 from typing import NamedTuple
 
 import pytest
-from reading import drive_of, mistakes_of
+from reading import FILE, drive_of, mistakes_of, no_file
 
-from seqcheck.language import grammar
+from seqcheck.drive import Library
+from seqcheck.language import grammar, read_any
 from seqcheck.language.words import NO_QUANTITY, RESERVED
 
 ROOT = Path(__file__).parents[1]
@@ -67,7 +68,10 @@ def named(example: Example) -> str:
 def test_examples_are_read(example: Example) -> None:
     text, _ = whole(example)
     assert not example.messages
-    assert drive_of(text).title
+    if "library" in example.words:
+        assert isinstance(read_any(text, FILE, no_file), Library)
+    else:
+        assert drive_of(text).title
 
 
 @pytest.mark.parametrize("example", [one for one in EXAMPLES if "mistake" in one.words], ids=named)

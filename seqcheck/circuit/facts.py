@@ -16,10 +16,11 @@ def contradicted(hazard: Hazard, facts: Iterable[Known]) -> bool:
     known = frozenset(facts)
     if not hazard.needs or not known:
         return False
-    return all(_excluded(known, needs) for needs in hazard.needs)
+    return all(excluded(known, needs) for needs in hazard.needs)
 
 
-def _excluded(known: frozenset[Known], needs: frozenset[Known]) -> bool:
+def excluded(known: frozenset[Known], needs: frozenset[Known]) -> bool:
+    """Whether what is known leaves no way for all of the needs to be so as well."""
     if any(opposite(one) in known for one in needs):
         return True
     above = {(one.upper, one.lower) for one in known | needs if isinstance(one, Above)}

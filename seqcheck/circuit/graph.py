@@ -1,25 +1,23 @@
 """The stage as a directed graph, and the minimal sets of switches over all ways through it.
 
 Every edge carries the switch that must be on for it to conduct (none: it always conducts) and the polarity that it
-needs. The minimal sets are found by a label-correcting search whose labels are antichains of sets (the multi-criteria
-form of Bellman-Ford's algorithm).
+needs.
 """
 
-from collections import deque
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
 import networkx as nx
 
-from seqcheck.drive import Above, Capacitor, Conducts, Known, Rails, Sources, Stage, Switch
+from seqcheck.circuit.ways import Needs, Passage
+from seqcheck.drive import Above, Capacitor, Conducts, Rails, Sources, Stage, Switch
 from seqcheck.hazards import Hazard
-from seqcheck.messages import Problem, Problems
 
 MOST_SETS = 1000
-"""More minimal sets than this at one node, or in all, are refused."""
+"""More minimal sets than this are refused, with their number."""
+MOST_STEPS = 3_000_000
+"""Comparisons of sets, two seconds or three, after which counting is given up, and the stage is refused."""
 
-Needs = frozenset[Known]
-Label = tuple[frozenset[str], Needs]
 Graph = nx.MultiDiGraph  # nodes are names of the stage; edges carry `switch`, `needs` and `element`
 Stiff = Rails | Sources | Capacitor
 
@@ -87,58 +85,18 @@ def graph_of(edges: Iterable[Edge]) -> "Graph[str]":
     return graph
 
 
-def least_ways(
-    graph: "Graph[str]", start: str, barred: frozenset[int], too_many: Callable[[int], Problem]
-) -> dict[str, list[Label]]:
-    """For every node the minimal (switches, needs) of the ways from `start` to it that pass no barred element.
-
-    Raises Problems with what `too_many` makes of their number where a node has more than MOST_SETS.
-    """
-    labels: dict[str, list[Label]] = {start: [(frozenset(), NOTHING)]}
-    waiting = deque([start])
-    while waiting:
-        node = waiting.popleft()
-        for _, end, data in sorted(graph.out_edges(node, data=True), key=_edge_key):
-            if data["element"] in barred:
-                continue
-            switch = frozenset() if data["switch"] is None else frozenset({data["switch"]})
-            grown = [(switches | switch, needs | data["needs"]) for switches, needs in labels[node]]
-            if _merge(labels.setdefault(end, []), grown) and end not in waiting:
-                waiting.append(end)
-            if len(labels[end]) > MOST_SETS:
-                raise Problems([too_many(len(labels[end]))])
-    return labels
+def passages(graph: "Graph[str]") -> dict[str, list[Passage]]:
+    """The graph as the search for least ways reads it."""
+    return {
+        node: [
+            Passage(end, frozenset(filter(None, (data["switch"],))), data["needs"], data["element"])
+            for _, end, data in graph.out_edges(node, data=True)
+        ]
+        for node in graph
+    }
 
 
-def _edge_key(edge: tuple[str, str, dict[str, object]]) -> tuple[str, str]:
-    return edge[1], str(edge[2]["switch"])
-
-
-def _merge(kept: list[Label], grown: Iterable[Label]) -> bool:
-    """Add what no kept label dominates, drop what the new ones dominate; whether anything was added."""
-    added = False
-    for label in grown:
-        if any(_dominates(one, label) for one in kept):
-            continue
-        kept[:] = [one for one in kept if not _dominates(label, one)]
-        kept.append(label)
-        added = True
-    return added
-
-
-def _dominates(one: Label, other: Label) -> bool:
-    return one[0] <= other[0] and one[1] <= other[1]
-
-
-def least(hazards: list[Hazard], stage: Stage) -> list[Hazard]:
-    """Without those that happen only where a smaller one does; in the order of the stage's switches."""
+def in_order(hazards: Iterable[Hazard], stage: Stage) -> list[Hazard]:
+    """Hazards in the order of the stage's switches, those of few literals first."""
     rank = {switch.name: place for place, switch in enumerate(stage.switches)}
-    kept = [one for one in hazards if not any(_implies(other, one) for other in hazards if other is not one)]
-    return sorted(kept, key=lambda one: (len(one.literals), [rank[literal.switch] for literal in one.literals]))
-
-
-def _implies(smaller: Hazard, larger: Hazard) -> bool:
-    """Whether `smaller` happens whenever `larger` does: fewer literals, and no more needs."""
-    if not set(smaller.literals) < set(larger.literals):
-        return False
-    return not smaller.needs or (bool(larger.needs) and all(any(n <= m for n in smaller.needs) for m in larger.needs))
+    return sorted(hazards, key=lambda one: (len(one.literals), [rank[literal.switch] for literal in one.literals]))

@@ -8,7 +8,8 @@ from collections import Counter
 from collections.abc import Iterable, Iterator
 
 from seqcheck.circuit import graph as graphs
-from seqcheck.circuit.graph import NOTHING, Edge, Graph, Needs, conducting, graph_of, least, least_ways, nodes_of, stiff
+from seqcheck.circuit.graph import NOTHING, Edge, conducting, graph_of, in_order, nodes_of, passages, stiff
+from seqcheck.circuit.ways import Needs, Quest, Steps, TooMuch, least_ways
 from seqcheck.drive import Capacitor, CurrentInto, CurrentOut, Stage, Winding
 from seqcheck.hazards import Current, Hazard, Literal
 from seqcheck.messages import Problem, Problems
@@ -39,7 +40,7 @@ def opening_sets(stage: Stage) -> tuple[Hazard, ...]:
                 opened.append(current)
                 needs.append(needed(stage, winding, current))
     hazards = [_hazard(stage, switches, *said) for switches, said in found.items()]
-    kept = least(hazards, stage)
+    kept = in_order((one for one in hazards if not any(_implies(other, one) for other in hazards)), stage)
     if len(kept) > graphs.MOST_SETS:
         raise Problems([_too_many(next(one for one in stage.windings if one.must_flow), len(kept))])
     return tuple(kept)
@@ -97,12 +98,19 @@ def flow_edges(stage: Stage, joined: bool) -> Iterator[Edge]:
 
 def _ways(stage: Stage, winding: Winding, current: Current) -> list[frozenset[str]]:
     """The minimal sets of switches on the ways of a current: from where it leaves the winding to where it enters it."""
-    graph: Graph[str] = graph_of(flow_edges(stage, None in (current.out_of, current.into)))
     start, end = current.into or _SUPPLY, current.out_of or _SUPPLY
-    if start not in graph or end not in graph:
-        return []
-    found = least_ways(graph, start, frozenset(), lambda count: _too_many_ways(winding, count))
-    return [switches for switches, _ in found.get(end, ())]
+    graph = passages(graph_of(flow_edges(stage, None in (current.out_of, current.into))))
+    found: list[frozenset[str]] = []
+    try:
+        for _, (switches, _) in least_ways(
+            graph, [Quest(start, end, frozenset(), frozenset(), NOTHING)], Steps(graphs.MOST_STEPS)
+        ):
+            found.append(switches)
+    except TooMuch as refusal:
+        raise Problems([_too_many_ways(winding, len(found))]) from refusal
+    if len(found) > graphs.MOST_SETS:
+        raise Problems([_too_many_ways(winding, len(found))])
+    return found
 
 
 def _transversals(ways: Iterable[frozenset[str]], winding: Winding) -> list[frozenset[str]]:
@@ -127,6 +135,13 @@ def _hazard(stage: Stage, switches: frozenset[str], opened: list[Current], needs
     return Hazard(literals, (), kept, tuple(opened))
 
 
+def _implies(smaller: Hazard, larger: Hazard) -> bool:
+    """Whether `smaller` happens whenever `larger` does: fewer literals, and no more needs."""
+    if not set(smaller.literals) < set(larger.literals):
+        return False
+    return not smaller.needs or (bool(larger.needs) and all(any(n <= m for n in smaller.needs) for m in larger.needs))
+
+
 def _always(winding: Winding) -> Problem:
     text = "no current can flow through this winding, whatever the switches do"
     return Problem(winding.place, "always-open", text, "check the nodes of the stage, or take 'must flow' out")
@@ -138,7 +153,7 @@ def _loose(winding: Winding, end: str) -> Problem:
 
 
 def _too_many_ways(winding: Winding, count: int) -> Problem:
-    text = f"the current of this winding has more than {count - 1} ways; at most {graphs.MOST_SETS} are looked at"
+    text = f"the current of this winding has {count} least ways or more; at most {graphs.MOST_SETS} are looked at"
     return Problem(winding.place, "too-many-sets", text, "describe the stage in several files")
 
 

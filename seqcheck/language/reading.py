@@ -1,8 +1,8 @@
-"""From the text of a file to the checked drive: every mistake at once, or the drive."""
+"""From the text of a file to the checked drive or library: every mistake at once, or one of them."""
 
 from collections.abc import Callable
 
-from seqcheck.drive import RESET, Drive, Fixed, How, Mode, Writes
+from seqcheck.drive import RESET, Drive, Fixed, How, Library, Mode, Writes
 from seqcheck.language.flow import check_flow
 from seqcheck.language.judging import Rules
 from seqcheck.language.lines import Book, book_of
@@ -15,20 +15,63 @@ from seqcheck.language.syntax import DriveLine, LoopLine, WritesLine
 from seqcheck.language.tables import Table
 from seqcheck.language.uses import Uses
 from seqcheck.language.values import Unit
-from seqcheck.language.words import REQUIRED
-from seqcheck.messages import Problems
+from seqcheck.language.words import REQUIRED, SERVING, STARTS
+from seqcheck.messages import Problem, Problems
 from seqcheck.quantities import INSTANT, Interval, widened
 from seqcheck.source import Place
 
 
 def read(text: str, file: str, fetch: Callable[[str], str]) -> Drive:
-    """The checked drive that a text describes.
+    """As `read_any`, where a drive is needed: a file that only serves `use` raises Problems."""
+    found = read_any(text, file, fetch)
+    if isinstance(found, Library):
+        way_out = "name a file that uses it, or add the sections 'stage', 'modes' and 'moves'"
+        problem = Problem(found.place, "no-drive", "this file only serves 'use', it describes no drive", way_out)
+        raise Problems([problem])
+    return found
+
+
+def read_any(text: str, file: str, fetch: Callable[[str], str]) -> Drive | Library:
+    """The checked drive that a text describes, or the library if it only serves `use`.
 
     `fetch` gives the text of a file that `use` names, its path joined to the folder of the file that says it; it
     raises OSError, or Problems. Raises Problems with all mistakes of all files read.
     """
     notes = Notes()
     book = book_of(text, file, notes)
+    if _only_serves(book, notes):
+        return _library(book, notes, fetch)
+    return _drive(book, notes, fetch)
+
+
+def _only_serves(book: Book, notes: Notes) -> bool:
+    """Whether a file names something for others and has nothing that only a drive has."""
+    said = {*book.heads, *notes.broken} & STARTS
+    names = bool(book.singles) or bool(said & {"let", "use", "parts", "carriers"})
+    return names and said <= SERVING
+
+
+def _library(book: Book, notes: Notes, fetch: Callable[[str], str]) -> Library:
+    """The library of a book. Where it has no clock, its ticks are those of a file that is not at hand."""
+    if "clock" not in book.heads:
+        notes.broken.add("clock")
+    scope = Scope(book, notes)
+    names = Uses(fetch, notes.found).names(scope)
+    scope.clock()
+    if notes.found:
+        raise Problems(notes.found)
+    title = book.heads["drive"]
+    assert isinstance(title.node, DriveLine)
+    return Library(
+        title.place,
+        title.node.title.text,
+        tuple(scope.lets),
+        tuple(names.seen["part"]),
+        tuple(names.seen["carrier"]),
+    )
+
+
+def _drive(book: Book, notes: Notes, fetch: Callable[[str], str]) -> Drive:
     _check_sections(book, notes)
     scope = Scope(book, notes)
     names = Uses(fetch, notes.found).names(scope)

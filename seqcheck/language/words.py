@@ -4,6 +4,8 @@ SECTIONS = ("stage", "parts", "paths", "pins", "carriers", "modes", "moves", "tr
 SINGLES = ("drive", "clock", "let", "use", "writes", "loop")
 STARTS = frozenset(SECTIONS) | frozenset(SINGLES)
 REQUIRED = ("stage", "modes", "moves")
+SERVING = frozenset({"drive", "clock", "let", "use", "parts", "carriers"})
+"""What the lines of a file that only serves `use` begin with, or belong to."""
 
 RESERVED = STARTS | frozenset(
     (

@@ -14,6 +14,7 @@ from seqcheck.proving.keys import (
     LOCK,
     PIN,
     RISE,
+    SPAN,
     Key,
     X,
     Y,
@@ -63,7 +64,7 @@ def _entry(projection: Projection, location: Location) -> Data:
 def _clock(name: int) -> str:
     if name in (X, Y):
         return "x" if name == X else "y"
-    return f"{_CLOCKS[name - name % 100]} {name % 100}"
+    return f"{_CLOCKS[name - name % SPAN]} {name % SPAN}"
 
 
 def _bounds(zone: list[int], size: int) -> list[list[int]]:

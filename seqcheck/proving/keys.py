@@ -7,7 +7,11 @@ from seqcheck.firmware import Edge, State
 from seqcheck.verdict import Act
 
 X, Y, Z, PAUSE, GAP = range(5)
-CARRIER, HOLD, PIN, LOCK, RISE, FALL = 100, 200, 300, 400, 500, 600
+SPAN = 1 << 20
+"""Names of one kind of clock: a place in the view is added to the kind, so no view may be as wide as this."""
+CARRIER, HOLD, PIN, LOCK, RISE, FALL = (SPAN * kind for kind in range(1, 7))
+NEVER_HELD = HOLD + SPAN - 1
+"""The clock of a held group that was written just now: no location has it."""
 
 C_OFF, C_ON, C_BOTH = 0, 1, 2
 """Commands as numbers; C_BOTH for a pin that floats."""

@@ -23,12 +23,14 @@ from seqcheck.proving.keys import (
     LATELY,
     LOCK,
     LONG_AGO,
+    NEVER_HELD,
     NOT_ENDED,
     OVER,
     PAUSE,
     PIN,
     RISE,
     SILENT,
+    SPAN,
     WAITING,
     Clock,
     Happening,
@@ -66,6 +68,7 @@ class Projection:
 
     def __init__(self, view: View, firmware: Firmware, manner: Manner) -> None:
         drive = view.drive
+        assert max(len(drive.columns), len(drive.carriers), len(view.locks)) < SPAN - 1, "each clock has its name"
         self.view = view
         self.firmware = firmware
         self.manner = manner
@@ -397,7 +400,7 @@ def _holds(old: Key | None, key: Key, written: int) -> dict[int, int]:
     """Where the clock of each held group comes from; groups written just now have a name that none had before."""
     renaming = {}
     for place, (number, bits) in enumerate(key.state.put[2]):
-        renaming[HOLD + place] = HOLD + 99
+        renaming[HOLD + place] = NEVER_HELD
         if old is None or bits & written:
             continue
         for before, (other, were) in enumerate(old.state.put[2]):

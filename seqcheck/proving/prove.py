@@ -6,7 +6,7 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
-from seqcheck.drive import Cell, Drive, Fixed, Follow, Update
+from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.certify import Data, cover
@@ -114,16 +114,17 @@ class Prover:
                     return Proven("zones", count.total, not punctual, kept)
         return self._refute(looking, interlocks, count)
 
-    def holds(self, hazard: Hazard, observer: Observer) -> bool:
-        """Whether the hazard happens in no run, with the drive's interlocks and firmware in time; without a trace."""
-        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+    def holds(self, hazard: Hazard, observer: Observer, locks: tuple[Interlock, ...] | None = None) -> bool:
+        """Whether the hazard happens in no run, with firmware in time; without a trace.
+
+        `locks` stand in place of the drive's interlocks. What the observer raises passes through.
+        """
+        drive = self.drive if locks is None else replace(self.drive, interlocks=locks)
+        looking = view(drive, hazard, delays(hazard, drive.paths), interlocks=True)
         count = _Count(observer)
         if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
             return True
-        return any(self._safe(looking, True, manner, count) for manner in _manners(looking))
-
-    def _safe(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> bool:
-        return self._searched(looking, punctual, manner, count) is not None
+        return any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking))
 
     def _searched(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> Projection | None:
         """The projection with all that its search stored, if no run in it brings the hazard."""

@@ -7,6 +7,7 @@ a step for each severity; the rest stands in the log.
 
 from collections.abc import Sequence
 
+from seqcheck.drive import Library
 from seqcheck.reports.checks import ABOUT
 from seqcheck.reports.pieces import visible
 from seqcheck.reports.remarks import Remark, Severity, remarks
@@ -18,7 +19,8 @@ _COMMANDS = {Severity.ERROR: "error", Severity.WARNING: "warning", Severity.NOTE
 
 def report(answers: Sequence[Answer], repository: Repository) -> str:
     """A command a remark, in the order of the files and of their places in each; empty where everything is proven."""
-    return "".join(f"{_command(one, repository)}\n" for answer in answers for one in remarks(answer))
+    judged = [one for one in answers if not isinstance(one, Library)]
+    return "".join(f"{_command(one, repository)}\n" for answer in judged for one in remarks(answer))
 
 
 def _command(remark: Remark, repository: Repository) -> str:

@@ -8,11 +8,12 @@ import json
 from collections.abc import Iterable, Iterator, Sequence
 
 from seqcheck import __version__
-from seqcheck.drive import Drive, cell_text, fact_words
+from seqcheck.drive import Drive, Library, cell_text, fact_words
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem
 from seqcheck.reports.acts import Note, told
 from seqcheck.reports.lanes import Lane, lanes
+from seqcheck.reports.remarks import NO_DRIVE
 from seqcheck.reports.repository import plain
 from seqcheck.reports.standing import sorted_out
 from seqcheck.reports.waived import reason
@@ -57,6 +58,8 @@ def _file(answer: Answer) -> Fields:
         return {"file": plain(answer.file), "standing": "wrong-input", "problems": problems}
     if isinstance(answer, Failed):
         return {"file": plain(answer.file), "standing": "internal-error", "fault": plain(answer.fault)}
+    if isinstance(answer, Library):
+        return {"file": plain(answer.place.file), "title": answer.title, "standing": NO_DRIVE}
     return {
         "file": plain(answer.file),
         "title": answer.drive.title,

@@ -71,5 +71,7 @@ def listed(names: Sequence[str], last: str = "and") -> str:
 
 
 def counted(number: int, name: str) -> str:
-    """A count with its noun: `1 finding`, `3 findings`."""
-    return f"{number} {name}" if number == 1 else f"{number} {name}s"
+    """A count with its noun: `1 finding`, `3 findings`, `2 quantities`."""
+    if number == 1:
+        return f"{number} {name}"
+    return f"{number} {name[:-1]}ies" if name.endswith("y") else f"{number} {name}s"

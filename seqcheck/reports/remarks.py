@@ -4,14 +4,14 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from enum import Enum
 
-from seqcheck.drive import Drive
+from seqcheck.drive import Drive, Library
 from seqcheck.messages import Problem
 from seqcheck.reports.waived import reason
-from seqcheck.reports.wording import cure, happens, subject, where
+from seqcheck.reports.wording import NOTHING, SERVES, cure, happens, subject, where
 from seqcheck.source import Place
 from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
-UNDECIDED, WRONG_INPUT, FAULT = "undecided", "wrong-input", "internal-error"
+UNDECIDED, WRONG_INPUT, FAULT, NO_DRIVE = "undecided", "wrong-input", "internal-error", "nothing-to-prove"
 """What stands in place of the name of a check where none is at fault."""
 
 
@@ -25,7 +25,7 @@ class Severity(Enum):
 
 @dataclass(frozen=True, slots=True)
 class Remark:
-    """One thing that is amiss: `check` is the name of its check or UNDECIDED, WRONG_INPUT, FAULT.
+    """One thing that is amiss: `check` is the name of its check or UNDECIDED, WRONG_INPUT, FAULT, NO_DRIVE.
 
     `text` is one sentence without full stop, `waived` the reason of the waiver that lets it pass.
     """
@@ -34,7 +34,7 @@ class Remark:
     severity: Severity
     check: str
     text: str
-    about: Unsafe | Undecided | Finding | Problem | Failed
+    about: Unsafe | Undecided | Finding | Problem | Failed | Library
     waived: str | None = None
 
 
@@ -45,6 +45,8 @@ def remarks(answer: Answer) -> list[Remark]:
     if isinstance(answer, Failed):
         text = f"internal error, please report it with the file: {answer.fault}"
         return [Remark(Place(answer.file, 1, 1, 1, 1), Severity.ERROR, FAULT, text, answer)]
+    if isinstance(answer, Library):
+        return [Remark(answer.place, Severity.NOTE, NO_DRIVE, f"{NOTHING}: {SERVES}", answer)]
     return sorted(_found(answer), key=lambda one: one.place)
 
 

@@ -11,7 +11,7 @@ from collections.abc import Iterable, Iterator, Sequence
 from hashlib import sha256
 
 from seqcheck import __version__
-from seqcheck.drive import Drive
+from seqcheck.drive import Drive, Library
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem
 from seqcheck.quantities import shown
@@ -19,7 +19,7 @@ from seqcheck.reports.acts import entered
 from seqcheck.reports.checks import ABOUT
 from seqcheck.reports.instants import Instant
 from seqcheck.reports.pieces import Tone, visible
-from seqcheck.reports.remarks import Remark, remarks
+from seqcheck.reports.remarks import NO_DRIVE, Remark, remarks
 from seqcheck.reports.repository import Repository, plain
 from seqcheck.reports.run import Run, run_of
 from seqcheck.reports.standing import sorted_out
@@ -45,14 +45,14 @@ class _Log:
 
     def log(self, answers: Sequence[Answer]) -> Fields:
         """The log of all answers."""
-        found = [(answer, remarks(answer)) for answer in answers]
+        found = [(one, [] if isinstance(one, Library) else remarks(one)) for one in answers]
         named = {one.check for _, own in found for one in own}
         rules = [name for name in ABOUT if name in named]
         run = {
             "tool": {"driver": _driver(rules)},
             "columnKind": "unicodeCodePoints",
             "originalUriBaseIds": {_TOP: {"description": {"text": "The top of the repository."}}},
-            "invocations": [{"executionSuccessful": all(isinstance(one, Outcome) for one in answers)}],
+            "invocations": [{"executionSuccessful": all(isinstance(one, Outcome | Library) for one in answers)}],
             "artifacts": [self._artifact(one) for one in answers],
             "results": [one for answer, own in found for one in self._results(answer, own, rules)],
         }
@@ -60,7 +60,7 @@ class _Log:
 
     def _artifact(self, answer: Answer) -> Fields:
         return {
-            "location": self._artifact_location(answer.file),
+            "location": self._artifact_location(answer.place.file if isinstance(answer, Library) else answer.file),
             "roles": ["analysisTarget"],
             "properties": {"standing": _standing(answer)},
         }
@@ -135,6 +135,8 @@ def _rule(name: str) -> Fields:
 def _standing(answer: Answer) -> str:
     if isinstance(answer, Outcome):
         return sorted_out(answer).standing.name.lower()
+    if isinstance(answer, Library):
+        return NO_DRIVE
     return "wrong-input" if isinstance(answer, Unread) else "internal-error"
 
 

@@ -2,10 +2,11 @@
 
 from collections.abc import Iterable, Sequence
 
+from seqcheck.drive import Library
 from seqcheck.reports.counterexample import counterexample, sentence
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
 from seqcheck.reports.standing import Sorted, Standing, sorted_out
-from seqcheck.reports.wording import CAUTION, happens, subject
+from seqcheck.reports.wording import CAUTION, NOTHING, SERVES, happens, subject
 from seqcheck.verdict import Finding, Outcome, Safe, Undecided, Unsafe
 
 _STYLES = {
@@ -22,16 +23,19 @@ _TONES = {
     Standing.AMISS: Tone.BAD,
     Standing.UNDECIDED: Tone.DOUBT,
     Standing.PROVEN: Tone.GOOD,
+    Standing.NOTHING: Tone.STRONG,
 }
 
 
-def report(outcomes: Sequence[Outcome]) -> list[Line]:
+def report(answers: Sequence[Outcome | Library]) -> list[Line]:
     """The whole report as styled lines."""
     found: list[Line] = []
-    for outcome in outcomes:
-        found += [*_file(outcome), ()]
-    if len(outcomes) != 1:
-        found.append(_all(outcomes))
+    for answer in answers:
+        found += [*(_library(answer) if isinstance(answer, Library) else _file(answer)), ()]
+    if len(answers) != 1:
+        found.append(_all(answers))
+    if answers and all(isinstance(one, Library) for one in answers):
+        return found if len(answers) > 1 else found[:-1]
     return [*found, line(Piece(CAUTION, Tone.FAINT))]
 
 
@@ -69,6 +73,19 @@ def _file(outcome: Outcome) -> list[Line]:
     blocks.append(_closing(outcome.file, parts))
     full = [block for block in blocks if block]
     return [one for block in full[:-1] for one in (*block, ())] + full[-1]
+
+
+def _library(library: Library) -> list[Line]:
+    """A file that only serves `use`: read and checked, and no word of a proof."""
+    named = [
+        counted(len(names), name)
+        for names, name in ((library.quantities, "quantity"), (library.parts, "part"), (library.carriers, "carrier"))
+        if names
+    ]
+    head = line(Piece(library.place.file, Tone.STRONG), f'  "{library.title}"')
+    brings = sentence(f"It brings {listed(named) or 'no name'} to files that use it")
+    last = line(Piece(NOTHING, _TONES[Standing.NOTHING]), f": {library.place.file}: {SERVES}")
+    return [head, (), *brings, (), last]
 
 
 def _undecided(verdict: Undecided) -> list[Line]:
@@ -127,9 +144,9 @@ def _closing(file: str, parts: Sorted) -> list[Line]:
     return [line(Piece(f"{standing.value}{but}", _TONES[standing]), f": {file}: {text}")]
 
 
-def _all(outcomes: Sequence[Outcome]) -> Line:
+def _all(answers: Sequence[Outcome | Library]) -> Line:
     """How many files stand how."""
-    stands = [sorted_out(one).standing for one in outcomes]
+    stands = [Standing.NOTHING if isinstance(one, Library) else sorted_out(one).standing for one in answers]
     cells: list[str | Piece] = [f"{counted(len(stands), 'file')}"]
     for standing in Standing:
         if number := stands.count(standing):

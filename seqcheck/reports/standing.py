@@ -4,6 +4,7 @@ from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.reports.waived import reason
+from seqcheck.reports.wording import NOTHING
 from seqcheck.verdict import WARNINGS, Finding, Outcome, Safe, Undecided, Unsafe
 
 
@@ -14,6 +15,7 @@ class Standing(Enum):
     AMISS = "not in order"
     UNDECIDED = "undecided"
     PROVEN = "proven"
+    NOTHING = f"with {NOTHING}"
 
 
 @dataclass(frozen=True, slots=True)

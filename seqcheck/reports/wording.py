@@ -7,6 +7,8 @@ from seqcheck.reports.pieces import listed
 from seqcheck.verdict import Check, Unsafe
 
 CAUTION = "A proof is about the file, not about the board."
+NOTHING = "nothing to prove"
+SERVES = "this file only serves 'use'"
 
 
 def switches(hazard: Hazard) -> str:

@@ -31,7 +31,7 @@ HOUSE = ROOT / "seqcheck"
 KEPT = ROOT / ".mutation"
 
 PATTERNS = (
-    *("zones.py", "hazards.py", "circuit.py"),
+    *("zones.py", "hazards.py", "circuit/[!_]*.py"),
     *(f"proving/{name}.py" for name in ("conduction", "schedule", "circles", "search", "screen")),
     *("evidence/[!_]*.py", "evidence/cover/[!_]*.py"),
 )

@@ -33,12 +33,9 @@ def _names(scope: Scope) -> set[str]:
         "guard": len(scope.guards),
         "in": len(scope.delays),
         "out": len(scope.delays),
-        "held": _MOST_HELD,
+        "held": len(scope.drive.columns),
     }
     return {"x", "y", *(f"{word} {place}" for word, count in counted.items() for place in range(count))}
-
-
-_MOST_HELD = 100
 
 
 def _zone(entry: Fields, value: object, clocks: int) -> Bounds:

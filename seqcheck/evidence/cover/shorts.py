@@ -7,7 +7,7 @@ from typing import NamedTuple
 from seqcheck.drive import Above, Conducts, Known, Stage
 from seqcheck.hazards import Hazard
 
-Needs = frozenset[Known]
+Needs = frozenset[Above]
 NOTHING: Needs = frozenset()
 MOST_STEPS = 300_000
 
@@ -34,13 +34,16 @@ class _Edge(NamedTuple):
 
 def first_uncovered(stage: Stage, hazards: tuple[Hazard, ...]) -> Way | None:
     """A short that may happen while none of the hazards does; None if there is none. Raises TooLarge."""
+    asked = [
+        (frozenset(one.switch for one in hazard.literals), [_orders(needs) for needs in hazard.needs or (NOTHING,)])
+        for hazard in hazards
+        if all(one.on for one in hazard.literals)
+        and all(isinstance(fact, Above) for needs in hazard.needs for fact in needs)
+    ]
 
     def covered(way: Way) -> bool:
-        return any(
-            all(one.on and one.switch in way.switches for one in hazard.literals)
-            and (not hazard.needs or any(needs <= way.needs for needs in hazard.needs))
-            for hazard in hazards
-        )
+        known = [needs for switches, alternatives in asked if switches <= way.switches for needs in alternatives]
+        return any(needs <= way.needs for needs in known) or not _escapes(way.needs, known)
 
     return next((way for way in _ways(stage, covered) if not covered(way)), None)
 
@@ -49,10 +52,29 @@ def shorts(stage: Stage, hazard: Hazard) -> bool:
     """Whether the hazard's switches short the stage whenever it is asked for. Raises TooLarge."""
     names = {one.switch for one in hazard.literals}
     found = {way.needs for way in _ways(stage, lambda way: not way.switches <= names) if way.switches <= names}
-    if hazard.needs:
-        return all(any(known <= needs for known in found) for needs in hazard.needs)
-    either = [one for needs in found if len(needs) == 1 for one in needs if isinstance(one, Above)]
-    return NOTHING in found or any(frozenset({Above(one.lower, one.upper)}) in found for one in either)
+    return not any(_escapes(_orders(needs), list(found)) for needs in hazard.needs or (NOTHING,))
+
+
+def _orders(needs: frozenset[Known]) -> Needs:
+    return frozenset(one for one in needs if isinstance(one, Above))
+
+
+def _escapes(known: Needs, needs: list[Needs]) -> bool:
+    """Whether the sources may stand in an order in which all that is known holds, and none of `needs` as a whole.
+
+    What is known of an order may be completed to one as long as nothing is above itself.
+    """
+    above = _closed({(one.upper, one.lower) for one in known})
+    if any(upper == lower for upper, lower in above):
+        return False
+    still = [one for one in needs if not any((pair.lower, pair.upper) in above for pair in one)]
+    return not still or any(_escapes(known | {Above(pair.lower, pair.upper)}, still[1:]) for pair in still[0])
+
+
+def _closed(above: set[tuple[str, str]]) -> set[tuple[str, str]]:
+    while more := {(one, end) for one, middle in above for start, end in above if middle == start} - above:
+        above = above | more
+    return above
 
 
 def _ways(stage: Stage, enough: Callable[[Way], bool]) -> Iterator[Way]:

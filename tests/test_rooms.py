@@ -11,6 +11,7 @@ HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
     "shipped",
+    "exits",
     "quantities",
     "source",
     "messages",
@@ -29,6 +30,7 @@ LOW_TO_HIGH = (
     "sizing",
     "reports",
     "checking",
+    "commands",
     "cli",
     "__main__",
 )

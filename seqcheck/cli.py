@@ -47,6 +47,9 @@ _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
 output. Example: seqcheck tidy --check drives"""
+_TIDY_EXITS = """\
+exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file cannot
+be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 0."""
 _START = """\
 Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
 Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
@@ -135,7 +138,7 @@ def _parser() -> argparse.ArgumentParser:
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
-    tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_EXITS, allow_abbrev=False)
+    tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
     tidy.add_argument("files", nargs="+", metavar="FILE")
     tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
     start = commands.add_parser("start", help="print a first file", description=_START, allow_abbrev=False)

@@ -19,8 +19,9 @@ def first_file(kind: str) -> str:
     """The first file of a kind. Raises KeyError, with what to say, where there is no such kind."""
     if kind not in KINDS:
         near = nearest(kind, KINDS)
-        hint = f"{near} " if near.startswith("did") else ""
-        raise KeyError(f"there is no kind '{printable(kind)}'; {hint}the kinds are {', '.join(KINDS)}")
+        known = ", ".join(KINDS)
+        hint = f"{near} (kinds: {known})" if near.startswith("did") else f"the kinds are {known}"
+        raise KeyError(f"there is no kind '{printable(kind)}'; {hint}")
     return shipped(f"start/{kind}.dseq")
 
 

@@ -48,8 +48,9 @@ Line up the columns of each file, its spacing and its blank lines. Comments, nam
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
 output. Example: seqcheck tidy --check drives"""
 _TIDY_EXITS = """\
-exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file cannot
-be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 0."""
+exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file
+cannot be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1,
+0."""
 _START = """\
 Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
 Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 
 from seqcheck.exits import FAULT, FOUND, PROVEN, WRONG, worse
 from seqcheck.language import decode
+from seqcheck.language.lines import ENDS
 from seqcheck.language.tidy import Altered, tidy
 from seqcheck.messages import Problems
 from seqcheck.source import printable
@@ -69,8 +70,8 @@ def _say(file: str, text: str, done: str) -> int:
     """Say of a file that is not tidy so, and where it first is not."""
     if done == text:
         return PROVEN
-    pairs = zip(text.splitlines(True), done.splitlines(True), strict=False)
+    pairs = zip(ENDS.split(text), ENDS.split(done), strict=False)
     line = next((number for number, (one, other) in enumerate(pairs, 1) if one != other), 0)
-    where = f"first in line {line}" if line else "at its end"
+    where = f"first in line {line}" if line else "at its end or in its line ends"
     print(f"{printable(file)}: not tidy, {where}")
     return FOUND

@@ -11,6 +11,7 @@ HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
     "shipped",
+    "exits",
     "quantities",
     "source",
     "messages",
@@ -31,6 +32,7 @@ LOW_TO_HIGH = (
     "margins",
     "reports",
     "checking",
+    "commands",
     "cli",
     "__main__",
 )

@@ -11,6 +11,7 @@ HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
     "shipped",
+    "exits",
     "quantities",
     "source",
     "messages",
@@ -32,6 +33,7 @@ LOW_TO_HIGH = (
     "rules",
     "reports",
     "checking",
+    "commands",
     "cli",
     "__main__",
 )

@@ -99,7 +99,7 @@ def _with_proof(
 
 
 def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
-    whole = proof.held is not None or not proof.greatest
+    whole = proof.held is not None or not proof.greatest or proof.overlap is None
     trace, replayed = confirmed(drive, proof.trace, whole=whole)
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
     place = place_of(drive, proof.trace, replayed) if proof.held is None else drive.modes[proof.held].place

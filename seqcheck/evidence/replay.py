@@ -61,7 +61,8 @@ def _asked_delays(drive: Drive, hazard: Hazard) -> dict[Literal, Delays]:
 def from_its_beginning(drive: Drive, trace: Trace) -> Trace:
     """The trace with its overlap claimed from its true beginning.
 
-    For a run to a mode that holds the hazard: it was looked for by the mode, so that its claim may begin too late.
+    For a run to a mode that holds the hazard, or round in a circle: it was looked for by where it leads, so that its
+    claim may begin too late.
     Raises NotPermitted as replay does.
     """
     walk = _walked(drive, trace)

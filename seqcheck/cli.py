@@ -42,6 +42,9 @@ nothing with the prover. Evidence that does not bear out what it says ends with 
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_SERVE = """\
+Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
+once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -127,6 +130,9 @@ def _parser() -> argparse.ArgumentParser:
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
+    serve = commands.add_parser("serve", help="serve an editor", description=_SERVE, allow_abbrev=False)
+    serve.add_argument("--most-zones", metavar="N", help="give a proof up after N zones (50000)")
+    serve.add_argument("--give-up-after", metavar="DURATION", help="give a text up after this time (10 s)")
     return parser
 
 
@@ -135,6 +141,10 @@ def _run(arguments: list[str]) -> int:
         asked = _parser().parse_args(arguments)
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
+        if asked.command == "serve":
+            from seqcheck.serving.command import serve
+
+            return serve(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         form = _one_of("--as", asked.form, FORMS)

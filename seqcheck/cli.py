@@ -120,6 +120,7 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -152,7 +153,7 @@ def _run(arguments: list[str]) -> int:
         only = frozenset(_check(name) for name in asked.only)
         limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
-        files = list(dict.fromkeys(_files(asked.paths or ["."])))
+        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
@@ -225,6 +226,14 @@ def _files(paths: list[str]) -> Iterator[str]:
         if not found:
             _wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
         yield from (name if path == "." else os.path.join(path, name) for name in found)
+
+
+def _changed(paths: list[str]) -> list[str]:
+    from seqcheck.users import concerned
+
+    if any(path == _STDIN or os.path.isdir(path) for path in paths):
+        _wrong("--changed needs the files that a change touches, not a folder or standard input")
+    return concerned(paths)
 
 
 # Proving
@@ -394,6 +403,8 @@ def _worse(one: int, other: int) -> int:
 def _written(answers: list[Answer], answering: Answering) -> str | None:
     """The answer as a text; None where nothing was judged and the form has no word for that."""
     judged = [one for one in answers if isinstance(one, Outcome | Library)]
+    if not answers and answering.form in ("screen", "vcd"):
+        return "nothing to prove: the change touches no *.dseq file and none that one uses\n"
     if not judged and answering.form not in _WHATEVER_COMES:
         return None
     match answering.form:

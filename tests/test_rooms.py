@@ -30,6 +30,7 @@ LOW_TO_HIGH = (
     "reports",
     "checking",
     "serving",
+    "users",
     "cli",
     "__main__",
 )

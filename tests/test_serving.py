@@ -305,7 +305,7 @@ def test_completion_offers_what_may_stand_there() -> None:
         assert set(offered(editor, VENT, f"{old}\n    set UH ", old)) == {"main", "on", "off", "keep", "free"}
         assert offered(editor, VENT, f"{old}\n    set UH ~m", old) == ["main"]
         assert offered(editor, VENT, f"{old}  # wait ", old) == []
-        start = offered(editor, VENT, f"{old}\n", f"{old}\n")
+        start = offered(editor, VENT, f"{old}\n  ", old)
         assert {"set", "wait", "any", "rules", *modes} <= set(start)
         assert not {"clock", "moves", "stage"} & set(start), "a file has these once"
 

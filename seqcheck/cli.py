@@ -280,7 +280,8 @@ def _lint(
 def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
 ) -> tuple[Answer, int]:
-    from seqcheck.checking import Fault, check
+    from seqcheck.checking import check
+    from seqcheck.confirming import Fault
     from seqcheck.language import read_any
 
     try:

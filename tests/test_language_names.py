@@ -84,7 +84,7 @@ def words_in(node: Any) -> Iterator[Word]:
             yield from words_in(one)
 
 
-@pytest.mark.parametrize("section", ("", *SECTIONS))
+@pytest.mark.parametrize("section", ["", *SECTIONS])
 def test_every_name_of_a_line_is_found_with_its_kind(section: str) -> None:
     for line in lines_in(section):
         node = parsed(line, start_of(line, section), "f", 1)
@@ -98,7 +98,7 @@ def test_every_name_of_a_line_is_found_with_its_kind(section: str) -> None:
         assert sorted(names) == sorted(set(words_in(node)) - texts), line
 
 
-@pytest.mark.parametrize("section", ("", *SECTIONS))
+@pytest.mark.parametrize("section", ["", *SECTIONS])
 def test_what_a_line_says_is_what_was_expected(section: str) -> None:
     """At every word of a right line that word was among those offered, or a name of its kind, or the line names it."""
     for line in lines_in(section):

@@ -107,7 +107,7 @@ def test_an_editor_that_shows_no_places_beside_gets_none() -> None:
 
 
 def test_columns_are_utf_16_code_units() -> None:
-    """One code unit for µ, two for what lies beyond the basic plane, none for what a byte-order mark adds to a column."""
+    """One code unit for µ, two for what lies beyond the basic plane."""
     with Editor() as editor:
         for sign, units in (("x", 1), ("µ", 1), ("漢", 1), ("\U0001f525", 2), ("e\u0301", 2)):
             text = f'{SAFE}\nrules\n  waive short for A because "{sign}" more\n'
@@ -129,7 +129,7 @@ def test_a_byte_order_mark_is_a_character_to_the_editor() -> None:
 
 def test_what_is_no_text_is_a_mistake_with_its_place() -> None:
     with Editor() as editor:
-        editor.open(URI, 'drive "a\\ud800"'.encode().decode("unicode_escape"))
+        editor.open(URI, b'drive "a\\ud800"'.decode("unicode_escape"))
         (found,) = editor.said(URI)
         assert found["code"] == "encoding"
         assert found["range"]["start"] == {"line": 0, "character": 8}
@@ -185,7 +185,7 @@ def test_a_used_file_that_changes_on_disk(tmp_path: Path) -> None:
 
 def test_a_text_that_is_no_file_uses_none() -> None:
     with Editor() as editor:
-        editor.open("untitled:Untitled-1", f'{SAFE.replace(HEAD, HEAD + chr(10) + "use " + chr(34) + "a.dseq" + chr(34))}')
+        editor.open("untitled:Untitled-1", SAFE.replace(HEAD, f'{HEAD}\nuse "a.dseq"'))
         (found,) = editor.said("untitled:Untitled-1")
         assert (found["code"], "no file yet" in found["message"]) == ("unreadable-file", True)
 
@@ -240,7 +240,7 @@ def hovered(editor: Editor, text: str, word: str, inside: str = "") -> list[str]
 
 
 def test_hover_says_what_a_name_means() -> None:
-    """Clock 48 MHz within 1 %, late by at most 3 us: the values are worked out by hand from section 2 of the meaning."""
+    """Clock 48 MHz within 1 %, late by at most 3 us: values worked out by hand from section 2 of the meaning."""
     text = VENT.replace("writes one", "let tick = 1 / 48 MHz\nlet share = 1 / 3 * 100 %\nwrites one", 1)
     with Editor() as editor:
         editor.open(URI, text)
@@ -262,7 +262,8 @@ def test_hover_says_what_a_name_means() -> None:
         ]
         assert hovered(editor, text, "tick")[0] == "tick = 20.833 ns to 20.834 ns, which is about 20833.333333 ps"
         assert hovered(editor, text, "share") == ["share = about 33.333333 %"]
-        assert "does: driven from U to V (P to N); by turns one end held, V at N" in hovered(editor, text, "open", "main")
+        does = "does: driven from U to V (P to N); by turns one end held, V at N"
+        assert does in hovered(editor, text, "open", "main")
         assert hovered(editor, text, "overheat")[:2] == [
             "trip overheat: from close or open -> idle",
             "is taken at most 33 us after it arrives",

@@ -6,13 +6,14 @@ import shutil
 import stat
 import subprocess
 import sys
-from collections.abc import Iterator
 from pathlib import Path
 
+import jsonschema
 import pytest
 from proofs import leg
 
 from seqcheck import cli
+from seqcheck.shipped import shipped
 from seqcheck.users import concerned
 
 ROOT = Path(__file__).parent.parent
@@ -69,6 +70,7 @@ def test_a_change_of_nothing_is_proven_in_every_form(form: str, capsys: pytest.C
     assert err == ""
     if form == "json":
         assert json.loads(out)["files"] == []
+        jsonschema.validate(json.loads(out), json.loads(shipped("outcome.schema.json")))
 
 
 def test_only_files_can_be_changed(capsys: pytest.CaptureFixture[str]) -> None:
@@ -81,7 +83,7 @@ def test_only_files_can_be_changed(capsys: pytest.CaptureFixture[str]) -> None:
 
 
 @pytest.fixture
-def gate(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
+def gate(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """A repository whose commits go through our hook as it is shipped, but for where the program is found.
 
     The framework would build an environment for it from a registry; here it is this checkout, so no network is needed.
@@ -109,7 +111,6 @@ def gate(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
     Path(".pre-commit-config.yaml").write_text(json.dumps(config))
     assert run("git", "init", "--quiet").returncode == 0
     assert run(sys.executable, "-m", "pre_commit", "install").returncode == 0
-    yield
 
 
 def run(*call: str) -> "subprocess.CompletedProcess[str]":

@@ -2,7 +2,7 @@
 
 import re
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache
 from typing import Any
 
 Rule = dict[str, Any]
@@ -10,7 +10,7 @@ Token = tuple[str, tuple[str, ...]]
 """A piece of a line, and its scopes without that of the grammar."""
 
 
-@lru_cache(maxsize=None)
+@cache
 def compiled(pattern: str) -> re.Pattern[str]:
     return re.compile(pattern)
 

@@ -89,7 +89,8 @@ class Proofs:
 
     def _answer(self, task: Task) -> Answer:
         """Everything about one text; a fault of the program is an answer too."""
-        from seqcheck.checking import Fault, check
+        from seqcheck.checking import check
+        from seqcheck.confirming import Fault
         from seqcheck.messages import Problems
 
         try:

@@ -239,18 +239,20 @@ def test_formatting_is_offered_only_where_there_is_a_formatter(monkeypatch: pyte
 
 @pytest.fixture
 def formatter(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
-    """A formatter that writes small letters."""
+    """A formatter that takes blanks out."""
     code = (
-        "from seqcheck.language import read_any\n"
-        "def tidied(text, file):\n"
-        "    read_any(text, file, None)\n"
-        "    return text.lower()\n"
+        "from seqcheck.messages import Problem, Problems\n"
+        "from seqcheck.source import Place\n"
+        "def tidy(text, file, fetch):\n"
+        "    if 'wide' in text:\n"
+        "        raise Problems([Problem(Place(file, 1, 1, 1, 2), 'line-too-long', 'too wide')])\n"
+        "    return text.replace('  ', ' ')\n"
     )
-    (tmp_path / "small_letters.py").write_text(code)
+    (tmp_path / "fewer_blanks.py").write_text(code)
     monkeypatch.syspath_prepend(tmp_path)
-    monkeypatch.setattr(server, "FORMATTER", "small_letters")
+    monkeypatch.setattr(server, "FORMATTER", "fewer_blanks")
     yield
-    sys.modules.pop("small_letters", None)
+    sys.modules.pop("fewer_blanks", None)
 
 
 @pytest.mark.usefixtures("formatter")
@@ -259,10 +261,15 @@ def test_formatting_puts_the_tidy_text_in_place_of_all() -> None:
     assert wire.said[0]["result"]["capabilities"]["documentFormattingProvider"] is True
     wire.open(SAFE)
     (edit,) = wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"]
-    assert edit["newText"] == SAFE.lower()
+    assert edit["newText"] == SAFE.replace("  ", " ")
     assert edit["range"]["start"] == {"line": 0, "character": 0}
     assert edit["range"]["end"] == {"line": SAFE.count("\n"), "character": 0}
-    wire.open("stage\n")
+    wire.open("\ufeff" + SAFE.replace("  ", " "))
+    assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"] == []
+    wire.open(SAFE.replace('"leg"', '"wide"'))
+    answer = wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})
+    assert answer["error"] == {"code": -32803, "message": "leg.dseq:1:1: error: too wide [line-too-long]"}
+    wire.open("stage\n")  # it has mistakes, which are shown already
     assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"] is None
 
 

@@ -1,6 +1,7 @@
 """The texts that an editor has open, and what could be read of each."""
 
 import os
+from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 from urllib.parse import quote, unquote, urlsplit
@@ -50,14 +51,7 @@ class Desk:
     def read(self, document: Document) -> Study:
         """Read a text with the files that it uses; what is open counts as it stands in the editor."""
         used: set[str] = set()
-
-        def fetch(file: str) -> str:
-            path = self.path(document, file)
-            used.add(path)
-            if document.path is None:
-                raise FileNotFoundError(2, "this text is no file yet, so that nothing lies beside it")
-            return self.text(path, file)
-
+        fetch = self.fetching(document, used)
         try:
             text = decode(document.text.encode("utf-8", "surrogatepass"), document.file)
         except Problems as problems:
@@ -67,6 +61,18 @@ class Desk:
             return Study(draft, settled(draft), (), frozenset(used))
         except Problems as problems:
             return Study(draft, None, problems.found, frozenset(used))
+
+    def fetching(self, document: Document, used: set[str]) -> Callable[[str], str]:
+        """What gives the texts of the files that one uses, and notes their paths."""
+
+        def fetch(file: str) -> str:
+            path = self.path(document, file)
+            used.add(path)
+            if document.path is None:
+                raise FileNotFoundError(2, "this text is no file yet, so that nothing lies beside it")
+            return self.text(path, file)
+
+        return fetch
 
     def text(self, path: str, file: str) -> str:
         """The text at a path, which messages call `file`; raises OSError, or Problems where it is no text."""

@@ -18,12 +18,14 @@ from seqcheck.serving.wire import Broken, Reader, Writer
 from seqcheck.verdict import Answer, Failed, Unread
 
 PARSE_ERROR, INVALID_REQUEST, METHOD_NOT_FOUND, INVALID_PARAMS, INTERNAL_ERROR = -32700, -32600, -32601, -32602, -32603
-NOT_INITIALIZED = -32002
+NOT_INITIALIZED, REQUEST_FAILED = -32002, -32803
 _FULL = 1  # TextDocumentSyncKind
 _WARN = 2  # MessageType
 FORMATTER = "seqcheck.language.tidy"
-"""Where `tidied(text, file)` is, which lines a text up and raises Problems where it cannot be read. Formatting is
-offered only where that exists."""
+"""Where `tidy(text, file, fetch)` is, which lines a text up and raises Problems where it cannot. Formatting is offered
+only where that exists."""
+
+Formatter = Callable[[str, str, Callable[[str], str]], str]
 
 _ITEM = {  # CompletionItemKind
     Kind.QUANTITY: 21,
@@ -307,21 +309,25 @@ class Server:
         document, formatter = self._known(params), _formatter()
         if formatter is None:
             raise Refusal(METHOD_NOT_FOUND, "formatting is not offered")
-        try:
-            tidy = formatter(document.text, document.file)
-        except Problems:
+        if document.study is None or document.study.problems:
             return None  # its mistakes are on the screen already
+        mark = "\ufeff" if document.text.startswith("\ufeff") else ""
+        fetch = self._desk.fetching(document, set())
+        try:
+            tidy = mark + formatter(document.text.removeprefix(mark), document.file, fetch)
+        except Problems as problems:
+            raise Refusal(REQUEST_FAILED, problems.found[0].line()) from None
         if tidy == document.text:
             return []
         return [{"range": document.lines.whole(), "newText": tidy}]
 
 
-def _formatter() -> Callable[[str, str], str] | None:
+def _formatter() -> Formatter | None:
     """The formatter, where this version has one."""
     if importlib.util.find_spec(FORMATTER) is None:
         return None
-    tidied: Callable[[str, str], str] = importlib.import_module(FORMATTER).tidied
-    return tidied
+    tidy: Formatter = importlib.import_module(FORMATTER).tidy
+    return tidy
 
 
 def _fault(fault: Exception) -> str:

@@ -11,9 +11,11 @@ from typing import Any
 
 import pytest
 from editor import PATIENCE, ROOT, at, framed
+from reading import no_file
 from test_serving import SAFE, UNSAFE, URI, VENT
 
 from seqcheck import checking, confirming
+from seqcheck.language.tidy import tidy
 from seqcheck.messages import Problem, Problems
 from seqcheck.serving import documents, meanings, server
 from seqcheck.serving.positions import Lines
@@ -237,22 +239,26 @@ def test_formatting_is_offered_only_where_there_is_a_formatter(monkeypatch: pyte
     assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["error"]["code"] == -32601
 
 
+FLUSH = "\n".join(line.strip() for line in SAFE.split("\n"))
+
+
 @pytest.fixture
 def formatter(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
-    """A formatter that takes blanks out."""
+    """A formatter that takes margins out."""
     code = (
-        "from seqcheck.messages import Problem, Problems\n"
+        "from seqcheck.language.tidy import tidy
+from seqcheck.messages import Problem, Problems\n"
         "from seqcheck.source import Place\n"
         "def tidy(text, file, fetch):\n"
         "    if 'wide' in text:\n"
         "        raise Problems([Problem(Place(file, 1, 1, 1, 2), 'line-too-long', 'too wide')])\n"
-        "    return text.replace('  ', ' ')\n"
+        "    return '\\n'.join(line.strip() for line in text.split('\\n'))\n"
     )
-    (tmp_path / "fewer_blanks.py").write_text(code)
+    (tmp_path / "no_margins.py").write_text(code)
     monkeypatch.syspath_prepend(tmp_path)
-    monkeypatch.setattr(server, "FORMATTER", "fewer_blanks")
+    monkeypatch.setattr(server, "FORMATTER", "no_margins")
     yield
-    sys.modules.pop("fewer_blanks", None)
+    sys.modules.pop("no_margins", None)
 
 
 @pytest.mark.usefixtures("formatter")
@@ -261,16 +267,25 @@ def test_formatting_puts_the_tidy_text_in_place_of_all() -> None:
     assert wire.said[0]["result"]["capabilities"]["documentFormattingProvider"] is True
     wire.open(SAFE)
     (edit,) = wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"]
-    assert edit["newText"] == SAFE.replace("  ", " ")
+    assert edit["newText"] == FLUSH
     assert edit["range"]["start"] == {"line": 0, "character": 0}
     assert edit["range"]["end"] == {"line": SAFE.count("\n"), "character": 0}
-    wire.open("\ufeff" + SAFE.replace("  ", " "))
+    wire.open("\ufeff" + FLUSH)
     assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"] == []
     wire.open(SAFE.replace('"leg"', '"wide"'))
     answer = wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})
     assert answer["error"] == {"code": -32803, "message": "leg.dseq:1:1: error: too wide [line-too-long]"}
     wire.open("stage\n")  # it has mistakes, which are shown already
     assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"] is None
+
+
+def test_the_formatter_of_this_version_is_offered() -> None:
+    wire = Wire()
+    wire.open(FLUSH)
+    (edit,) = wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"]
+    assert edit["newText"] == tidy(FLUSH, "leg.dseq", no_file) != FLUSH
+    wire.open(edit["newText"])
+    assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"] == []
 
 
 # Positions and framing alone

@@ -6,6 +6,7 @@ import errno
 import gc
 import os
 import re
+import stat
 import sys
 import time
 from collections.abc import Callable, Iterator, Sequence
@@ -16,6 +17,8 @@ from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
 from seqcheck.drive import Drive, Library
+from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
+from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
@@ -26,8 +29,6 @@ if TYPE_CHECKING:
     from seqcheck.evidence.audit import Audited
     from seqcheck.reports.repository import Repository
 
-PROVEN, FOUND, WRONG, UNDECIDED, FAULT = 0, 1, 2, 3, 4
-_WORST_FIRST = (FAULT, WRONG, FOUND, UNDECIDED, PROVEN)
 _STDIN = "-"
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
 _WHATEVER_COMES = ("annotations", "json", "sarif")
@@ -48,6 +49,17 @@ way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not
 _SERVE = """\
 Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
 once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
+_TIDY = """\
+Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
+mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
+output. Example: seqcheck tidy --check drives"""
+_TIDY_EXITS = """\
+exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file
+cannot be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1,
+0."""
+_START = """\
+Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
+Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -145,6 +157,11 @@ def _parser() -> argparse.ArgumentParser:
     serve = commands.add_parser("serve", help="serve an editor", description=_SERVE, allow_abbrev=False)
     serve.add_argument("--most-zones", metavar="N", help="give a proof up after N zones (50000)")
     serve.add_argument("--give-up-after", metavar="DURATION", help="give a text up after this time (10 s)")
+    tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
+    tidy.add_argument("files", nargs="+", metavar="FILE")
+    tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
+    start = commands.add_parser("start", help="print a first file", description=_START, allow_abbrev=False)
+    start.add_argument("kind", nargs="?", metavar="KIND")
     return parser
 
 
@@ -159,6 +176,10 @@ def _run(arguments: list[str]) -> int:
             return serve(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        if asked.command == "tidy":
+            return _tidy(asked.files, asked.check)
+        if asked.command == "start":
+            return _start(asked.kind)
         limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
@@ -242,7 +263,7 @@ def _files(paths: list[str]) -> Iterator[str]:
 
 
 def _changed(paths: list[str]) -> list[str]:
-    from seqcheck.users import concerned
+    from seqcheck.commands.users import concerned
 
     if any(path == _STDIN or os.path.isdir(path) for path in paths):
         _wrong("--changed needs the files that a change touches, not a folder or standard input")
@@ -389,15 +410,42 @@ def _margins(file: str, limits: Limits, colour: str, out: str | None) -> int:
     return _worse(code, FOUND if found.unsafe else UNDECIDED if found.undecided else PROVEN)
 
 
+def _tidy(paths: list[str], only_say: bool) -> int:
+    """Put files in order; the exit code."""
+    from seqcheck.commands.tidy import World, run
+
+    def write(text: str, file: str) -> int:
+        if file != _STDIN:
+            return _deliver(text, file)
+        if hasattr(sys.stdout, "reconfigure"):
+            sys.stdout.reconfigure(encoding="utf-8", newline="")  # what came in goes out, whatever the terminal speaks
+        return _deliver(text, None)
+
+    return run(list(dict.fromkeys(_files(paths))), only_say, World(_data, _text, write, _mistaken, _complain))
+
+
+def _start(kind: str | None) -> int:
+    """Print the first file of a kind, or the kinds; the exit code."""
+    from seqcheck.commands.start import first_file, listing
+
+    try:
+        return _deliver(listing() if kind is None else first_file(kind), None)
+    except KeyError as unknown:
+        _wrong(unknown.args[0])
+
+
 def _text(file: str) -> str:
     from seqcheck.language import decode
 
+    return decode(_data(file), file)
+
+
+def _data(file: str) -> bytes:
     try:
-        data = sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
+        return sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
     except (OSError, ValueError) as refusal:
         why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
         raise Problems([_unreadable(file, why)]) from refusal
-    return decode(data, file)
 
 
 def _unreadable(file: str, why: str) -> Problem:
@@ -426,10 +474,6 @@ def _exit_of(outcome: Outcome) -> int:
     if any(reason(outcome.drive, one) is None for one in found):
         return FOUND
     return UNDECIDED if any(isinstance(one, Undecided) for one in outcome.verdicts) else PROVEN
-
-
-def _worse(one: int, other: int) -> int:
-    return min(one, other, key=_WORST_FIRST.index)
 
 
 # Answering
@@ -515,7 +559,10 @@ def _deliver(text: str, out: str | None) -> int:
 
 
 def _write(out: Path, text: str) -> None:
-    """Write a file whole or not at all, whatever stops it; what is no file, as a pipe or device, is written to."""
+    """Write a file whole or not at all, whatever stops it; what is no file, as a pipe or device, is written to.
+
+    Line ends are written as they are; a file that was there keeps its rights, and is let alone if they forbid writing.
+    """
     if not out.name or out.is_dir():
         raise IsADirectoryError(errno.EISDIR, "it is a folder")
     if out.exists() and not out.is_file():
@@ -524,7 +571,14 @@ def _write(out: Path, text: str) -> None:
     target = Path(os.path.realpath(out))
     draft = target.parent / f".{target.name}.{os.getpid()}.part"
     try:
-        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
+        rights = stat.S_IMODE(target.stat().st_mode) if target.exists() else None
+        if rights is not None:
+            if not os.access(target, os.W_OK):
+                raise PermissionError(errno.EACCES, "it is read-only")
+            draft.touch(0o600)
+        draft.write_text(text, encoding="utf-8", errors="backslashreplace", newline="")
+        if rights is not None:
+            draft.chmod(rights)
         draft.replace(target)
     finally:
         with contextlib.suppress(OSError, ValueError):

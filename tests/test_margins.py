@@ -131,7 +131,8 @@ def test_a_pulse_of_no_length_ends_nothing() -> None:
     """A is told on for 1 ps, on from 9 and off within 8: it is possible at one moment only, which is no time."""
     text = leg(
         "i off off\nb off on",
-        "  start i\n  i -> b when go\n    set A on\n    wait 1 ps\n    set A off\n    wait 1 ps\n  b -> i when back earliest 1 ns",
+        "  start i\n  i -> b when go\n    set A on\n    wait 1 ps\n    set A off\n    wait 1 ps\n"
+        "  b -> i when back earliest 1 ns",
         parts="p on 9 ps off 8 ps",
     )
     assert margins_of(text)["A"].slack is None

@@ -11,6 +11,7 @@ HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
     "shipped",
+    "exits",
     "quantities",
     "source",
     "messages",
@@ -32,7 +33,7 @@ LOW_TO_HIGH = (
     "reports",
     "checking",
     "serving",
-    "users",
+    "commands",
     "cli",
     "__main__",
 )

@@ -246,8 +246,7 @@ FLUSH = "\n".join(line.strip() for line in SAFE.split("\n"))
 def formatter(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
     """A formatter that takes margins out."""
     code = (
-        "from seqcheck.language.tidy import tidy
-from seqcheck.messages import Problem, Problems\n"
+        "from seqcheck.messages import Problem, Problems\n"
         "from seqcheck.source import Place\n"
         "def tidy(text, file, fetch):\n"
         "    if 'wide' in text:\n"

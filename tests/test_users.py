@@ -13,8 +13,8 @@ import pytest
 from proofs import leg
 
 from seqcheck import cli
+from seqcheck.commands.users import concerned
 from seqcheck.shipped import shipped
-from seqcheck.users import concerned
 
 ROOT = Path(__file__).parent.parent
 HEAD = 'clock 1 GHz, late by at most 0 ps\nwrites together\nuse "../parts/house.dseq"'
@@ -92,7 +92,8 @@ def gate(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     pytest.importorskip("pre_commit", reason="the framework that runs hooks is not installed")
     if shutil.which("git") is None:
         pytest.skip("git is not installed")
-    (hook,) = yaml.safe_load((ROOT / ".pre-commit-hooks.yaml").read_text("utf-8"))
+    hooks = yaml.safe_load((ROOT / ".pre-commit-hooks.yaml").read_text("utf-8"))
+    hook = next(one for one in hooks if one["id"] == "seqcheck")
     tools = tmp_path / ".tools"
     tools.mkdir()
     program = tools / "seqcheck"

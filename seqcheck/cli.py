@@ -40,6 +40,9 @@ folder you are in, '-' standard input. A file that only serves 'use' is read and
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
+_MARGINS = """\
+The dead-time budget of FILE: for every switch and those that may not conduct with it, what the parts ask for, what the
+file leaves at worst, and the move, trip or row that sets it; least first."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
@@ -134,6 +137,14 @@ def _parser() -> argparse.ArgumentParser:
     rows.add_argument("file", metavar="FILE")
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    margins = commands.add_parser(
+        "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
+    )
+    margins.add_argument("file", metavar="FILE")
+    margins.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
+    margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    margins.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
@@ -158,10 +169,12 @@ def _run(arguments: list[str]) -> int:
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
             return _start(asked.kind)
-        form = _one_of("--as", asked.form, FORMS)
-        colour = _one_of("--color", asked.color, ("auto", "always", "never"))
-        only = frozenset(_check(name) for name in asked.only)
         limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+        colour = _one_of("--color", asked.color, ("auto", "always", "never"))
+        if asked.command == "margins":
+            return _margins(asked.file, limits, colour, asked.out)
+        form = _one_of("--as", asked.form, FORMS)
+        only = frozenset(_check(name) for name in asked.only)
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
         files = list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
@@ -188,13 +201,9 @@ def _one_of(option: str, value: str, known: tuple[str, ...]) -> str:
 
 
 def _check(name: str) -> Check:
-    from seqcheck.checking import PROVEN_CHECKS
-
-    known = {check.value: check for check in PROVEN_CHECKS}
+    known = {check.value: check for check in Check}
     if name in known:
         return known[name]
-    if name in {check.value for check in Check}:
-        _wrong(f"--only {name}: this check cannot be proven yet; known are {', '.join(known)}")
     _wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
 
 
@@ -309,7 +318,6 @@ def _mistaken(problems: Problems) -> int:
 
 def _audit(file: str, evidence: str) -> int:
     """Check the evidence of a file; the exit code of the verdicts that it bears out."""
-    from seqcheck.checking import refuse
     from seqcheck.evidence.audit import NotProven, audit
     from seqcheck.evidence.certificate import NoEvidence
     from seqcheck.evidence.certificate import read as read_evidence
@@ -317,7 +325,6 @@ def _audit(file: str, evidence: str) -> int:
 
     try:
         drive = read(_text(file), file, _text)
-        refuse(drive)
         found = audit(drive, read_evidence(_text(evidence)))
     except Problems as problems:
         return _mistaken(problems)
@@ -327,7 +334,7 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         _complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}")
+    print(f"{printable(file)}: {_borne_out(found)}{_not_about(drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
@@ -339,6 +346,14 @@ def _borne_out(found: "Audited") -> str:
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
+
+
+def _not_about(drive: Drive) -> str:
+    """What evidence says nothing of: rules of the file, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules]
+    if not lines:
+        return ""
+    return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
 
 
 def _rows(file: str, colour: str, out: str | None) -> int:
@@ -355,6 +370,27 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     painted = _wants_colour(colour, sys.stdout) and not out
     code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
     return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
+
+
+def _margins(file: str, limits: Limits, colour: str, out: str | None) -> int:
+    """Tell the margins of a file; the exit code."""
+    from seqcheck.confirming import Fault
+    from seqcheck.language import read
+    from seqcheck.margins import budget
+    from seqcheck.reports import budget as wording
+    from seqcheck.reports import screen
+
+    try:
+        found = budget(read(_text(file), file, _text), file, _observer(limits))
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    report = wording.report(found)
+    painted = _wants_colour(colour, sys.stdout) and not out
+    code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
+    return _worse(code, FOUND if found.unsafe else UNDECIDED if found.undecided else PROVEN)
 
 
 def _tidy(paths: list[str], only_say: bool) -> int:

@@ -18,7 +18,7 @@ from seqcheck.verdict import Budget, Check, Margin, Undecided, Unsafe
 
 Observer = Callable[[int], None]
 
-MOST_ZONES = 50_000
+MOST_ZONES = 6_000
 """Zones for one margin; then it is said to be at least what was known."""
 
 
@@ -32,18 +32,33 @@ def budget(drive: Drive, file: str, observer: Observer) -> Budget:
     margins: list[Margin] = []
     unsafe: list[tuple[Hazard, int | None, bool]] = []
     undecided: list[Undecided] = []
+    held: list[Hazard] = []
+    punctual: list[Hazard] = []
     for hazard in shorting_sets(drive.stage):
         try:
             proof = prover.prove(hazard, True, observer)
         except LimitReached as limit:
             undecided.append(Undecided(hazard, str(limit), 0))
             continue
-        if isinstance(proof, Proven):
-            margins += (margin(prover, hazard, at, observer) for at in range(len(hazard.literals)))
-        else:
+        if not isinstance(proof, Proven):
             unsafe.append((hazard, proof.overlap, proof.greatest))
+            continue
+        margins += (margin(prover, hazard, at, observer) for at in range(len(hazard.literals)))
+        punctual += [] if proof.however_late else [hazard]
+        held += [hazard] if _held(prover, hazard, observer) else []
     margins.sort(key=lambda one: (one.slack is None, one.slack or 0))
-    return Budget(file, drive, tuple(margins), tuple(unsafe), tuple(undecided))
+    return Budget(file, drive, tuple(margins), tuple(unsafe), tuple(undecided), tuple(held), tuple(punctual))
+
+
+def _held(prover: Prover, hazard: Hazard, observer: Observer) -> bool:
+    """Whether a safe short would happen without the interlocks; where a limit leaves that open, it is not said."""
+    names = {literal.switch for literal in hazard.literals}
+    if not any({one.first, one.second} & names for one in prover.drive.interlocks):
+        return False
+    try:
+        return not prover.holds(hazard, observer, ())
+    except LimitReached:
+        return False
 
 
 def margin(prover: Prover, hazard: Hazard, at: int, observer: Observer, below: int | None = None) -> Margin:

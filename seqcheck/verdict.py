@@ -217,13 +217,18 @@ class Margin:
 @dataclass(frozen=True, slots=True)
 class Budget:
     """The margins of one file, least first; what is unsafe, with its greatest overlap (None: without end) and whether
-    that is exact; and what a limit left undecided."""
+    that is exact; and what a limit left undecided.
+
+    `held` are safe hazards that only interlocks prevent, `punctual` those that rest on firmware keeping upper bounds.
+    """
 
     file: str
     drive: Drive
     margins: tuple[Margin, ...]
     unsafe: tuple[tuple[Hazard, int | None, bool], ...]
     undecided: tuple[Undecided, ...]
+    held: tuple[Hazard, ...] = ()
+    punctual: tuple[Hazard, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

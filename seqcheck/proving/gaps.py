@@ -8,6 +8,7 @@ raised. What is found with carriers' phases forgotten is a lower bound only, but
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from seqcheck.proving.conduction import POSSIBLE
 from seqcheck.proving.keys import GAP, LATELY, Key
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.search import LimitReached, Node, nodes, ticks
@@ -95,12 +96,19 @@ def gap_in(projection: Projection, node: Node) -> int:
     return -node.zone[place]
 
 
-def ended_at(path: list[Node]) -> int:
+def ended_at(projection: Projection, path: list[Node], watched: int) -> int:
     """The place in a path at which the gap that its last node ends has begun."""
     last = len(path) - 1
-    while _key(path[last - 1]).ended == LATELY:
+    while not _begins_gap(projection, path[last], watched):
         last -= 1
     return last
+
+
+def _begins_gap(projection: Projection, node: Node, watched: int) -> bool:
+    key = _key(node)
+    names = [projection.clock_name(key, place) for place in range(1, node.location.size)]
+    started = GAP in names and node.hop.sources[names.index(GAP)] == 0
+    return started and not POSSIBLE[key.literals[watched]]
 
 
 def _key(node: Node) -> Key:

@@ -10,7 +10,8 @@ from itertools import product
 from seqcheck.circuit import contradicted
 from seqcheck.drive import Update
 from seqcheck.firmware import Edge, Firmware, State
-from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts
+from seqcheck.hazards import Clearing, Following
+from seqcheck.proving.conduction import HIT, POSSIBLE, ages, timeouts
 from seqcheck.proving.cutting import Cutting
 from seqcheck.proving.keys import (
     CAPPED,
@@ -30,6 +31,7 @@ from seqcheck.proving.keys import (
     PIN,
     RISE,
     SILENT,
+    SINCE,
     SPAN,
     WAITING,
     Clock,
@@ -39,6 +41,7 @@ from seqcheck.proving.keys import (
     Y,
     Z,
 )
+from seqcheck.proving.lengths import followed, watched
 from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.proving.references import FORGOTTEN, Reference
 from seqcheck.proving.views import View
@@ -90,7 +93,7 @@ class Projection:
         hops = []
         nowhere = (FORGOTTEN,) * len(self._wiring.numbers)
         for carriers in self._phases(state, nowhere, everything=not self.manner.forget):
-            key = self._wiring.initial(state, carriers, (IN, OUT))
+            key = self._wiring.initial(state, carriers)
             hops.append(self._hop(None, key, frozenset(), (), (), 0, SILENT))
         return tuple(hops)
 
@@ -122,13 +125,17 @@ class Projection:
         cost: int,
         event: Happening,
         written: int = 0,
+        ended: int | None = None,
     ) -> Hop:
         if self.manner.measure and old is not None and event is not OVER:
             key = key._replace(paused=self._pauses(old, key))
-        if self.manner.gap is not None and old is not None and event is not CAPPED:
-            key = key._replace(ended=self._ended(old, key, self.manner.gap))
-            if key.ended == LATELY and POSSIBLE[old.literals[self.manner.gap]]:
-                resets |= {GAP}
+        watched = self.manner.gap
+        if watched is not None and old is not None and ended is None:
+            key = key._replace(ended=old.ended)
+            if POSSIBLE[key.literals[watched]] and not POSSIBLE[old.literals[watched]]:
+                resets |= {SINCE}
+        elif ended is not None:
+            key = key._replace(ended=ended)
         target = self._location(key)
         names = {} if old is None else {clock.name: place for place, clock in enumerate(self._clocks[old], 1)}
         renaming = _holds(old, key, written)
@@ -141,6 +148,9 @@ class Projection:
                 floor = dict(reference.starts())[key.carriers[name - CARRIER]]
                 if floor:
                     after.append(Bound(place, floor))
+            elif name == SINCE and old is None:  # it has been possible for ever
+                sources.append(FRESH)
+                after.append(Bound(place, 1))
             else:
                 sources.append(0 if name in resets else names.get(name, 0))
         return Hop(
@@ -168,6 +178,7 @@ class Projection:
         location = Location(
             key, len(clocks) + 1, bounds, lower, upper, hot, hot and self._wiring.held(key), measure, self._expand
         )
+        location.struck = HIT in key.literals
         self._locations[key] = location
         return location
 
@@ -176,16 +187,11 @@ class Projection:
         possible = all(POSSIBLE[literal] for literal in key.literals)
         return possible and not self._hot(key) and (old.paused or self._hot(old))
 
-    def _ended(self, old: Key, key: Key, watched: int) -> int:
-        if POSSIBLE[key.literals[watched]]:
-            return NOT_ENDED
-        return LATELY if POSSIBLE[old.literals[watched]] else old.ended
-
     def _hot(self, key: Key) -> bool:
         """Whether all literals are possible and asked for; for a gap, all others after the one that is watched."""
         possible = [POSSIBLE[literal] for literal in key.literals]
         if self.manner.gap is not None:
-            possible[self.manner.gap] = key.ended != NOT_ENDED
+            possible[self.manner.gap] = key.ended != NOT_ENDED and not possible[self.manner.gap]
         if not all(possible):
             return False
         return not contradicted(self.view.hazard, self.firmware.facts(key.state))
@@ -221,6 +227,9 @@ class Projection:
             yield Clock(PAUSE, 0, 0, 0)
         if key.ended == LATELY:
             yield Clock(GAP, self.manner.cap, self.manner.cap, self.manner.cap)
+        if self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
+            forgets = key.ended == LATELY  # once it has been possible for some time, what ended before is over
+            yield Clock(SINCE, 1, int(forgets), 1 if forgets else INFINITE)
 
     def _firmware_clocks(self, key: Key, hot: bool) -> Iterator[Clock]:
         edges, deadline = self._timing(key, hot)
@@ -249,10 +258,11 @@ class Projection:
         """The firmware's edges and deadline, long stays cut short where that changes nothing.
 
         Where all literals are possible a stay keeps its times: an overlap that comes from before the stay has settled
-        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured.
+        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured,
+        and where a trip may arrive early, after which the stay goes on.
         """
         edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
-        measured = hot or key.ended == LATELY
+        measured = hot or key.ended == LATELY or any(not edge.resets_x for edge in edges)
         if self._cutting is None or key.state.hand >= 0 or measured:
             return edges, deadline
         return self._cutting.cut(edges, deadline)
@@ -297,6 +307,8 @@ class Projection:
     def _expand(self, location: Location) -> tuple[Hop, ...]:
         key = location.key
         assert isinstance(key, Key)
+        if location.struck:
+            return ()
         return (
             *self._pause_over(key),
             *self._gap_capped(key),
@@ -314,16 +326,25 @@ class Projection:
 
     def _gap_capped(self, key: Key) -> Iterator[Hop]:
         if key.ended == LATELY:
-            capped = key._replace(ended=LONG_AGO)
-            yield self._hop(key, capped, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED)
+            yield self._hop(key, key, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED, ended=LONG_AGO)
+        if key.ended == LATELY and self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
+            yield self._hop(key, key, frozenset(), ((SINCE, 1),), (), 0, CAPPED, ended=NOT_ENDED)
 
     def _conducting(self, key: Key) -> Iterator[Hop]:
         for place, state in enumerate(key.literals):
             times = self.view.delays[place]
             for by_rise, after in timeouts(state):
                 name, least = (RISE + place, times.rise) if by_rise else (FALL + place, times.fall)
-                literals = (*key.literals[:place], after, *key.literals[place + 1 :])
-                yield self._hop(key, key._replace(literals=literals), frozenset(), ((name, least),), (), 0, SILENT)
+                new = key._replace(literals=(*key.literals[:place], after, *key.literals[place + 1 :]))
+                if place == self.manner.gap and POSSIBLE[state] and not POSSIBLE[after]:
+                    yield from self._end_of_watched(key, new, (name, least))
+                else:
+                    yield self._hop(key, new, frozenset(), ((name, least),), (), 0, SILENT)
+
+    def _end_of_watched(self, key: Key, new: Key, least: tuple[int, int]) -> Iterator[Hop]:
+        """Where the watched literal was possible for some time a gap begins; else what there was before goes on."""
+        yield self._hop(key, new, frozenset({GAP}), (least, (SINCE, 1)), (), 0, SILENT, ended=LATELY)
+        yield self._hop(key, new, frozenset(), (least,), ((SINCE, 0),), 0, SILENT)
 
     def _firmware_hops(self, key: Key) -> Iterator[Hop]:
         for edge in self._timing(key, self._hot(key))[0]:
@@ -332,9 +353,10 @@ class Projection:
             most = ((X, edge.hi),) if edge.hi is not None else ()
             if edge.y_hi is not None:
                 most = (*most, (Y, edge.y_hi))
-            starts_anew = {X, Y} if edge.resets_y else {X}
+            starts_anew = {name for name, anew in ((X, edge.resets_x), (Y, edge.resets_y)) if anew}
             for carriers in self._phases(target, key.carriers):
                 new, resets = self._wiring.settle(key, target, carriers, key.pins, key.locks)
+                new, resets = self._told(key, new, edge, resets)
                 yield self._hop(
                     key,
                     new,
@@ -345,6 +367,18 @@ class Projection:
                     Happening(Act.BEGINS, "", edge),
                     written,
                 )
+
+    def _told(self, old: Key, key: Key, edge: Edge, resets: frozenset[int]) -> tuple[Key, frozenset[int]]:
+        """The automaton of a question about modes or a trip, which is the last, told of what the firmware does."""
+        drive, asks = self.view.drive, self.view.hazard.asks
+        if isinstance(asks, Following):
+            turn = followed(drive, asks, old.literals[-1], old.state, edge.step.deeds)
+        elif isinstance(asks, Clearing):
+            turn = watched(drive, asks, old.literals[-1], old.state, edge.step.deeds)
+        else:
+            return key, resets
+        anew = frozenset({RISE + len(key.literals) - 1} if turn.resets_rise else ())
+        return key._replace(literals=(*key.literals[:-1], turn.state)), resets | anew
 
     def _carrier_hops(self, key: Key) -> Iterator[Hop]:
         for place, reference in enumerate(key.carriers):

@@ -15,6 +15,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
+from seqcheck.commands import draw
 from seqcheck.drive import Drive, Library
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
@@ -114,20 +115,28 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--run", metavar="N", help="with --as vcd: the N-th counterexample of the screen, not the worst")
     lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="besides hazards say only this")
-    lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
-    lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+    _limited(lint)
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    drawing = commands.add_parser("draw", help="draw", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False)
+    draw.arguments(drawing)
+    drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
+    _limited(drawing)
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
     return parser
+
+
+def _limited(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    parser.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
 
 
 def _run(arguments: list[str]) -> int:
@@ -137,6 +146,8 @@ def _run(arguments: list[str]) -> int:
             return _audit(asked.file, asked.evidence)
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        if asked.command == "draw":
+            return _draw(asked)
         form = _one_of("--as", asked.form, FORMS)
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         only = frozenset(_check(name) for name in asked.only)
@@ -333,6 +344,31 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     painted = _wants_colour(colour, sys.stdout) and not out
     code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
     return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
+
+
+def _draw(asked: argparse.Namespace) -> int:
+    """Draw a picture of a file; the exit code of its verdict."""
+    form = _one_of("--as", asked.form, draw.FORMS)
+    if asked.trace in draw.RUNLESS:
+        _wrong(f"--trace: a finding of '{asked.trace}' is no run; those of {_or(draw.TRACED)} are")
+    if asked.trace is not None:
+        _one_of("--trace", asked.trace, draw.TRACED)
+    if asked.trace is not None and (asked.modes or form == "mermaid"):
+        _wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
+    limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+    wanted = draw.Wanted(asked.trace, _count("--run", asked.run), form)
+    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    if isinstance(outcome, Library):
+        _wrong(f"{printable(asked.file)} only serves 'use'; it has no modes")
+    if not isinstance(outcome, Outcome):
+        return code
+    try:
+        text = draw.drawn(outcome, wanted)
+    except Problems as problems:
+        return _mistaken(problems)
+    except ValueError as why:
+        _wrong(str(why))
+    return _worse(code, _deliver(text, asked.out))
 
 
 def _text(file: str) -> str:

@@ -29,6 +29,7 @@ LOW_TO_HIGH = (
     "sizing",
     "reports",
     "checking",
+    "commands",
     "cli",
     "__main__",
 )

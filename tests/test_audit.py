@@ -5,6 +5,7 @@ import json
 import re
 from collections.abc import Callable, Iterator
 from copy import deepcopy
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -19,9 +20,10 @@ from seqcheck.circuit import shorting_sets
 from seqcheck.cli import main
 from seqcheck.drive import Drive
 from seqcheck.evidence.audit import Audited, NotProven, audit
-from seqcheck.evidence.certificate import NoEvidence, read, written
+from seqcheck.evidence.certificate import Evidence, NoEvidence, read, written
+from seqcheck.evidence.cover import shorts as walked
 from seqcheck.evidence.cover.shorts import first_uncovered, shorts
-from seqcheck.hazards import delays
+from seqcheck.hazards import Hazard, Literal, delays
 from seqcheck.proving.certify import cover
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.prove import Prover
@@ -290,6 +292,37 @@ def test_every_short_must_be_spoken_of() -> None:
     data["claims"] = []
     with pytest.raises(NotProven, match="Nothing is said of the short through A and B"):
         audited(drive, json.dumps(data))
+
+
+def about(drive: Drive, *literals: Literal) -> Evidence:
+    """The evidence of a drive with one hazard, said of other literals."""
+    evidence = read(evidence_of(drive))
+    (claim,) = evidence.claims
+    return replace(evidence, claims=(replace(claim, hazard=Hazard(literals, ())),))
+
+
+@pytest.mark.parametrize(
+    "literals",
+    [(), (Literal("Q"), Literal("A")), (Literal("A"), Literal("A")), (Literal("A"), Literal("B", False))],
+)
+def test_a_hazard_that_no_stage_has_is_no_evidence(literals: tuple[Literal, ...]) -> None:
+    """Without a switch, with one that is none, with one twice, or neither of conduction nor of open switches alone."""
+    drive = drive_of(CAREFUL)
+    with pytest.raises(NoEvidence):
+        audit(drive, about(drive, *literals))
+
+
+def test_what_shorts_nothing_must_not_be_claimed() -> None:
+    drive = drive_of(CAREFUL)
+    with pytest.raises(NotProven, match="short nothing"):
+        audit(drive, about(drive, Literal("A")))
+
+
+def test_a_stage_with_too_many_ways_is_not_proven(monkeypatch: pytest.MonkeyPatch) -> None:
+    drive = drive_of(CAREFUL)
+    monkeypatch.setattr(walked, "MOST_STEPS", 1)
+    with pytest.raises(NotProven, match="too many ways"):
+        audit(drive, read(evidence_of(drive)))
 
 
 def test_a_run_that_is_none_is_refused() -> None:

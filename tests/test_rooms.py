@@ -11,6 +11,7 @@ HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
     "shipped",
+    "exits",
     "quantities",
     "source",
     "messages",
@@ -26,7 +27,9 @@ LOW_TO_HIGH = (
     "zones",
     "proving",
     "evidence",
+    "confirming",
     "sizing",
+    "margins",
     "reports",
     "checking",
     "commands",
@@ -37,7 +40,10 @@ LOW_TO_HIGH = (
 APART = {
     "evidence": {"writing", "firmware", "modegraph", "zones", "proving", "circuit"},
     "proving": {"language", "evidence"},
-    "reports": {"language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence", "sizing"},
+    "reports": {
+        *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
+        *("confirming", "sizing", "margins"),
+    },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the
 prover, the prover knows no file, and a report reads verdicts and never reasons."""

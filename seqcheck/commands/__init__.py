@@ -1,1 +1,1 @@
-"""What a command does between the pipeline and the command line: it brings together what no report may work out."""
+"""What single commands do besides proving; `cli` reads their arguments and hands them the world."""

@@ -17,7 +17,8 @@ from seqcheck.reports.lanes import Lane
 from seqcheck.reports.picture import shows
 from seqcheck.reports.rows import scaled
 from seqcheck.reports.run import Run
-from seqcheck.verdict import Act, Span, Trace, Unsafe
+from seqcheck.reports.wording import shown_for
+from seqcheck.verdict import Act, Trace, Unsafe
 
 LEAD, TAIL = 58.0, 64.0  # px before the first instant of a band, and after its last
 _WIDTH = 1020.0  # of a band with its names, where the times allow
@@ -165,39 +166,34 @@ def _untold(levels: list[tuple[int | None, bool | None]], start: int, end: int) 
 
 
 def hazard_end(verdict: Unsafe) -> int | None:
-    """When the hazard ends in the run; None where it never does, also if the run must go round again for that."""
-    trace = verdict.trace
-    return None if verdict.overlap is None and trace.overlap_to == trace.end else trace.overlap_to
+    """When what is shown ends in the run; None where it never does, also if the run must go round again for that."""
+    span = shown_for(verdict)
+    return None if verdict.overlap is None and span.end == verdict.trace.end else span.end
 
 
 def dimensions(run: Run, verdict: Unsafe) -> list[Dimension]:
     """What is measured: how long after its command each switch begins and ends to be possible, the time between the
-    commands, and how long the hazard lasts."""
-    trace = verdict.trace
-    spans = [_around(lane, trace.overlap_from) for lane in run.lanes]
+    commands, how long the hazard lasts. A gap that is too short lies between the end of one and the begin of another.
+    """
+    shown_span, gap = shown_for(verdict), verdict.trace.prolonged is not None
+    ends, begins = (shown_span.start, shown_span.end) if gap else (shown_span.end, shown_span.start)
     found: list[Dimension] = []
     joins, leaves = [], []
-    for number, (lane, span) in enumerate(zip(run.lanes, spans, strict=True)):
-        if span is None:
-            continue
+    for number, lane in enumerate(run.lanes):
         can = "can conduct" if lane.literal.on else "can be off"
-        there = _last(lane, span.start, True)
-        if there is not None and span.start == trace.overlap_from:
-            joins.append((there, number))
-            if there < span.start:
-                text = f"{can} after {shown(span.start - there)}"
-                found.append(Dimension(there, span.start, text, number, (number, None)))
-        back = None if span.end is None else _last(lane, span.end, False)
-        if back is not None and span.end is not None and span.end == trace.overlap_to:
-            leaves.append((back, number))
-            if back < span.end:
-                text = f"{can} for {shown(span.end - back)} more"
-                found.append(Dimension(back, span.end, text, number, (number, None)))
+        if any(one.start == begins for one in lane.possible) and begins is not None:
+            there = _last(lane, begins, True)
+            joins += [(there, number)] if there is not None else []
+            if there is not None and there < begins:
+                text = f"{can} after {shown(begins - there)}"
+                found.append(Dimension(there, begins, text, number, (number, None)))
+        if any(one.end == ends for one in lane.possible) and ends is not None:
+            back = _last(lane, ends, False)
+            leaves += [(back, number)] if back is not None else []
+            if back is not None and back < ends:
+                text = f"{can} for {shown(ends - back)} more"
+                found.append(Dimension(back, ends, text, number, (number, None)))
     return [*found, *_between(run, joins, leaves), _lasting(run, verdict)]
-
-
-def _around(lane: Lane, time: int) -> Span | None:
-    return next((one for one in lane.possible if one.start <= time and (one.end is None or time < one.end)), None)
 
 
 def _last(lane: Lane, time: int, wanted: bool) -> int | None:
@@ -232,6 +228,8 @@ def _between(run: Run, joins: Sequence[tuple[int, int]], leaves: Sequence[tuple[
 
 
 def _lasting(run: Run, verdict: Unsafe) -> Dimension:
-    trace, end = verdict.trace, hazard_end(verdict)
-    text = f"{run.stretch} without end" if end is None else f"{run.stretch} {shown(end - trace.overlap_from)}"
-    return Dimension(trace.overlap_from, end, text, bad=True)
+    start, end = shown_for(verdict).start, hazard_end(verdict)
+    text = f"{run.stretch} without end" if end is None else f"{run.stretch} {shown(end - start)}"
+    if verdict.trace.prolonged is not None and verdict.trace.prolonged[1] == 1:
+        text = f"no {run.stretch}"  # it is marked by 1 ps
+    return Dimension(start, end, text, bad=True)

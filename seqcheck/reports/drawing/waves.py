@@ -23,7 +23,7 @@ from seqcheck.reports.lanes import Conduct, Lane
 from seqcheck.reports.pieces import listed, visible, wrapped
 from seqcheck.reports.rows import scaled
 from seqcheck.reports.run import run_of
-from seqcheck.reports.wording import happens, subject, where
+from seqcheck.reports.wording import shown_for, stated, subject, where
 from seqcheck.verdict import Unsafe
 
 _EDGE = 20.0
@@ -47,7 +47,7 @@ class _Sheet:
         self._left = folded([*(f"{title} conducts" for title in run.titles), *carriers]) + _EDGE + 14
         self._bands = bands(run, verdict.trace, self._left)
         self._references = references(verdict.trace, run, self._bands)
-        said = [happens(verdict.hazard, verdict.overlap, verdict.greatest), where(verdict, drive)]
+        said = [stated(verdict), where(verdict, drive)]
         title = f"{verdict.check.value.capitalize()}: {subject(verdict.hazard)}, {drive.title}"
         self._paper = Paper(name, title, ". ".join([*(one for one in said if one), *self._words()]))
 
@@ -85,7 +85,7 @@ class _Sheet:
         run, verdict = self._run, self._verdict
         note = run.origin_note
         begins = f"where line {note.line} begins ({note.text})" if note.text else "the start of the run"
-        texts = [happens(verdict.hazard, verdict.overlap, verdict.greatest), f"t = 0 is {begins}"]
+        texts = [stated(verdict), f"t = 0 is {begins}"]
         letters = [f"{title} is {lane.literal.switch}" for title, lane in self._lanes() if title != lane.literal.switch]
         return [row for text in [*texts, *letters] for row in wrapped(visible(text) + ".", _LETTERS)]
 
@@ -169,9 +169,9 @@ class _Sheet:
 
     def _shade(self, band: Band, top: float, bottom: float) -> None:
         """The stretch of the hazard, through all lanes."""
-        trace = self._verdict.trace
-        start, end = self._x(band, trace.overlap_from), self._until(band, hazard_end(self._verdict))
-        if trace.overlap_from > band.times[-1] or end <= start:
+        begin = shown_for(self._verdict).start
+        start, end = self._x(band, begin), self._until(band, hazard_end(self._verdict))
+        if begin > band.times[-1] or end <= start:
             return
         self._hatched("meet", start, end, top, bottom)
         for x in (start, end):

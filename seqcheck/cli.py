@@ -6,6 +6,7 @@ import errno
 import gc
 import os
 import re
+import shlex
 import stat
 import sys
 import time
@@ -47,6 +48,9 @@ file leaves at worst, and the move, trip or row that sets it; least first."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_REPORT = """\
+Write one page about FILE for a design review: verdict, assumptions, table, mode graph, margins, every finding with its
+timing diagram, waivers, what is not covered. It stands alone. Example: seqcheck report drive.dseq --out page.html"""
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
@@ -141,6 +145,12 @@ def _parser() -> argparse.ArgumentParser:
     draw.arguments(drawing)
     drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
     _limited(drawing)
+    review = commands.add_parser(
+        "report", help="write the page for a review", description=_REPORT, epilog=_EXITS, allow_abbrev=False
+    )
+    review.add_argument("file", metavar="FILE")
+    review.add_argument("--out", metavar="FILE", help="write the page to FILE instead of standard output")
+    _limited(review)
     margins = commands.add_parser(
         "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
     )
@@ -176,6 +186,8 @@ def _run(arguments: list[str]) -> int:
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         if asked.command == "draw":
             return _draw(asked)
+        if asked.command == "report":
+            return _report(asked, shlex.join(["seqcheck", *arguments]))
         if asked.command == "tidy":
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
@@ -403,6 +415,27 @@ def _draw(asked: argparse.Namespace) -> int:
         return _mistaken(problems)
     except ValueError as why:
         _wrong(str(why))
+    return _worse(code, _deliver(text, asked.out))
+
+
+def _report(asked: argparse.Namespace, call: str) -> int:
+    """Write the page about a file; the exit code of its verdict."""
+    from seqcheck.commands.review import page
+    from seqcheck.confirming import Fault
+
+    limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    if isinstance(outcome, Library):
+        _wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
+    if not isinstance(outcome, Outcome):
+        return code
+    try:
+        text = page(outcome, printable(call), _observer(limits))
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
     return _worse(code, _deliver(text, asked.out))
 
 

@@ -408,3 +408,20 @@ def test_the_checker_can_be_read_in_one_sitting() -> None:
     """What decides about covers and potentials."""
     lines = sum(len(path.read_text("utf-8").splitlines()) for path in (HOUSE / "evidence" / "cover").glob("*.py"))
     assert lines <= 1900
+
+
+def test_a_never_rule_is_claimed_and_no_other_is() -> None:
+    """A and B are both off in passing, never both on; no claim can be missed or changed."""
+    drive = drive_of(f"{CAREFUL}rules\n  never A off and B off\n  never A and B\n")
+    evidence = json.loads(evidence_of(drive))
+    assert audited(drive, json.dumps(evidence)) == Audited(2, 2, 1, 0)
+    of_rule = [one for one in evidence["claims"] if not one["joins"]]
+    assert len(of_rule) == 2
+    for rule in of_rule:
+        left = {**evidence, "claims": [one for one in evidence["claims"] if one is not rule]}
+        with pytest.raises(NotProven, match="Nothing is said of the rule in line"):
+            audited(drive, json.dumps(left))
+    other = deepcopy(evidence)
+    next(one for one in other["claims"] if not one["joins"])["literals"][1][1] ^= True
+    with pytest.raises(NoEvidence, match="in no rule"):
+        audited(drive, json.dumps(other))

@@ -225,3 +225,34 @@ def test_files_without_a_drive(file: str, capsys: pytest.CaptureFixture[str]) ->
     code, out, err = drawn(capsys, file)
     assert (code, out) == (2, "")
     assert err.startswith("bench.dseq:1:")
+
+
+RULES = """
+rules
+  UL on at most 1 ms
+  UH on at least 4 us
+  open and close at least 60 us apart
+  overheat clears UH within 20 us
+  never UH and VL
+  margin at least 8 us
+"""
+
+
+def test_what_breaks_a_rule_is_drawn_with_the_length_that_it_is_about() -> None:
+    """The margin is 5.231584 us in the README; after overheat the writes may take 30 us and the coupler 12 us more."""
+    file = str(ROOT / "samples/vent.dseq")
+    text = text_of(file)
+    drive = read(text + RULES, file, text_of)
+    found: dict[str, list[str]] = {}
+    for verdict in sorted_out(check(drive, file, frozenset(), lambda _: None)).unsafe:
+        root = root_of(alone(waves.picture(verdict, drive)))
+        rooms = boxes(root)
+        assert all(inside(root, box) for box, _ in rooms)
+        for (one_box, first), (other, second) in combinations(rooms, 2):
+            assert apart(one_box, other), (first, second)
+        found.setdefault(verdict.check.value, []).append(dimensions(run_of(verdict, drive), verdict)[-1].text)
+    assert found["long-on"] == ["excess without end"]
+    assert found["short-pulse"] == ["no pulse"]
+    assert "interval 49.900989 us" in found["too-soon"]
+    assert "gap 5.231584 us" in found["thin-margin"]
+    assert set(found) == {"long-on", "short-pulse", "too-soon", "late-trip", "together", "thin-margin"}

@@ -30,8 +30,10 @@ LOW_TO_HIGH = (
     "confirming",
     "sizing",
     "margins",
+    "rules",
     "reports",
     "checking",
+    "serving",
     "commands",
     "cli",
     "__main__",
@@ -42,7 +44,7 @@ APART = {
     "proving": {"language", "evidence"},
     "reports": {
         *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
-        *("confirming", "sizing", "margins"),
+        *("confirming", "sizing", "margins", "rules"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

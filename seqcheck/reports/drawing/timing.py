@@ -173,10 +173,13 @@ def hazard_end(verdict: Unsafe) -> int | None:
 
 def dimensions(run: Run, verdict: Unsafe) -> list[Dimension]:
     """What is measured: how long after its command each switch begins and ends to be possible, the time between the
-    commands, how long the hazard lasts. A gap that is too short lies between the end of one and the begin of another.
+    commands, how long the hazard lasts. A gap that is too short lies between the end of one and the begin of another;
+    where a rule is about one length it alone is measured.
     """
     shown_span, gap = shown_for(verdict), verdict.trace.prolonged is not None
     ends, begins = (shown_span.start, shown_span.end) if gap else (shown_span.end, shown_span.start)
+    if verdict.hazard.asks is not None:
+        return [_lasting(run, verdict)]
     found: list[Dimension] = []
     joins, leaves = [], []
     for number, lane in enumerate(run.lanes):
@@ -230,6 +233,7 @@ def _between(run: Run, joins: Sequence[tuple[int, int]], leaves: Sequence[tuple[
 def _lasting(run: Run, verdict: Unsafe) -> Dimension:
     start, end = shown_for(verdict).start, hazard_end(verdict)
     text = f"{run.stretch} without end" if end is None else f"{run.stretch} {shown(end - start)}"
-    if verdict.trace.prolonged is not None and verdict.trace.prolonged[1] == 1:
+    none_left = verdict.trace.prolonged is not None and verdict.trace.prolonged[1] == 1
+    if none_left or (verdict.hazard.asks is not None and verdict.trace.overlap_to == verdict.trace.overlap_from):
         text = f"no {run.stretch}"  # it is marked by 1 ps
     return Dimension(start, end, text, bad=True)

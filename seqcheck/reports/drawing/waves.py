@@ -44,7 +44,9 @@ class _Sheet:
         self._stays = stays(drive, verdict.trace)
         self._dimensions = dimensions(run, verdict)
         carriers = [one.carrier for one in verdict.trace.phases]
-        self._left = folded([*(f"{title} conducts" for title in run.titles), *carriers]) + _EDGE + 14
+        names = [*(f"{title} conducts" for title in run.titles), *carriers, f"t / {run.unit}"]
+        self._left = folded(names) + _EDGE + 14
+        self._width = 0.0  # of the sheet, known once it is begun
         self._bands = bands(run, verdict.trace, self._left)
         self._references = references(verdict.trace, run, self._bands)
         said = [stated(verdict), where(verdict, drive)]
@@ -59,6 +61,7 @@ class _Sheet:
         head = [paper.root[0].text or "", *self._intro()]
         words = self._table() if self._told else []
         width = max(self._left + max(band.width for band in self._bands) + _EDGE, 760.0, folded(head, 14.5) + 2 * _EDGE)
+        self._width = width
         heights = [self._height(band) for band in self._bands]
         top = _EDGE + 20 + _ROW * len(head[1:])
         legend = 82.0
@@ -307,7 +310,7 @@ class _Sheet:
         right = self._left + band.width
         if wide + 34 <= end - start:
             self._paper.text((start + end) / 2, y + 4, one.text, f"{kind} mid", group)
-        elif end + 6 + wide <= right + _EDGE:
+        elif end + 6 + wide <= self._width - 6:
             self._paper.text(end + 6, y + 4, one.text, kind, group)
         elif start - 6 - wide >= self._left:
             self._paper.text(start - 6, y + 4, one.text, f"{kind} end", group)
@@ -345,7 +348,8 @@ class _Sheet:
         paper, y = self._paper, top + 8
         paper.line("guide", [(_EDGE, y - 8), (740, y - 8)])
         x = _EDGE
-        for kind, text in (("sure", "surely conducts"), ("doubt", "may conduct"), ("base", "surely does not")):
+        kinds = (("sure", "surely conducts"), ("doubt", "may conduct"), ("base", "surely does not"))
+        for kind, text in kinds if self._run.lanes else ():
             if kind == "base":
                 paper.line("base", [(x, y + 13), (x + 26, y + 13)])
             elif kind == "sure":
@@ -356,7 +360,7 @@ class _Sheet:
             x += 58 + room(text, 11)
         self._hatched("meet", x, x + 26, y + 1, y + 13)
         both = listed([title if lane.literal.on else f"{title} off" for title, lane in self._lanes()])
-        paper.text(x + 34, y + 12, f"{self._run.stretch}: {both}", "small")
+        paper.text(x + 34, y + 12, f"{self._run.stretch}: {both}" if both else self._run.stretch, "small")
         texts = ["From one instant to the next takes equal room; the time that it lasts stands between their times."]
         if any(band.tears for band in self._bands):
             texts.append("A zigzag marks a stretch much longer than the others.")

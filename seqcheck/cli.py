@@ -6,6 +6,7 @@ import errno
 import gc
 import os
 import re
+import shlex
 import stat
 import sys
 import time
@@ -16,6 +17,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
+from seqcheck.commands import draw
 from seqcheck.drive import Drive, Library, NeverRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
@@ -46,6 +48,12 @@ file leaves at worst, and the move, trip or row that sets it; least first."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_REPORT = """\
+Write one page about FILE for a design review: verdict, assumptions, table, mode graph, margins, every finding with its
+timing diagram, waivers, what is not covered. It stands alone. Example: seqcheck report drive.dseq --out page.html"""
+_SERVE = """\
+Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
+once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
@@ -129,14 +137,24 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--run", metavar="N", help="with --as vcd: the N-th counterexample of the screen, not the worst")
     lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="besides hazards say only this")
-    lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
-    lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+    _limited(lint)
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    drawing = commands.add_parser("draw", help="draw", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False)
+    draw.arguments(drawing)
+    drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
+    _limited(drawing)
+    review = commands.add_parser(
+        "report", help="write the page for a review", description=_REPORT, epilog=_EXITS, allow_abbrev=False
+    )
+    review.add_argument("file", metavar="FILE")
+    review.add_argument("--out", metavar="FILE", help="write the page to FILE instead of standard output")
+    _limited(review)
     margins = commands.add_parser(
         "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
     )
@@ -150,6 +168,9 @@ def _parser() -> argparse.ArgumentParser:
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
+    serve = commands.add_parser("serve", help="serve an editor", description=_SERVE, allow_abbrev=False)
+    serve.add_argument("--most-zones", metavar="N", help="give a proof up after N zones (50000)")
+    serve.add_argument("--give-up-after", metavar="DURATION", help="give a text up after this time (10 s)")
     tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
     tidy.add_argument("files", nargs="+", metavar="FILE")
     tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
@@ -158,13 +179,26 @@ def _parser() -> argparse.ArgumentParser:
     return parser
 
 
+def _limited(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    parser.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+
+
 def _run(arguments: list[str]) -> int:
     try:
         asked = _parser().parse_args(arguments)
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
+        if asked.command == "serve":
+            from seqcheck.serving.command import serve
+
+            return serve(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        if asked.command == "draw":
+            return _draw(asked)
+        if asked.command == "report":
+            return _report(asked, shlex.join(["seqcheck", *arguments]))
         if asked.command == "tidy":
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
@@ -176,7 +210,7 @@ def _run(arguments: list[str]) -> int:
         form = _one_of("--as", asked.form, FORMS)
         only = frozenset(_check(name) for name in asked.only)
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
-        files = list(dict.fromkeys(_files(asked.paths or ["."])))
+        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
@@ -245,6 +279,14 @@ def _files(paths: list[str]) -> Iterator[str]:
         if not found:
             _wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
         yield from (name if path == "." else os.path.join(path, name) for name in found)
+
+
+def _changed(paths: list[str]) -> list[str]:
+    from seqcheck.commands.users import concerned
+
+    if any(path == _STDIN or os.path.isdir(path) for path in paths):
+        _wrong("--changed needs the files that a change touches, not a folder or standard input")
+    return concerned(paths)
 
 
 # Proving
@@ -372,6 +414,52 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
 
 
+def _draw(asked: argparse.Namespace) -> int:
+    """Draw a picture of a file; the exit code of its verdict."""
+    form = _one_of("--as", asked.form, draw.FORMS)
+    if asked.trace in draw.RUNLESS:
+        _wrong(f"--trace: a finding of '{asked.trace}' is no run; those of {_or(draw.TRACED)} are")
+    if asked.trace is not None:
+        _one_of("--trace", asked.trace, draw.TRACED)
+    if asked.trace is not None and (asked.modes or form == "mermaid"):
+        _wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
+    limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+    wanted = draw.Wanted(asked.trace, _count("--run", asked.run), form)
+    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    if isinstance(outcome, Library):
+        _wrong(f"{printable(asked.file)} only serves 'use'; it has no modes")
+    if not isinstance(outcome, Outcome):
+        return code
+    try:
+        text = draw.drawn(outcome, wanted)
+    except Problems as problems:
+        return _mistaken(problems)
+    except ValueError as why:
+        _wrong(str(why))
+    return _worse(code, _deliver(text, asked.out))
+
+
+def _report(asked: argparse.Namespace, call: str) -> int:
+    """Write the page about a file; the exit code of its verdict."""
+    from seqcheck.commands.review import page
+    from seqcheck.confirming import Fault
+
+    limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    if isinstance(outcome, Library):
+        _wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
+    if not isinstance(outcome, Outcome):
+        return code
+    try:
+        text = page(outcome, printable(call), _observer(limits))
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    return _worse(code, _deliver(text, asked.out))
+
+
 def _margins(file: str, limits: Limits, colour: str, out: str | None) -> int:
     """Tell the margins of a file; the exit code."""
     from seqcheck.confirming import Fault
@@ -465,6 +553,8 @@ def _exit_of(outcome: Outcome) -> int:
 def _written(answers: list[Answer], answering: Answering) -> str | None:
     """The answer as a text; None where nothing was judged and the form has no word for that."""
     judged = [one for one in answers if isinstance(one, Outcome | Library)]
+    if not answers and answering.form in ("screen", "vcd"):
+        return "nothing to prove: the change touches no *.dseq file and none that one uses\n"
     if not judged and answering.form not in _WHATEVER_COMES:
         return None
     match answering.form:

@@ -18,7 +18,7 @@ from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
 from seqcheck.commands import draw
-from seqcheck.drive import Drive, Library
+from seqcheck.drive import Drive, Library, NeverRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems, nearest
@@ -391,8 +391,8 @@ def _borne_out(found: "Audited") -> str:
 
 
 def _not_about(drive: Drive) -> str:
-    """What evidence says nothing of: rules of the file, which only a new proof can bear out."""
-    lines = [str(rule.place.line) for rule in drive.rules]
+    """What evidence says nothing of: rules about margins and lengths, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules if not isinstance(rule, NeverRule)]
     if not lines:
         return ""
     return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"

@@ -46,6 +46,9 @@ file leaves at worst, and the move, trip or row that sets it; least first."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_SERVE = """\
+Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
+once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
@@ -132,6 +135,7 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -150,6 +154,9 @@ def _parser() -> argparse.ArgumentParser:
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
+    serve = commands.add_parser("serve", help="serve an editor", description=_SERVE, allow_abbrev=False)
+    serve.add_argument("--most-zones", metavar="N", help="give a proof up after N zones (50000)")
+    serve.add_argument("--give-up-after", metavar="DURATION", help="give a text up after this time (10 s)")
     tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
     tidy.add_argument("files", nargs="+", metavar="FILE")
     tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
@@ -163,6 +170,10 @@ def _run(arguments: list[str]) -> int:
         asked = _parser().parse_args(arguments)
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
+        if asked.command == "serve":
+            from seqcheck.serving.command import serve
+
+            return serve(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         if asked.command == "tidy":
@@ -176,7 +187,7 @@ def _run(arguments: list[str]) -> int:
         form = _one_of("--as", asked.form, FORMS)
         only = frozenset(_check(name) for name in asked.only)
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
-        files = list(dict.fromkeys(_files(asked.paths or ["."])))
+        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
@@ -245,6 +256,14 @@ def _files(paths: list[str]) -> Iterator[str]:
         if not found:
             _wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
         yield from (name if path == "." else os.path.join(path, name) for name in found)
+
+
+def _changed(paths: list[str]) -> list[str]:
+    from seqcheck.commands.users import concerned
+
+    if any(path == _STDIN or os.path.isdir(path) for path in paths):
+        _wrong("--changed needs the files that a change touches, not a folder or standard input")
+    return concerned(paths)
 
 
 # Proving
@@ -465,6 +484,8 @@ def _exit_of(outcome: Outcome) -> int:
 def _written(answers: list[Answer], answering: Answering) -> str | None:
     """The answer as a text; None where nothing was judged and the form has no word for that."""
     judged = [one for one in answers if isinstance(one, Outcome | Library)]
+    if not answers and answering.form in ("screen", "vcd"):
+        return "nothing to prove: the change touches no *.dseq file and none that one uses\n"
     if not judged and answering.form not in _WHATEVER_COMES:
         return None
     match answering.form:

@@ -33,6 +33,7 @@ LOW_TO_HIGH = (
     "rules",
     "reports",
     "checking",
+    "serving",
     "commands",
     "cli",
     "__main__",

@@ -117,6 +117,7 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -138,6 +139,8 @@ def _run(arguments: list[str]) -> int:
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         form = _one_of("--as", asked.form, FORMS)
+        if asked.with_fault and form not in ("screen", "lines"):
+            _wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         only = frozenset(_check(name) for name in asked.only)
         limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
@@ -147,7 +150,7 @@ def _run(arguments: list[str]) -> int:
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
         return int(stop.code or 0)
-    answers, code = _lint(files, only, limits, shelf)
+    answers, code = _lint(files, only, limits, shelf, asked.with_fault)
     try:
         text = _written(answers, answering)
     except SystemExit as stop:
@@ -248,12 +251,14 @@ class _Shelf:
 
 
 def _lint(
-    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None
+    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None, with_fault: bool
 ) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
     for file in files:
         answer, own = _one_file(file, only, limits, shelf)
         code = _worse(code, own)
+        if with_fault and isinstance(answer, Outcome):
+            answer = _with_faults(answer, limits)
         answers.append(answer)
     return answers, code
 
@@ -277,6 +282,12 @@ def _one_file(
         return Failed(file, str(fault)), FAULT
     stored = PROVEN if shelf is None or kept is None else shelf.put(file, drive, kept)
     return outcome, _worse(stored, _exit_of(outcome))
+
+
+def _with_faults(outcome: Outcome, limits: Limits) -> Outcome:
+    from seqcheck.failing import with_faults
+
+    return with_faults(outcome, _observer(limits))
 
 
 def _mistaken(problems: Problems) -> int:

@@ -27,7 +27,8 @@ class Where:
 
     def run_of(self, drive: Drive) -> Move | Trip | None:
         """The move or trip, None at rest."""
-        return None if self.run is None else (*drive.moves, *drive.trips)[self.run]
+        runs: tuple[Move | Trip, ...] = (*drive.moves, *drive.trips)
+        return None if self.run is None else runs[self.run]
 
 
 @dataclass(frozen=True, slots=True)

@@ -38,7 +38,9 @@ LOW_TO_HIGH = (
 APART = {
     "evidence": {"writing", "firmware", "modegraph", "zones", "proving", "circuit"},
     "proving": {"language", "evidence"},
-    "reports": {"language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence", "sizing", "failing"},
+    "reports": {
+        "language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence", "sizing", "failing",
+    },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the
 prover, the prover knows no file, and a report reads verdicts and never reasons."""

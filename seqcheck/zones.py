@@ -121,9 +121,8 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
             if value < INFINITE and (loose or value > limit or high[end]):
                 zone[start + end] = INFINITE
                 changed = True
-        if first_row[clock] < -upper[clock] - 1:
-            zone[clock] = -upper[clock] - 1
-            changed = True
+        if high[clock]:
+            zone[clock] = -upper[clock] - 1  # nothing else is tied to it now, so that this alone needs no closing
     if changed:
         result = closed(zone, size)
         assert result is not None, "widening never empties a zone"

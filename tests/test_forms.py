@@ -12,11 +12,13 @@ from seqcheck.drive import Command
 from seqcheck.language import decode, read
 from seqcheck.reports import annotations, document, lines, sarif, vcd
 from seqcheck.reports.repository import Repository
+from seqcheck.reports.standing import Standing, sorted_out
 from seqcheck.verdict import Act, Outcome, Span, Unsafe
 
 ROOT = Path(__file__).parents[1]
 FILES = sorted((ROOT / "samples").rglob("*.dseq"))
 COMMANDS = {Command.ON: "1", Command.OFF: "0", Command.UNKNOWN: "x"}
+COMMAND = r"::(error|notice) file=([^,:]+),line=(\d+),col=(\d+),title=[^,:]+ \[([a-z-]+)\]::(.+)"
 EDGES = {Act.RISES: "1", Act.FALLS: "0"}
 
 
@@ -36,7 +38,7 @@ def test_a_file_in_every_form(path: Path, monkeypatch: pytest.MonkeyPatch) -> No
     monkeypatch.chdir(ROOT)
     outcome = judged(path)
     unsafe = [one for one in outcome.verdicts if isinstance(one, Unsafe)]
-    assert bool(unsafe) == ("faulty" in path.parts)
+    assert (sorted_out(outcome).standing is not Standing.PROVEN) == ("faulty" in path.parts)
     holds_as_json(outcome, unsafe)
     holds_as_sarif(outcome, unsafe)
     holds_as_annotations(outcome)
@@ -50,7 +52,7 @@ def holds_as_json(outcome: Outcome, unsafe: list[Unsafe]) -> None:
     data = json.loads(document.report([outcome]))
     outcome_schema().validate(data)
     (entry,) = data["files"]
-    assert entry["standing"] == ("unsafe" if unsafe else "proven")
+    assert entry["standing"] == sorted_out(outcome).standing.name.lower()
     assert len(entry["verdicts"]) == len(outcome.verdicts)
     for said, verdict in zip([one for one in entry["verdicts"] if one["verdict"] == "unsafe"], unsafe, strict=True):
         assert said["overlap"] == verdict.overlap
@@ -75,9 +77,10 @@ def holds_as_annotations(outcome: Outcome) -> None:
     plain = lines.report([outcome]).splitlines()
     assert len(said) == len(plain)
     for one, line in zip(said, plain, strict=True):
-        match = re.fullmatch(r"::error file=([^,:]+),line=(\d+),col=(\d+),title=[^,:]+ \[([a-z-]+)\]::(.+)", one)
+        match = re.fullmatch(COMMAND, one)
         assert match
-        assert f"{match[1]}:{match[2]}:{match[3]}: error: {match[5].replace('%25', '%')} [{match[4]}]" == line
+        severity = {"error": "error", "notice": "note"}[match[1]]
+        assert f"{match[2]}:{match[3]}:{match[4]}: {severity}: {match[6].replace('%25', '%')} [{match[5]}]" == line
 
 
 def holds_as_dump(text: str, verdict: Unsafe, outcome: Outcome) -> None:
@@ -86,11 +89,14 @@ def holds_as_dump(text: str, verdict: Unsafe, outcome: Outcome) -> None:
     entered = [(one.time, one.name) for one in trace.events if one.act is Act.ENTERS]
     assert dump.states("drive.mode") == [(None, outcome.drive.start), *entered]
     for phase in trace.phases:
-        edges = [one for one in trace.events if one.name == phase.carrier and one.act in EDGES]
-        assert dump.states(f"drive.reference.{phase.carrier}") == [
-            (None, "1" if phase.high else "0"),
-            *((one.time, EDGES[one.act]) for one in edges),
-        ]
+        right: list[tuple[int | None, str]] = [(None, "1" if phase.high else "0")]
+        for one in (event for event in trace.events if event.name == phase.carrier):
+            if one.cycles is not None:
+                after = right[-1][1]
+                right += [(one.time + one.cycles.first, "x"), (one.time + one.cycles.length, after)]
+            elif one.act in EDGES:
+                right.append((one.time, EDGES[one.act]))
+        assert dump.states(f"drive.reference.{phase.carrier}") == right
     ends = [] if trace.overlap_to is None else [(trace.overlap_to, "0")]
     assert dump.states("drive.overlap") == [(None, "0"), (trace.overlap_from, "1"), *ends]
     assert [time for time, _ in dump.changes["drive.happens"]] == sorted({one.time for one in trace.events})

@@ -145,11 +145,12 @@ def test_every_limit_is_undecided_or_the_answer() -> None:
 
 
 def test_zones_count_up_over_all_searches() -> None:
-    """The observer sees every number once, so that a limit is one on the whole proof."""
+    """The observer sees every number once, so that a limit is one on the whole proof; before, 0 for each state."""
     seen: list[int] = []
     drive = drive_of(CARRIED)
     (hazard,) = shorting_sets(drive.stage)
     found = Prover(drive).prove(hazard, True, seen.append)
+    seen = seen[seen.count(0) :]
     assert seen == list(range(1, len(seen) + 1))
     assert found.zones == len(seen)
 

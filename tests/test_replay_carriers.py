@@ -69,7 +69,8 @@ def test_the_age_at_time_0_counts() -> None:
 )
 def test_phases_that_no_carrier_has(phase: Phase, why: str) -> None:
     refused(modulated(dead=span(5, 10)), "", 9, why, phases=(phase,))
-    permitted(modulated(dead=span(5, 10)), "", 0, phases=(Phase("k", True, 10, False),))
+    for age in (0, 10):
+        permitted(modulated(dead=span(5, 10)), "", 0, phases=(Phase("k", True, age, False),))
 
 
 def test_phases_of_carriers_without_dead_time_or_level() -> None:
@@ -109,7 +110,8 @@ def test_joining_takes_the_level_of_the_moment() -> None:
 def test_switches_that_follow_nothing_known() -> None:
     refused(modulated(), JOINED, 9, "X follows k, whose phase the trace does not give")
     refused(modulated(), "0 begins 0; 0 writes X k, Y ~k", 9, "X follows k", literals="X, Z", phases=())
-    permitted(modulated(), JOINED, 9, literals="Z")
+    walk = permitted(modulated(), JOINED, 9, literals="Z")
+    assert walk.pins.commands == {"X": Command.UNKNOWN, "Y": Command.UNKNOWN, "Z": OFF}
     refused(modulated(), "0 rises m", 9, "no phase of carrier m", phases=LOW)
 
 
@@ -214,6 +216,27 @@ def test_the_oldest_write_still_held_counts() -> None:
     )
     permitted(built, back + "100 rises k; 100 updates k", 110, phases=LOW)
     refused(built, back + "100 rises k; 101 updates k", 110, "must act by 100 ps", phases=LOW)
+
+
+def test_each_carrier_has_its_own_oldest_write() -> None:
+    k = carrier("k", span(20, 30), span(40, 50), update=Update.WITHIN_PERIOD, period=100)
+    m = carrier("m", span(20, 30), span(40, 50), update=Update.WITHIN_PERIOD, period=70)
+    rows = {"idle": "off off", "one": "k off", "two": "k m"}
+    built = drive("X Y", rows, moves=(move("idle", "one"), move("one", "two")), carriers=(k, m))
+    begun = "0 begins 0; 0 writes X k; 0 enters one; 35 begins 1; 35 writes Y m; 35 enters two; "
+    begun += "40 rises k; 40 rises m; 60 falls k; 60 falls m; "
+    both = (*LOW, Phase("m", False, 0, True))
+    permitted(built, begun + "100 updates k; 105 updates m", 105, phases=both)
+    refused(built, begun + "106 rises m", 106, "the writes held for k must act by 100 ps", phases=both)
+    refused(built, begun + "100 updates k; 106 rises m", 106, "the writes held for m must act by 105 ps", phases=both)
+
+
+def test_writing_back_what_is_in_effect_holds_nothing() -> None:
+    built = modulated(Update.WITHIN_PERIOD)
+    back = "0 begins 0; 0 writes X k, Y ~k; 0 enters run; 20 updates k; 30 begins 3; 30 writes X on, Y off; "
+    back += "30 enters held; 35 begins 0; 35 writes X k, Y ~k; 35 enters run; 45 rises k; 70 falls k; "
+    permitted(built, back + "115 rises k; 140 falls k", 150, phases=LOW)
+    refused(built, back + "75 updates k", 80, "no write is held for carrier k", phases=LOW)
 
 
 # Released pins

@@ -7,7 +7,7 @@ from build import after, carrier, drive, hazard, interlock, move, part, pin, spa
 from test_replay_runs import permitted, refused
 
 from seqcheck.drive import Above, Carrier, Command, Drive, Interlock, Level, Move, Update
-from seqcheck.evidence.replay import NotPermitted, replay
+from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.quantities import Interval
 from seqcheck.verdict import Act, Phase, Replayed, Span
@@ -198,6 +198,30 @@ def test_unknown_commands_and_interlocks() -> None:
     assert permitted(half, "", 9).commands == {"X": [(None, OFF)], "Y": [(None, UNKNOWN)]}
 
 
+def test_of_two_dead_times_the_one_that_must_end_first_is_cleared() -> None:
+    """Before one that need never end, too."""
+    rows = {"idle": "on off on", "half": "off off on", "low": "off on off"}
+    locks = (interlock("X", "Y", Interval(5, None)), interlock("Y", "Z", span(5, 20)))
+    moves = (move("idle", "half"), move("half", "low"))
+    built = drive("X Y Z", rows, moves=moves, interlocks=locks)
+    lines = "2 begins 0; 2 writes X off; 2 enters half; 3 begins 1; 3 writes Y on, Z off; 3 enters low; 10 clears Y"
+    permitted(built, lines, 99, literals="Y")
+    refused(built, lines.replace("; 10 clears Y", ""), 99, "must clear Y by 23 ps", literals="Y")
+
+
+def test_an_interlock_of_other_switches_is_not_followed() -> None:
+    """Neither its dead times nor the carriers that its switches follow; without interlocks no partner's is."""
+    k = carrier("k", span(20, 30), span(40, 50))
+    rows = {"idle": "on off on", "run": "on k off"}
+    locks = (interlock("Y", "Z", span(3, 3)),)
+    built = drive("X Y Z", rows, moves=(move("idle", "run"),), carriers=(k,), interlocks=locks)
+    lines = "1 begins 0; 1 writes Y k, Z off; 1 enters run"
+    permitted(built, lines, 99, literals="X")
+    refused(built, lines + "; 4 clears Y", 99, "no dead time of an interlock runs for Y", literals="X")
+    refused(built, lines, 99, "Y follows k, whose phase the trace does not give", literals="Z")
+    permitted(built, lines, 99, literals="Z", interlocked=False)
+
+
 # Without end
 
 
@@ -285,6 +309,8 @@ EVER, NEVER = Interval(1, None), None
         ("k", False, span(7, 9), span(20, 30), 2, False, 4, False),
         ("k", False, span(7, 9), EVER, 0, False, 0, True),  # it may stay low
         ("~k", False, EVER, span(7, 9), 0, True, 0, True),
+        ("k", False, Interval(7, None), span(20, 30), 0, False, 7, True),  # it may stay high, but need not
+        ("k", False, EVER, NEVER, 0, True, 9, False),  # it never comes to be low
     ],
 )
 def test_what_a_carrier_keeps_up(
@@ -308,12 +334,15 @@ def test_what_a_carrier_keeps_up(
 
 
 def test_a_pulse_that_its_dead_time_always_swallows_does_not_come_again() -> None:
-    k = carrier("k", span(2, 4), span(20, 30), dead=span(5))
     paths = {"X": (part((0, 0), (0, 99)),)}
     rows = {"idle": "on on", "run": "k on"}
-    built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths)
     begun, low = "0 begins 0; 0 writes X k; 0 enters run", (Phase("k", False, 5, True),)
+    k = carrier("k", span(2, 4), span(20, 30), dead=span(5))
+    built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths)
     refused(built, begun, 9, "X cannot stay possible", phases=low, overlap=(0, None))
+    k = carrier("k", span(2, 5), span(20, 30), dead=span(5))  # one that ends as its dead time does may come
+    built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths)
+    assert replay(built, trace(begun, 9, (0, None), phases=low)).overlap == Span(0, None)
 
 
 def test_an_interlock_with_a_carrier_lets_a_command_come_and_go() -> None:
@@ -332,6 +361,53 @@ def test_a_claim_may_stop_with_the_trace() -> None:
     assert replay(resting(), trace(lines, 5, (1, 5))).overlap == Span(1, 5)
     refused(resting(), lines, 5, "from 1 ps without end", overlap=(1, 4))
     refused(resting(), lines, 5, "from 1 ps without end", overlap=(2, 5))
+
+
+def test_what_another_interlock_lets_come_and_go_excuses_no_literal() -> None:
+    """X is in no interlock: that a switch of another one follows a carrier says nothing about X."""
+    k = carrier("k", span(20, 30), span(40, 50))
+    rows = {"idle": "on on off", "run": "k on ~k"}
+    paths = {"X": (part((0, 0), (0, 39)),)}
+    locks = (interlock("Y", "Z"),)
+    built = drive("X Y Z", rows, moves=(move("idle", "run"),), carriers=(k,), paths=paths, interlocks=locks)
+    begun, high = "0 begins 0; 0 writes X k, Z ~k; 0 enters run", (Phase("k", True, 5, True),)
+    refused(built, begun, 9, "X cannot stay possible while its switch follows k", phases=high, overlap=(0, None))
+
+
+def test_a_write_held_for_a_rise_that_need_not_come_ends_nothing() -> None:
+    rows, low = {"idle": "on on", "run": "k on"}, (Phase("k", False, 0, True),)
+    begun = "0 begins 0; 0 writes X k; 0 enters run"
+    for update, span_low, fits in (
+        (Update.AT_RISE, EVER, True),
+        (Update.AT_RISE, span(40, 50), False),
+        (Update.WITHIN_PERIOD, EVER, False),
+    ):
+        k = carrier("k", span(20, 30), span_low, update=update)
+        built = drive("X Y", rows, moves=(move("idle", "run"),), carriers=(k,))
+        if fits:
+            assert replay(built, trace(begun, 9, (0, None), phases=low)).overlap == Span(0, None)
+        else:
+            refused(built, begun, 9, "the pin of X is still to change", phases=low, overlap=(0, None))
+
+
+def test_a_claim_that_begins_too_late_is_taken_back_to_its_overlap() -> None:
+    rows = {"idle": "off off", "both": "on on"}
+    built = drive("X Y", rows, moves=(move("idle", "both"), move("both", "idle")))
+    lines = "1 begins 0; 1 writes X on, Y on; 1 enters both; 10 begins 1; 10 writes X off, Y off; 10 enters idle; "
+    lines += "20 begins 0; 20 writes X on, Y on; 20 enters both"
+    for claimed, right in ((1, 1), (9, 1), (20, 20), (25, 20), (10, 10), (15, 15), (0, 0)):
+        assert from_its_beginning(built, trace(lines, 30, (claimed, None))).overlap_from == right
+
+
+def test_what_was_known_is_forgotten_again() -> None:
+    """Known only in one mode: before and after it the hazard is asked for."""
+    down = (Above("b", "a"),)
+    rows = {"idle": "on on", "minus": "on on"}
+    built = drive("X Y", rows, moves=(move("idle", "minus"), move("minus", "idle")), known={"minus": down})
+    asked = hazard("X, Y", (frozenset({Above("a", "b")}),))
+    lines = "5 begins 0; 5 enters minus; 20 begins 1; 20 enters idle"
+    assert replay(built, trace(lines, 30, (20, None), literals=asked)).overlap == Span(20, None)
+    assert replay(built, trace(lines, 30, (0, 5), literals=asked)).overlap == Span(0, 5)
 
 
 def test_a_hazard_without_literals_is_refused() -> None:

@@ -1,5 +1,7 @@
 """Possible by interval arithmetic, the delays of literals, and when a hazard is asked for."""
 
+from dataclasses import replace
+
 import pytest
 from build import drive, hazard, part
 
@@ -8,7 +10,9 @@ from seqcheck.drive import Above, Command, CurrentOut, Drive
 from seqcheck.evidence import possible as replayed
 from seqcheck.evidence.facts import asked_for
 from seqcheck.evidence.possible import Stretch, possible, stretches, together, wanted, within_trace
+from seqcheck.evidence.refusal import NotPermitted
 from seqcheck.hazards import Delays, Hazard, Literal
+from seqcheck.quantities import Interval
 from seqcheck.verdict import Span
 
 ON, OFF, UNKNOWN = Command.ON, Command.OFF, Command.UNKNOWN
@@ -29,6 +33,7 @@ def spans(pieces: list[tuple[int | None, int | None]], rise: int, fall: int) -> 
         ([(10, 10)], 4, 5, [(14, 15)]),
         ([(0, 10), (15, 20)], 3, 5, [(3, 25)]),  # touching stretches are joined before the start is cut
         ([(0, 10), (16, 20)], 3, 5, [(3, 15), (19, 25)]),
+        ([(0, 10), (30, 40), (45, 50)], 3, 5, [(3, 15), (33, 55)]),  # joined with the last, not with the first
         ([(0, 4), (6, 8), (11, 13)], 8, 3, [(8, 16)]),  # Blip: none alone is long enough, joined they are
         ([(0, 4), (8, 10)], 8, 3, []),
         ([(0, 10), (10, 20)], 15, 0, [(15, 20)]),  # unwanted for no time
@@ -105,6 +110,8 @@ def test_within_trace() -> None:
     pieces = [Stretch(None, 4), Stretch(6, 9), Stretch(10, 15), Stretch(12, None)]
     assert within_trace(pieces, 12) == (Span(0, 4), Span(6, 9), Span(10, None))
     assert within_trace([Stretch(None, 0)], 5) == ()
+    assert within_trace([Stretch(None, 1)], 5) == (Span(0, 1),)
+    assert within_trace([Stretch(-3, 1)], 5) == (Span(0, 1),)
     assert within_trace([Stretch(None, None)], 5) == (Span(0, None),)
     assert within_trace([Stretch(2, 5)], 5) == (Span(2, 5),)
 
@@ -113,6 +120,7 @@ def test_together() -> None:
     one = (Span(0, 5), Span(7, None))
     assert together([one, (Span(4, 8), Span(9, 10))]) == (Span(4, 5), Span(7, 8), Span(9, 10))
     assert together([one, (Span(5, 7),)]) == ()
+    assert together([]) == (Span(0, None),)
     assert together([one, (Span(3, None),), (Span(8, None),)]) == (Span(8, None),)
 
 
@@ -151,10 +159,31 @@ def test_difference_never_makes_a_short_pulse_vanish() -> None:
     assert delays(built, hazard("X, Y"))[Literal("Y")] == Delays(70, 70)  # 60 + 20, but no more than its out
 
 
+def test_a_part_may_stand_twice_on_a_path() -> None:
+    shared, twice = part((10, 40), (5, 60), difference=20), part((4, 5), (6, 7), name="twice")
+    built = drive("X Y", {"idle": "off off"}, paths={"X": (shared, twice, twice), "Y": (shared,)})
+    # X follows Y's 60 with 20 less and its own 2 · 4 more; Y follows X's 60 + 2 · 7 with 20 + 2 · 7 less
+    assert delays(built, hazard("X, Y")) == {Literal("X"): Delays(48, 74), Literal("Y"): Delays(40, 60)}
+
+
 def test_a_wide_difference_changes_nothing() -> None:
     shared = part((10, 40), (5, 60), difference=55)
     built = drive("X Y", {"idle": "off off"}, paths={"X": (shared,), "Y": (shared,)})
     assert set(delays(built, hazard("X, Y")).values()) == {Delays(10, 60)}
+
+
+def test_a_wide_difference_counts_no_more_than_the_times_themselves() -> None:
+    """One raises `in`; the other, which could differ by more than its times allow, adds nothing."""
+    narrow, wide = part((10, 40), (5, 60), difference=20), part((10, 40), (5, 60), name="wide", difference=55)
+    built = drive("X Y", {"idle": "off off"}, paths={"X": (narrow, wide), "Y": (narrow, wide)})
+    assert set(delays(built, hazard("X, Y")).values()) == {Delays(120 - 20 - (60 - 10), 120)}
+
+
+def test_a_part_without_an_upper_bound_cannot_be_judged() -> None:
+    endless = replace(part((1, 2), (3, 4)), off=Interval(3, None))
+    built = drive("X Y", {"idle": "off off"}, paths={"X": (endless,), "Y": ()})
+    with pytest.raises(NotPermitted, match="no upper bound"):
+        replayed.delays(built, hazard("X, Y"))
 
 
 def test_when_a_hazard_is_asked_for() -> None:

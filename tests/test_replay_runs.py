@@ -3,12 +3,12 @@
 from dataclasses import replace
 
 import pytest
-from build import AT_ONCE, after, drive, move, pin, span, steps, trace, trip, when, writes
+from build import AT_ONCE, after, carrier, drive, move, pin, span, steps, trace, trip, when, writes
 
 from seqcheck.drive import Drive, How, Level, Order
 from seqcheck.evidence.replay import NotPermitted, replay
 from seqcheck.evidence.walk import Walk
-from seqcheck.verdict import Trace
+from seqcheck.verdict import Phase, Trace
 
 
 def permitted(built: Drive, lines: str, end: int, **more: object) -> Walk:
@@ -51,9 +51,24 @@ def test_a_move_that_writes_once() -> None:
     refused(built, "7 begins 0: X on; 7 enters open", 9, "writes are events of their own")
 
 
+def test_without_a_clock_line_firmware_keeps_its_waits() -> None:
+    built = replace(drive("X Y", ROWS, moves=(move("idle", "open", steps=steps((5, 8))),)), clock=None)
+    permitted(built, "0 begins 0; 8 writes X on; 8 enters open", 9)
+    refused(built, "0 begins 0; 9 writes X on", 9, "must go on by 8 ps")
+
+
+def test_of_what_is_overdue_the_earliest_is_told() -> None:
+    slow, quick = carrier("k", span(20), span(50)), carrier("m", span(20), span(30))
+    built = drive("X Y", {"idle": "off off"}, carriers=(slow, quick))
+    phases = (Phase("k", False, 0, True), Phase("m", False, 0, True))
+    refused(built, "", 99, "the reference of m must rise by 30 ps", phases=phases)
+    refused(built, "", 99, "the reference of m must rise by 30 ps", phases=phases[::-1])
+
+
 def test_what_is_no_event_of_a_drive() -> None:
     built = drive("X Y", ROWS, moves=(move("idle", "open"), move("open", "idle")))
     refused(built, "7 begins 2", 9, "no such move")
+    refused(built, "7 begins -1", 9, "no such move")
     refused(built, "7 begins trip 0", 9, "no such move or trip")
     refused(built, "7 begins 1", 9, "rests in idle, which the move does not leave")
     refused(built, "7 writes X on", 9, "the firmware rests in idle")
@@ -221,6 +236,17 @@ def test_ports_only_count_by_port() -> None:
     single = ordered(Order.TABLE, ports="pppp")
     refused(single, "0 begins 0; 0 writes A on, B off, C free, D free", 9, "now is A on", literals="A, B")
     permitted(gapped(How.BY_PORT), "1 begins 0; 1 writes Y on; 6 writes X on; 6 enters both", 9)  # no line in pins
+
+
+def test_a_port_with_a_turn_on_is_no_turn_off_and_comes_where_its_first_column_is() -> None:
+    mixed = ordered(Order.OFFS_FIRST, how=How.BY_PORT, ports="pp--")
+    late = "0 begins 0; 0 writes D free; 1 writes A on, B off; 2 writes C free; 2 enters next"
+    permitted(mixed, late, 9, literals="A, B")
+    refused(mixed, "0 begins 0; 0 writes A on, B off", 9, "the order of the writes asks for", literals="A, B")
+    table = ordered(Order.TABLE, how=How.BY_PORT, ports="p-p-")
+    first = "0 begins 0; 0 writes A on, C free; 1 writes B off; 2 writes D free; 2 enters next"
+    permitted(table, first, 9, literals="A, B")
+    refused(table, "0 begins 0; 0 writes B off", 9, "the order of the writes asks for", literals="A, B")
 
 
 def test_ports() -> None:

@@ -2,10 +2,11 @@
 
 from dataclasses import replace
 
-from build import drive, move, pin, span, steps, trip, when, writes
+from build import carrier, drive, move, pin, span, steps, trip, when, writes
 from test_replay_runs import ROWS, permitted, refused
 
-from seqcheck.drive import Drive, Level
+from seqcheck.drive import Command, Drive, Level, Update
+from seqcheck.verdict import Phase
 
 FAULT = trip("fault", "open both", "idle", within=10)
 OPENED = "0 begins 0; 0 writes X on; 0 enters open; "
@@ -37,6 +38,24 @@ def test_a_trip_without_within_is_taken_when_it_arrives() -> None:
     built = tripped(trip("fault", "open", "idle"))
     permitted(built, OPENED + "4 arrives fault; 4 begins trip 0; 4 writes X off; 4 enters idle", 99)
     refused(built, OPENED + "4 arrives fault; 5 begins trip 0", 99, "must be taken by 4 ps")
+
+
+def test_nothing_comes_between_an_arrival_and_its_taking_without_within() -> None:
+    built = tripped(trip("fault", "open", "idle"), trip("halt", "open", "shut", at_once=True))
+    refused(built, OPENED + "4 arrives fault; 4 begins 1; 4 writes Y on", 9, "is taken as it arrives")
+    refused(built, OPENED + "4 arrives fault; 4 arrives fault", 9, "is taken as it arrives")
+    refused(built, OPENED + "4 arrives fault", 4, "only half done")
+
+
+def test_a_trip_that_waited_for_an_unbroken_move_is_no_part_of_its_end() -> None:
+    """Without `within` it has no time left then, but what comes in the same instant may come first."""
+    built = tripped(trip("fault", "open shut", "idle"), trip("halt", "shut", "open", at_once=True))
+    begun = OPENED + "4 begins 2; 4 writes X off; 20 arrives fault; 34 writes Y on; 34 enters shut"
+    permitted(built, begun + "; 34 begins trip 0; 34 writes Y off; 34 enters idle", 99)
+    halted = begun + "; 34 begins trip 1; 34 writes X on, Y off; 34 enters open; "
+    permitted(built, halted + "34 begins trip 0; 34 writes X off; 34 enters idle", 34)
+    permitted(built, begun, 34)
+    refused(built, begun, 35, "fault must be taken by 34 ps")
 
 
 def test_firmware_runs_on_until_the_trip_is_taken() -> None:
@@ -152,6 +171,18 @@ def test_a_trip_in_hand_stays_in_hand_through_a_hardware_trip() -> None:
     refused(brief, written, 15, "must be taken by 14 ps")
 
 
+def test_a_hardware_trip_that_interrupts_another_counts_as_leaving_what_was_left_first() -> None:
+    first = trip("halt", "open", "shut", origins="idle open", at_once=True, steps=steps("X off", (50, 50)))
+    again = trip("stop", "", "idle", origins="open", at_once=True, steps=steps("Y off", (50, 50)))
+    last = trip("end", "", "idle", origins="open", at_once=True)
+    built = tripped(first, again, last, late=None)
+    begun = OPENED + "4 begins trip 0; 4 writes X off; 6 begins trip 1; "
+    permitted(built, begun + "7 begins trip 2; 7 enters idle", 99)
+    refused(built, "0 begins 0; 0 writes X on; 0 enters open; 4 begins trip 1", 99, "does not come in mode open")
+    moved = tripped(first, again, last, late=None)
+    refused(moved, "0 begins 0; 0 begins trip 1", 99, "nothing can come before")
+
+
 # Reset
 
 PINS = (pin("X", after=span(2, 5)), pin("Y", Level.HIGH, after=span(2, 5)))
@@ -177,6 +208,31 @@ def test_reset_releases_every_pin_at_once() -> None:
     refused(built, begun + "4 enters reset: X free, Y off", 50, "reset frees every pin")
     refused(built, begun + "4 begins 0", 50, "nothing can come before")
     refused(built, begun, 4, "half done")
+
+
+def test_reset_writes_what_is_not_free_yet() -> None:
+    rows = {"idle": "off off", "half": "free off", "reset": "free free"}
+    built = drive("X Y", rows, moves=(move("idle", "half"), move("half", "reset")), pins=PINS)
+    begun = "0 begins 0; 0 writes X free; 0 enters half; 4 begins 1; "
+    for entered in ("", ": Y free", ": X free, Y free"):
+        permitted(built, begun + f"4 enters reset{entered}", 5)
+    refused(built, begun + "4 enters reset: X free", 5, "reset frees every pin")
+
+
+def test_reset_holds_nothing_for_a_carrier() -> None:
+    """What is released is off its carrier in that instant, and stays so at the carrier's next rise."""
+    rows = {"idle": "off off", "run": "k ~k", "reset": "free free"}
+    built = drive(
+        "X Y",
+        rows,
+        moves=(move("idle", "run"), move("run", "reset")),
+        carriers=(carrier("k", span(20), span(40), update=Update.AT_RISE),),
+        pins=(pin("X"), pin("Y")),
+    )
+    lines = "0 begins 0; 0 writes X k, Y ~k; 0 enters run; 40 rises k; 60 falls k; 70 begins 1; 70 enters reset; "
+    walk = permitted(built, lines + "100 rises k", 110, phases=(Phase("k", False, 0, True),))
+    assert walk.commands["Y"] == [(None, Command.OFF), (60, Command.ON), (70, Command.OFF)]
+    assert not walk.pins.held
 
 
 def test_reset_drops_what_is_in_hand_and_is_left_like_any_mode() -> None:

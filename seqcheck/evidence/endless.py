@@ -48,9 +48,9 @@ def _require_lasting(drive: Drive, walk: Walk, literal: Literal, fall: int) -> N
     cell = walk.pins.effective[switch]
     if isinstance(cell, Follow) and not partners:
         carrier = drive.carriers[cell.carrier]
-        away = _shortest_away(carrier, cell, literal)
         if now and not _must_leave(carrier, cell, literal):
             return
+        away = _shortest_away(carrier, cell, literal)
         if away is None or away > fall:
             raise NotPermitted(f"{literal} cannot stay possible while its switch follows {cell}")
     elif not isinstance(cell, Follow) and not now:
@@ -72,8 +72,7 @@ def _shortest_away(carrier: Carrier, cell: Follow, literal: Literal) -> int | No
     if literal.on:
         never = on_level is None or (on_level.hi is not None and on_level.hi < carrier.dead.lo)
         return None if never or off_level is None else off_level.lo + carrier.dead.lo
-    if on_level is None:
-        return 0
+    assert on_level is not None, "a switch that never comes on has not to leave where it is off"
     latest = on_level.lo if carrier.dead.hi is None else min(on_level.lo, carrier.dead.hi)
     return None if off_level is None and on_level.hi is None else on_level.lo - latest
 

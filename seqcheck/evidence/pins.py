@@ -52,7 +52,7 @@ class Pins:
             raise NotPermitted(f"the start row has no constant cell for {switch}")
         return _CONSTANT[cell]
 
-    def write(self, time: int, switch: str, cell: Cell, *, unheld: bool = False) -> None:
+    def write(self, time: int, switch: str, cell: Cell, *, unheld: bool) -> None:
         """`cell` is written to `switch`: it acts at once, or is held for a carrier unless `unheld`."""
         self.written[switch] = cell
         self.held.pop(switch, None)

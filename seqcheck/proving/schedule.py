@@ -25,7 +25,7 @@ def potentials(count: int, constraints: Sequence[Difference], origin: int) -> li
     """The greatest value of every variable relative to `origin`, INFINITE where unbounded; None if infeasible."""
     values = [INFINITE] * count
     values[origin] = 0
-    for _ in range(count + 1):
+    for _ in range(count):
         changed = False
         for one in constraints:
             start = values[one.earlier]

@@ -76,33 +76,37 @@ def ticks(location: Location, zone: Zone) -> bool:
 
 def nodes(initial: Iterable[Hop], observer: Observer) -> Iterator[Node]:
     """All stored zones, fewest moves first; on every step each zone before is stored or included in a stored one."""
-    level: list[Node] = []
     count = 0
-    for hop in initial:
-        node = _stored(None, [0], 1, hop)
-        if node is not None:
-            count += 1
-            observer(count)
-            level.append(node)
-            yield node
-    while level:
-        following: list[Node] = []
-        for node in level:  # grows while it is walked through
-            if not node.alive:
-                continue
-            for hop in node.location.out():
-                new = _stored(node, node.zone, node.location.size, hop)
-                if new is None:
-                    continue
+    waiting: list[tuple[Node | None, Hop]] = [(None, hop) for hop in initial]
+    while waiting:
+        level: list[Node] = []
+        following: list[tuple[Node | None, Hop]] = []
+        for parent, hop in waiting:
+            new = _stored(parent, hop)
+            if new is not None:
                 count += 1
                 observer(count)
-                (following if hop.cost else level).append(new)
+                level.append(new)
                 yield new
-        level = following
+        for node in level:  # grows while it is walked through
+            for hop in node.location.out() if node.alive else ():
+                if hop.cost:
+                    following.append((node, hop))
+                    continue
+                new = _stored(node, hop)
+                if new is not None:
+                    count += 1
+                    observer(count)
+                    level.append(new)
+                    yield new
+        waiting = following
 
 
-def _stored(parent: Node | None, zone: Zone, size: int, hop: Hop) -> Node | None:
-    new = successor(zone, size, hop)
+def _stored(parent: Node | None, hop: Hop) -> Node | None:
+    if parent is None:
+        new = successor([0], 1, hop)
+    else:
+        new = successor(parent.zone, parent.location.size, hop) if parent.alive else None
     if new is None:
         return None
     passed = hop.target.passed
@@ -185,7 +189,7 @@ def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | N
         complete = False
     if best is None:
         return None
-    return Longest(None if most >= INFINITE else most, best, complete or most >= INFINITE)
+    return Longest(None if most >= INFINITE else most, best, complete)
 
 
 def _measured(node: Node) -> int:

@@ -9,7 +9,7 @@ from seqcheck.contents import Entry, contents
 from seqcheck.drive import Drive
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.source import Place
-from seqcheck.verdict import Finding, Outcome, Undecided, Unsafe, Verdict
+from seqcheck.verdict import WARNINGS, Finding, Outcome, Undecided, Unsafe, Verdict
 
 
 class How(Enum):
@@ -105,6 +105,15 @@ class Margin:
 
 
 @dataclass(frozen=True, slots=True)
+class Unmeasured:
+    """A gap that was not found, in one file or both, before a limit was reached."""
+
+    hazard: Hazard
+    after: Literal
+    limit: str
+
+
+@dataclass(frozen=True, slots=True)
 class Way:
     """A way from a mode to another, and the events and trips that lead there."""
 
@@ -121,12 +130,17 @@ class Reach:
     ways: tuple[Way, ...]
 
 
+Told = tuple[Finding, str | None]
+"""A finding, and the reason of the waiver that lets it pass."""
+
+
 @dataclass(frozen=True, slots=True)
 class Comparison:
     """Everything that a change comes to. `same`: both files mean the same, whatever they look like.
 
-    `broken` are findings and warnings that only the new file has, `mended` those that only the old one has.
-    `unmeasured` are gaps that were not found within a stated limit, `limit`.
+    `broken` are findings and warnings that only the new file has, `mended` those that only the old one has, each with
+    the reason of a waiver that lets it pass.
+    `unmeasured` are gaps that were not found within a limit, which is named.
     """
 
     old: Outcome
@@ -136,11 +150,21 @@ class Comparison:
     gained: Reach
     lost: Reach
     verdicts: tuple[Turned, ...]
-    broken: tuple[Finding, ...]
-    mended: tuple[Finding, ...]
+    broken: tuple[Told, ...]
+    mended: tuple[Told, ...]
     margins: tuple[Margin, ...]
-    unmeasured: tuple[tuple[Hazard, Literal], ...]
-    limit: int
+    unmeasured: tuple[Unmeasured, ...]
+
+    @property
+    def worse(self) -> bool:
+        """Whether a hazard became possible or a check came to be broken that no waiver lets pass."""
+        broken = any(one.check not in WARNINGS and why is None for one, why in self.broken)
+        return broken or any(one.worse for one in self.verdicts)
+
+    @property
+    def undecided(self) -> bool:
+        """Whether some hazard of the new file is neither proven nor disproven."""
+        return any(one.turn is Turn.UNDECIDED for one in self.verdicts)
 
 
 def differences(old: Drive, new: Drive) -> tuple[Change, ...]:
@@ -174,7 +198,7 @@ def _fields(old: Entry, new: Entry) -> Iterator[Field]:
     if old.steps == new.steps:
         return
     if len(old.steps) != len(new.steps):
-        yield Field("steps", "; ".join(old.steps) or None, "; ".join(new.steps) or None)
+        yield Field("steps", ", then ".join(old.steps) or None, ", then ".join(new.steps) or None)
         return
     for number, (before, after) in enumerate(zip_longest(old.steps, new.steps), 1):
         if before != after:

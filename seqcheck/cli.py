@@ -42,6 +42,15 @@ nothing with the prover. Evidence that does not bear out what it says ends with 
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_COMPARE = """\
+What the change from OLD to NEW comes to, for a review: hazards, findings, margins, overlaps, what can be entered, and
+what is said differently. One of them may be '-', standard input: 'git show HEAD:x.dseq | seqcheck compare - x.dseq'.
+Files that it names with 'use' are looked for from the folder you are in, as they are now."""
+_COMPARED = """\
+exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not shown to be in OLD, or a check is broken
+that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
+undecided within the limits given; 4 the program itself is at fault. Code 0 does not say that NEW is proven: what was
+possible before and still is, is no change. A smaller margin or a longer overlap alone is told, and is code 0 too."""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -123,6 +132,16 @@ def _parser() -> argparse.ArgumentParser:
     rows.add_argument("file", metavar="FILE")
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    compare = commands.add_parser(
+        "compare", help="say what a change does", description=_COMPARE, epilog=_COMPARED, allow_abbrev=False
+    )
+    compare.add_argument("old", metavar="OLD")
+    compare.add_argument("new", metavar="NEW")
+    compare.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
+    compare.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    compare.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    compare.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    compare.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
@@ -138,6 +157,8 @@ def _run(arguments: list[str]) -> int:
             return _audit(asked.file, asked.evidence)
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        if asked.command == "compare":
+            return _compare(asked)
         form = _one_of("--as", asked.form, FORMS)
         if asked.with_fault and form not in ("screen", "lines"):
             _wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
@@ -344,6 +365,41 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     painted = _wants_colour(colour, sys.stdout) and not out
     code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
     return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
+
+
+def _compare(asked: argparse.Namespace) -> int:
+    """Hold two files against each other; the exit code."""
+    form = _one_of("--as", asked.form, ("screen", "lines"))
+    colour = _one_of("--color", asked.color, ("auto", "always", "never"))
+    observer = _observer(Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after)))
+    if asked.old == asked.new == _STDIN:
+        _wrong("only one of two files can come from standard input; name the other")
+    from seqcheck.checking import Fault
+    from seqcheck.commands.compare import compare
+    from seqcheck.language import read
+    from seqcheck.reports import comparison, screen
+
+    files: list[Drive] = []
+    mistakes: list[Problem] = []
+    for file in (asked.old, asked.new):
+        try:
+            files.append(read(_text(file), file, _text))
+        except Problems as problems:
+            mistakes += problems.found
+    if mistakes:
+        return _mistaken(Problems(mistakes))
+    try:
+        found = compare(files[0], files[1], (asked.old, asked.new), observer)
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"internal error, please report it with both files: {fault}")
+        return FAULT
+    report = comparison.report(found)
+    painted = _wants_colour(colour, sys.stdout) and not asked.out
+    text = comparison.lines(found) if form == "lines" else (screen.coloured if painted else screen.plain)(report)
+    code = FOUND if found.worse else UNDECIDED if found.undecided else PROVEN
+    return _worse(code, _deliver(text, asked.out))
 
 
 def _text(file: str) -> str:

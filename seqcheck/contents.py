@@ -193,7 +193,8 @@ def _known(facts: Sequence[Known]) -> str | None:
 
 def _move(drive: Drive, move: Move, source: str) -> Entry:
     tolerance, trigger = _tolerance(drive), move.trigger
-    when = f" when {trigger.event}" if isinstance(trigger, When) else " after a time" if isinstance(trigger, After) else ""
+    begins = f" when {trigger.event}" if isinstance(trigger, When) else ""
+    when = " after a time" if isinstance(trigger, After) else begins
     earliest = latest = None
     if isinstance(trigger, When):
         earliest = _time(Interval(trigger.earliest, None), tolerance) if trigger.earliest else None
@@ -209,13 +210,14 @@ def _move(drive: Drive, move: Move, source: str) -> Entry:
 
 
 def _trip(drive: Drive, trip: Trip) -> Entry:
+    moves = None if trip.origins - {trip.target} == trip.resting - {RESET} else _listed(drive, trip.origins)
     fields = _said(
         from_=_listed(drive, trip.resting),
         to=trip.target,
         within=None if trip.within is None else shown(trip.within),
         at_once="yes" if trip.at_once else None,
         with_=_known(trip.known),
-        during_moves_from=None if trip.origins - {trip.target} == trip.resting - {RESET} else _listed(drive, trip.origins),
+        during_moves_from=moves,
         during_moves_that_left_its_target="yes" if trip.target in trip.origins else None,
     )
     return Entry("trip", trip.name, fields, trip.place, _steps(drive, trip.steps))
@@ -226,8 +228,9 @@ def _listed(drive: Drive, names: frozenset[str]) -> str:
 
 
 def _steps(drive: Drive, steps: Sequence[Step]) -> tuple[str, ...]:
+    tolerance = _tolerance(drive)
     return tuple(
-        f"set {_writes(drive, one.writes)}" if isinstance(one, SetStep) else f"wait {_time(one.time, _tolerance(drive))}"
+        f"set {_writes(drive, one.writes)}" if isinstance(one, SetStep) else f"wait {_time(one.time, tolerance)}"
         for one in steps
     )
 
@@ -266,8 +269,8 @@ def _rule(rule: Rule) -> tuple[str, Fields]:
 
 
 def _hertz(frequency: Fraction) -> str:
-    size, unit = next(((size, unit) for unit, size in reversed(HERTZ.items()) if frequency >= size), (Fraction(1), "Hz"))
-    return f"{_decimal(frequency / size)} {unit}"
+    unit = next((unit for unit, size in reversed(HERTZ.items()) if frequency >= size), "Hz")
+    return f"{_decimal(frequency / HERTZ[unit])} {unit}"
 
 
 def _ratio(ratio: Fraction) -> str:

@@ -22,7 +22,7 @@ def table(outcome: Outcome) -> list[Line]:
     drive = outcome.drive
     rows = [(called(drive, one), list(brings(drive, one))) for one in outcome.faults if one.brings]
     calm = [called(drive, one) for one in outcome.faults if not one.brings]
-    width = min(_WIDEST, max([len("stuck"), *(len(name) for name, _ in rows)]))
+    width = min(_WIDEST, max([len(_NOTHING), *(len(name) for name, _ in rows)]))
     found = [line(Piece("single faults", Tone.STRONG), f"  {_counts(outcome.faults)}")]
     found += _row("stuck", ["what it brings alone, with the firmware as it is"], width, Tone.FAINT)
     for name, said in rows:

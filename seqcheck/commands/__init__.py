@@ -1,0 +1,1 @@
+"""What single commands do besides proving; `cli` reads their arguments and hands them the world."""

@@ -140,7 +140,7 @@ def test_an_interlock_sees_a_pin_that_is_stuck(tmp_path: Path, capsys: pytest.Ca
     """A pin that is stuck on keeps its partner off; a switch that is stuck does not."""
     _, out = linted(tmp_path, capsys, leg(locks="interlock UH UL"))
     assert "  UH on    P to N while UL can conduct: in row down\n" in out
-    assert "  nothing  comes of PA8 high; UH off; PA8 low; PB13 low; UL off; PB13 high\n" in out
+    assert "  nothing  comes of PA8 of UH high; UH off; PA8 of UH low; PB13 of UL low; UL off; PB13\n           of UL high\n" in out
 
 
 def test_a_switch_that_shorts_alone(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

@@ -58,7 +58,8 @@ def called(drive: Drive, faulted: Faulted) -> str:
         elif pin is None:
             names.append(f"{'its command' if names else f'command of {one.switch}'} {level}")
         else:
-            names.append(f"{pin.name} {'high' if one.on == pin.active_high else 'low'}")
+            of = "" if names else f" of {one.switch}"
+            names.append(f"{pin.name}{of} {'high' if one.on == pin.active_high else 'low'}")
     return ", ".join(names)
 
 

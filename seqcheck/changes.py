@@ -9,7 +9,7 @@ from seqcheck.contents import Entry, contents
 from seqcheck.drive import Drive
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.source import Place
-from seqcheck.verdict import WARNINGS, Finding, Outcome, Undecided, Unsafe, Verdict
+from seqcheck.verdict import WARNINGS, Finding, Margin, Outcome, Undecided, Unsafe, Verdict
 
 
 class How(Enum):
@@ -90,23 +90,21 @@ class Turned:
 
 
 @dataclass(frozen=True, slots=True)
-class Margin:
-    """The gap after one literal of a hazard, safe in both files, in ps; None: the others never follow."""
+class Moved:
+    """The margin of one hazard after one of its literals, in two files that prove it; both are exact."""
 
-    hazard: Hazard
-    after: Literal
-    old: int | None
-    new: int | None
+    old: Margin
+    new: Margin
 
     @property
     def shrank(self) -> bool:
         """Whether less is left than before."""
-        return self.new is not None and (self.old is None or self.new < self.old)
+        return self.new.slack is not None and (self.old.slack is None or self.new.slack < self.old.slack)
 
 
 @dataclass(frozen=True, slots=True)
 class Unmeasured:
-    """A gap that was not found, in one file or both, before a limit was reached."""
+    """A margin that was not found, in one file or both, before a limit was reached."""
 
     hazard: Hazard
     after: Literal
@@ -140,7 +138,7 @@ class Comparison:
 
     `broken` are findings and warnings that only the new file has, `mended` those that only the old one has, each with
     the reason of a waiver that lets it pass.
-    `unmeasured` are gaps that were not found within a limit, which is named.
+    `unmeasured` are margins that were not found within a limit, which is named.
     """
 
     old: Outcome
@@ -152,7 +150,7 @@ class Comparison:
     verdicts: tuple[Turned, ...]
     broken: tuple[Told, ...]
     mended: tuple[Told, ...]
-    margins: tuple[Margin, ...]
+    margins: tuple[Moved, ...]
     unmeasured: tuple[Unmeasured, ...]
 
     @property

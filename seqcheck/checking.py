@@ -4,9 +4,10 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
+from seqcheck.confirming import Fault, confirmed, named, place_of
 from seqcheck.drive import ApartRule, ClearsRule, Drive, Interlock, LastsRule, MarginRule, NeverRule, Rule
-from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Hazard, Literal
+from seqcheck.margins import thin
 from seqcheck.messages import Problem, Problems
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
@@ -16,7 +17,7 @@ from seqcheck.proving.tracing import Infeasible
 from seqcheck.reports.waived import lets_pass
 from seqcheck.sizing import cure
 from seqcheck.source import Place
-from seqcheck.verdict import Act, Check, Finding, Outcome, Replayed, Safe, Trace, Undecided, Unsafe, Verdict
+from seqcheck.verdict import Check, Finding, Outcome, Safe, Trace, Undecided, Unsafe, Verdict
 
 Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
@@ -30,7 +31,9 @@ PROVEN_CHECKS = (
     Check.AMBIGUOUS,
     Check.STALLED,
     Check.IDLE_WAIVER,
+    Check.THIN_MARGIN,
     Check.OPEN_WINDING,
+    Check.TOGETHER,
     Check.ROW_MEANING,
     Check.NO_PATH,
     Check.HELD_BY_INTERLOCK,
@@ -39,16 +42,10 @@ PROVEN_CHECKS = (
 """What this version looks for; a file or a call that asks for another check is refused."""
 
 _RULES: dict[type[Rule], str] = {
-    MarginRule: "margin at least",
-    NeverRule: "never",
     ClearsRule: "clears",
     LastsRule: "on at most, on at least, off at least",
     ApartRule: "apart",
 }
-
-
-class Fault(Exception):  # noqa: N818 - the program is at fault, not the input
-    """A counterexample that its own replay does not confirm: nothing that was found may be shown."""
 
 
 def check(
@@ -65,14 +62,27 @@ def check(
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
     findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
-    for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)):
-        verdict = _judged(prover, hazard, observer, kept)
+    for hazard, rule in _asked(drive):
+        verdict = _judged(prover, hazard, observer, kept, rule)
         verdicts.append(verdict)
-        if isinstance(verdict, Safe) and not hazard.currents:
+        if isinstance(verdict, Safe) and hazard.joins:
             findings += _held_by_interlock(prover, hazard, observer)
+            verdicts += (one for least in _margin_rules(drive) for one in thin(prover, least, hazard, observer))
     findings += _punctual(drive, verdicts)
     findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
+
+
+def _asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
+    """Everything that must never be possible at once, and the rule that asks for it (None: it is built in)."""
+    yield from ((hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)))
+    for rule in drive.rules:
+        if isinstance(rule, NeverRule):
+            yield Hazard(tuple(Literal(switch, on) for switch, on in rule.literals), ()), rule.place
+
+
+def _margin_rules(drive: Drive) -> list[MarginRule]:
+    return [rule for rule in drive.rules if isinstance(rule, MarginRule)]
 
 
 def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
@@ -88,19 +98,24 @@ def refuse(drive: Drive) -> None:
     found = [
         Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
         for rule in drive.rules
+        if not isinstance(rule, MarginRule | NeverRule)
     ]
     if found:
         raise Problems(found)
 
 
-def _judged(prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None) -> Verdict:
-    verdict, proof = _with_proof(prover, hazard, observer)
+def _judged(
+    prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None, rule: Place | None
+) -> Verdict:
+    verdict, proof = _with_proof(prover, hazard, observer, rule)
     if kept is not None:
         kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
     return verdict
 
 
-def _with_proof(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Verdict, Data | None]:
+def _with_proof(
+    prover: Prover, hazard: Hazard, observer: Observer, rule: Place | None
+) -> tuple[Verdict, Data | None]:
     """The verdict on a hazard, and its proof as data where it is safe and the prover keeps it."""
     seen = 0
 
@@ -114,54 +129,25 @@ def _with_proof(prover: Prover, hazard: Hazard, observer: Observer) -> tuple[Ver
     except LimitReached as limit:
         return Undecided(hazard, str(limit), seen), None
     except Infeasible as fault:
-        raise Fault(f"a path to {_named(hazard)} has no times") from fault
+        raise Fault(f"a path to {named(hazard)} has no times") from fault
     if isinstance(proof, Proven):
         return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.data
-    return _unsafe(prover.drive, hazard, proof, observer), None
+    return _unsafe(prover.drive, hazard, proof, observer, rule), None
 
 
-def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Unsafe:
-    try:
-        trace = proof.trace if proof.held is None and proof.greatest else from_its_beginning(drive, proof.trace)
-        replayed = replay(drive, trace)
-    except NotPermitted as fault:
-        raise Fault(f"the run that would show {_named(hazard)} does not replay: {fault}") from fault
+def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
+    whole = proof.held is not None or not proof.greatest
+    trace, replayed = confirmed(drive, proof.trace, whole=whole)
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
-    place, check = _place(drive, proof, replayed), _check_of(hazard, proof.held)
-    return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held)
+    place = place_of(drive, proof.trace, replayed) if proof.held is None else drive.modes[proof.held].place
+    check = _check_of(hazard, proof.held) if rule is None else Check.TOGETHER
+    return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held, rule)
 
 
 def _check_of(hazard: Hazard, held: str | None) -> Check:
     if hazard.currents:
         return Check.OPEN_WINDING
     return Check.SHORT if held else Check.OVERLAP
-
-
-def _named(hazard: Hazard) -> str:
-    return " with ".join(map(str, hazard.literals))
-
-
-def _place(drive: Drive, proof: Refuted, replayed: Replayed) -> Place:
-    """The row that holds a short; for an overlap the run that brings it, or the row at rest in which it comes."""
-    trace = proof.trace
-    if proof.held is not None:
-        return drive.modes[proof.held].place
-    changes = [time for line in replayed.commands.values() for time, _ in line if time is not None]
-    last = max((time for time in changes if time <= trace.overlap_from), default=0)
-    concerned = {literal.switch for literal in trace.hazard.literals}
-    mode, run, at_rest, written = drive.start, drive.modes[drive.start].place, True, False
-    for event in trace.events:
-        if event.time > last:
-            break
-        if event.act is Act.BEGINS:
-            run, at_rest = (drive.trips[event.index] if event.trip else drive.moves[event.index]).place, False
-        elif event.act is Act.ENTERS:
-            mode, at_rest = event.name, True
-        if event.time == last and concerned & {switch for switch, _ in event.writes}:
-            written = True
-    if at_rest and not written:
-        return drive.modes[mode].place
-    return run
 
 
 def _without_path(drive: Drive) -> Iterator[Finding]:
@@ -257,14 +243,18 @@ def _punctual(drive: Drive, verdicts: list[Verdict]) -> Iterator[Finding]:
         return
     resting = [one.hazard for one in verdicts if isinstance(one, Safe) and not one.however_late]
     for hazard in resting:
-        text = f"that {_named(hazard)} never meet rests on firmware that is never late"
+        text = f"that {named(hazard)} never meet rests on firmware that is never late"
         place = drive.clock.place if drive.clock else drive.place
         names = tuple(literal.switch for literal in hazard.literals)
         yield Finding(Check.PUNCTUAL, place, text, "say how late it can be: 'clock ..., late by at most ...'", names)
 
 
 _OF_A_VERDICT = frozenset(
-    {Check.SHORT.value, Check.OVERLAP.value, Check.HELD_BY_INTERLOCK.value, Check.PUNCTUAL.value}
+    one.value
+    for one in (
+        *(Check.SHORT, Check.OVERLAP, Check.OPEN_WINDING, Check.TOGETHER, Check.THIN_MARGIN),
+        *(Check.HELD_BY_INTERLOCK, Check.PUNCTUAL),
+    )
 )
 """Checks whose findings are not all known while a hazard is undecided."""
 

@@ -6,6 +6,7 @@ import errno
 import gc
 import os
 import re
+import stat
 import sys
 import time
 from collections.abc import Callable, Iterator, Sequence
@@ -16,6 +17,8 @@ from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
 from seqcheck.drive import Drive, Library
+from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
+from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems, nearest
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.source import Place, printable
@@ -26,8 +29,6 @@ if TYPE_CHECKING:
     from seqcheck.evidence.audit import Audited
     from seqcheck.reports.repository import Repository
 
-PROVEN, FOUND, WRONG, UNDECIDED, FAULT = 0, 1, 2, 3, 4
-_WORST_FIRST = (FAULT, WRONG, FOUND, UNDECIDED, PROVEN)
 _STDIN = "-"
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
 _WHATEVER_COMES = ("annotations", "json", "sarif")
@@ -39,6 +40,9 @@ folder you are in, '-' standard input. A file that only serves 'use' is read and
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
 nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
+_MARGINS = """\
+The dead-time budget of FILE: for every switch and those that may not conduct with it, what the parts ask for, what the
+file leaves at worst, and the move, trip or row that sets it; least first."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
@@ -51,6 +55,17 @@ exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not s
 that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
 undecided within the limits given; 4 the program itself is at fault. Code 0 does not say that NEW is proven: what was
 possible before and still is, is no change. A smaller margin or a longer overlap alone is told, and is code 0 too."""
+_TIDY = """\
+Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
+mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
+output. Example: seqcheck tidy --check drives"""
+_TIDY_EXITS = """\
+exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file
+cannot be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1,
+0."""
+_START = """\
+Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
+Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -142,11 +157,24 @@ def _parser() -> argparse.ArgumentParser:
     compare.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     compare.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
     compare.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    margins = commands.add_parser(
+        "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
+    )
+    margins.add_argument("file", metavar="FILE")
+    margins.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
+    margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    margins.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
+    tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
+    tidy.add_argument("files", nargs="+", metavar="FILE")
+    tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
+    start = commands.add_parser("start", help="print a first file", description=_START, allow_abbrev=False)
+    start.add_argument("kind", nargs="?", metavar="KIND")
     return parser
 
 
@@ -157,14 +185,20 @@ def _run(arguments: list[str]) -> int:
             return _audit(asked.file, asked.evidence)
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        if asked.command == "tidy":
+            return _tidy(asked.files, asked.check)
+        if asked.command == "start":
+            return _start(asked.kind)
         if asked.command == "compare":
             return _compare(asked)
+        limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+        colour = _one_of("--color", asked.color, ("auto", "always", "never"))
+        if asked.command == "margins":
+            return _margins(asked.file, limits, colour, asked.out)
         form = _one_of("--as", asked.form, FORMS)
         if asked.with_fault and form not in ("screen", "lines"):
             _wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
-        colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         only = frozenset(_check(name) for name in asked.only)
-        limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
         files = list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
@@ -287,7 +321,8 @@ def _lint(
 def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
 ) -> tuple[Answer, int]:
-    from seqcheck.checking import Fault, check
+    from seqcheck.checking import check
+    from seqcheck.confirming import Fault
     from seqcheck.language import read_any
 
     try:
@@ -374,43 +409,77 @@ def _compare(asked: argparse.Namespace) -> int:
     observer = _observer(Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after)))
     if asked.old == asked.new == _STDIN:
         _wrong("only one of two files can come from standard input; name the other")
-    from seqcheck.checking import Fault
-    from seqcheck.commands.compare import compare
-    from seqcheck.language import read
-    from seqcheck.reports import comparison, screen
+    from seqcheck.commands.compare import run
+    from seqcheck.confirming import Fault
 
-    files: list[Drive] = []
-    mistakes: list[Problem] = []
-    for file in (asked.old, asked.new):
-        try:
-            files.append(read(_text(file), file, _text))
-        except Problems as problems:
-            mistakes += problems.found
-    if mistakes:
-        return _mistaken(Problems(mistakes))
+    painted = _wants_colour(colour, sys.stdout) and not asked.out
     try:
-        found = compare(files[0], files[1], (asked.old, asked.new), observer)
+        text, code = run((asked.old, asked.new), _text, observer, form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
         _complain(f"internal error, please report it with both files: {fault}")
         return FAULT
-    report = comparison.report(found)
-    painted = _wants_colour(colour, sys.stdout) and not asked.out
-    text = comparison.lines(found) if form == "lines" else (screen.coloured if painted else screen.plain)(report)
-    code = FOUND if found.worse else UNDECIDED if found.undecided else PROVEN
     return _worse(code, _deliver(text, asked.out))
+
+
+def _margins(file: str, limits: Limits, colour: str, out: str | None) -> int:
+    """Tell the margins of a file; the exit code."""
+    from seqcheck.confirming import Fault
+    from seqcheck.language import read
+    from seqcheck.margins import budget
+    from seqcheck.reports import budget as wording
+    from seqcheck.reports import screen
+
+    try:
+        found = budget(read(_text(file), file, _text), file, _observer(limits))
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    report = wording.report(found)
+    painted = _wants_colour(colour, sys.stdout) and not out
+    code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
+    return _worse(code, FOUND if found.unsafe else UNDECIDED if found.undecided else PROVEN)
+
+
+def _tidy(paths: list[str], only_say: bool) -> int:
+    """Put files in order; the exit code."""
+    from seqcheck.commands.tidy import World, run
+
+    def write(text: str, file: str) -> int:
+        if file != _STDIN:
+            return _deliver(text, file)
+        if hasattr(sys.stdout, "reconfigure"):
+            sys.stdout.reconfigure(encoding="utf-8", newline="")  # what came in goes out, whatever the terminal speaks
+        return _deliver(text, None)
+
+    return run(list(dict.fromkeys(_files(paths))), only_say, World(_data, _text, write, _mistaken, _complain))
+
+
+def _start(kind: str | None) -> int:
+    """Print the first file of a kind, or the kinds; the exit code."""
+    from seqcheck.commands.start import first_file, listing
+
+    try:
+        return _deliver(listing() if kind is None else first_file(kind), None)
+    except KeyError as unknown:
+        _wrong(unknown.args[0])
 
 
 def _text(file: str) -> str:
     from seqcheck.language import decode
 
+    return decode(_data(file), file)
+
+
+def _data(file: str) -> bytes:
     try:
-        data = sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
+        return sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
     except (OSError, ValueError) as refusal:
         why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
         raise Problems([_unreadable(file, why)]) from refusal
-    return decode(data, file)
 
 
 def _unreadable(file: str, why: str) -> Problem:
@@ -439,10 +508,6 @@ def _exit_of(outcome: Outcome) -> int:
     if any(reason(outcome.drive, one) is None for one in found):
         return FOUND
     return UNDECIDED if any(isinstance(one, Undecided) for one in outcome.verdicts) else PROVEN
-
-
-def _worse(one: int, other: int) -> int:
-    return min(one, other, key=_WORST_FIRST.index)
 
 
 # Answering
@@ -526,7 +591,10 @@ def _deliver(text: str, out: str | None) -> int:
 
 
 def _write(out: Path, text: str) -> None:
-    """Write a file whole or not at all, whatever stops it; what is no file, as a pipe or device, is written to."""
+    """Write a file whole or not at all, whatever stops it; what is no file, as a pipe or device, is written to.
+
+    Line ends are written as they are; a file that was there keeps its rights, and is let alone if they forbid writing.
+    """
     if not out.name or out.is_dir():
         raise IsADirectoryError(errno.EISDIR, "it is a folder")
     if out.exists() and not out.is_file():
@@ -535,7 +603,14 @@ def _write(out: Path, text: str) -> None:
     target = Path(os.path.realpath(out))
     draft = target.parent / f".{target.name}.{os.getpid()}.part"
     try:
-        draft.write_text(text, encoding="utf-8", errors="backslashreplace")
+        rights = stat.S_IMODE(target.stat().st_mode) if target.exists() else None
+        if rights is not None:
+            if not os.access(target, os.W_OK):
+                raise PermissionError(errno.EACCES, "it is read-only")
+            draft.touch(0o600)
+        draft.write_text(text, encoding="utf-8", errors="backslashreplace", newline="")
+        if rights is not None:
+            draft.chmod(rights)
         draft.replace(target)
     finally:
         with contextlib.suppress(OSError, ValueError):

@@ -15,7 +15,7 @@ from seqcheck.hazards import Hazard
 from seqcheck.proving.prove import Prover
 from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import INSTANT
-from seqcheck.verdict import Outcome, Unsafe
+from seqcheck.verdict import Check, Outcome, Unsafe
 
 Observer = Callable[[int], None]
 
@@ -25,8 +25,9 @@ MOST_ZONES = 6_000
 
 def with_faults(outcome: Outcome, observer: Observer) -> Outcome:
     """The outcome of a file with what single faults bring about; verdicts and findings stay as they are."""
-    hazards = [one.hazard for one in outcome.verdicts]
-    anyway = frozenset(one.hazard for one in outcome.verdicts if isinstance(one, Unsafe))
+    hazards = tuple(dict.fromkeys(one.hazard for one in outcome.verdicts))
+    unsafe = [one for one in outcome.verdicts if isinstance(one, Unsafe) and one.check is not Check.THIN_MARGIN]
+    anyway = frozenset(one.hazard for one in unsafe)
     return replace(outcome, faults=single_faults(outcome.drive, hazards, anyway, observer))
 
 

@@ -58,19 +58,40 @@ def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cu
     """The first time of the file that, made longer by what is missing, brings a proof; None if none does.
 
     Missing is the overlap, or where it has no end the longest that one switch of the hazard can lag behind another.
+    """
+    missing = _lag(drive, hazard) if proof.overlap is None else proof.overlap
+    found = _first(drive, proof.trace, missing, observer, lambda prover, count: prover.holds(hazard, count))
+    return None if found is None else Cure(found.place, proof.overlap, found.words)
+
+
+def cure_of_margin(drive: Drive, trace: Trace, after: int, least: int, short: int, observer: Observer) -> Cure | None:
+    """The first time of the file that, made longer by what is missing, keeps the margin shown too thin by a trace."""
+
+    def kept(prover: Prover, count: Observer) -> bool:
+        gap = prover.gap(trace.hazard, after, count, least)
+        return prover.holds(trace.hazard, count) and (gap.time is None or gap.time >= least) and not gap.limit
+
+    found = _first(drive, trace, short, observer, kept)
+    return None if found is None else Cure(found.place, short, found.words)
+
+
+def _first(
+    drive: Drive, trace: Trace, missing: int, observer: Observer, holds: Callable[[Prover, Observer], bool]
+) -> _Proposal | None:
+    """The first proposal that holds.
+
     Waits of the runs on the way are tried, the last first, then the carriers' dead times, the beginning of the last
     move, the spacing of writes, and a pause in a run that has none.
     """
-    missing = _lag(drive, hazard) if proof.overlap is None else proof.overlap
     spending = _Budget(observer, _MOST_ZONES)
-    for proposal in _proposals(drive, proof.trace, missing):
+    for proposal in _proposals(drive, trace, missing):
         try:
-            holds = Prover(proposal.drive).holds(hazard, spending)
+            good = holds(Prover(proposal.drive), spending)
         except LimitReached:
             return None
         spending.next_proposal()
-        if holds:
-            return Cure(proposal.place, proof.overlap, proposal.words)
+        if good:
+            return proposal
     return None
 
 

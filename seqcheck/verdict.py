@@ -163,7 +163,11 @@ class Unsafe:
 
     `check` is SHORT or OVERLAP (TOGETHER for a `never` rule, OPEN_WINDING for a winding). `place` is where it happens:
     the row that itself holds it, named in `row`, else the move or trip whose run leads to it. `overlap` is the
-    greatest, in ps, None without end; with `greatest` False a limit was reached, and there may be a longer one.
+    greatest, in ps, None without end; with `greatest` False a limit was reached, and there may be a longer one. `rule`
+    is the line that asks for it, if it is not built in.
+
+    THIN_MARGIN is about a hazard that does not happen, but comes nearer than its rule lets it: the others follow the
+    literal at place `after` sooner by `overlap` than they may.
     """
 
     hazard: Hazard
@@ -175,6 +179,8 @@ class Unsafe:
     cure: "Cure | None" = None
     greatest: bool = True
     row: str | None = None
+    rule: Place | None = None
+    after: int | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -187,6 +193,43 @@ class Undecided:
 
 
 Verdict = Safe | Unsafe | Undecided
+
+
+@dataclass(frozen=True, slots=True)
+class Margin:
+    """How soon after one literal of a safe hazard all others can be possible, at the soonest: `slack` ps later.
+
+    None: they never follow. With `exact` False it is a lower bound, and `limit` tells why. `needed` is what the parts
+    ask for between the command of the literal going and the last of the others coming (ps; negative where they may
+    overlap). `trace` is the run that leaves no more, its place that of the move, trip or row that brings it.
+    """
+
+    hazard: Hazard
+    literal: Literal
+    slack: int | None
+    needed: int
+    exact: bool
+    place: Place | None = None
+    trace: Trace | None = None
+    replayed: Replayed | None = None
+    limit: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Budget:
+    """The margins of one file, least first; what is unsafe, with its greatest overlap (None: without end) and whether
+    that is exact; and what a limit left undecided.
+
+    `held` are safe hazards that only interlocks prevent, `punctual` those that rest on firmware keeping upper bounds.
+    """
+
+    file: str
+    drive: Drive
+    margins: tuple[Margin, ...]
+    unsafe: tuple[tuple[Hazard, int | None, bool], ...]
+    undecided: tuple[Undecided, ...]
+    held: tuple[Hazard, ...] = ()
+    punctual: tuple[Hazard, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -5,6 +5,7 @@ import json
 import re
 from collections.abc import Callable, Iterator
 from copy import deepcopy
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -19,9 +20,10 @@ from seqcheck.circuit import shorting_sets
 from seqcheck.cli import main
 from seqcheck.drive import Drive
 from seqcheck.evidence.audit import Audited, NotProven, audit
-from seqcheck.evidence.certificate import NoEvidence, read, written
+from seqcheck.evidence.certificate import Evidence, NoEvidence, read, written
+from seqcheck.evidence.cover import shorts as walked
 from seqcheck.evidence.cover.shorts import first_uncovered, shorts
-from seqcheck.hazards import delays
+from seqcheck.hazards import Hazard, Literal, delays
 from seqcheck.proving.certify import cover
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.prove import Prover
@@ -292,6 +294,37 @@ def test_every_short_must_be_spoken_of() -> None:
         audited(drive, json.dumps(data))
 
 
+def about(drive: Drive, *literals: Literal) -> Evidence:
+    """The evidence of a drive with one hazard, said of other literals."""
+    evidence = read(evidence_of(drive))
+    (claim,) = evidence.claims
+    return replace(evidence, claims=(replace(claim, hazard=Hazard(literals, ())),))
+
+
+@pytest.mark.parametrize(
+    "literals",
+    [(), (Literal("Q"), Literal("A")), (Literal("A"), Literal("A")), (Literal("A"), Literal("B", False))],
+)
+def test_a_hazard_that_no_stage_has_is_no_evidence(literals: tuple[Literal, ...]) -> None:
+    """Without a switch, with one that is none, with one twice, or neither of conduction nor of open switches alone."""
+    drive = drive_of(CAREFUL)
+    with pytest.raises(NoEvidence):
+        audit(drive, about(drive, *literals))
+
+
+def test_what_shorts_nothing_must_not_be_claimed() -> None:
+    drive = drive_of(CAREFUL)
+    with pytest.raises(NotProven, match="short nothing"):
+        audit(drive, about(drive, Literal("A")))
+
+
+def test_a_stage_with_too_many_ways_is_not_proven(monkeypatch: pytest.MonkeyPatch) -> None:
+    drive = drive_of(CAREFUL)
+    monkeypatch.setattr(walked, "MOST_STEPS", 1)
+    with pytest.raises(NotProven, match="too many ways"):
+        audit(drive, read(evidence_of(drive)))
+
+
 def test_a_run_that_is_none_is_refused() -> None:
     drive = drive_of(HASTY[0])
     data = json.loads(evidence_of(drive))
@@ -375,3 +408,20 @@ def test_the_checker_can_be_read_in_one_sitting() -> None:
     """What decides about covers and potentials."""
     lines = sum(len(path.read_text("utf-8").splitlines()) for path in (HOUSE / "evidence" / "cover").glob("*.py"))
     assert lines <= 1900
+
+
+def test_a_never_rule_is_claimed_and_no_other_is() -> None:
+    """A and B are both off in passing, never both on; no claim can be missed or changed."""
+    drive = drive_of(f"{CAREFUL}rules\n  never A off and B off\n  never A and B\n")
+    evidence = json.loads(evidence_of(drive))
+    assert audited(drive, json.dumps(evidence)) == Audited(2, 2, 1, 0)
+    of_rule = [one for one in evidence["claims"] if not one["joins"]]
+    assert len(of_rule) == 2
+    for rule in of_rule:
+        left = {**evidence, "claims": [one for one in evidence["claims"] if one is not rule]}
+        with pytest.raises(NotProven, match="Nothing is said of the rule in line"):
+            audited(drive, json.dumps(left))
+    other = deepcopy(evidence)
+    next(one for one in other["claims"] if not one["joins"])["literals"][1][1] ^= True
+    with pytest.raises(NoEvidence, match="in no rule"):
+        audited(drive, json.dumps(other))

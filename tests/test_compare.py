@@ -2,12 +2,14 @@
 
 import contextlib
 import io
+import re
 import sys
 from collections.abc import Callable
 from pathlib import Path
 
 import pytest
 
+from seqcheck import margins
 from seqcheck.checking import check
 from seqcheck.cli import main
 from seqcheck.commands import compare
@@ -16,8 +18,9 @@ from seqcheck.proving.search import LimitReached
 from seqcheck.verdict import Check, Outcome
 
 SAMPLES = Path(__file__).parent.parent / "samples"
-VENT = (SAMPLES / "vent.dseq").read_text(encoding="utf-8").replace("  main   ", "  on     ")
-"""The vent without modulation, which is quick to prove."""
+VENT = re.sub(r"(?<=\S) +", " ", (SAMPLES / "vent.dseq").read_text(encoding="utf-8"))
+VENT = VENT.replace("open main off", "open on off").replace("off on main off", "off on on off")
+"""The vent with one blank between words, and without modulation, which is quick to prove."""
 Capture = pytest.CaptureFixture[str]
 
 
@@ -87,6 +90,22 @@ def test_margins_that_moved(tmp_path: Path, capsys: Capture) -> None:
     assert out.splitlines()[1] == "not worse: no hazard became possible; 3 margins grew by up to 3.960396 us."
 
 
+def test_a_margin_that_a_rule_asks_for(tmp_path: Path, capsys: Capture) -> None:
+    """5.231584 us are left; 6 us are asked for."""
+    text = "rules\n  margin at least {} us\n"
+    code, out = compared(tmp_path, capsys, VENT + text.format(5), VENT + text.format(6))
+    assert code == 1
+    assert out.splitlines()[1] == "WORSE: 3 margins too thin now; no hazard became possible."
+    assert "THIN-MARGIN" in out
+    assert "Kept before, or not asked for." in flat(out)
+    code, out = compared(tmp_path, capsys, VENT + text.format(6), VENT + text.format(5))
+    assert code == 0
+    assert "its margin is kept now, or not asked for any more" in flat(out)
+    code, out = compared(tmp_path, capsys, VENT + text.format(6), VENT + text.format(7))
+    assert code == 0
+    assert "short by 768.416 ns => 1.768416 us" in flat(out)
+
+
 def test_what_is_proven_now_and_what_is_the_same(tmp_path: Path, capsys: Capture) -> None:
     short = changed(VENT, ("wait settle", "wait 10 us"))
     code, out = compared(tmp_path, capsys, short, VENT)
@@ -118,16 +137,16 @@ def test_what_was_possible_before_is_no_change(tmp_path: Path, capsys: Capture) 
 
 def test_an_overlap_that_became_a_short_is_worse(tmp_path: Path, capsys: Capture) -> None:
     short = changed(VENT, ("wait settle", "wait 10 us"))
-    row = "  open     on     off    off    on      means drive U to V"
-    code, out = compared(tmp_path, capsys, short, changed(short, (row, "  open     main   on     off    on")))
+    row = "  open on off off on means drive U to V"
+    code, out = compared(tmp_path, capsys, short, changed(short, (row, "  open on on off on")))
     assert code == 1
     assert "SHORT" in out
     assert "'overlap' before." in out
 
 
 def test_findings_come_and_go(tmp_path: Path, capsys: Capture) -> None:
-    stuck = changed(VENT, ("  brake   -> idle          after 2 s\n", ""), ("from any -> idle ", "from open -> idle "))
-    stuck = changed(stuck, ("  watchdog     from any -> reset", "  watchdog     from any but brake -> reset"))
+    stuck = changed(VENT, ("  brake -> idle after 2 s\n", ""), ("from any -> idle ", "from open -> idle "))
+    stuck = changed(stuck, ("  watchdog from any -> reset", "  watchdog from any but brake -> reset"))
     code, out = compared(tmp_path, capsys, VENT, stuck)
     assert code == 1
     assert out.splitlines()[1].startswith("WORSE: 1 finding came up; no hazard became possible")
@@ -187,10 +206,11 @@ def test_a_hazard_that_was_undecided_counts_as_new(
 def test_margins_that_a_limit_leaves_out_are_named(
     tmp_path: Path, capsys: Capture, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr(compare, "MOST_ZONES", 20)
+    monkeypatch.setattr(margins, "MOST_ZONES", 2)
     code, out = compared(tmp_path, capsys, VENT, changed(VENT, ("wait settle", "wait 12 us")))
     assert code == 0
-    assert "P to N through UH and UL, after UH and UL: not measured, the limit was reached: 20 zones\n" in flat(out)
+    text = "P to N through UH and UL, after UH and UL: not measured, the limit was reached: 2 zones for a margin\n"
+    assert text in flat(out)
 
 
 def test_new_and_lost_hazards(tmp_path: Path, capsys: Capture) -> None:

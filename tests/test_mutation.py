@@ -57,6 +57,17 @@ def test_names_tell_mutants_apart() -> None:
     assert ("A.f", "return a[0] + a[0]", "0 -> 1 (#2)") in names
 
 
+def test_defaults_are_outside_of_their_function() -> None:
+    """They are worked out at import, so that the code of the function does not hold them."""
+    module = Module("def f(a=1):\n    def g(b=2):\n        return b\n    return g\n")
+    assert {(one.function, one.change) for one in module.mutants if "->" in one.change and one.change[0].isdigit()} == {
+        ("", "1 -> 2"),
+        ("", "1 -> 0"),
+        ("f", "2 -> 3"),
+        ("f", "2 -> 1"),
+    }
+
+
 def test_explanations_are_of_mutants_that_there_are() -> None:
     """Where the program has changed, what was said of it no longer holds."""
     there = {(file, *one.name) for file in ROOMS for one in Module((HOUSE / file).read_text()).mutants}

@@ -8,6 +8,7 @@ from build import carrier, drive, interlock, move, part, span, trace, trip, writ
 from test_replay_runs import refused
 
 from seqcheck.drive import Command, Drive, How, Update
+from seqcheck.evidence.interlocks import Interlocks
 from seqcheck.evidence.possible import delays
 from seqcheck.evidence.replay import NotPermitted, _possible, _walked
 from seqcheck.quantities import INSTANT, Interval
@@ -186,3 +187,20 @@ def test_levels_without_cycles() -> None:
     with pytest.raises(NotPermitted, match="no such cycles"):
         _walked(still, with_cycles("", 0, Cycles(1, 2, 3), 9))
     refused(still, "0 cycles k", 9, "does not say which cycles", phases=LOW)
+
+
+def test_dead_times_of_interlocks_within_a_cycle_are_over_one_by_one() -> None:
+    """Each at its soonest, the earliest first, and none at the end or after it; so much later after a repetition."""
+    locks = (interlock("X", "Y", span(6, 9)), interlock("Y", "Z", span(3, 3)))
+    built = drive("X Y Z", {"idle": "on off on"}, interlocks=locks)
+    for later in (0, 100):
+        guards = Interlocks(built, frozenset("XY"), True, {"X": ON, "Y": OFF, "Z": ON})
+        guards.see(5, {"X": OFF, "Y": ON, "Z": OFF})
+        guards.repeat(later)
+        assert guards.clear_before(later + 8) is None
+        assert guards.clear_before(later + 9) == later + 8
+        assert guards.clear_before(later + 11) is None
+        assert guards.passed("Y", {"X": OFF, "Y": ON, "Z": OFF}) is OFF
+        assert guards.clear_before(later + 12) == later + 11
+        assert guards.passed("Y", {"X": OFF, "Y": ON, "Z": OFF}) is ON
+        assert guards.clear_before(later + 99) is None

@@ -33,6 +33,7 @@ def spans(pieces: list[tuple[int | None, int | None]], rise: int, fall: int) -> 
         ([(10, 10)], 4, 5, [(14, 15)]),
         ([(0, 10), (15, 20)], 3, 5, [(3, 25)]),  # touching stretches are joined before the start is cut
         ([(0, 10), (16, 20)], 3, 5, [(3, 15), (19, 25)]),
+        ([(0, 10), (30, 60), (45, 50)], 3, 5, [(3, 15), (33, 65)]),
         ([(0, 10), (30, 40), (45, 50)], 3, 5, [(3, 15), (33, 55)]),  # joined with the last, not with the first
         ([(0, 4), (6, 8), (11, 13)], 8, 3, [(8, 16)]),  # Blip: none alone is long enough, joined they are
         ([(0, 4), (8, 10)], 8, 3, []),
@@ -50,6 +51,16 @@ def test_possible(
     pieces: list[tuple[int | None, int | None]], rise: int, fall: int, expected: list[tuple[int | None, int | None]]
 ) -> None:
     assert spans(pieces, rise, fall) == expected
+
+
+def test_possible_with_later_ends() -> None:
+    """Also that of a stretch of no length; but what is over before it begins does not come back."""
+    for piece, rise, fall, later, right in (
+        (Stretch(10, 10), 5, 5, 3, [Stretch(15, 18)]),
+        (Stretch(0, 10), 2, 5, 3, [Stretch(2, 18)]),
+        (Stretch(0, 0), 9, 5, 9, []),
+    ):
+        assert possible([piece], Delays(rise, fall), later) == right
 
 
 def automaton(changes: list[tuple[int, bool]], first: bool, rise: int, fall: int, end: int) -> list[tuple[int, int]]:

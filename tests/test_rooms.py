@@ -11,6 +11,7 @@ HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
     "shipped",
+    "exits",
     "quantities",
     "source",
     "messages",
@@ -29,7 +30,9 @@ LOW_TO_HIGH = (
     "zones",
     "proving",
     "evidence",
+    "confirming",
     "sizing",
+    "margins",
     "failing",
     "reports",
     "checking",
@@ -42,7 +45,8 @@ APART = {
     "evidence": {"writing", "firmware", "modegraph", "zones", "proving", "circuit"},
     "proving": {"language", "evidence"},
     "reports": {
-        "language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence", "sizing", "failing",
+        *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
+        *("confirming", "sizing", "margins", "failing"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

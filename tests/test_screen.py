@@ -8,12 +8,13 @@ from reading import drive_of
 from seqcheck.circuit import shorting_sets
 from seqcheck.drive import Drive, Update
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Hazard, delays
+from seqcheck.hazards import Hazard, Literal, delays
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.prove import LimitReached
-from seqcheck.proving.screen import Map, screened
+from seqcheck.proving.screen import Map, least_after, screened
 from seqcheck.proving.search import first_hazard
 from seqcheck.proving.views import View, view
+from seqcheck.zones import INFINITE
 
 EXACT = Manner(forget=False, cut=False, measure=False)
 """Nothing is forgotten and no dwell cut, so that only the screen can be wrong."""
@@ -70,6 +71,37 @@ PAUSE = "  start a\n  a -> b when go\n    set A off\n    wait {} ps\n  b -> a wh
 def test_each_direction_counts(there: int, back: int, right: bool) -> None:
     """Out 7, in 2: 5 ps each way, and 5 + 5 > 7."""
     assert one(leg("a on off\nb off on", PAUSE.format(there, back))) is right
+
+
+def gaps(text: str) -> list[int | None]:
+    """What the screen says of the gap after A and after B."""
+    drive = drive_of(text)
+    (hazard,) = shorting_sets(drive.stage)
+    looking = view(drive, hazard, delays(hazard, drive.paths), True)
+    here = Map(unpunctual(drive, looking), lambda _: None)
+    return [least_after(looking, here, leaving) for leaving in (0, 1)]
+
+
+def test_gap_after_each_literal() -> None:
+    """The least time between commands, with 2 ps from command to possibility and 7 ps from its end to none."""
+    rows = "a on off\nb off on"
+    parts = {"parts": "p on 2 ps to 3 ps off 4 ps to 7 ps\n  q on 3 ps to 4 ps off 4 ps to 6 ps"}
+    apart = {"paths": "A through p\n  B through q", **parts}
+    assert gaps(leg(rows, PAUSE.format(9, 6))) == [9 + 2 - 7, 6 + 2 - 7]
+    assert gaps(leg(rows, PAUSE.format(9, 6), **apart)) == [9 + 3 - 7, 6 + 2 - 6]
+    assert gaps(leg(rows, PAUSE.format(5, 4))) == [None, None]
+    assert gaps(leg("a on off\nab on on", "  start a\n  a -> ab when go")) == [None, None]
+    once = "  start a\n  a -> b when go\n    set A off\n    wait 9 ps"
+    assert gaps(leg(rows, once)) == [4, INFINITE]
+
+
+def test_a_literal_of_an_open_switch_is_not_screened() -> None:
+    """What a carrier's dead time keeps apart is conduction: two switches off at once are no matter of least times."""
+    drive = drive_of(leg("a on off\nb off on", PAUSE.format(9, 9)))
+    assert settled(drive, Hazard((Literal("A"), Literal("B")), ()))
+    assert not settled(drive, Hazard((Literal("A", False), Literal("B")), ()))
+    held = drive_of(leg("a on on\nb off off", PAUSE.format(9, 9)))
+    assert not settled(held, Hazard((Literal("A"), Literal("B", False)), ()))
 
 
 def test_commanded_both() -> None:

@@ -56,7 +56,9 @@ def test_first_hazard_and_first_held(seed: int) -> None:
     assert (None if held is None else held.moves) == fewest(overlapping(one, held=True))
     for node in (hot, held):
         if node is not None:
-            lived_through(one, [step.hop for step in node.path()], len(node.path()) - 1)
+            hops = [step.hop for step in node.path()]
+            for origin in {0, len(hops) - 1}:
+                lived_through(one, hops, origin)
 
 
 def lived_through(one: Automaton, hops: list[Hop], at: int) -> int:
@@ -304,7 +306,7 @@ def test_what_a_later_zone_includes_is_not_searched_further(cost: int) -> None:
     for ways, zones in (((late, any_time), 4), ((any_time, late), 3)):
         places = [
             Place(False, False, (Bound(1, 2),), tuple(replace(way, cost=cost) for way in ways)),
-            Place(False, False, (), (Way(2, (Bound(2, 1),), sources=(0, 0)),)),
+            Place(False, False, (), (Way(2, (Bound(2, 1),), sources=(1, 0)),)),
             Place(False, False, (), ()),
         ]
         told: list[int] = []

@@ -148,6 +148,7 @@ def test_delayed(seed: int, draw: Draw) -> None:
     if done is not None:
         assert points(done, size) == right
         assert closed(done[:], size) == done
+        assert all(one == INFINITE or one < 10 * MOST for one in done), "a bound out of none"
 
 
 @pytest.mark.parametrize("seed", SEEDS)

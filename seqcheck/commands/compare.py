@@ -3,35 +3,54 @@
 from collections import Counter
 from collections.abc import Callable, Iterator
 
-from seqcheck.changes import Comparison, Margin, Reach, Told, Turn, Turned, Unmeasured, Way, differences
+from seqcheck.changes import Comparison, Moved, Reach, Told, Turn, Turned, Unmeasured, Way, differences
 from seqcheck.checking import check
 from seqcheck.drive import AtOnce, Drive, Move, Trip, When
 from seqcheck.evidence.digest import digest
-from seqcheck.hazards import Hazard, Literal
+from seqcheck.exits import FOUND, PROVEN, UNDECIDED
+from seqcheck.language import read
+from seqcheck.margins import margin
+from seqcheck.messages import Problem, Problems
 from seqcheck.modegraph import ModeGraph
 from seqcheck.proving.prove import Prover
-from seqcheck.proving.search import LimitReached
+from seqcheck.reports import comparison, screen
 from seqcheck.reports.waived import reason
 from seqcheck.verdict import Check, Outcome, Safe, Unsafe, Verdict
 
 Observer = Callable[[int], None]
 
-MOST_ZONES = 6_000
-"""Zones for one gap: a margin must not cost more than the proof that there is one."""
+
+def run(
+    files: tuple[str, str], fetch: Callable[[str], str], observer: Observer, form: str, painted: bool
+) -> tuple[str, int]:
+    """The answer as a text and the exit code; `fetch` gives the text of a file. Raises Problems with those of both."""
+    drives: list[Drive] = []
+    mistakes: list[Problem] = []
+    for file in files:
+        try:
+            drives.append(read(fetch(file), file, fetch))
+        except Problems as problems:
+            mistakes += problems.found
+    if mistakes:
+        raise Problems(mistakes)
+    found = compare(drives[0], drives[1], files, observer)
+    report = comparison.report(found)
+    text = comparison.lines(found) if form == "lines" else (screen.coloured if painted else screen.plain)(report)
+    return text, FOUND if found.worse else UNDECIDED if found.undecided else PROVEN
 
 
 def compare(old: Drive, new: Drive, names: tuple[str, str], observer: Observer) -> Comparison:
     """What the change from one drive to another comes to; `names` are those of their files.
 
-    `observer` may end a proof by raising LimitReached; the hazard is then undecided. Raises Problems for what cannot be
-    proven, Fault if the program is at fault.
+    `observer` may end a proof by raising LimitReached; the hazard is then undecided, the margin not measured. Raises
+    Problems for what cannot be proven, Fault if the program is at fault.
     """
     same = digest(old) == digest(new)
     before = check(old, names[0], frozenset(), observer)
     after = check(new, names[1], frozenset(), observer)
     verdicts = tuple(_turned(before, after))
     gained, lost = _reach(old, new)
-    gaps = [] if same else list(_gaps(before, after, verdicts, observer))
+    margins = [] if same else list(_margins(before, after, verdicts, observer))
     return Comparison(
         before,
         after,
@@ -42,30 +61,39 @@ def compare(old: Drive, new: Drive, names: tuple[str, str], observer: Observer) 
         tuple(sorted(verdicts, key=lambda one: list(Turn).index(one.turn))),
         tuple(_only(after, before)),
         tuple(_only(before, after)),
-        tuple(one for one in gaps if isinstance(one, Margin) and one.old != one.new),
-        tuple(one for one in gaps if isinstance(one, Unmeasured)),
+        tuple(one for one in margins if isinstance(one, Moved) and one.old.slack != one.new.slack),
+        tuple(one for one in margins if isinstance(one, Unmeasured)),
     )
 
 
 # Verdicts
 
 
-Key = tuple[frozenset[Literal], bool]
-
-
-def _key(hazard: Hazard) -> Key:
-    return frozenset(hazard.literals), bool(hazard.currents)
+Key = tuple[object, ...]
 
 
 def _turned(before: Outcome, after: Outcome) -> Iterator[Turned]:
     """Every hazard of the one or the other file, matched by its literals."""
-    old = {_key(one.hazard): one for one in before.verdicts}
-    new = {_key(one.hazard): one for one in after.verdicts}
+    old, new = _keyed(before), _keyed(after)
     for key in dict.fromkeys((*new, *old)):
         was, now = old.get(key), new.get(key)
         known = now or was
         assert known is not None
         yield Turned(known.hazard, was, now, _waived(before, was), _waived(after, now))
+
+
+def _keyed(outcome: Outcome) -> dict[Key, Verdict]:
+    """The verdicts by what they are about: a hazard, or a margin of one that a rule asks for."""
+    found: dict[Key, Verdict] = {}
+    for one in outcome.verdicts:
+        hazard = one.hazard
+        key: Key = (frozenset(hazard.literals), bool(hazard.currents), bool(hazard.joins))
+        if isinstance(one, Unsafe) and one.check is Check.THIN_MARGIN:
+            key = (*key, one.after)
+        while key in found:
+            key = (*key, "again")
+        found[key] = one
+    return found
 
 
 def _waived(outcome: Outcome, verdict: Verdict | None) -> str | None:
@@ -135,30 +163,18 @@ def _by(run: Move | Trip) -> str:
 # Margins
 
 
-def _gaps(
+def _margins(
     before: Outcome, after: Outcome, verdicts: tuple[Turned, ...], observer: Observer
-) -> Iterator[Margin | Unmeasured]:
-    """The gaps of every hazard that both files prove, in either direction; those that a limit leaves out by name."""
+) -> Iterator[Moved | Unmeasured]:
+    """The margins of every hazard that both files prove, in either direction; those that a limit leaves out by name."""
     old, new = Prover(before.drive), Prover(after.drive)
     for one in verdicts:
         if not isinstance(one.old, Safe) or not isinstance(one.new, Safe) or len(one.hazard.literals) < 2:
             continue
         for literal in one.new.hazard.literals:
-            try:
-                was = _gap(old, one.old.hazard, literal, observer)
-                now = _gap(new, one.new.hazard, literal, observer)
-            except LimitReached as limit:
-                yield Unmeasured(one.new.hazard, literal, str(limit))
-                continue
-            yield Margin(one.new.hazard, literal, was, now)
-
-
-def _gap(prover: Prover, hazard: Hazard, after: Literal, observer: Observer) -> int | None:
-    """How soon after one literal the others can follow (ps); None: never. Raises LimitReached."""
-
-    def within(count: int) -> None:
-        observer(count)
-        if count > MOST_ZONES:
-            raise LimitReached(f"{MOST_ZONES} zones")
-
-    return prover.gap(hazard, hazard.literals.index(after), within).time
+            was = margin(old, one.old.hazard, one.old.hazard.literals.index(literal), observer)
+            now = margin(new, one.new.hazard, one.new.hazard.literals.index(literal), observer)
+            if was.exact and now.exact:
+                yield Moved(was, now)
+            else:
+                yield Unmeasured(one.new.hazard, literal, now.limit or was.limit)

@@ -2,7 +2,7 @@
 
 from dataclasses import dataclass
 
-from seqcheck.drive import Drive
+from seqcheck.drive import Drive, NeverRule
 from seqcheck.evidence.certificate import Claim, Cover, Evidence, NoEvidence, Potentials
 from seqcheck.evidence.cover.apart import Ground, require_apart
 from seqcheck.evidence.cover.behaviour import Behaviour
@@ -33,7 +33,9 @@ class Audited:
 
 
 def audit(drive: Drive, evidence: Evidence) -> Audited:
-    """Check all claims and that they are about all shorts and open windings of the stage.
+    """Check all claims and that they are about all shorts and open windings of the stage, and all `never` rules.
+
+    Margins, the mode graph and what rows mean are no part of evidence.
 
     Raises NoEvidence where the evidence is of another drive or malformed, NotProven where it does not prove what it
     says.
@@ -58,13 +60,33 @@ def _require_all_hazards(drive: Drive, evidence: Evidence) -> None:
         names = [one.switch for one in hazard.literals]
         if not names or len(set(names)) < len(names) or not set(names) <= set(drive.columns):
             raise NoEvidence("it names switches that the file has not, or none")
-        if any(one.on == bool(hazard.currents) for one in hazard.literals):
-            raise NoEvidence("it is about a hazard that is no short and no open winding")
+    built_in = tuple(one for one in hazards if not _is_of_a_rule(drive, one))
+    if any(one.on == bool(hazard.currents) for hazard in built_in for one in hazard.literals):
+        raise NoEvidence("it is about a hazard that is no short, no open winding and in no rule")
+    _require_all_rules(drive, hazards)
     try:
-        _require_all_shorts(drive, tuple(one for one in hazards if not one.currents))
-        _require_all_openings(drive, tuple(one for one in hazards if one.currents))
+        _require_all_shorts(drive, tuple(one for one in built_in if not one.currents))
+        _require_all_openings(drive, tuple(one for one in built_in if one.currents))
     except TooLarge as why:
         raise NotProven("The stage has too many ways for current to be walked one by one.") from why
+
+
+def _is_of_a_rule(drive: Drive, hazard: Hazard) -> bool:
+    """Whether a `never` rule of the drive is about just these literals, and the hazard about nothing else."""
+    if hazard.joins or hazard.needs or hazard.currents:
+        return False
+    return {(one.switch, one.on) for one in hazard.literals} in [set(rule.literals) for rule in _nevers(drive)]
+
+
+def _nevers(drive: Drive) -> list[NeverRule]:
+    return [rule for rule in drive.rules if isinstance(rule, NeverRule)]
+
+
+def _require_all_rules(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
+    claimed = [{(one.switch, one.on) for one in hazard.literals} for hazard in hazards if _is_of_a_rule(drive, hazard)]
+    for rule in _nevers(drive):
+        if set(rule.literals) not in claimed:
+            raise NotProven(f"Nothing is said of the rule in line {rule.place.line}.")
 
 
 def _require_all_shorts(drive: Drive, hazards: tuple[Hazard, ...]) -> None:

@@ -41,12 +41,12 @@ def stretches(timeline: Timeline[T], holds: Callable[[T], bool]) -> list[Stretch
 def possible(pieces: Iterable[Stretch], delays: Delays, later: int = 0) -> list[Stretch]:
     """The stretches of positive length at which that is possible which is wanted in `pieces`, given in order.
 
-    With `later` each of their ends, also that of one of no length, comes so much later.
+    With `later` each of their ends comes so much later.
     """
     longer = prolonged(pieces, delays.fall)
     late = (Stretch(one.start if one.start is None else one.start + delays.rise, one.end) for one in longer)
-    there = [one for one in late if one.start is None or one.end is None or one.start <= one.end]
-    return [one for one in prolonged(there, later) if one.start is None or one.end is None or one.start < one.end]
+    there = [one for one in late if one.start is None or one.end is None or one.start < one.end]
+    return prolonged(there, later) if later else there
 
 
 def prolonged(pieces: Iterable[Stretch], fall: int) -> list[Stretch]:

@@ -38,7 +38,8 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
     if claimed.end is None:
         _require_endless(drive, walk, found)
     commands = {switch: tuple(timeline) for switch, timeline in walk.commands.items()}
-    return Replayed(commands, spans, claimed)
+    plain = replace(trace, prolonged=None)
+    return Replayed(commands, {one: _possible(walk, one, found[one], plain) for one in found}, claimed)
 
 
 def from_its_beginning(drive: Drive, trace: Trace) -> Trace:

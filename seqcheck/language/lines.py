@@ -15,7 +15,9 @@ from seqcheck.source import Place
 LONGEST = 65_536
 """Characters in a line; what is longer is no drive sequence and would only cost time."""
 
-_ENDS = re.compile(r"\r\n|\r|\n")
+ENDS = re.compile(r"\r\n|\r|\n")
+"""What ends a line, by whichever system the file was written."""
+
 _SAID = re.compile(r'(?:[^"#]|"[^"]*(?:"|$))*')
 _FIRST = re.compile(r"[A-Za-z_][A-Za-z0-9_]*")
 _SINGLE_ONCE = frozenset({"drive", "clock", "writes", "loop"})
@@ -44,14 +46,21 @@ def decode(data: bytes, file: str) -> str:
 
 def _end_of(text: str, file: str) -> Place:
     """The place of the character after a text."""
-    lines = _ENDS.split(text)
+    lines = ENDS.split(text)
     return Place(file, len(lines), len(lines[-1]) + 1, len(lines), len(lines[-1]) + 2)
 
 
-def _said(text: str) -> str:
-    """A line without margin and comment."""
+def parted(text: str) -> tuple[str, str]:
+    """A line's words without margin, and its comment from `#` on; either may be empty."""
     said = _SAID.match(text)
-    return said.group().strip(" \t") if said else ""
+    words = said.group() if said else ""
+    return words.strip(" \t"), text[len(words) :].rstrip(" \t")
+
+
+def first_word(said: str) -> str:
+    """The word that a line begins with; empty if it begins with none."""
+    first = _FIRST.match(said)
+    return first.group() if first else ""
 
 
 class Book:
@@ -95,11 +104,10 @@ class _Reader:
         if text.lstrip(" \t")[:1] in ("", "#"):
             return
         self.empty = False
-        said = _said(text)
+        said, _ = parted(text)
         column = len(text) - len(text.lstrip(" \t")) + 1
         place = Place(self.book.file, number, column, number, column + len(said))
-        first = _FIRST.match(said)
-        word = first.group() if first else ""
+        word = first_word(said)
         if word in STARTS:
             self._statement(word, place, text)
         elif self.section:
@@ -109,8 +117,8 @@ class _Reader:
 
     def _too_long(self, number: int, text: str) -> None:
         self.empty = False
-        first = _FIRST.match(text.lstrip(" \t"))
-        self.notes.broken.add(first.group() if first and first.group() in STARTS else self.section)
+        first = first_word(text.lstrip(" \t"))
+        self.notes.broken.add(first if first in STARTS else self.section)
         self.steps_for = "broken"
         place = Place(self.book.file, number, 1, number, len(text) + 1)
         what = f"the line has {len(text)} characters, more than {LONGEST}"
@@ -228,7 +236,7 @@ def _with_form(problem: Problem, word: str) -> Problem:
 def book_of(text: str, file: str, notes: Notes) -> Book:
     """The lines of a file; mistakes go to the notes."""
     reader = _Reader(file, notes)
-    for number, line in enumerate(_ENDS.split(text.removeprefix("\ufeff")), 1):
+    for number, line in enumerate(ENDS.split(text.removeprefix("\ufeff")), 1):
         reader.line(number, line)
     book = reader.book
     if reader.empty:

@@ -8,9 +8,10 @@ raised. What is found with carriers' phases forgotten is a lower bound only, but
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from seqcheck.proving.conduction import POSSIBLE
 from seqcheck.proving.keys import GAP, LATELY, Key
 from seqcheck.proving.projection import Manner, Projection
-from seqcheck.proving.search import Node, nodes, ticks
+from seqcheck.proving.search import LimitReached, Node, nodes, ticks
 
 Observer = Callable[[int], None]
 Look = Callable[[Manner], Projection]
@@ -20,27 +21,46 @@ _WIDER = 16
 
 @dataclass(frozen=True, slots=True)
 class Least:
-    """The least gap (ps) and the node in which it ends; `node` None: nothing ever follows."""
+    """The least gap (ps) and the node in which it ends.
+
+    Without a node no gap was found: with a `limit`, which ended the search, `time` is a lower bound; else with `within`
+    there is none below what was asked for, `time`; else nothing ever follows.
+    """
 
     time: int
     node: Node | None
     projection: Projection
+    within: bool = False
+    limit: str = ""
 
 
-def least_gap(look: Look, watched: int, carriers: bool, floor: int, observer: Observer) -> Least:
-    """The least gap after the literal at place `watched`; `floor` is a lower bound known before.
+@dataclass(frozen=True, slots=True)
+class Asked:
+    """What is known and asked of a gap: a lower bound, and above what length it need not be told (None: nowhere)."""
 
-    `look` makes a projection, `carriers` tells whether phases can be forgotten. What the observer raises passes
-    through.
+    floor: int
+    below: int | None
+
+
+def least_gap(look: Look, watched: int, carriers: bool, asked: Asked, observer: Observer) -> Least:
+    """The least gap after the literal at place `watched`.
+
+    `look` makes a projection, `carriers` tells whether phases can be forgotten. Where the observer raises LimitReached
+    the answer is a lower bound.
     """
-    known = max(floor, 0)
-    cap = known + 1
+    known = max(asked.floor, 0)
+    cap = known + 1 if asked.below is None else asked.below
     while True:
         for forget in (True, False) if carriers else (False,):
             projection = look(Manner(forget, True, False, watched, cap))
-            best, later = _below_cap(projection, known, observer)
+            try:
+                best, later = _below_cap(projection, known, observer)
+            except LimitReached as limit:
+                return Least(known, None, projection, limit=str(limit))
             if best is None and not later:
                 return Least(0, None, projection)
+            if best is None and asked.below is not None:
+                return Least(asked.below, None, projection, within=True)
             if best is None:
                 known = cap
                 break
@@ -76,12 +96,19 @@ def gap_in(projection: Projection, node: Node) -> int:
     return -node.zone[place]
 
 
-def ended_at(path: list[Node]) -> int:
+def ended_at(projection: Projection, path: list[Node], watched: int) -> int:
     """The place in a path at which the gap that its last node ends has begun."""
     last = len(path) - 1
-    while _key(path[last - 1]).ended == LATELY:
+    while not _begins_gap(projection, path[last], watched):
         last -= 1
     return last
+
+
+def _begins_gap(projection: Projection, node: Node, watched: int) -> bool:
+    key = _key(node)
+    names = [projection.clock_name(key, place) for place in range(1, node.location.size)]
+    started = GAP in names and node.hop.sources[names.index(GAP)] == 0
+    return started and not POSSIBLE[key.literals[watched]]
 
 
 def _key(node: Node) -> Key:

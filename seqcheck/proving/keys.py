@@ -6,7 +6,7 @@ from seqcheck.drive import Command
 from seqcheck.firmware import Edge, State
 from seqcheck.verdict import Act
 
-X, Y, Z, PAUSE, GAP = range(5)
+X, Y, Z, PAUSE, GAP, SINCE = range(6)
 SPAN = 1 << 20
 """Names of one kind of clock: a place in the view is added to the kind, so no view may be as wide as this."""
 CARRIER, HOLD, PIN, LOCK, RISE, FALL = (SPAN * kind for kind in range(1, 7))
@@ -23,7 +23,7 @@ BLOCKED, WAITING, CLEAR = 0, 1, 2
 
 
 NOT_ENDED, LATELY, LONG_AGO = 0, 1, 2
-"""When the possibility of a watched literal has ended: it goes on or never began, less than a cap ago, or longer."""
+"""When the possibility of a watched literal has last ended: never yet, less than a cap ago, or longer."""
 
 
 class Key(NamedTuple):

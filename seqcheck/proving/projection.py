@@ -30,6 +30,7 @@ from seqcheck.proving.keys import (
     PIN,
     RISE,
     SILENT,
+    SINCE,
     SPAN,
     WAITING,
     Clock,
@@ -122,13 +123,17 @@ class Projection:
         cost: int,
         event: Happening,
         written: int = 0,
+        ended: int | None = None,
     ) -> Hop:
         if self.manner.measure and old is not None and event is not OVER:
             key = key._replace(paused=self._pauses(old, key))
-        if self.manner.gap is not None and old is not None and event is not CAPPED:
-            key = key._replace(ended=self._ended(old, key, self.manner.gap))
-            if key.ended == LATELY and POSSIBLE[old.literals[self.manner.gap]]:
-                resets |= {GAP}
+        watched = self.manner.gap
+        if watched is not None and old is not None and ended is None:
+            key = key._replace(ended=old.ended)
+            if POSSIBLE[key.literals[watched]] and not POSSIBLE[old.literals[watched]]:
+                resets |= {SINCE}
+        elif ended is not None:
+            key = key._replace(ended=ended)
         target = self._location(key)
         names = {} if old is None else {clock.name: place for place, clock in enumerate(self._clocks[old], 1)}
         renaming = _holds(old, key, written)
@@ -141,6 +146,9 @@ class Projection:
                 floor = dict(reference.starts())[key.carriers[name - CARRIER]]
                 if floor:
                     after.append(Bound(place, floor))
+            elif name == SINCE and old is None:  # it has been possible for ever
+                sources.append(FRESH)
+                after.append(Bound(place, 1))
             else:
                 sources.append(0 if name in resets else names.get(name, 0))
         return Hop(
@@ -176,16 +184,11 @@ class Projection:
         possible = all(POSSIBLE[literal] for literal in key.literals)
         return possible and not self._hot(key) and (old.paused or self._hot(old))
 
-    def _ended(self, old: Key, key: Key, watched: int) -> int:
-        if POSSIBLE[key.literals[watched]]:
-            return NOT_ENDED
-        return LATELY if POSSIBLE[old.literals[watched]] else old.ended
-
     def _hot(self, key: Key) -> bool:
         """Whether all literals are possible and asked for; for a gap, all others after the one that is watched."""
         possible = [POSSIBLE[literal] for literal in key.literals]
         if self.manner.gap is not None:
-            possible[self.manner.gap] = key.ended != NOT_ENDED
+            possible[self.manner.gap] = key.ended != NOT_ENDED and not possible[self.manner.gap]
         if not all(possible):
             return False
         return not contradicted(self.view.hazard, self.firmware.facts(key.state))
@@ -221,6 +224,9 @@ class Projection:
             yield Clock(PAUSE, 0, 0, 0)
         if key.ended == LATELY:
             yield Clock(GAP, self.manner.cap, self.manner.cap, self.manner.cap)
+        if self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
+            forgets = key.ended == LATELY  # once it has been possible for some time, what ended before is over
+            yield Clock(SINCE, 1, int(forgets), 1 if forgets else INFINITE)
 
     def _firmware_clocks(self, key: Key, hot: bool) -> Iterator[Clock]:
         edges, deadline = self._timing(key, hot)
@@ -314,16 +320,25 @@ class Projection:
 
     def _gap_capped(self, key: Key) -> Iterator[Hop]:
         if key.ended == LATELY:
-            capped = key._replace(ended=LONG_AGO)
-            yield self._hop(key, capped, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED)
+            yield self._hop(key, key, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED, ended=LONG_AGO)
+        if key.ended == LATELY and self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
+            yield self._hop(key, key, frozenset(), ((SINCE, 1),), (), 0, CAPPED, ended=NOT_ENDED)
 
     def _conducting(self, key: Key) -> Iterator[Hop]:
         for place, state in enumerate(key.literals):
             times = self.view.delays[place]
             for by_rise, after in timeouts(state):
                 name, least = (RISE + place, times.rise) if by_rise else (FALL + place, times.fall)
-                literals = (*key.literals[:place], after, *key.literals[place + 1 :])
-                yield self._hop(key, key._replace(literals=literals), frozenset(), ((name, least),), (), 0, SILENT)
+                new = key._replace(literals=(*key.literals[:place], after, *key.literals[place + 1 :]))
+                if place == self.manner.gap and POSSIBLE[state] and not POSSIBLE[after]:
+                    yield from self._end_of_watched(key, new, (name, least))
+                else:
+                    yield self._hop(key, new, frozenset(), ((name, least),), (), 0, SILENT)
+
+    def _end_of_watched(self, key: Key, new: Key, least: tuple[int, int]) -> Iterator[Hop]:
+        """Where the watched literal was possible for some time a gap begins; else what there was before goes on."""
+        yield self._hop(key, new, frozenset({GAP}), (least, (SINCE, 1)), (), 0, SILENT, ended=LATELY)
+        yield self._hop(key, new, frozenset(), (least,), ((SINCE, 0),), 0, SILENT)
 
     def _firmware_hops(self, key: Key) -> Iterator[Hop]:
         for edge in self._timing(key, self._hot(key))[0]:

@@ -11,7 +11,7 @@ from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving.certify import Data, cover
-from seqcheck.proving.gaps import least_gap
+from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
@@ -57,11 +57,13 @@ class Refuted:
 class Gap:
     """How soon after one literal of a safe hazard all others can be possible, at the soonest (ps); None: never.
 
-    In `trace` the literal, prolonged by 1 ps more than that, meets the others.
+    In `trace` the literal, prolonged by 1 ps more than that, meets the others. Without a trace `time` is a lower bound:
+    all that was asked for, or what was known when the `limit` was reached.
     """
 
     time: int | None
     trace: Trace | None
+    limit: str = ""
 
 
 @dataclass(slots=True)
@@ -134,29 +136,41 @@ class Prover:
         projection = Projection(looking, self._firmware(looking, punctual), manner)
         return projection if first_hazard(projection.initial(), count) is None else None
 
-    def gap(self, hazard: Hazard, watched: int, observer: Observer) -> Gap:
+    def gap(self, hazard: Hazard, watched: int, observer: Observer, below: int | None = None) -> Gap:
         """The least gap of a safe hazard after the literal at place `watched`: its margin in that direction.
 
-        With interlocks and with firmware as late as the drive allows. What the observer raises passes through.
+        With interlocks, and with firmware as late as the drive allows. With `below` only a gap that is shorter (ps) is
+        looked for. Where the observer raises LimitReached the answer is a lower bound. Raises Infeasible.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = _Count(observer)
-        floor = 0
-        if len(hazard.literals) == 2 and not looking.locks:
-            bound = least_after(looking, self._map(self._firmware(looking, punctual=False), count), watched)
-            if bound is not None and bound >= INFINITE:
-                return Gap(None, None)
-            floor = bound or 0
+        try:
+            floor = self._floor(looking, watched, count)
+        except LimitReached as limit:
+            return Gap(0, None, str(limit))
+        if floor is None:
+            return Gap(None, None)
+        if below is not None and floor >= below:
+            return Gap(floor, None)
         firmware = self._firmware(looking, punctual=True)
 
         def look(manner: Manner) -> Projection:
             count.next_search()
             return Projection(looking, firmware, manner)
 
-        least = least_gap(look, watched, bool(looking.carriers), floor, count)
-        if least.node is None:
-            return Gap(None, None)
-        return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
+        least = least_gap(look, watched, bool(looking.carriers), Asked(floor, below), count)
+        if least.node is not None:
+            return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
+        return Gap(least.time if least.within or least.limit else None, None, least.limit)
+
+    def _floor(self, looking: View, watched: int, count: _Count) -> int | None:
+        """A lower bound of a gap from least times alone; None where nothing ever follows."""
+        if len(looking.hazard.literals) != 2 or looking.locks or not all(one.on for one in looking.hazard.literals):
+            return 0
+        bound = least_after(looking, self._map(self._firmware(looking, punctual=False), count), watched)
+        if bound is None:
+            return 0
+        return None if bound >= INFINITE else bound
 
     def spread(self, hazard: Hazard, observer: Observer) -> Spread:
         """All places in which a hazard happens, with interlocks and with firmware as late as the drive allows.

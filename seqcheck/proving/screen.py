@@ -13,7 +13,6 @@ from heapq import heappop, heappush
 from itertools import combinations
 from typing import NamedTuple
 
-from seqcheck.drive import Update
 from seqcheck.firmware import Firmware, State
 from seqcheck.hazards import Delays, Literal
 from seqcheck.proving.keys import C_BOTH, C_OFF, C_ON, CODES
@@ -109,7 +108,6 @@ class Pairing:
         self.rests = tuple(C_OFF if pin is None else CODES[pin.resting] for pin in pins)
         carriers = tuple(drive.carriers.values())
         self.dead = tuple(carrier.dead.lo for carrier in carriers)
-        self.updates = tuple(carrier.update is not Update.AT_ONCE for carrier in carriers)
 
     def apart(self) -> bool:
         points = self.points()

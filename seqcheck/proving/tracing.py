@@ -53,7 +53,7 @@ def gap_trace(projection: Projection, node: Node, watched: int, least: int) -> T
     Raises Infeasible.
     """
     nodes = node.path()
-    ended, met = ended_at(nodes), len(nodes) - 1
+    ended, met = ended_at(projection, nodes, watched), len(nodes) - 1
     hops = [one.hop for one in nodes]
     path, times = _timed(projection, hops, ended, True, met)
     events = _all_events(projection, hops, times)

@@ -4,15 +4,15 @@ from collections import Counter
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
 
-from seqcheck.changes import Change, Comparison, Field, How, Margin, Reach, Told, Turn, Turned
+from seqcheck.changes import Change, Comparison, Field, How, Moved, Reach, Told, Turn, Turned
 from seqcheck.drive import Drive
-from seqcheck.hazards import Hazard, Literal
+from seqcheck.hazards import Hazard
 from seqcheck.quantities import shown
 from seqcheck.reports.acts import told
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed, paragraph, visible
-from seqcheck.reports.wording import CAUTION, cure, happens, lasting, stretch, subject
+from seqcheck.reports.wording import CAUTION, cure, lasting, stated, stretch, subject
 from seqcheck.source import Place
-from seqcheck.verdict import WARNINGS, Act, Finding, Safe, Trace, Undecided, Unsafe, Verdict
+from seqcheck.verdict import WARNINGS, Act, Check, Finding, Safe, Trace, Undecided, Unsafe, Verdict
 
 _MOST_RUNS = 6
 """Moves and trips of a run that are named, the last ones."""
@@ -33,20 +33,29 @@ def report(found: Comparison) -> list[Line]:
 
 def standing(found: Comparison) -> str:
     """The one sentence that a review needs."""
-    turns = Counter(one.turn for one in found.verdicts if one.turn is not Turn.POSSIBLE or one.worse)
+    asked = [one for one in found.verdicts if not _thin(one)]
+    turns = Counter(one.turn for one in asked if one.turn is not Turn.POSSIBLE or one.worse)
+    thin = [one for one in found.verdicts if _thin(one) and one.worse]
     checks = [one for one, why in found.broken if one.check not in WARNINGS and why is None]
     mended = [one for one, why in found.mended if one.check not in WARNINGS and why is None]
     texts = [f"{counted(len(checks), 'finding')} came up"] if checks else []
+    texts += [f"{counted(len(thin), 'margin')} too thin now"] if thin else []
     texts += [] if turns[Turn.POSSIBLE] else ["no hazard became possible"]
     texts[:0] = [f"{counted(number, 'hazard')} {turn.value}" for turn in _TOLD if (number := turns[turn])]
-    texts += _moved("margin", [(one.old, one.new) for one in found.margins], "shrank", "grew")
-    overlaps = [(_overlap(one.new), _overlap(one.old)) for one in found.verdicts if one.turn is Turn.STILL]
+    texts += _moved("margin", [(one.old.slack, one.new.slack) for one in found.margins], "shrank", "grew")
+    overlaps = [(_overlap(one.new), _overlap(one.old)) for one in asked if one.turn is Turn.STILL]
     texts += _moved("overlap", overlaps, "grew", "shrank")
     texts += [f"{counted(len(mended), 'finding')} went away"] if mended else []
     less = any(one.shrank for one in found.margins) or any(_above(*pair) for pair in overlaps)
     fair = "less left" if less else "not worse"
     word = "WORSE" if found.worse else "UNDECIDED" if found.undecided else fair
     return f"{word}: {'; '.join(texts)}."
+
+
+def _thin(one: Turned) -> bool:
+    """Whether it is a margin that a rule asks for, of a hazard that does not happen."""
+    said = one.new or one.old
+    return isinstance(said, Unsafe) and said.check is Check.THIN_MARGIN
 
 
 _TOLD = (Turn.POSSIBLE, Turn.UNDECIDED, Turn.STILL, Turn.PROVEN)
@@ -92,7 +101,7 @@ def _blocks(found: Comparison) -> Iterator[tuple[str, list[Line]]]:
     rest = [one for one in found.verdicts if one.turn is Turn.STILL]
     yield Turn.STILL.value, list(_items(_still(one) for one in rest))
     good = (Turn.PROVEN, Turn.NEW, Turn.GONE)
-    others = [f"{subject(one.hazard)}: {one.turn.value}" for one in found.verdicts if one.turn in good]
+    others = [f"{subject(one.hazard)}: {_good(one)}" for one in found.verdicts if one.turn in good]
     others += [
         f"{subject(one.hazard)}: proven, but no longer however late the firmware is"
         for one in found.verdicts
@@ -125,7 +134,7 @@ def _hazard(turned: Turned, found: Comparison) -> Iterator[Line]:
     drive, new = found.new.drive, turned.new
     waived = "waived " if turned.new_waived is not None else ""
     yield line(f"  {waived}", Piece(new.check.value.upper(), Tone.BAD), f"  {new.place}")
-    yield from paragraph(f"{happens(new.hazard, new.overlap, new.greatest)}. {before(turned).capitalize()}.", 4)
+    yield from paragraph(f"{stated(new)}. {before(turned).capitalize()}.", 4)
     yield from paragraph(f"The run: {run(drive, new.trace)}.", 4)
     last = f"To cure it: {cure(new, drive)}" if turned.new_waived is None else f"Waived because: {turned.new_waived}"
     yield from paragraph(f"{last}.", 4)
@@ -134,7 +143,8 @@ def _hazard(turned: Turned, found: Comparison) -> Iterator[Line]:
 def before(turned: Turned) -> str:
     """How a hazard stood in the old file, without full stop."""
     if turned.old is None:
-        return "no hazard before"
+        thin = isinstance(turned.new, Unsafe) and turned.new.check is Check.THIN_MARGIN
+        return "kept before, or not asked for" if thin else "not asked for before"
     if isinstance(turned.old, Safe):
         return "proven before"
     if isinstance(turned.old, Undecided):
@@ -153,15 +163,22 @@ def run(drive: Drive, trace: Trace) -> str:
     return "; ".join(["..."] * (len(begun) > len(last)) + last) or f"at rest in '{drive.start}'"
 
 
+def _good(one: Turned) -> str:
+    return "its margin is kept now, or not asked for any more" if _thin(one) else one.turn.value
+
+
 def _still(one: Turned) -> str:
     old, new = _overlap(one.old), one.new
     assert isinstance(new, Unsafe)
+    if _thin(one):
+        short = f"short by {_length(old)} => {_length(new.overlap)}"
+        return f"{subject(one.hazard)} ({new.check.value} at {new.place}): {short}"
     name, waived = f"{subject(one.hazard)} ({new.check.value} at {new.place})", ", waived" if one.new_waived else ""
     if old == new.overlap:
         return f"{name}{waived}: {lasting(old, new.greatest)} as before"
     word = "grew" if _above(new.overlap, old) else "shrank"
     least = "" if new.greatest else "at least "
-    return f"{name}{waived}: the {stretch(new.hazard)} {word}, {_length(old)} => {least}{_length(new.overlap)}"
+    return f"{name}{waived}: the {stretch(new)} {word}, {_length(old)} => {least}{_length(new.overlap)}"
 
 
 def _length(time: int | None) -> str:
@@ -187,20 +204,17 @@ def _finding(one: Told) -> Iterator[Line]:
 
 def _margins(found: Comparison) -> Iterator[str]:
     for one in sorted(found.margins, key=lambda one: not one.shrank):
-        yield f"{margin(one)}: {'shrank' if one.shrank else 'grew'}{_by(one)}, {_left(one.old)} => {_left(one.new)}"
+        old, new = one.old.slack, one.new.slack
+        by = "" if old is None or new is None else f" by {shown(abs(old - new))}"
+        place = f", by line {one.new.place.line}" if one.new.place else ""
+        word = "shrank" if one.shrank else "grew"
+        yield f"{_margin(one)}: {word}{by}, {_left(old)} => {_left(new)}{place}"
 
 
-def margin(one: Margin) -> str:
+def _margin(one: Moved) -> str:
     """Which margin it is: of what hazard, after which of its literals."""
-    return f"{subject(one.hazard)}, after {_end(one.after)}"
-
-
-def _end(literal: Literal) -> str:
-    return f"{literal.switch} {'can conduct' if literal.on else 'can be off'} no more"
-
-
-def _by(one: Margin) -> str:
-    return "" if one.old is None or one.new is None else f" by {shown(abs(one.old - one.new))}"
+    literal = one.new.literal
+    return f"{subject(one.new.hazard)}, after {literal.switch} {'can conduct' if literal.on else 'can be off'} no more"
 
 
 def _left(time: int | None) -> str:
@@ -267,7 +281,7 @@ def _lines(found: Comparison) -> Iterator[tuple[Place, str, str, str]]:
             yield drive.place, "error", text, "undecided"
         elif one.turn is Turn.POSSIBLE and isinstance(one.new, Unsafe):
             new = one.new
-            text = f"{text}; {happens(new.hazard, new.overlap, new.greatest)}; the run: {run(drive, new.trace)}"
+            text = f"{text}; {stated(new)}; the run: {run(drive, new.trace)}"
             yield new.place, "error" if one.worse else "note", text, new.check.value
         elif one.turn is Turn.STILL and isinstance(one.new, Unsafe):
             worse = _above(one.new.overlap, _overlap(one.old))
@@ -280,7 +294,8 @@ def _lines(found: Comparison) -> Iterator[tuple[Place, str, str, str]]:
     for finding, _ in found.mended:
         yield finding.place, "note", f"went away: {finding.text}", finding.check.value
     for one_margin, text in zip(sorted(found.margins, key=lambda one: not one.shrank), _margins(found), strict=True):
-        yield drive.place, "warning" if one_margin.shrank else "note", text, "margin"
+        place = one_margin.new.place or drive.place
+        yield place, "warning" if one_margin.shrank else "note", text, "margin"
     for text in _unmeasured(found):
         yield drive.place, "note", text, "margin"
     for word, reach in (("can be entered now", found.gained), ("can no longer be entered", found.lost)):

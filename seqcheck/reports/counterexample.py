@@ -6,7 +6,7 @@ from seqcheck.reports.picture import picture
 from seqcheck.reports.pieces import Line, Piece, Tone, line, listed, paragraph
 from seqcheck.reports.rows import rows
 from seqcheck.reports.run import Run, run_of
-from seqcheck.reports.wording import condition, cure, happens, where
+from seqcheck.reports.wording import condition, cure, stated, where
 from seqcheck.verdict import Unsafe
 
 INDENT = 2
@@ -16,7 +16,7 @@ def counterexample(verdict: Unsafe, drive: Drive) -> list[Line]:
     """The lines for one unsafe verdict that no waiver lets pass."""
     run = run_of(verdict, drive)
     found = [line(Piece(verdict.check.value.upper(), Tone.BAD), f"  {verdict.place}")]
-    found += sentence(happens(verdict.hazard, verdict.overlap, verdict.greatest), Tone.STRONG)
+    found += sentence(stated(verdict), Tone.STRONG)
     found += sentence(_capital(where(verdict, drive))) + sentence(_capital(condition(verdict.hazard)))
     found += [
         (),
@@ -47,7 +47,8 @@ def _count_from(run: Run, verdict: Unsafe) -> list[Line]:
     text = f"The run. t = 0 {begins}{into}"
     span = verdict.replayed.overlap
     found = paragraph(f"{text}.", INDENT, Tone.FAINT)
-    if verdict.overlap is not None and span.end is not None and span.end - span.start != verdict.overlap:
+    whole = verdict.overlap is None or verdict.trace.prolonged is not None
+    if not whole and span.end is not None and span.end - span.start != verdict.overlap:
         found += paragraph(
             f"In this run the {run.stretch} is {shown(span.end - span.start)}.", INDENT, Tone.FAINT
         )

@@ -17,7 +17,7 @@ from seqcheck.reports.remarks import NO_DRIVE
 from seqcheck.reports.repository import plain
 from seqcheck.reports.standing import sorted_out
 from seqcheck.reports.waived import reason
-from seqcheck.reports.wording import CAUTION, condition, cure, happens, subject, where
+from seqcheck.reports.wording import CAUTION, condition, cure, stated, subject, where
 from seqcheck.source import Place
 from seqcheck.verdict import (
     WARNINGS,
@@ -157,7 +157,7 @@ def _unsafe(verdict: Unsafe, drive: Drive, run: int | None) -> Fields:
         "waived": reason(drive, verdict),
         "run": run,
         "place": _place(verdict.place),
-        "text": "; ".join(one for one in (_happens(verdict), where(verdict, drive)) if one),
+        "text": "; ".join(one for one in (stated(verdict), where(verdict, drive)) if one),
         "overlap": verdict.overlap,
         "greatest": verdict.greatest,
         "cure": {
@@ -171,10 +171,6 @@ def _unsafe(verdict: Unsafe, drive: Drive, run: int | None) -> Fields:
             "overlap": _span(verdict.replayed.overlap),
         },
     }
-
-
-def _happens(verdict: Unsafe) -> str:
-    return happens(verdict.hazard, verdict.overlap, verdict.greatest)
 
 
 # Runs

@@ -8,7 +8,7 @@ from seqcheck.drive import Drive, Library
 from seqcheck.faults import Faulted
 from seqcheck.messages import Problem
 from seqcheck.reports.waived import reason
-from seqcheck.reports.wording import NOTHING, SERVES, cure, happens, subject, where
+from seqcheck.reports.wording import NOTHING, SERVES, cure, stated, subject, where
 from seqcheck.source import Place
 from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
@@ -77,7 +77,7 @@ def _faults(outcome: Outcome) -> Iterator[Remark]:
 
 
 def _unsafe(verdict: Unsafe, drive: Drive) -> Remark:
-    said = [happens(verdict.hazard, verdict.overlap, verdict.greatest), where(verdict, drive)]
+    said = [stated(verdict), where(verdict, drive)]
     why = reason(drive, verdict)
     said.append(f"to cure it: {cure(verdict, drive)}" if why is None else f"waived because: {why}")
     severity = Severity.ERROR if why is None else Severity.NOTE

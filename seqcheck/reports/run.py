@@ -10,7 +10,7 @@ from seqcheck.reports.folding import folded
 from seqcheck.reports.instants import Instant, State
 from seqcheck.reports.lanes import Conduct, Lane, lanes
 from seqcheck.reports.pieces import Tone
-from seqcheck.reports.wording import stretch
+from seqcheck.reports.wording import shown_for, stretch
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace, Unsafe
 
@@ -50,12 +50,12 @@ def run_of(verdict: Unsafe, drive: Drive) -> Run:
     for event, own in events:
         notes.setdefault(event.time, []).extend(own)
     instants = [_before(drive, trace, found)]
-    for time in _times(trace, notes, found):
+    for time in _times(verdict, notes, found):
         instants.append(_instant(time, notes.get(time, []), instants[-1], verdict, found))
     instants = folded(instants, trace.events)
     first, last = _window(instants, trace)
     unit = shown(max(1, _time(instants[last]) - _time(instants[first]))).split()[1]
-    size, called = int(PICOSECONDS[unit]), stretch(verdict.hazard)
+    size, called = int(PICOSECONDS[unit]), stretch(verdict)
     return Run(found, _titles(found), tuple(instants), origin, origin_note, first, last, unit, size, called)
 
 
@@ -71,12 +71,13 @@ def _time(instant: Instant) -> int:
     return instant.time or 0
 
 
-def _times(trace: Trace, notes: dict[int, list[Note]], found: tuple[Lane, ...]) -> list[int]:
+def _times(verdict: Unsafe, notes: dict[int, list[Note]], found: tuple[Lane, ...]) -> list[int]:
     """All times of the run worth a row: events, changes of the lanes but for whole cycles, the ends of the overlap."""
-    times = set(notes) | {trace.overlap_from}
-    if trace.overlap_to is not None:
-        times.add(trace.overlap_to)
-    always = frozenset(times)
+    span = shown_for(verdict)
+    times = set(notes) | {span.start}
+    if span.end is not None:
+        times.add(span.end)
+    always, trace = frozenset(times), verdict.trace
     end = max([trace.end, *times])
     cycling = [(one.time, one.time + one.cycles.length) for one in trace.events if one.cycles is not None]
     for lane in found:
@@ -107,16 +108,17 @@ def _states(found: tuple[Lane, ...], time: int | None) -> tuple[State, ...]:
 
 
 def _instant(time: int, notes: list[Note], before: Instant, verdict: Unsafe, found: tuple[Lane, ...]) -> Instant:
-    trace, called = verdict.trace, stretch(verdict.hazard)
+    trace, called = verdict.trace, stretch(verdict)
     states = _states(found, time)
-    overlap = trace.overlap_from <= time and (trace.overlap_to is None or time < trace.overlap_to)
+    span = shown_for(verdict)
+    overlap = span.start <= time and (span.end is None or time < span.end)
     seen = list(notes or _commanded(found, time))
     seen += (_conduct_note(found[index], before.states[index], state) for index, state in enumerate(states))
     if overlap and not before.overlap:
-        endless = ", without end" if trace.overlap_to is None else ""
+        endless = ", without end" if span.end is None else ""
         seen.append(Note(f"{called} begins{endless}", None, Tone.BAD))
     if before.overlap and not overlap:
-        cut_off = verdict.overlap is None and trace.overlap_to == trace.end
+        cut_off = verdict.overlap is None and span.end == trace.end
         seen.append(Note(f"{called} {'goes on, the run round again' if cut_off else 'ends'}", None, Tone.BAD))
     return Instant(before.number + 1, time, tuple(note for note in seen if note.text), states, overlap)
 

@@ -7,7 +7,7 @@ from seqcheck.reports.counterexample import counterexample, sentence
 from seqcheck.reports.faults import table as fault_table
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
 from seqcheck.reports.standing import Sorted, Standing, sorted_out
-from seqcheck.reports.wording import CAUTION, NOTHING, SERVES, happens, subject
+from seqcheck.reports.wording import CAUTION, NOTHING, SERVES, stated, subject
 from seqcheck.verdict import Finding, Outcome, Safe, Undecided, Unsafe
 
 _STYLES = {
@@ -103,7 +103,7 @@ def _finding(finding: Finding, title: Piece) -> list[Line]:
 
 
 def _waived(found: Unsafe | Finding, why: str) -> list[Line]:
-    text = found.text if isinstance(found, Finding) else happens(found.hazard, found.overlap, found.greatest)
+    text = found.text if isinstance(found, Finding) else stated(found)
     head = line(Piece(f"waived {found.check.value}", Tone.STRONG), f"  {found.place}")
     return [head, *sentence(text), *sentence(f"Waived because: {why}")]
 

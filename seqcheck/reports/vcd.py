@@ -13,9 +13,9 @@ from seqcheck.reports.acts import entered, told
 from seqcheck.reports.lanes import Conduct, Lane, lanes
 from seqcheck.reports.pieces import counted
 from seqcheck.reports.standing import Sorted, Standing, sorted_out
-from seqcheck.reports.wording import CAUTION, happens, subject
+from seqcheck.reports.wording import CAUTION, shown_for, stated, stretch, subject
 from seqcheck.source import printable
-from seqcheck.verdict import Act, Check, Outcome, Trace, Unsafe
+from seqcheck.verdict import Act, Check, Outcome, Span, Trace, Unsafe
 
 _COMMANDS = {Command.ON: "1", Command.OFF: "0", Command.UNKNOWN: "x"}
 _CONDUCTS = {Conduct.YES: "1", Conduct.NO: "0", Conduct.MAY: "x"}
@@ -52,7 +52,7 @@ def report(outcome: Outcome, number: int | None = None) -> str:
         return "".join(f"{row}\n" for row in [*_head(outcome, _no_run(parts)), "$enddefinitions $end"])
     verdict = _worst(parts.unsafe) if number is None else parts.unsafe[number - 1]
     said = f"run {parts.unsafe.index(verdict) + 1} of {len(parts.unsafe)}: {verdict.check.value}"
-    rows = _head(outcome, [said, happens(verdict.hazard, verdict.overlap, verdict.greatest), *_LEGEND])
+    rows = _head(outcome, [said, stated(verdict), *_LEGEND])
     return "".join(f"{row}\n" for row in [*rows, *_dump(verdict, outcome.drive)])
 
 
@@ -157,7 +157,7 @@ def _scopes(verdict: Unsafe, drive: Drive) -> list[tuple[str, list[Variable]]]:
     whole = [
         Variable("mode", "string", list(entered(drive, trace))),
         Variable("happens", "string", _happens(drive, trace)),
-        Variable("overlap", "wire", _overlap(trace)),
+        Variable(stretch(verdict), "wire", _marked(shown_for(verdict))),
     ]
     commands = [Variable(one.literal.switch, "wire", _commands(one)) for one in found]
     conducts = [Variable(one.literal.switch, "wire", _conducts(one)) for one in found]
@@ -174,9 +174,9 @@ def _happens(drive: Drive, trace: Trace) -> Changes:
     return [(None, f"settled in {drive.start}"), *((time, "; ".join(said)) for time, said in found.items())]
 
 
-def _overlap(trace: Trace) -> Changes:
-    ends: Changes = [] if trace.overlap_to is None else [(trace.overlap_to, "0")]
-    return [(None, "0"), (trace.overlap_from, "1"), *ends]
+def _marked(span: Span) -> Changes:
+    ends: Changes = [] if span.end is None else [(span.end, "0")]
+    return [(None, "0"), (span.start, "1"), *ends]
 
 
 def _commands(lane: Lane) -> Changes:

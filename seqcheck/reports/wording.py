@@ -4,7 +4,7 @@ from seqcheck.drive import Above, CurrentOut, Drive, Known, Mode
 from seqcheck.hazards import Current, Hazard
 from seqcheck.quantities import shown
 from seqcheck.reports.pieces import listed
-from seqcheck.verdict import Check, Unsafe
+from seqcheck.verdict import Check, Span, Unsafe
 
 CAUTION = "A proof is about the file, not about the board."
 NOTHING = "nothing to prove"
@@ -50,9 +50,33 @@ def _off(hazard: Hazard) -> str:
     return f"{_named(hazard)} {'is off' if count == 1 else 'are both off' if count == 2 else 'are all off'}"
 
 
-def stretch(hazard: Hazard) -> str:
-    """What the time is called for which the hazard lasts."""
-    return "opening" if hazard.currents else "overlap"
+def stretch(verdict: Unsafe) -> str:
+    """What the time is called that a run is shown for."""
+    if verdict.check is Check.THIN_MARGIN:
+        return "gap"
+    return "opening" if verdict.hazard.currents else "overlap"
+
+
+def shown_for(verdict: Unsafe) -> Span:
+    """The time for which a run is shown: the overlap, or the gap that is too short (1 ps where there is none)."""
+    trace = verdict.trace
+    if trace.prolonged is None:
+        return Span(trace.overlap_from, trace.overlap_to)
+    gap = trace.prolonged[1] - 1
+    return Span(trace.overlap_from - gap, trace.overlap_from + (gap == 0))
+
+
+def stated(verdict: Unsafe) -> str:
+    """One sentence without full stop: what can happen, for how long, and against which rule."""
+    rule = f", against line {verdict.rule.line}" if verdict.rule is not None else ""
+    if verdict.check is not Check.THIN_MARGIN or verdict.trace.prolonged is None:
+        return f"{happens(verdict.hazard, verdict.overlap, verdict.greatest)}{rule}"
+    (literal, later), short = verdict.trace.prolonged, verdict.overlap or 0
+    others = listed([str(one) for one in verdict.hazard.literals if one != literal])
+    return (
+        f"{others} can follow {literal} after {shown(later - 1)}, {shown(short)} sooner than the margin of "
+        f"{shown(later - 1 + short)} lets it{rule}"
+    )
 
 
 def lasting(overlap: int | None, greatest: bool) -> str:
@@ -123,12 +147,16 @@ def cure(verdict: Unsafe, drive: Drive) -> str:
     if verdict.hazard.currents:
         return _cure_of_opening(verdict, drive)
     if (row := row_at_fault(verdict, drive)) is not None:
+        if verdict.check is Check.TOGETHER:
+            return f"no wait cures this; row '{row.name}' must not command {switches(verdict.hazard)} together"
         return f"no wait cures this; row '{row.name}' must leave one of {switches(verdict.hazard)} off"
     if verdict.overlap is None:
         return (
             f"no single longer wait was found to do it: once {switches(verdict.hazard)} are so together this run never "
             "parts them; one must be taken back before the other is commanded"
         )
+    if verdict.check is Check.THIN_MARGIN:
+        return f"{switches(verdict.hazard)} must be kept apart {shown(verdict.overlap)} longer"
     bound = "up to" if verdict.greatest else "at least"
     return f"{switches(verdict.hazard)} must be kept apart {bound} {shown(verdict.overlap)} longer"
 

@@ -1,6 +1,6 @@
 """Puts faults into the rooms that a proof rests on, and tells which of them no test notices.
 
-    PYTHONPATH=.:tests nice python -m mutation [--only MODULE ...] [--jobs N] [--budget SECONDS] [--afresh]
+    PYTHONPATH=.:tests nice python -m mutation [--only FILE ...] [--jobs N] [--budget SECONDS] [--afresh] [--stale]
 
 Judgements are kept in `.mutation/` and not made again while the function and, for survivors, the tests stay the same.
 The exit code is 1 where a survivor is not in `explained.txt`, or where that holds an entry that fits no survivor.

@@ -82,6 +82,7 @@ class Module:
         self._swaps: list[tuple[_Place, ast.AST, ast.AST | None]] = []
         self._found: list[Mutant] = []
         self._owner: _Function | None = None
+        self._outermost: _Function | None = None
         self.functions = {"": ""}
         """The source of each function, by qualified name."""
         self._visit(self._tree, "", "")
@@ -100,10 +101,13 @@ class Module:
         for place, child in _children(node):
             if _is_left_alone(place, child):
                 continue
+            where = "" if place.field == "args" and node is self._outermost else function  # defaults are no function's
             for new in self._faulty(child, node):
-                self._record(place, child, new, function)
-            inner, outer = _names(child, prefix, function)
-            if outer != function:
+                self._record(place, child, new, where)
+            inner, outer = _names(child, prefix, where)
+            if isinstance(child, _Function) and not function:
+                self._outermost = child
+            if outer != where:
                 self.functions[outer] = self.functions.get(outer, "") + ast.unparse(child)
             owner, self._owner = self._owner, child if isinstance(child, _Function) else self._owner
             if not isinstance(child, ast.Raise):  # what it says is a message

@@ -1,0 +1,138 @@
+"""Margins: against the literal judge on drawn drives, at exact boundaries, and each shown by a run that is replayed."""
+
+import os
+from collections.abc import Iterator
+
+import pytest
+from judge.delays import delays_of
+from judge.draws import draw
+from judge.least import NEVER, least_gap
+from judge.shorts import asked
+from judge.stretched import stretched
+from proofs import at_most, leg, silent
+from reading import drive_of
+
+from seqcheck.circuit import shorting_sets
+from seqcheck.evidence.replay import NotPermitted, replay
+from seqcheck.margins import budget
+from seqcheck.proving.prove import Proven, Prover
+from seqcheck.proving.search import LimitReached
+from seqcheck.proving.tracing import Infeasible
+from seqcheck.verdict import Margin
+
+SEEDS = (*range(300, 350), 11, 30, 45, 92, 102, 119, 120, 137, 149, 166, 198)
+STATES, ZONES = 4000, 1500
+
+
+def compared(text: str) -> Iterator[tuple[str, object, object]]:
+    """What (hazard and literal), the prover's margin and the judge's, of every safe hazard that both can tell."""
+    drive = drive_of(text)
+    judged = {frozenset(one.switch for one in literals): (literals, forbids) for literals, forbids in asked(drive)}
+    prover = Prover(drive)
+    for hazard in shorting_sets(drive.stage):
+        literals, forbids = judged[frozenset(one.switch for one in hazard.literals)]
+        try:
+            if not isinstance(prover.prove(hazard, True, at_most(ZONES)), Proven):
+                continue
+        except LimitReached:
+            continue
+        for place, literal in enumerate(hazard.literals):
+            said = told(prover, hazard, place)
+            if said is None:
+                continue
+            after = literals.index(literal)
+            right = least_gap(
+                drive, literals, delays_of(drive, literals), after, facts_forbid=forbids, most_states=STATES
+            )
+            if right is not None:
+                yield f"{' '.join(map(str, hazard.literals))} after {literal}", said, right
+
+
+def told(prover: Prover, hazard: object, place: int) -> object:
+    """The prover's margin, replayed; None where a limit ended the search."""
+    try:
+        gap = prover.gap(hazard, place, at_most(ZONES))  # type: ignore[arg-type]
+        if gap.limit:
+            return None
+        if gap.trace is not None:
+            replay(prover.drive, gap.trace)
+    except (NotPermitted, Infeasible) as refusal:
+        return f"not shown: {refusal}"
+    return NEVER if gap.time is None else gap.time
+
+
+def wrong(name: str, text: str) -> list[str]:
+    return [f"{name}: {what}: said {said}, right {right}" for what, said, right in compared(text) if said != right]
+
+
+def test_margins_of_drawn_drives() -> None:
+    found = [line for seed in SEEDS for line in wrong(f"draw({seed})", draw(seed))]
+    assert found == []
+
+
+def test_the_slice_tells_margins_of_every_kind() -> None:
+    """Else the comparison would be empty."""
+    said = [right for seed in SEEDS[:40] for _, _, right in compared(draw(seed))]
+    assert sum(isinstance(one, int) and one > 0 for one in said) > 8
+    assert 0 in said
+    assert NEVER in said
+
+
+@pytest.mark.campaign
+@pytest.mark.parametrize("chunk", range(64))
+def test_margins_campaign(chunk: int) -> None:
+    """SEQCHECK_SEEDS=0-5000 in 64 parts; drives with long stays as well."""
+    first, _, last = os.environ.get("SEQCHECK_SEEDS", "0-640").partition("-")
+    seeds = range(int(first) + chunk, int(last), 64)
+    found = [line for seed in seeds for line in wrong(f"draw({seed})", draw(seed))]
+    texts = [(seed, stretched(seed)) for seed in seeds]
+    found += [line for seed, text in texts if text is not None for line in wrong(f"stretched({seed})", text)]
+    assert found == []
+
+
+SWAP = "  start a\n  a -> b when go\n    set A off\n    wait {} ps\n  b -> a when back\n    set B off\n    wait {} ps"
+
+
+def margins_of(text: str) -> dict[str, Margin]:
+    return {one.literal.switch: one for one in budget(drive_of(text), "t.dseq", silent).margins}
+
+
+@pytest.mark.parametrize(("waits", "slacks"), [((5, 9), (0, 4)), ((6, 5), (1, 0)), ((1000, 7), (995, 2))])
+def test_margin_is_wait_less_need(waits: tuple[int, int], slacks: tuple[int, int]) -> None:
+    """Off within 8, on from 3 on: each change needs 5 ps."""
+    found = margins_of(leg("a on off\nb off on", SWAP.format(*waits), parts="p on 3 ps to 4 ps off 2 ps to 8 ps"))
+    assert (found["A"].slack, found["B"].slack) == slacks
+    assert {one.needed for one in found.values()} == {5}
+
+
+def test_what_never_follows() -> None:
+    """B is never left for A."""
+    found = margins_of(leg("a on off\nb off on", SWAP.format(9, 9).partition("\n  b")[0]))
+    assert found["B"].slack is None
+    assert found["B"].exact
+    assert found["A"].slack is not None
+
+
+def test_a_long_stay_counts_whole() -> None:
+    """A is off for 20 us, some twenty cycles of a carrier that it follows at other times, before B comes."""
+    text = leg(
+        "i off off\na k off\nb off on",
+        "  start i\n  i -> a when go earliest 1 us\n  a -> i when stop\n  i -> b when turn earliest 20 us\n"
+        "  b -> i when back",
+        more="carriers\n  k 1 MHz duty 20 % to 80 %",
+    )
+    found = margins_of(text)
+    assert found["A"].slack is not None
+    assert found["A"].exact
+    assert 19 * 10**6 < found["A"].slack < 20 * 10**6
+
+
+def test_a_pulse_of_no_length_ends_nothing() -> None:
+    """A is told on for 1 ps, on from 9 and off within 8: it is possible at one moment only, which is no time."""
+    text = leg(
+        "i off off\nb off on",
+        "  start i\n  i -> b when go\n    set A on\n    wait 1 ps\n    set A off\n    wait 1 ps\n"
+        "  b -> i when back earliest 1 ns",
+        parts="p on 9 ps off 8 ps",
+    )
+    assert margins_of(text)["A"].slack is None

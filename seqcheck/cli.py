@@ -54,6 +54,15 @@ timing diagram, waivers, what is not covered. It stands alone. Example: seqcheck
 _SERVE = """\
 Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
 once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
+_COMPARE = """\
+What the change from OLD to NEW comes to, for a review: hazards, findings, margins, overlaps, what can be entered, and
+what is said differently. One of them may be '-', standard input: 'git show HEAD:x.dseq | seqcheck compare - x.dseq'.
+Files that it names with 'use' are looked for from the folder you are in, as they are now."""
+_COMPARED = """\
+exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not shown to be in OLD, or a check is broken
+that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
+undecided within the limits given; 4 the program itself is at fault. Code 0 does not say that NEW is proven: what was
+possible before and still is, is no change. A smaller margin or a longer overlap alone is told, and is code 0 too."""
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
@@ -140,6 +149,7 @@ def _parser() -> argparse.ArgumentParser:
     _limited(lint)
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
+    lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -155,6 +165,16 @@ def _parser() -> argparse.ArgumentParser:
     review.add_argument("file", metavar="FILE")
     review.add_argument("--out", metavar="FILE", help="write the page to FILE instead of standard output")
     _limited(review)
+    compare = commands.add_parser(
+        "compare", help="say what a change does", description=_COMPARE, epilog=_COMPARED, allow_abbrev=False
+    )
+    compare.add_argument("old", metavar="OLD")
+    compare.add_argument("new", metavar="NEW")
+    compare.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
+    compare.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    compare.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    compare.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    compare.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     margins = commands.add_parser(
         "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
     )
@@ -203,11 +223,15 @@ def _run(arguments: list[str]) -> int:
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
             return _start(asked.kind)
+        if asked.command == "compare":
+            return _compare(asked)
         limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         colour = _one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
             return _margins(asked.file, limits, colour, asked.out)
         form = _one_of("--as", asked.form, FORMS)
+        if asked.with_fault and form not in ("screen", "lines"):
+            _wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
         only = frozenset(_check(name) for name in asked.only)
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
         files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
@@ -215,7 +239,7 @@ def _run(arguments: list[str]) -> int:
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
         return int(stop.code or 0)
-    answers, code = _lint(files, only, limits, shelf)
+    answers, code = _lint(files, only, limits, shelf, asked.with_fault)
     try:
         text = _written(answers, answering)
     except SystemExit as stop:
@@ -320,12 +344,14 @@ class _Shelf:
 
 
 def _lint(
-    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None
+    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None, with_fault: bool
 ) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
     for file in files:
         answer, own = _one_file(file, only, limits, shelf)
         code = _worse(code, own)
+        if with_fault and isinstance(answer, Outcome):
+            answer = _with_faults(answer, limits)
         answers.append(answer)
     return answers, code
 
@@ -350,6 +376,12 @@ def _one_file(
         return Failed(file, str(fault)), FAULT
     stored = PROVEN if shelf is None or kept is None else shelf.put(file, drive, kept)
     return outcome, _worse(stored, _exit_of(outcome))
+
+
+def _with_faults(outcome: Outcome, limits: Limits) -> Outcome:
+    from seqcheck.failing import with_faults
+
+    return with_faults(outcome, _observer(limits))
 
 
 def _mistaken(problems: Problems) -> int:
@@ -456,6 +488,27 @@ def _report(asked: argparse.Namespace, call: str) -> int:
         return _mistaken(problems)
     except Fault as fault:
         _complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    return _worse(code, _deliver(text, asked.out))
+
+
+def _compare(asked: argparse.Namespace) -> int:
+    """Hold two files against each other; the exit code."""
+    form = _one_of("--as", asked.form, ("screen", "lines"))
+    colour = _one_of("--color", asked.color, ("auto", "always", "never"))
+    observer = _observer(Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after)))
+    if asked.old == asked.new == _STDIN:
+        _wrong("only one of two files can come from standard input; name the other")
+    from seqcheck.commands.compare import run
+    from seqcheck.confirming import Fault
+
+    painted = _wants_colour(colour, sys.stdout) and not asked.out
+    try:
+        text, code = run((asked.old, asked.new), _text, observer, form, painted)
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"internal error, please report it with both files: {fault}")
         return FAULT
     return _worse(code, _deliver(text, asked.out))
 

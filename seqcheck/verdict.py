@@ -4,6 +4,7 @@ from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.drive import Cell, Command, Drive, Library
+from seqcheck.faults import Faulted
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.messages import Problem
 from seqcheck.source import Place
@@ -253,12 +254,16 @@ class Finding:
 
 @dataclass(frozen=True, slots=True)
 class Outcome:
-    """Everything about one file: the verdict of every hazard, and the other findings and warnings."""
+    """Everything about one file: the verdict of every hazard, and the other findings and warnings.
+
+    `faults`: what single faults bring about, None where that was not asked for.
+    """
 
     file: str
     drive: Drive
     verdicts: tuple[Verdict, ...]
     findings: tuple[Finding, ...] = ()
+    faults: tuple[Faulted, ...] | None = None
 
 
 @dataclass(frozen=True, slots=True)

@@ -18,9 +18,12 @@ LOW_TO_HIGH = (
     "drive",
     "language",
     "hazards",
+    "faults",
+    "contents",
     "effects",
     "circuit",
     "verdict",
+    "changes",
     "writing",
     "firmware",
     "modegraph",
@@ -31,6 +34,7 @@ LOW_TO_HIGH = (
     "sizing",
     "margins",
     "rules",
+    "failing",
     "reports",
     "checking",
     "serving",
@@ -44,7 +48,7 @@ APART = {
     "proving": {"language", "evidence"},
     "reports": {
         *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
-        *("confirming", "sizing", "margins", "rules"),
+        *("confirming", "sizing", "margins", "rules", "failing"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

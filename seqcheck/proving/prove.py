@@ -7,6 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
+from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
 from seqcheck.proving.certify import Data, cover
@@ -17,6 +18,7 @@ from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.screen import Map, Places, least_after, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
 from seqcheck.proving.shortest import shortest
+from seqcheck.proving.spread import spread
 from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
@@ -190,6 +192,29 @@ class Prover:
         if bound is None:
             return 0
         return None if bound >= INFINITE else bound
+
+    def spread(self, hazard: Hazard, observer: Observer) -> Spread:
+        """All places in which a hazard happens, with interlocks and with firmware as late as the drive allows.
+
+        A hazard without literals happens wherever it is asked for. A limit of the observer leaves some places out, and
+        is named.
+        """
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+        count = _Count(observer)
+        try:
+            if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
+                return Spread(frozenset(), frozenset())
+        except LimitReached as limit:
+            return Spread(frozenset(), frozenset(), str(limit))
+        *rough, exact = _manners(looking)
+        firmware = self._firmware(looking, punctual=True)
+        ceiling = None
+        for manner in rough:
+            ceiling = spread(Projection(looking, firmware, manner).initial(), count, None)
+            if ceiling.limit is not None or not ceiling.places:
+                return Spread(frozenset(), frozenset(), ceiling.limit)
+            count.next_search()
+        return spread(Projection(looking, firmware, exact).initial(), count, ceiling)
 
     def _screened(self, looking: View, here: Map, apart: Places) -> Data:
         """The proof of the screen as data; hazards that share a map share the list of its states."""

@@ -5,6 +5,7 @@ from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.drive import Drive, Library
+from seqcheck.faults import Faulted
 from seqcheck.messages import Problem
 from seqcheck.reports.waived import reason
 from seqcheck.reports.wording import NOTHING, SERVES, cure, stated, subject, where
@@ -34,7 +35,7 @@ class Remark:
     severity: Severity
     check: str
     text: str
-    about: Unsafe | Undecided | Finding | Problem | Failed | Library
+    about: Unsafe | Undecided | Finding | Problem | Failed | Library | Faulted
     waived: str | None = None
 
 
@@ -59,6 +60,20 @@ def _found(outcome: Outcome) -> Iterator[Remark]:
             yield _undecided(verdict, drive)
     for finding in outcome.findings:
         yield _finding(finding, drive)
+    yield from _faults(outcome)
+
+
+def _faults(outcome: Outcome) -> Iterator[Remark]:
+    """What single faults bring, at the line of the switch; nothing is amiss in the file itself."""
+    if not outcome.faults:
+        return
+    from seqcheck.reports.faults import CHECK, brings, called
+
+    places = {switch.name: switch.place for switch in outcome.drive.stage.switches}
+    for one in outcome.faults:
+        if one.brings:
+            text = f"stuck {called(outcome.drive, one)}: {_sentence(*brings(outcome.drive, one))}"
+            yield Remark(places[one.faults[0].switch], Severity.NOTE, CHECK, text, one)
 
 
 def _unsafe(verdict: Unsafe, drive: Drive) -> Remark:

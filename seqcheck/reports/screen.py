@@ -4,6 +4,7 @@ from collections.abc import Iterable, Sequence
 
 from seqcheck.drive import Library
 from seqcheck.reports.counterexample import counterexample, sentence
+from seqcheck.reports.faults import table as fault_table
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
 from seqcheck.reports.standing import Sorted, Standing, sorted_out
 from seqcheck.reports.wording import CAUTION, NOTHING, SERVES, stated, subject
@@ -70,6 +71,7 @@ def _file(outcome: Outcome) -> list[Line]:
     blocks.append(_proven(parts.safe))
     blocks += (_finding(one, Piece(f"warning {one.check.value}", Tone.DOUBT)) for one in parts.warnings)
     blocks += (_waived(one, why) for one, why in parts.waived)
+    blocks.append(fault_table(outcome))
     blocks.append(_closing(outcome.file, parts))
     full = [block for block in blocks if block]
     return [one for block in full[:-1] for one in (*block, ())] + full[-1]

@@ -169,7 +169,7 @@ class World:
         drive = self.drive
         pins = tuple(self._settled(place, cell_text(cell)) for place, cell in enumerate(drive.modes[drive.start].cells))
         for waves in product(*(self._phases(carrier) for carrier in self.carriers)):
-            commands = [self.command(pin, waves) for pin in pins]
+            commands = [self.at_pin(place, pins, waves) for place in range(len(pins))]
             locks = tuple(Lock(commands[partner], 0, commands[partner] != ON) for _, partner, _ in self.guards)
             yield State(Rest(drive.start, 0), None, pins, waves, locks)
 
@@ -193,8 +193,12 @@ class World:
 
     # Commands
 
+    def at_pin(self, place: int, pins: Pins, waves: Waves) -> str:
+        """What the pin of a column says, before any interlock."""
+        return self.command(pins[place], waves)
+
     def command(self, pin: Pin, waves: Waves) -> str:
-        """What the pin says, before any interlock."""
+        """What is told to a pin."""
         cell = pin.effective
         if cell == FREE:
             return pin.level
@@ -207,7 +211,7 @@ class World:
         """For each literal, whether the passed command can be as it wants; an unknown one can be either."""
         found = []
         for literal, place in zip(self.literals, self.watched, strict=True):
-            own = self.command(state.pins[place], state.waves)
+            own = self.at_pin(place, state.pins, state.waves)
             mine = [lock for lock, guard in zip(state.locks, self.guards, strict=True) if guard[0] == place]
             may_be_on = own != OFF and all(lock.partner != ON and lock.clear for lock in mine)
             must_be_on = own == ON and all(lock.partner == OFF and lock.clear for lock in mine)
@@ -217,7 +221,7 @@ class World:
     def settle(self, state: State) -> State:
         """The interlocks after a change of pins or carriers."""
         locks = tuple(
-            _heard_by(lock, self.command(state.pins[partner], state.waves), dead)
+            _heard_by(lock, self.at_pin(partner, state.pins, state.waves), dead)
             for lock, (_, partner, dead) in zip(state.locks, self.guards, strict=True)
         )
         return state._replace(locks=locks)

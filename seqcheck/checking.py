@@ -5,16 +5,16 @@ from dataclasses import replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
-from seqcheck.drive import ApartRule, ClearsRule, Drive, Interlock, LastsRule, MarginRule, NeverRule, Rule
-from seqcheck.hazards import Hazard, Literal
+from seqcheck.drive import Drive, Interlock, MarginRule
+from seqcheck.hazards import Hazard
 from seqcheck.margins import thin
-from seqcheck.messages import Problem, Problems
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
 from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
 from seqcheck.reports.waived import lets_pass
+from seqcheck.rules import asked_by, check_of_rule, never_so
 from seqcheck.sizing import cure
 from seqcheck.source import Place
 from seqcheck.verdict import Check, Finding, Outcome, Safe, Trace, Undecided, Unsafe, Verdict
@@ -22,30 +22,6 @@ from seqcheck.verdict import Check, Finding, Outcome, Safe, Trace, Undecided, Un
 Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
 """A hazard with the proof that it is safe as data, the run that shows it, or None where neither is at hand."""
-
-PROVEN_CHECKS = (
-    Check.SHORT,
-    Check.OVERLAP,
-    Check.UNREACHABLE,
-    Check.NO_WAY_BACK,
-    Check.AMBIGUOUS,
-    Check.STALLED,
-    Check.IDLE_WAIVER,
-    Check.THIN_MARGIN,
-    Check.OPEN_WINDING,
-    Check.TOGETHER,
-    Check.ROW_MEANING,
-    Check.NO_PATH,
-    Check.HELD_BY_INTERLOCK,
-    Check.PUNCTUAL,
-)
-"""What this version looks for; a file or a call that asks for another check is refused."""
-
-_RULES: dict[type[Rule], str] = {
-    ClearsRule: "clears",
-    LastsRule: "on at most, on at least, off at least",
-    ApartRule: "apart",
-}
 
 
 def check(
@@ -55,10 +31,9 @@ def check(
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. `kept` takes up the proof of every hazard, for evidence of them. Raises Problems
-    for what cannot be proven, Fault if a trace does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof of every built-in hazard, for evidence of
+    them. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
     """
-    refuse(drive)
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
     findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
@@ -77,8 +52,8 @@ def _asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
     """Everything that must never be possible at once, and the rule that asks for it (None: it is built in)."""
     yield from ((hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)))
     for rule in drive.rules:
-        if isinstance(rule, NeverRule):
-            yield Hazard(tuple(Literal(switch, on) for switch, on in rule.literals), ()), rule.place
+        for hazard in asked_by(rule):
+            yield hazard, rule.place
 
 
 def _margin_rules(drive: Drive) -> list[MarginRule]:
@@ -92,23 +67,11 @@ def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
     return replace(outcome, findings=findings)
 
 
-def refuse(drive: Drive) -> None:
-    """Raise Problems for what cannot be proven: nothing that the file asks for is passed over in silence."""
-    way_out = "take the line out to have the rest proven"
-    found = [
-        Problem(rule.place, "not-proven-yet", f"rules of the kind '{_RULES[type(rule)]}' cannot be proven yet", way_out)
-        for rule in drive.rules
-        if not isinstance(rule, MarginRule | NeverRule)
-    ]
-    if found:
-        raise Problems(found)
-
-
 def _judged(
     prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None, rule: Place | None
 ) -> Verdict:
     verdict, proof = _with_proof(prover, hazard, observer, rule)
-    if kept is not None:
+    if kept is not None and rule is None:
         kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
     return verdict
 
@@ -136,11 +99,11 @@ def _with_proof(
 
 
 def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
-    whole = proof.held is not None or not proof.greatest
+    whole = proof.held is not None or not proof.greatest or proof.overlap is None
     trace, replayed = confirmed(drive, proof.trace, whole=whole)
     remedy = None if proof.held else cure(drive, hazard, proof, observer)
     place = place_of(drive, proof.trace, replayed) if proof.held is None else drive.modes[proof.held].place
-    check = _check_of(hazard, proof.held) if rule is None else Check.TOGETHER
+    check = _check_of(hazard, proof.held) if rule is None else check_of_rule(hazard)
     return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held, rule)
 
 
@@ -243,7 +206,7 @@ def _punctual(drive: Drive, verdicts: list[Verdict]) -> Iterator[Finding]:
         return
     resting = [one.hazard for one in verdicts if isinstance(one, Safe) and not one.however_late]
     for hazard in resting:
-        text = f"that {named(hazard)} never meet rests on firmware that is never late"
+        text = f"that {never_so(hazard)} rests on firmware that is never late"
         place = drive.clock.place if drive.clock else drive.place
         names = tuple(literal.switch for literal in hazard.literals)
         yield Finding(Check.PUNCTUAL, place, text, "say how late it can be: 'clock ..., late by at most ...'", names)
@@ -253,6 +216,7 @@ _OF_A_VERDICT = frozenset(
     one.value
     for one in (
         *(Check.SHORT, Check.OVERLAP, Check.OPEN_WINDING, Check.TOGETHER, Check.THIN_MARGIN),
+        *(Check.LONG_ON, Check.SHORT_PULSE, Check.TOO_SOON, Check.LATE_TRIP),
         *(Check.HELD_BY_INTERLOCK, Check.PUNCTUAL),
     )
 )

@@ -55,6 +55,9 @@ exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not s
 that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
 undecided within the limits given; 4 the program itself is at fault. Code 0 does not say that NEW is proven: what was
 possible before and still is, is no change. A smaller margin or a longer overlap alone is told, and is code 0 too."""
+_SERVE = """\
+Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
+once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
@@ -142,6 +145,7 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
+    lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -170,6 +174,9 @@ def _parser() -> argparse.ArgumentParser:
     )
     audit.add_argument("file", metavar="FILE")
     audit.add_argument("evidence", metavar="EVIDENCE")
+    serve = commands.add_parser("serve", help="serve an editor", description=_SERVE, allow_abbrev=False)
+    serve.add_argument("--most-zones", metavar="N", help="give a proof up after N zones (50000)")
+    serve.add_argument("--give-up-after", metavar="DURATION", help="give a text up after this time (10 s)")
     tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
     tidy.add_argument("files", nargs="+", metavar="FILE")
     tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
@@ -183,6 +190,10 @@ def _run(arguments: list[str]) -> int:
         asked = _parser().parse_args(arguments)
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
+        if asked.command == "serve":
+            from seqcheck.serving.command import serve
+
+            return serve(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         if asked.command == "tidy":
@@ -200,7 +211,7 @@ def _run(arguments: list[str]) -> int:
             _wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
         only = frozenset(_check(name) for name in asked.only)
         answering = Answering(form, _wants_colour(colour, sys.stdout) and not asked.out, _count("--run", asked.run))
-        files = list(dict.fromkeys(_files(asked.paths or ["."])))
+        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
@@ -225,13 +236,9 @@ def _one_of(option: str, value: str, known: tuple[str, ...]) -> str:
 
 
 def _check(name: str) -> Check:
-    from seqcheck.checking import PROVEN_CHECKS
-
-    known = {check.value: check for check in PROVEN_CHECKS}
+    known = {check.value: check for check in Check}
     if name in known:
         return known[name]
-    if name in {check.value for check in Check}:
-        _wrong(f"--only {name}: this check cannot be proven yet; known are {', '.join(known)}")
     _wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
 
 
@@ -273,6 +280,14 @@ def _files(paths: list[str]) -> Iterator[str]:
         if not found:
             _wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
         yield from (name if path == "." else os.path.join(path, name) for name in found)
+
+
+def _changed(paths: list[str]) -> list[str]:
+    from seqcheck.commands.users import concerned
+
+    if any(path == _STDIN or os.path.isdir(path) for path in paths):
+        _wrong("--changed needs the files that a change touches, not a folder or standard input")
+    return concerned(paths)
 
 
 # Proving
@@ -354,7 +369,6 @@ def _mistaken(problems: Problems) -> int:
 
 def _audit(file: str, evidence: str) -> int:
     """Check the evidence of a file; the exit code of the verdicts that it bears out."""
-    from seqcheck.checking import refuse
     from seqcheck.evidence.audit import NotProven, audit
     from seqcheck.evidence.certificate import NoEvidence
     from seqcheck.evidence.certificate import read as read_evidence
@@ -362,7 +376,6 @@ def _audit(file: str, evidence: str) -> int:
 
     try:
         drive = read(_text(file), file, _text)
-        refuse(drive)
         found = audit(drive, read_evidence(_text(evidence)))
     except Problems as problems:
         return _mistaken(problems)
@@ -372,7 +385,7 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         _complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}")
+    print(f"{printable(file)}: {_borne_out(found)}{_not_about(drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
@@ -384,6 +397,14 @@ def _borne_out(found: "Audited") -> str:
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
+
+
+def _not_about(drive: Drive) -> str:
+    """What evidence says nothing of: rules of the file, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules]
+    if not lines:
+        return ""
+    return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
 
 
 def _rows(file: str, colour: str, out: str | None) -> int:
@@ -516,6 +537,8 @@ def _exit_of(outcome: Outcome) -> int:
 def _written(answers: list[Answer], answering: Answering) -> str | None:
     """The answer as a text; None where nothing was judged and the form has no word for that."""
     judged = [one for one in answers if isinstance(one, Outcome | Library)]
+    if not answers and answering.form in ("screen", "vcd"):
+        return "nothing to prove: the change touches no *.dseq file and none that one uses\n"
     if not judged and answering.form not in _WHATEVER_COMES:
         return None
     match answering.form:

@@ -2,9 +2,9 @@
 
 from seqcheck.drive import Drive
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting
 from seqcheck.source import Place
-from seqcheck.verdict import Act, Replayed, Trace
+from seqcheck.verdict import Act, Event, Replayed, Trace
 
 
 class Fault(Exception):  # noqa: N818 - the program is at fault, not the input
@@ -22,20 +22,28 @@ def confirmed(drive: Drive, trace: Trace, *, whole: bool = False) -> tuple[Trace
 
 def named(hazard: Hazard) -> str:
     """The literals of a hazard in a few words."""
+    if isinstance(hazard.asks, Following):
+        return f"{hazard.asks.entered} after {hazard.asks.left}"
     return " with ".join(map(str, hazard.literals))
 
 
 def place_of(drive: Drive, trace: Trace, replayed: Replayed) -> Place:
     """The move or trip whose run brings what is found, or the row at rest in which it comes."""
     changes = [time for line in replayed.commands.values() for time, _ in line if time is not None]
-    last = max((time for time in changes if time <= trace.overlap_from), default=0)
+    asks = trace.hazard.asks
+    if isinstance(asks, Following):
+        return next(_line(drive, one) for one in reversed(trace.events) if one.act is Act.BEGINS)
+    if isinstance(asks, Clearing):
+        return next(trip.place for trip in drive.trips if trip.name == asks.trip)
+    shown = trace.overlap_from if asks is None or (isinstance(asks, Lasting) and asks.longer) else trace.end
+    last = max((time for time in changes if time <= shown), default=0)
     concerned = {literal.switch for literal in trace.hazard.literals}
     mode, run, at_rest, written = drive.start, drive.modes[drive.start].place, True, False
     for event in trace.events:
         if event.time > last:
             break
         if event.act is Act.BEGINS:
-            run, at_rest = (drive.trips[event.index] if event.trip else drive.moves[event.index]).place, False
+            run, at_rest = _line(drive, event), False
         elif event.act is Act.ENTERS:
             mode, at_rest = event.name, True
         if event.time == last and concerned & {switch for switch, _ in event.writes}:
@@ -43,3 +51,7 @@ def place_of(drive: Drive, trace: Trace, replayed: Replayed) -> Place:
     if at_rest and not written:
         return drive.modes[mode].place
     return run
+
+
+def _line(drive: Drive, event: Event) -> Place:
+    return (drive.trips[event.index] if event.trip else drive.moves[event.index]).place

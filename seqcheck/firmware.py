@@ -7,7 +7,8 @@ what it reaches.
 
 A trip's arrival is put off as long as possible: a trip is taken on the spot wherever it may arrive, and is put in hand
 only where the firmware leaves the states in which it may arrive. What happens with an earlier arrival happens with the
-later one too, since both may be taken until `within` after it and an earlier one only closes that window sooner.
+later one too, since both may be taken until `within` after it and an earlier one only closes that window sooner. Where
+it matters how long ago a trip arrived, that one may arrive early too.
 """
 
 from dataclasses import dataclass
@@ -72,7 +73,8 @@ class Step(NamedTuple):
 
 
 class Edge(NamedTuple):
-    """A transition: `x` in [lo, hi] (hi None: no bound), `y` at most `y_hi` if that is not None."""
+    """A transition: `x` in [lo, hi] (hi None: no bound), `y` at most `y_hi` if that is not None. `x` starts anew but
+    where a trip arrives early."""
 
     lo: int
     hi: int | None
@@ -80,6 +82,7 @@ class Edge(NamedTuple):
     resets_y: bool
     starts_run: bool
     step: Step
+    resets_x: bool = True
 
 
 @dataclass(frozen=True, slots=True)
@@ -101,8 +104,13 @@ Item = tuple[tuple[int, int], ...] | Interval
 class Firmware:
     """The firmware of one drive, as transitions between states."""
 
-    def __init__(self, drive: Drive, tracked: frozenset[str], looked_at: frozenset[str], punctual: bool) -> None:
-        """Unfold with (`punctual`) or without the upper bounds that firmware keeps; see Writing for the rest."""
+    def __init__(
+        self, drive: Drive, tracked: frozenset[str], looked_at: frozenset[str], punctual: bool, early: str | None = None
+    ) -> None:
+        """Unfold with (`punctual`) or without the upper bounds that firmware keeps; see Writing for the rest.
+
+        `early` names a trip that may arrive at any moment, and not only at the last.
+        """
         self.drive = drive
         self.punctual = punctual
         self.writing = Writing(drive, tracked, looked_at)
@@ -115,6 +123,7 @@ class Firmware:
         self._runs: tuple[Move | Trip, ...] = (*drive.moves, *drive.trips)
         self._items = tuple(self._items_of(run) for run in self._runs)
         self._ports = [drive.pins[name].port if name in drive.pins else None for name in drive.columns]
+        self._early = next((number for number, trip in enumerate(drive.trips) if trip.name == early), -1)
         self._known: dict[State, tuple[Edge, ...]] = {}
 
     # What a state is
@@ -168,7 +177,8 @@ class Firmware:
         plain += [edge for number in range(len(self.drive.trips)) for edge in self._broken(state, number)]
         if state.hand < 0:
             taken = [edge for number in range(len(self.drive.trips)) for edge in self._taken(state, number, None)]
-            return plain + [edge for one in plain for edge in self._arriving(state, one)] + taken
+            arriving = [edge for one in plain for edge in self._arriving(state, one)]
+            return plain + arriving + taken + self._arriving_early(state)
         kept = [edge for one in plain for edge in self._in_hand(state, one)]
         if self._interruptible(state):
             kept += self._taken(state, state.hand, self._within(state.hand))
@@ -373,9 +383,26 @@ class Firmware:
             found.append(_with_hand(edge, number, True, (Deed(Act.ARRIVES, number),)))
         return found
 
+    def _arriving_early(self, state: State) -> list[Edge]:
+        """The trip that need not wait for the last moment arrives."""
+        number = self._early
+        if number < 0 or self._trip(number).at_once or not self._covers(number, state):
+            return []
+        if self._trip(number).within is None and self._interruptible(state):
+            return []
+        step = Step((Deed(Act.ARRIVES, number),), state._replace(hand=number))
+        return [Edge(0, None, None, True, False, step, resets_x=False)]
+
     def _in_hand(self, state: State, edge: Edge) -> list[Edge]:
-        """The firmware goes on with a trip in hand; where it could arrive again, not arriving before does as well."""
-        if self._drops(state.hand, edge.step.target):
+        """The firmware goes on with a trip in hand; where it could arrive again, not arriving before does as well.
+
+        But for one that arrives early: that it is in hand for long is what is looked for.
+        """
+        if state.hand == self._early:
+            target = edge.step.target
+            if target.run < 0 and target.mode in (RESET, self._trip(state.hand).target):
+                return [edge]
+        elif self._drops(state.hand, edge.step.target):
             return []
         anew = not self._interruptible(state)
         return [_with_hand(edge, state.hand, anew, ())]

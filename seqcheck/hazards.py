@@ -38,6 +38,35 @@ class Delays:
 
 
 @dataclass(frozen=True, slots=True)
+class Lasting:
+    """That a command may be as one literal wants for longer than `limit` ps at a stretch (`longer`), or for less."""
+
+    longer: bool
+    limit: int
+
+
+@dataclass(frozen=True, slots=True)
+class Following:
+    """That a mode may be entered less than `limit` ps after another was last left."""
+
+    left: str
+    entered: str
+    limit: int
+
+
+@dataclass(frozen=True, slots=True)
+class Clearing:
+    """That a switch can conduct later than `limit` ps after a trip arrived, before its target or `reset` is left."""
+
+    trip: str
+    limit: int
+
+
+Question = Lasting | Following | Clearing
+"""What a rule of the file forbids, where it is about lengths of time."""
+
+
+@dataclass(frozen=True, slots=True)
 class Hazard:
     """Literals that must not be possible together for a positive time.
 
@@ -45,12 +74,15 @@ class Hazard:
     orientation of sources or directions of current: each entry is one set of them under which the hazard does harm;
     where all entries contradict what is known, the hazard is not asked for. An empty `needs` means always. `currents`
     are those that lose their way where the hazard is an open winding.
+
+    With `asks` it is another question, about a length of time: then the literals name the switch that it is about.
     """
 
     literals: tuple[Literal, ...]
     joins: tuple[str, ...]
     needs: tuple[frozenset[Known], ...] = ()
     currents: tuple[Current, ...] = ()
+    asks: Question | None = None
 
 
 def reach(parts: tuple[Part, ...]) -> tuple[Interval, Interval]:
@@ -62,8 +94,17 @@ def reach(parts: tuple[Part, ...]) -> tuple[Interval, Interval]:
 
 
 def delays(hazard: Hazard, paths: Mapping[str, tuple[Part, ...]]) -> tuple[Delays, ...]:
-    """From command to possibility and back, for each literal in order; with the raise that `difference` allows."""
+    """From command to possibility and back, for each literal in order; with the raise that `difference` allows.
+
+    For a question about lengths: the time after which its automaton can tell no more.
+    """
+    if isinstance(hazard.asks, Lasting) and hazard.asks.longer:
+        return (Delays(hazard.asks.limit, 0),)
+    if isinstance(hazard.asks, Lasting | Following):
+        return (Delays(hazard.asks.limit - 1, 0),)
     plain = tuple(_plain(literal, paths[literal.switch]) for literal in hazard.literals)
+    if hazard.asks is not None:
+        return (*plain, Delays(hazard.asks.limit, 0))
     if len(plain) != 2 or not all(literal.on for literal in hazard.literals):
         return plain
     first, second = (paths[literal.switch] for literal in hazard.literals)

@@ -8,7 +8,7 @@ from math import ceil
 from typing import TypeVar
 
 from seqcheck.drive import RESET, Carrier, Drive, Fixed, Move, SetStep, Step, Trip, WaitStep, When
-from seqcheck.hazards import Hazard, delays
+from seqcheck.hazards import Clearing, Hazard, Lasting, delays
 from seqcheck.proving.prove import Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import Interval, shown, widened
@@ -57,8 +57,11 @@ class _Proposal:
 def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cure | None:
     """The first time of the file that, made longer by what is missing, brings a proof; None if none does.
 
-    Missing is the overlap, or where it has no end the longest that one switch of the hazard can lag behind another.
+    Missing is the overlap, or where it has no end the longest that one switch of the hazard can lag behind another. No
+    longer time cures a command that lasts too long, or a trip that is late.
     """
+    if isinstance(hazard.asks, Clearing) or (isinstance(hazard.asks, Lasting) and hazard.asks.longer):
+        return None
     missing = _lag(drive, hazard) if proof.overlap is None else proof.overlap
     found = _first(drive, proof.trace, missing, observer, lambda prover, count: prover.holds(hazard, count))
     return None if found is None else Cure(found.place, proof.overlap, found.words)

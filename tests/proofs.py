@@ -173,7 +173,7 @@ class Asking(NamedTuple):
         if said != right and proof.greatest:
             return f"an overlap of {said} ps, but the judge says {right}"
         try:
-            found_as_longest = proof.held is None and proof.greatest
+            found_as_longest = proof.held is None and proof.greatest and proof.overlap is not None
             replay(self.drive, proof.trace if found_as_longest else from_its_beginning(self.drive, proof.trace))
         except NotPermitted as refusal:
             return f"does not replay: {refusal}"

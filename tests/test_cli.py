@@ -307,13 +307,11 @@ def test_wrong_call(call: list[str], capsys: pytest.CaptureFixture[str]) -> None
 
 
 def test_near_misses_are_named(capsys: pytest.CaptureFixture[str]) -> None:
-    """A misspelt word gets the right one; a check of a later version is told apart from no check at all."""
+    """A misspelt word gets the right one."""
     lint("--as", "sreen")
     assert "'screen'" in capsys.readouterr().err
     lint("--only", "overlp")
     assert "'overlap'" in capsys.readouterr().err
-    lint("--only", "late-trip")
-    assert "cannot be proven yet" in capsys.readouterr().err
 
 
 @pytest.mark.parametrize("call", ["--help", "lint --help", "tidy --help", "start --help", "--version"])
@@ -356,20 +354,23 @@ def test_lines_of_a_proven_file(capsys: pytest.CaptureFixture[str]) -> None:
 
 
 @pytest.mark.parametrize(
-    ("added", "said"),
+    ("added", "check"),
     [
-        ("rules\n  A on at most 1 ms", "on at most"),
-        ("rules\n  a and b at least 1 ps apart", "apart"),
+        ("  A on at most 1 ms", "long-on"),
+        ("  a and b at least 2 s apart", "too-soon"),
+        ("  A on at least 2 s", "short-pulse"),
+        ("  B off at least 2 s", "short-pulse"),
     ],
 )
-def test_rules_are_refused_by_name(added: str, said: str, capsys: pytest.CaptureFixture[str]) -> None:
-    """What cannot be proven yet is never passed over: exit 2, the place, the kind of rule."""
-    put(x=f"{SAFE}{added}\n")
-    line = SAFE.count("\n") + 2
-    assert lint("x.dseq") == 2
-    out, err = capsys.readouterr()
-    assert out == ""
-    assert re.match(rf"x\.dseq:{line}:\d+: error: .*{said}.*\[not-proven-yet\]\n\Z", err)
+def test_rules_about_lengths_are_proven(added: str, check: str, capsys: pytest.CaptureFixture[str]) -> None:
+    """What breaks them is found with its line, and what keeps them says nothing."""
+    put(x=f"{SAFE}rules\n{added}\n", y=f"{SAFE}rules\n  A on at least 1 ps\n")
+    assert lint("--as", "lines", "x.dseq") == 1
+    out = capsys.readouterr().out
+    assert f"[{check}]" in out
+    assert f"against line {SAFE.count(chr(10)) + 2}" in out
+    assert lint("--as", "lines", "y.dseq") == 0
+    assert capsys.readouterr().out == ""
 
 
 def test_means_without_a_winding_is_a_finding(capsys: pytest.CaptureFixture[str]) -> None:

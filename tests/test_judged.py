@@ -165,7 +165,8 @@ class _Comparison(NamedTuple):
 
     def _refusal(self, proof: Refuted) -> str:
         try:
-            trace = proof.trace if proof.held is None else from_its_beginning(self.drive, proof.trace)
+            whole = proof.held is not None or proof.overlap is None
+            trace = from_its_beginning(self.drive, proof.trace) if whole else proof.trace
             replay(self.drive, trace)
         except NotPermitted as refusal:
             return f"does not replay: {refusal}"

@@ -5,8 +5,8 @@ from pathlib import Path
 
 import pytest
 
-from seqcheck.checking import PROVEN_CHECKS
 from seqcheck.cli import FORMS, main
+from seqcheck.verdict import Check
 
 ROOT = Path(__file__).parent.parent
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -34,7 +34,7 @@ def test_the_gate_runs_the_second_command() -> None:
 
 def test_every_check_that_can_be_found_is_in_the_table() -> None:
     rows = set(re.findall(r"^\| `([a-z-]+)`", README, re.MULTILINE))
-    assert rows == {check.value for check in PROVEN_CHECKS}
+    assert rows == {check.value for check in Check}
 
 
 def test_every_option_of_lint_is_named(capsys: pytest.CaptureFixture[str]) -> None:

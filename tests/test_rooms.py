@@ -34,8 +34,10 @@ LOW_TO_HIGH = (
     "sizing",
     "margins",
     "failing",
+    "rules",
     "reports",
     "checking",
+    "serving",
     "commands",
     "cli",
     "__main__",
@@ -46,7 +48,7 @@ APART = {
     "proving": {"language", "evidence"},
     "reports": {
         *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
-        *("confirming", "sizing", "margins", "failing"),
+        *("confirming", "sizing", "margins", "failing", "rules"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

@@ -15,7 +15,8 @@ ALWAYS = (
     r'^drive "', r"^clock .+ within .+, late by at most ", r"^let ", r"^writes ", r"^loop at least ", r"^stage$",
     r"^  winding ", r"^parts$", r"^paths$", r"^  .+  through ", r"^pins$", r"  active high  rests low", r"^modes  ",
     r"^moves$", r"^  start reset$", r"^  reset +-> \w+ +when boot +earliest ", r"^trips$",
-    r"^  watchdog +from any -> reset$", r"^  \w+ +from .+ -> \w+ +within ", r"placeholder", r"data\W+sheets",
+    r"^  watchdog +from any -> reset$", r"^  \w+ +from .+ -> \w+ +within ", r"placeholder",
+    r"margin at least \d+ (?:ns|ms)", r"data\W+sheets",
 )  # fmt: skip
 BRIDGE = (r"^  rails P N$", r"^  overcurrent +from any -> \w+ +at once$", r"^carriers$", r"duty \S+ % to \S+ %")
 SECTORS = ("ab", "ac", "bc", "ba", "ca", "cb")

@@ -6,10 +6,11 @@ from seqcheck.drive import Drive
 from seqcheck.evidence.cycles import bridged
 from seqcheck.evidence.endless import require_endless
 from seqcheck.evidence.facts import asked_for
+from seqcheck.evidence.lengths import from_zero, late, long_enough, require_too_short
 from seqcheck.evidence.possible import Stretch, delays, possible, stretches, together, wanted, within_trace
 from seqcheck.evidence.refusal import NotPermitted
 from seqcheck.evidence.walk import Walk
-from seqcheck.hazards import Delays, Literal
+from seqcheck.hazards import Clearing, Delays, Following, Hazard, Lasting, Literal
 from seqcheck.quantities import shown
 from seqcheck.verdict import Replayed, Span, Trace
 
@@ -22,12 +23,15 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
     `commands` of the answer also holds pulses of no length, as two changes at one time; `possible` starts at time 0
     where a literal was possible before. Raises NotPermitted, with a sentence, where an event is not permitted at its
     time, a deadline is overrun, or the overlap is not exactly one in which all literals are possible and the hazard
-    is asked for.
+    is asked for; where the hazard asks about a length, that which is claimed to be too long or too short.
     """
     walk = _walked(drive, trace)
-    found = delays(drive, trace.hazard)
+    if isinstance(trace.hazard.asks, Lasting | Following) and long_enough(trace.hazard) is None:
+        require_too_short(drive, trace, dict(walk.commands))
+        return _replayed(drive, trace, walk)
+    found = _asked_delays(drive, trace.hazard)
     spans = {literal: _possible(walk, literal, found[literal], trace) for literal in found}
-    overlaps = _overlaps(walk, trace, spans)
+    overlaps = _overlaps(drive, walk, trace, spans)
     claimed = Span(trace.overlap_from, trace.overlap_to)
     if claimed not in overlaps and not _cut_off(claimed, overlaps, trace.end):
         raise NotPermitted(
@@ -37,36 +41,50 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
         )
     if claimed.end is None:
         _require_endless(drive, walk, found)
+    return _replayed(drive, trace, walk)
+
+
+def _replayed(drive: Drive, trace: Trace, walk: Walk) -> Replayed:
+    """What the run is, apart from what is asked of it."""
     commands = {switch: tuple(timeline) for switch, timeline in walk.commands.items()}
-    plain = replace(trace, prolonged=None)
+    plain = replace(trace, prolonged=None, hazard=replace(trace.hazard, asks=None))
+    found = delays(drive, trace.hazard)
+    claimed = Span(trace.overlap_from, trace.overlap_to)
     return Replayed(commands, {one: _possible(walk, one, found[one], plain) for one in found}, claimed)
+
+
+def _asked_delays(drive: Drive, hazard: Hazard) -> dict[Literal, Delays]:
+    long = long_enough(hazard)
+    return delays(drive, hazard) if long is None else dict.fromkeys(hazard.literals, long)
 
 
 def from_its_beginning(drive: Drive, trace: Trace) -> Trace:
     """The trace with its overlap claimed from its true beginning.
 
-    For a run to a mode that holds the hazard: it was looked for by the mode, so that its claim may begin too late.
+    For a run to a mode that holds the hazard, or round in a circle: it was looked for by where it leads, so that its
+    claim may begin too late.
     Raises NotPermitted as replay does.
     """
     walk = _walked(drive, trace)
-    times = delays(drive, trace.hazard)
+    times = _asked_delays(drive, trace.hazard)
     spans = {literal: _possible(walk, literal, times[literal], trace) for literal in times}
     around = [
         one
-        for one in _overlaps(walk, trace, spans)
+        for one in _overlaps(drive, walk, trace, spans)
         if one.start <= trace.overlap_from and (one.end is None or trace.overlap_from < one.end)
     ]
     return replace(trace, overlap_from=around[0].start) if around else trace
 
 
-def _overlaps(walk: Walk, trace: Trace, spans: dict[Literal, tuple[Span, ...]]) -> tuple[Span, ...]:
+def _overlaps(drive: Drive, walk: Walk, trace: Trace, spans: dict[Literal, tuple[Span, ...]]) -> tuple[Span, ...]:
     asked = possible(stretches(walk.known, asked_for(trace.hazard)), Delays(0, 0))
-    return together([*spans.values(), within_trace(asked, trace.end)])
+    over = late(drive, trace, trace.hazard.asks) if isinstance(trace.hazard.asks, Clearing) else [Stretch(None, None)]
+    return together([*spans.values(), within_trace(asked, trace.end), within_trace(over, trace.end)])
 
 
 def _walked(drive: Drive, trace: Trace) -> Walk:
     unknown = [one.switch for one in trace.hazard.literals if one.switch not in drive.columns]
-    if unknown or not trace.hazard.literals:
+    if unknown or not (trace.hazard.literals or trace.hazard.asks):
         raise NotPermitted(f"The hazard is none of the drive: {', '.join(unknown) or 'it has no literal'}.")
     try:
         walk = Walk(drive, trace)
@@ -80,6 +98,8 @@ def _walked(drive: Drive, trace: Trace) -> Walk:
 
 def _possible(walk: Walk, literal: Literal, times: Delays, trace: Trace) -> tuple[Span, ...]:
     pieces: list[Stretch] = stretches(walk.commands[literal.switch], lambda command: wanted(literal, command))
+    if long_enough(trace.hazard) is not None:
+        pieces = from_zero(pieces)
     for gap in walk.gaps[literal.switch]:
         pieces = bridged(pieces, gap, times.fall)
     later = trace.prolonged[1] if trace.prolonged is not None and trace.prolonged[0] == literal else 0

@@ -34,6 +34,7 @@ class Walk:
             switch: [(None, self.passed(switch))] for switch in sorted(self.judged)
         }
         self._memory = sum(time for one in delays(drive, trace.hazard).values() for time in (one.rise, one.fall))
+        self._memory += trace.hazard.asks.limit if trace.hazard.asks else 0
         self._memory += sum(guard.dead.lo for guard in self.interlocks.guards)
         self.gaps: dict[str, list[Gap]] = {switch: [] for switch in self.judged}
         self.known: list[tuple[int | None, tuple[Known, ...]]] = [(None, self.sequence.known)]

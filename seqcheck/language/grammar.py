@@ -54,6 +54,11 @@ def _ready() -> tuple[Lark, Builder]:
     return parser, builder
 
 
+def ready() -> Lark:
+    """The parser of single lines, built once."""
+    return _ready()[0]
+
+
 def _laid_down(parser: Lark) -> tuple[Any, Any]:
     """A parser as data, without the options that are given anew; as Lark itself does for its own cache."""
     data, memo = parser.memo_serialize([TerminalDef, Rule])

@@ -37,11 +37,61 @@ def read_any(text: str, file: str, fetch: Callable[[str], str]) -> Drive | Libra
     `fetch` gives the text of a file that `use` names, its path joined to the folder of the file that says it; it
     raises OSError, or Problems. Raises Problems with all mistakes of all files read.
     """
+    return settled(drafted(text, file, fetch))
+
+
+class Draft:
+    """All that could be read of a file, mistakes or not; `notes.found` has the mistakes of all files read.
+
+    `serves` tells a library from a drive. What a mistake left out is missing from the rest.
+    """
+
+    def __init__(self, book: Book, notes: Notes, fetch: Callable[[str], str]) -> None:
+        self.book = book
+        self.notes = notes
+        self.serves = _only_serves(book, notes)
+        if not self.serves:
+            _check_sections(book, notes)
+        elif "clock" not in book.heads:
+            notes.broken.add("clock")  # its ticks are those of a file that is not at hand
+        self.scope = Scope(book, notes)
+        self.names = Uses(fetch, notes.found).names(self.scope)
+        self.stage = StageReader(Notes() if self.serves else notes)  # a library has none and needs none
+        head = book.heads.get("stage")
+        self.circuit = self.stage.stage(head.place if head else book.top, book.sections["stage"])
+        switches = tuple(self.stage.names)
+        self.paths = read_paths(self.scope, switches, self.names.parts, self.names.seen["part"])
+        self.interlocks = read_interlocks(self.scope, switches)
+        self.pins = read_pins(self.scope, switches)
+        self.table = Table(book, notes, self.stage, self.names.seen["carrier"])
+        self.motion = Motion(self.scope, self.table)
+        self.rules = Rules(self.scope, self.table, self.motion)
+        self.writes, self.loop = _writes(self.scope), _loop(self.scope)
+        self.clock = self.scope.clock()
+        _check_pins(self.scope, self.table, self.motion, switches)
+
+
+def drafted(text: str, file: str, fetch: Callable[[str], str]) -> Draft:
+    """As `read_any`, whatever the text: what could be read of it, with its mistakes."""
     notes = Notes()
-    book = book_of(text, file, notes)
-    if _only_serves(book, notes):
-        return _library(book, notes, fetch)
-    return _drive(book, notes, fetch)
+    return Draft(book_of(text, file, notes), notes, fetch)
+
+
+def settled(draft: Draft) -> Drive | Library:
+    """The checked drive or library of a draft; raises Problems with all its mistakes."""
+    if draft.notes.found:
+        raise Problems(draft.notes.found)
+    title = draft.book.heads["drive"]
+    assert isinstance(title.node, DriveLine)
+    if draft.serves:
+        seen = draft.names.seen
+        names = tuple(draft.scope.lets), tuple(seen["part"]), tuple(seen["carrier"])
+        return Library(title.place, title.node.title.text, *names)
+    drive = _drive(draft, title.place, title.node.title.text)
+    check_flow(drive, draft.notes)
+    if draft.notes.found:
+        raise Problems(draft.notes.found)
+    return drive
 
 
 def _only_serves(book: Book, notes: Notes) -> bool:
@@ -51,72 +101,29 @@ def _only_serves(book: Book, notes: Notes) -> bool:
     return names and said <= SERVING
 
 
-def _library(book: Book, notes: Notes, fetch: Callable[[str], str]) -> Library:
-    """The library of a book. Where it has no clock, its ticks are those of a file that is not at hand."""
-    if "clock" not in book.heads:
-        notes.broken.add("clock")
-    scope = Scope(book, notes)
-    names = Uses(fetch, notes.found).names(scope)
-    scope.clock()
-    if notes.found:
-        raise Problems(notes.found)
-    title = book.heads["drive"]
-    assert isinstance(title.node, DriveLine)
-    return Library(
-        title.place,
-        title.node.title.text,
-        tuple(scope.lets),
-        tuple(names.seen["part"]),
-        tuple(names.seen["carrier"]),
-    )
-
-
-def _drive(book: Book, notes: Notes, fetch: Callable[[str], str]) -> Drive:
-    _check_sections(book, notes)
-    scope = Scope(book, notes)
-    names = Uses(fetch, notes.found).names(scope)
-    stage = StageReader(notes)
-    head = book.heads.get("stage")
-    circuit = stage.stage(head.place if head else book.top, book.sections["stage"])
-    switches = tuple(stage.names)
-    paths = read_paths(scope, switches, names.parts, names.seen["part"])
-    interlocks = read_interlocks(scope, switches)
-    pins = read_pins(scope, switches)
-    table = Table(book, notes, stage, names.seen["carrier"])
-    motion = Motion(scope, table)
-    rules = Rules(scope, table, motion)
-    writes, loop = _writes(scope), _loop(scope)
-    clock = scope.clock()
-    _check_pins(scope, table, motion, switches)
-    if notes.found:
-        raise Problems(notes.found)
-    title = book.heads["drive"]
-    assert isinstance(title.node, DriveLine)
+def _drive(draft: Draft, place: Place, title: str) -> Drive:
+    table, motion = draft.table, draft.motion
     modes = table.modes if motion.resets is None else {**table.modes, RESET: _reset(motion.resets, len(table.columns))}
-    drive = Drive(
-        title.place,
-        title.node.title.text,
-        clock,
-        writes,
-        loop,
-        circuit,
-        names.parts,
-        paths,
-        interlocks,
-        pins,
-        names.carriers,
+    return Drive(
+        place,
+        title,
+        draft.clock,
+        draft.writes,
+        draft.loop,
+        draft.circuit,
+        draft.names.parts,
+        draft.paths,
+        draft.interlocks,
+        draft.pins,
+        draft.names.carriers,
         table.columns,
         modes,
         motion.start,
         tuple(motion.moves),
         tuple(motion.trips),
-        tuple(rules.rules),
-        tuple(rules.waivers),
+        tuple(draft.rules.rules),
+        tuple(draft.rules.waivers),
     )
-    check_flow(drive, notes)
-    if notes.found:
-        raise Problems(notes.found)
-    return drive
 
 
 def _check_sections(book: Book, notes: Notes) -> None:

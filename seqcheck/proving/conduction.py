@@ -2,15 +2,18 @@
 
 OUT and ENTERING and BLIP are not possible, IN and LEAVING are. `rise` and `fall` are the literal's delays. A step that
 takes no time is taken at once where nothing can come between.
+
+IDLE to HIT are the states of a question about a length that must not be too short (see lengths): what is asked is
+so, at once, in HIT. IDLE, WATCHED and LATE are those of a question about a trip: in LATE its time is over.
 """
 
 from typing import NamedTuple
 
 from seqcheck.hazards import Delays
 
-OUT, ENTERING, IN, LEAVING, BLIP = range(5)
+OUT, ENTERING, IN, LEAVING, BLIP, IDLE, YOUNG, LONG, HIT, WATCHED, LATE = range(11)
 WANTED = (False, True, True, False, False)
-POSSIBLE = (False, False, True, True, False)
+POSSIBLE = (False, False, True, True, False, False, False, False, True, False, True)
 
 
 class Turn(NamedTuple):
@@ -36,7 +39,7 @@ def turned(state: int, wanted: bool, delays: Delays) -> Turn:
 
 def ages(state: int) -> tuple[bool, bool]:
     """Which ages run in a state: since the command came, and since it went."""
-    return state in (ENTERING, BLIP), state in (LEAVING, BLIP)
+    return state in (ENTERING, BLIP, YOUNG, HIT, WATCHED), state in (LEAVING, BLIP)
 
 
 def timeouts(state: int) -> tuple[tuple[bool, int], ...]:
@@ -47,4 +50,8 @@ def timeouts(state: int) -> tuple[tuple[bool, int], ...]:
         return ((False, OUT),)
     if state == BLIP:
         return ((True, LEAVING), (False, OUT))
+    if state == YOUNG:
+        return ((True, LONG),)
+    if state == WATCHED:
+        return ((True, LATE),)
     return ()

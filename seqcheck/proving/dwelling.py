@@ -49,7 +49,7 @@ def with_full_dwells(projection: Projection, hops: Sequence[Hop], run: Run) -> R
     for place in range(1, len(hops)):
         happening = hops[place].event
         assert isinstance(happening, Happening)
-        if happening.edge is None:
+        if happening.edge is None or not happening.edge.resets_x:
             continue
         stayed = run.times[place] - run.times[entered]
         missing = projection.full_dwell(happening.edge, hops[place - 1].target) - stayed

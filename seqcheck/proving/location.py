@@ -37,7 +37,8 @@ class Location:
 
     `bounds` are the invariants, `lower` and `upper` the greatest constants of each clock for extrapolation (place 0
     unused), `measure` the place of the clock that measures an overlap, 0 for none. `held`: the mode itself commands
-    all literals. `hops` are worked out by `expand` on first use; `passed` belongs to the search.
+    all literals. `struck`: what is asked is so at the very instant of coming here, and the run ends with it. `hops` are
+    worked out by `expand` on first use; `passed` belongs to the search.
     """
 
     key: object
@@ -49,6 +50,7 @@ class Location:
     held: bool
     measure: int
     expand: Callable[["Location"], tuple[Hop, ...]]
+    struck: bool = False
     hops: tuple[Hop, ...] | None = None
     passed: list[tuple[Zone, object]] = field(default_factory=list)
 

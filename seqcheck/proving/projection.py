@@ -10,7 +10,8 @@ from itertools import product
 from seqcheck.circuit import contradicted
 from seqcheck.drive import Update
 from seqcheck.firmware import Edge, Firmware, State
-from seqcheck.proving.conduction import IN, OUT, POSSIBLE, ages, timeouts
+from seqcheck.hazards import Clearing, Following
+from seqcheck.proving.conduction import HIT, POSSIBLE, ages, timeouts
 from seqcheck.proving.cutting import Cutting
 from seqcheck.proving.keys import (
     CAPPED,
@@ -40,6 +41,7 @@ from seqcheck.proving.keys import (
     Y,
     Z,
 )
+from seqcheck.proving.lengths import followed, watched
 from seqcheck.proving.location import Bound, Hop, Location
 from seqcheck.proving.references import FORGOTTEN, Reference
 from seqcheck.proving.views import View
@@ -91,7 +93,7 @@ class Projection:
         hops = []
         nowhere = (FORGOTTEN,) * len(self._wiring.numbers)
         for carriers in self._phases(state, nowhere, everything=not self.manner.forget):
-            key = self._wiring.initial(state, carriers, (IN, OUT))
+            key = self._wiring.initial(state, carriers)
             hops.append(self._hop(None, key, frozenset(), (), (), 0, SILENT))
         return tuple(hops)
 
@@ -176,6 +178,7 @@ class Projection:
         location = Location(
             key, len(clocks) + 1, bounds, lower, upper, hot, hot and self._wiring.held(key), measure, self._expand
         )
+        location.struck = HIT in key.literals
         self._locations[key] = location
         return location
 
@@ -255,10 +258,11 @@ class Projection:
         """The firmware's edges and deadline, long stays cut short where that changes nothing.
 
         Where all literals are possible a stay keeps its times: an overlap that comes from before the stay has settled
-        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured.
+        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured,
+        and where a trip may arrive early, after which the stay goes on.
         """
         edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
-        measured = hot or key.ended == LATELY
+        measured = hot or key.ended == LATELY or any(not edge.resets_x for edge in edges)
         if self._cutting is None or key.state.hand >= 0 or measured:
             return edges, deadline
         return self._cutting.cut(edges, deadline)
@@ -303,6 +307,8 @@ class Projection:
     def _expand(self, location: Location) -> tuple[Hop, ...]:
         key = location.key
         assert isinstance(key, Key)
+        if location.struck:
+            return ()
         return (
             *self._pause_over(key),
             *self._gap_capped(key),
@@ -347,9 +353,10 @@ class Projection:
             most = ((X, edge.hi),) if edge.hi is not None else ()
             if edge.y_hi is not None:
                 most = (*most, (Y, edge.y_hi))
-            starts_anew = {X, Y} if edge.resets_y else {X}
+            starts_anew = {name for name, anew in ((X, edge.resets_x), (Y, edge.resets_y)) if anew}
             for carriers in self._phases(target, key.carriers):
                 new, resets = self._wiring.settle(key, target, carriers, key.pins, key.locks)
+                new, resets = self._told(key, new, edge, resets)
                 yield self._hop(
                     key,
                     new,
@@ -360,6 +367,18 @@ class Projection:
                     Happening(Act.BEGINS, "", edge),
                     written,
                 )
+
+    def _told(self, old: Key, key: Key, edge: Edge, resets: frozenset[int]) -> tuple[Key, frozenset[int]]:
+        """The automaton of a question about modes or a trip, which is the last, told of what the firmware does."""
+        drive, asks = self.view.drive, self.view.hazard.asks
+        if isinstance(asks, Following):
+            turn = followed(drive, asks, old.literals[-1], old.state, edge.step.deeds)
+        elif isinstance(asks, Clearing):
+            turn = watched(drive, asks, old.literals[-1], old.state, edge.step.deeds)
+        else:
+            return key, resets
+        anew = frozenset({RISE + len(key.literals) - 1} if turn.resets_rise else ())
+        return key._replace(literals=(*key.literals[:-1], turn.state)), resets | anew
 
     def _carrier_hops(self, key: Key) -> Iterator[Hop]:
         for place, reference in enumerate(key.carriers):

@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Hazard, delays
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
@@ -17,8 +17,9 @@ from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.screen import Map, Places, least_after, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
+from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
-from seqcheck.proving.tracing import gap_trace, trace_of
+from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
@@ -43,7 +44,8 @@ class Proven:
 class Refuted:
     """A run that brings the hazard; `held` is the mode that itself holds it, None where it comes in passing.
 
-    `overlap` None is without end; `greatest` tells whether no run brings more.
+    `overlap` None is without end; `greatest` tells whether no run brings more. It is what is missing where a length is
+    too short.
     """
 
     trace: Trace
@@ -95,7 +97,7 @@ class Prover:
     def __init__(self, drive: Drive, keep: bool = False) -> None:
         self.drive = drive
         self.keep = keep
-        self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool], Firmware] = {}
+        self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool, str | None], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
         self._stands: dict[Map, list[Data]] = {}
 
@@ -105,18 +107,35 @@ class Prover:
         What the observer raises passes through.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
-        count, keep = _Count(observer), self.keep and interlocks
-        here = self._map(self._firmware(looking, punctual=False), count)
-        apart = screened(looking, here)
-        if apart is not None:
-            return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
+        count, keep = _Count(observer), self.keep and interlocks and hazard.asks is None
+        if hazard.asks is None:
+            here = self._map(self._firmware(looking, punctual=False), count)
+            if (apart := screened(looking, here)) is not None:
+                return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
         for punctual in (False, True):
             for manner in _manners(looking):
                 projection = self._searched(looking, punctual, manner, count)
                 if projection is not None:
                     kept = cover(projection, not punctual) if keep else None
                     return Proven("zones", count.total, not punctual, kept)
+        if _must_last(hazard):
+            return self._too_short(looking, count)
         return self._refute(looking, interlocks, count)
+
+    def _too_short(self, looking: View, count: _Count) -> Refuted:
+        """The run in which what is too short is shortest."""
+        assert looking.hazard.asks is not None, "it asks for a length"
+        limit = looking.hazard.asks.limit
+        firmware = self._firmware(looking, punctual=True)
+        count.next_search()
+        projection = Projection(looking, firmware, _manners(looking)[-1])
+        try:
+            found = shortest(projection, count)
+        except LimitReached:  # the search for any such run ended before
+            projection = Projection(looking, firmware, _manners(looking)[-1])
+            found = shortest(projection, lambda _: None, any_will_do=True)
+        assert found is not None, "it was found before"
+        return Refuted(short_trace(projection, found.node), None, limit - found.time, count.total, found.least)
 
     def holds(self, hazard: Hazard, observer: Observer, locks: tuple[Interlock, ...] | None = None) -> bool:
         """Whether the hazard happens in no run, with firmware in time; without a trace.
@@ -126,8 +145,10 @@ class Prover:
         drive = self.drive if locks is None else replace(self.drive, interlocks=locks)
         looking = view(drive, hazard, delays(hazard, drive.paths), interlocks=True)
         count = _Count(observer)
-        if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
-            return True
+        if hazard.asks is None:
+            here = self._map(self._firmware(looking, punctual=False), count)
+            if screened(looking, here) is not None:
+                return True
         return any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking))
 
     def _searched(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> Projection | None:
@@ -251,7 +272,9 @@ class Prover:
         waiting = frozenset(
             name for name in looking.carriers if self.drive.carriers[name].update is not Update.AT_ONCE
         )
-        key = (waiting, looking.held if waiting else frozenset(), punctual)
+        asks = looking.hazard.asks
+        early = asks.trip if isinstance(asks, Clearing) else None
+        key = (waiting, looking.held if waiting else frozenset(), punctual, early)
         if key not in self._firmwares:
             self._firmwares[key] = Firmware(self.drive, *key)
         return self._firmwares[key]
@@ -267,8 +290,16 @@ def _manners(looking: View, measure: bool = False) -> tuple[Manner, ...]:
     return (Manner(forget=True, cut=True, measure=measure), exact) if looking.carriers else (exact,)
 
 
+def _must_last(hazard: Hazard) -> bool:
+    """Whether the question is about a length that is too short."""
+    asks = hazard.asks
+    return isinstance(asks, Following) or (isinstance(asks, Lasting) and not asks.longer)
+
+
 def _may_hold(looking: View) -> bool:
     """Whether some row could command all literals at once."""
+    if isinstance(looking.hazard.asks, Clearing):
+        return False
     drive = looking.drive
     columns = [drive.columns.index(one.switch) for one in looking.hazard.literals]
     sides: dict[Cell, bool] = {Fixed.OFF: False, Fixed.ON: True}

@@ -70,8 +70,8 @@ def _limited(zone: Zone, size: int, least: tuple[Bound, ...], most: tuple[Bound,
 
 
 def ticks(location: Location, zone: Zone) -> bool:
-    """Whether time can pass in the location."""
-    return all(-zone[clock] < bound for clock, bound in location.bounds)
+    """Whether time can pass in the location, or need not."""
+    return location.struck or all(-zone[clock] < bound for clock, bound in location.bounds)
 
 
 def nodes(initial: Iterable[Hop], observer: Observer) -> Iterator[Node]:

@@ -13,6 +13,7 @@ from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
 from seqcheck.proving.schedule import Difference, Path, constraints_of, scheduled
 from seqcheck.proving.search import Node, endless_circle, hops_out
+from seqcheck.proving.shortest import begun_at
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
 
@@ -66,6 +67,20 @@ def gap_trace(projection: Projection, node: Node, watched: int, least: int) -> T
     return Trace(hazard, phases, happened, run.end, run.end - 1, run.end, True, (literal, least + 1))
 
 
+def short_trace(projection: Projection, node: Node) -> Trace:
+    """The run to a node in which something ends too soon, as soon as it can. Raises Infeasible."""
+    nodes = node.path()
+    begun, met = begun_at(projection, nodes), len(nodes) - 1
+    hops = [one.hop for one in nodes]
+    path, times = _timed(projection, hops, begun, True, met)
+    events = _all_events(projection, hops, times)
+    short = Run(tuple(times[: len(hops)]), events, begun, times[begun], times[met])
+    run = with_full_dwells(projection, hops, short)
+    happened = tuple(event for _, event in run.events)
+    phases = _phases(projection, hops[0], path, times)
+    return Trace(projection.view.hazard, phases, happened, run.end, run.hot, run.end)
+
+
 def _all_events(projection: Projection, hops: list[Hop], times: list[int]) -> tuple[tuple[int, Event], ...]:
     timed = list(enumerate(zip(hops, times, strict=False)))[1:]
     return tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))
@@ -86,7 +101,7 @@ def _timed(
     """The path with times that make its overlap longest, its stays no longer than cut ones.
 
     The overlap begins with hop `origin` and ends with the last one, or (not `to_last`) some time after it. With `met`
-    it is a gap from `origin` to that hop, and shortest; the run goes on after it.
+    it is a time from `origin` to that hop, and shortest; after a gap the run goes on.
 
     A stay in which the overlap begins must be as long as the file asks, or else have settled before.
     """
@@ -108,16 +123,17 @@ def _timed(
 
 
 def _by_firmware(hop: Hop) -> bool:
+    """Whether a hop ends a stay and begins another."""
     happening = hop.event
     assert isinstance(happening, Happening)
-    return happening.edge is not None
+    return happening.edge is not None and happening.edge.resets_x
 
 
 def _scheduled(
     projection: Projection, hops: list[Hop], origin: int, more: tuple[Difference, ...], met: int | None
 ) -> tuple[Path, list[int]] | None:
     path = constraints_of(hops)
-    lasting = () if met is None else (Difference(met, path.end, -1),)
+    lasting = () if met is None or hops[-1].target.struck else (Difference(met, path.end, -1),)
     path = replace(path, constraints=(*path.constraints, *more, *lasting))
     asked_for = sum(value for hop in hops for _, value in (*hop.least, *hop.after)) + projection.settled
     times = scheduled(path, origin if met is None else met, 1 + longest_memory(projection.view) + asked_for)

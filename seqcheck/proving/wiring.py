@@ -1,7 +1,8 @@
 """From the firmware's cells to the commands that reach the paths, and on to the literals' automata."""
 
 from seqcheck.firmware import Firmware, State
-from seqcheck.proving.conduction import IN, turned
+from seqcheck.hazards import Clearing, Following, Lasting
+from seqcheck.proving.conduction import ENTERING, IDLE, IN, OUT, Turn, turned
 from seqcheck.proving.keys import (
     BLOCKED,
     C_BOTH,
@@ -17,6 +18,7 @@ from seqcheck.proving.keys import (
     WAITING,
     Key,
 )
+from seqcheck.proving.lengths import pulsed, settled
 from seqcheck.proving.references import HIGH_OUT, LOW_OUT
 from seqcheck.proving.views import Lock, View
 from seqcheck.writing import FREE, ON, carrier_of, inverted
@@ -35,13 +37,25 @@ class Wiring:
         self._columns = tuple(drive.columns.index(name) for name in view.switches)
         self._literals = tuple((view.switches.index(one.switch), one.on) for one in view.hazard.literals)
 
-    def initial(self, state: State, carriers: tuple[int, ...], settled: tuple[int, int]) -> Key:
-        """The key at time 0; `settled` are the states of a literal that was always as wanted, and that never was."""
+    def initial(self, state: State, carriers: tuple[int, ...]) -> Key:
+        """The key at time 0: every literal was always as wanted, or never was, but lengths count from there."""
         pins = tuple(self._settled_pin(state, place) for place in range(len(self._columns)))
         raw = self._raw(state, carriers, pins)
         locks = tuple(BLOCKED if raw[lock.partner] == C_ON else CLEAR for lock in self.view.locks)
-        literals = tuple(settled[0] if wanted else settled[1] for wanted in self._wanted(raw, locks))
+        literals = tuple(
+            self._settled(place, wanted, raw, locks) for place, wanted in enumerate(self._wanted(raw, locks))
+        )
+        if isinstance(self.view.hazard.asks, Following | Clearing):
+            literals = (*literals, IDLE)
         return Key(state, carriers, pins, locks, literals)
+
+    def _settled(self, place: int, wanted: bool, raw: tuple[int, ...], locks: tuple[int, ...]) -> int:
+        asks = self.view.hazard.asks
+        if isinstance(asks, Lasting) and not asks.longer:
+            return settled(wanted, wanted and self._other(place, raw, locks))
+        if wanted:
+            return ENTERING if isinstance(asks, Lasting) and self.view.delays[place].rise else IN
+        return OUT
 
     def _settled_pin(self, state: State, place: int) -> int:
         if state.put[1][self._columns[place]] != FREE:
@@ -75,6 +89,17 @@ class Wiring:
             return raw[place] != C_OFF and all(state == CLEAR for _, state in mine)
         return raw[place] != C_ON or any(state != CLEAR or raw[lock.partner] == C_BOTH for lock, state in mine)
 
+    def _other(self, place: int, raw: tuple[int, ...], locks: tuple[int, ...]) -> bool:
+        """Whether the passed command of a literal's switch is, or may be, the opposite of what the literal wants."""
+        switch, on = self._literals[place]
+        return self._passes(switch, not on, raw, locks)
+
+    def _turned(self, place: int, state: int, wanted: bool, raw: tuple[int, ...], locks: tuple[int, ...]) -> Turn:
+        asks = self.view.hazard.asks
+        if isinstance(asks, Lasting) and not asks.longer:
+            return pulsed(state, wanted, wanted and self._other(place, raw, locks))
+        return turned(state, wanted, self.view.delays[place])
+
     def settle(
         self, old: Key, state: State, carriers: tuple[int, ...], pins: tuple[int, ...], locks: tuple[int, ...]
     ) -> tuple[Key, frozenset[int]]:
@@ -86,10 +111,10 @@ class Wiring:
         locks = tuple(
             self._locked(place, lock, locks[place], raw, resets) for place, lock in enumerate(self.view.locks)
         )
-        literals = []
+        literals = list(old.literals)
         for place, wanted in enumerate(self._wanted(raw, locks)):
-            turn = turned(old.literals[place], wanted, self.view.delays[place])
-            literals.append(turn.state)
+            turn = self._turned(place, old.literals[place], wanted, raw, locks)
+            literals[place] = turn.state
             resets += [RISE + place] * turn.resets_rise + [FALL + place] * turn.resets_fall
         return Key(state, carriers, pins, locks, tuple(literals)), frozenset(resets)
 

@@ -6,7 +6,7 @@ from seqcheck.reports.picture import picture
 from seqcheck.reports.pieces import Line, Piece, Tone, line, listed, paragraph
 from seqcheck.reports.rows import rows
 from seqcheck.reports.run import Run, run_of
-from seqcheck.reports.wording import condition, cure, stated, where
+from seqcheck.reports.wording import condition, cure, stated, stretch, where
 from seqcheck.verdict import Unsafe
 
 INDENT = 2
@@ -47,7 +47,7 @@ def _count_from(run: Run, verdict: Unsafe) -> list[Line]:
     text = f"The run. t = 0 {begins}{into}"
     span = verdict.replayed.overlap
     found = paragraph(f"{text}.", INDENT, Tone.FAINT)
-    whole = verdict.overlap is None or verdict.trace.prolonged is not None
+    whole = verdict.overlap is None or stretch(verdict) not in ("overlap", "opening", "excess", "lateness")
     if not whole and span.end is not None and span.end - span.start != verdict.overlap:
         found += paragraph(
             f"In this run the {run.stretch} is {shown(span.end - span.start)}.", INDENT, Tone.FAINT

@@ -60,7 +60,7 @@ def _shows(run: Run, index: int) -> bool:
 
 def _frame(run: Run, drawn: Sequence[int]) -> _Frame:
     """Times stand in one line where a step has room for the longest, else in two lines by turns."""
-    names = max(len(run.stretch), *(len(title) + len("  conducts") for title in run.titles))
+    names = max([len(run.stretch), *(len(title) + len("  conducts") for title in run.titles)])
     longest = max(len(text) for index in drawn for text in _labels(run, index)) + 1
     room = WIDTH - len(GAP) - names - len(GAP) - _LEAD
     fitting = max(longest, _LEAST)

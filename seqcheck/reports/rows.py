@@ -48,7 +48,7 @@ def _columns(run: Run) -> Columns:
     lines = max([len("line"), *(len(str(note.line)) for note in notes if note.line is not None)])
     states = tuple(_state_width(run, index) for index in range(len(run.lanes)))
     since = max([len("since"), *(len(_since(run, index)) for index in range(len(run.instants)))])
-    group = sum(width + 1 for width in states) - 1
+    group = max(0, sum(width + 1 for width in states) - 1)
     fixed = len(str(len(run.instants))) + whole + part + lines + group + max(group, len("conducts")) + 6 * len(GAP)
     natural = max(len(visible(note.text)) for note in notes)
     if min(natural, _EASY) > WIDTH - fixed - since - len(GAP):
@@ -91,6 +91,8 @@ def _head(run: Run, columns: Columns) -> list[Line]:
     left = [" " * columns.number, f"t / {run.unit}".rjust(columns.time)]
     left += ["since".ljust(columns.since)] if columns.since else []
     left += ["line".rjust(columns.line), "what happens".ljust(columns.what)]
+    if not columns.states:
+        return [line(Piece((GAP + GAP.join(left)).rstrip(), Tone.FAINT))]
     over = len(GAP.join(left)) + 2 * len(GAP)
     titles = f"{' ' * over}{'command'.ljust(len(group))}{GAP}conducts".rstrip()
     under = GAP + GAP.join([*left, group, group])
@@ -110,7 +112,8 @@ def _block(run: Run, index: int, columns: Columns) -> list[Line]:
             found.append(line(" " * len(_left(run, index, columns)), *what))
         else:
             padding = " " * (columns.what - len(text))
-            found.append(line(_left(run, index, columns), *what, padding, *_states(instant, columns)))
+            states = (Piece(padding), *_states(instant, columns)) if columns.states else ()
+            found.append(line(_left(run, index, columns), *what, *states))
         last = note
     return found
 

@@ -62,7 +62,7 @@ def run_of(verdict: Unsafe, drive: Drive) -> Run:
 def _titles(found: tuple[Lane, ...]) -> tuple[str, ...]:
     """The switches of the lanes; where they would be too wide, letters in parentheses, which no name can be."""
     names = tuple(lane.literal.switch for lane in found)
-    if max(map(len, names)) <= _LONG and sum(len(name) + 1 for name in names) <= _WIDE:
+    if max(map(len, names), default=0) <= _LONG and sum(len(name) + 1 for name in names) <= _WIDE:
         return names
     return tuple(f"({ascii_lowercase[index % 26]}{index // 26 or ''})" for index in range(len(names)))
 

@@ -14,7 +14,6 @@ from seqcheck import __version__
 from seqcheck.drive import Drive, Library
 from seqcheck.hazards import Hazard
 from seqcheck.messages import Problem
-from seqcheck.quantities import shown
 from seqcheck.reports.acts import entered
 from seqcheck.reports.checks import ABOUT
 from seqcheck.reports.instants import Instant
@@ -23,6 +22,7 @@ from seqcheck.reports.remarks import NO_DRIVE, Remark, remarks
 from seqcheck.reports.repository import Repository, plain
 from seqcheck.reports.run import Run, run_of
 from seqcheck.reports.standing import sorted_out
+from seqcheck.reports.steps import steps, told_at
 from seqcheck.source import Place
 from seqcheck.verdict import Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
@@ -98,23 +98,17 @@ class _Log:
     def _code_flow(self, verdict: Unsafe, drive: Drive, text: str) -> Fields:
         """The run (3.36): one thread, for there is one firmware."""
         run = run_of(verdict, drive)
-        steps = [{"executionOrder": number, **step} for number, step in enumerate(self._steps(run, verdict, drive), 1)]
-        return {"message": _message(f"{text}."), "threadFlows": [{"locations": steps}]}
+        told = [{"executionOrder": number, **step} for number, step in enumerate(self._steps(run, verdict, drive), 1)]
+        return {"message": _message(f"{text}."), "threadFlows": [{"locations": told}]}
 
     def _steps(self, run: Run, verdict: Unsafe, drive: Drive) -> Iterator[Fields]:
-        """A step for everything that happens, at its line; where there is none, at the line where the firmware is."""
         modes = entered(drive, verdict.trace)
-        place = drive.modes[drive.start].place if drive.start in drive.modes else drive.place
-        for instant in run.instants:
-            state = _state(run, instant, _mode_at(modes, instant.time))
-            for note in instant.notes:
-                place = note.place or place
-                message = _message(f"{_when(run, instant)}: {note.text}")
-                yield {
-                    "location": {**self._location(place), "message": message},
-                    "state": state,
-                    "importance": _IMPORTANCE.get(note.tone, "important"),
-                }
+        for instant, note, place in steps(run, verdict, drive):
+            yield {
+                "location": {**self._location(place), "message": _message(told_at(run, instant, note))},
+                "state": _state(run, instant, _mode_at(modes, instant.time)),
+                "importance": _IMPORTANCE.get(note.tone, "important"),
+            }
 
 
 def _driver(rules: Iterable[str]) -> Fields:
@@ -171,10 +165,6 @@ def _fingerprint(remark: Remark) -> str:
 
 def _words_of(hazard: Hazard) -> list[str]:
     return sorted(map(str, hazard.literals)) + list(hazard.joins)
-
-
-def _when(run: Run, instant: Instant) -> str:
-    return "start" if instant.time is None else f"t = {shown(instant.time - run.origin)}"
 
 
 def _mode_at(modes: Sequence[tuple[int | None, str]], time: int | None) -> str:

@@ -114,10 +114,12 @@ def _proven(safe: Sequence[Safe]) -> list[Line]:
         return []
     shorts = sum(1 for one in safe if one.hazard.joins)
     openings = sum(1 for one in safe if one.hazard.currents)
-    others = len(safe) - shorts - openings
+    lengths = sum(1 for one in safe if one.hazard.asks)
+    others = len(safe) - shorts - openings - lengths
     kinds = [counted(shorts, "shorting set")] if shorts else []
     kinds += [counted(openings, "opening set")] if openings else []
     kinds += [counted(others, "forbidden combination")] if others else []
+    kinds += [counted(lengths, "forbidden length")] if lengths else []
     found = [line(Piece("proven", Tone.GOOD), f"  {listed(kinds)}: possible in no run")]
     zoned = [one for one in safe if one.method != "screen"]
     ways = [f"{len(safe) - len(zoned)} by least times alone"] if len(safe) > len(zoned) else []

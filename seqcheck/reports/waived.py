@@ -1,6 +1,7 @@
 """Which waiver of the file, if any, lets a finding pass."""
 
 from seqcheck.drive import Drive, Waiver, When
+from seqcheck.hazards import Clearing, Following
 from seqcheck.verdict import WARNINGS, Finding, Unsafe
 
 
@@ -23,8 +24,11 @@ def names_of(drive: Drive, verdict: Unsafe) -> frozenset[str]:
     """The names that an unsafe hazard is about: its switches, the legs they make up, and the mode, event or trip at
     its place."""
     concerned = frozenset(one.switch for one in verdict.hazard.literals)
-    modes = {mode.name for mode in drive.modes.values() if mode.place == verdict.place}
-    trips = {trip.name for trip in drive.trips if trip.place == verdict.place}
+    asks = verdict.hazard.asks
+    followed = {asks.left, asks.entered} if isinstance(asks, Following) else set()
+    trips_asked = {asks.trip} if isinstance(asks, Clearing) else set()
+    modes = followed | {mode.name for mode in drive.modes.values() if mode.place == verdict.place}
+    trips = trips_asked | {trip.name for trip in drive.trips if trip.place == verdict.place}
     moves = (move for move in drive.moves if move.place == verdict.place)
     events = {move.trigger.event for move in moves if isinstance(move.trigger, When)}
     return _legs(drive, concerned).union(concerned, modes, trips, events)

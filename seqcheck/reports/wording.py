@@ -1,7 +1,7 @@
 """Sentences about a hazard and its verdict that every form says alike."""
 
-from seqcheck.drive import Above, CurrentOut, Drive, Known, Mode
-from seqcheck.hazards import Current, Hazard
+from seqcheck.drive import Above, Command, CurrentOut, Drive, Known, Mode
+from seqcheck.hazards import Clearing, Current, Following, Hazard, Lasting
 from seqcheck.quantities import shown
 from seqcheck.reports.pieces import listed
 from seqcheck.verdict import Check, Span, Unsafe
@@ -18,12 +18,28 @@ def switches(hazard: Hazard) -> str:
 
 def subject(hazard: Hazard) -> str:
     """What the hazard is, as a noun: `P to N through UH and UL`, `current out of X with Af and Bf off`, or the switches
-    alone where nothing is joined."""
+    alone where nothing is joined; for a rule about lengths what must not be: `UH on for more than 225 us`."""
+    if hazard.asks is not None:
+        return _forbidden(hazard)
     if hazard.currents:
         return f"{flowing(hazard.currents)} with {_named(hazard)} off"
     if not hazard.joins:
         return switches(hazard)
     return f"{' to '.join(hazard.joins)} through {switches(hazard)}"
+
+
+def _forbidden(hazard: Hazard) -> str:
+    asks = hazard.asks
+    assert asks is not None, "it is about a length"
+    if isinstance(asks, Following):
+        return f"{asks.entered} entered less than {shown(asks.limit)} after {asks.left} is left"
+    if isinstance(asks, Clearing):
+        return f"{hazard.literals[0]} able to conduct more than {shown(asks.limit)} after {asks.trip} arrives"
+    return f"{_commanded(hazard)} for {'more' if asks.longer else 'less'} than {shown(asks.limit)}"
+
+
+def _commanded(hazard: Hazard) -> str:
+    return f"{hazard.literals[0].switch} {'on' if hazard.literals[0].on else 'off'}"
 
 
 def flowing(currents: tuple[Current, ...]) -> str:
@@ -54,12 +70,20 @@ def stretch(verdict: Unsafe) -> str:
     """What the time is called that a run is shown for."""
     if verdict.check is Check.THIN_MARGIN:
         return "gap"
+    if isinstance(verdict.hazard.asks, Lasting):
+        return "excess" if verdict.hazard.asks.longer else "pulse"
+    if isinstance(verdict.hazard.asks, Following):
+        return "interval"
+    if verdict.hazard.asks is not None:
+        return "lateness"
     return "opening" if verdict.hazard.currents else "overlap"
 
 
 def shown_for(verdict: Unsafe) -> Span:
     """The time for which a run is shown: the overlap, or the gap that is too short (1 ps where there is none)."""
     trace = verdict.trace
+    if trace.overlap_to is not None and trace.hazard.asks is not None:
+        return Span(trace.overlap_from, max(trace.overlap_to, trace.overlap_from + 1))
     if trace.prolonged is None:
         return Span(trace.overlap_from, trace.overlap_to)
     gap = trace.prolonged[1] - 1
@@ -69,6 +93,8 @@ def shown_for(verdict: Unsafe) -> Span:
 def stated(verdict: Unsafe) -> str:
     """One sentence without full stop: what can happen, for how long, and against which rule."""
     rule = f", against line {verdict.rule.line}" if verdict.rule is not None else ""
+    if verdict.hazard.asks is not None:
+        return f"{_length(verdict)}{rule}"
     if verdict.check is not Check.THIN_MARGIN or verdict.trace.prolonged is None:
         return f"{happens(verdict.hazard, verdict.overlap, verdict.greatest)}{rule}"
     (literal, later), short = verdict.trace.prolonged, verdict.overlap or 0
@@ -77,6 +103,31 @@ def stated(verdict: Unsafe) -> str:
         f"{others} can follow {literal} after {shown(later - 1)}, {shown(short)} sooner than the margin of "
         f"{shown(later - 1 + short)} lets it{rule}"
     )
+
+
+def _length(verdict: Unsafe) -> str:
+    """What lasts too long or too short a time, and how long."""
+    asks, trace = verdict.hazard.asks, verdict.trace
+    assert asks is not None, "it is about a length"
+    if isinstance(asks, Lasting) and asks.longer:
+        longest = "without end" if verdict.overlap is None else shown(asks.limit + verdict.overlap)
+        bound = "" if verdict.overlap is None else "for up to " if verdict.greatest else "for at least "
+        return f"{_commanded(verdict.hazard)} can be commanded without a break {bound}{longest}"
+    if isinstance(asks, Clearing):
+        how_long = lasting(verdict.overlap, verdict.greatest)
+        after = f"later than {shown(asks.limit)} after {asks.trip} arrives"
+        return f"{verdict.hazard.literals[0]} can conduct {after}, {how_long}"
+    time = shown(asks.limit - (verdict.overlap or 0))
+    least = "" if verdict.greatest else " or less"
+    if isinstance(asks, Following):
+        return f"{asks.entered} can be entered {time}{least} after {asks.left} is left"
+    unknown = Command.UNKNOWN in {command for when, command in _told(verdict) if (when or 0) == trace.overlap_from}
+    why = ", for its pin floats" if unknown else ""
+    return f"{_commanded(verdict.hazard)} can be commanded for no more than {time}{least}{why}"
+
+
+def _told(verdict: Unsafe) -> tuple[tuple[int | None, Command], ...]:
+    return verdict.replayed.commands[verdict.hazard.literals[0].switch]
 
 
 def lasting(overlap: int | None, greatest: bool) -> str:
@@ -121,6 +172,8 @@ def where(verdict: Unsafe, drive: Drive) -> str:
     if verdict.hazard.currents:
         together = " together" if len(verdict.hazard.literals) > 1 else ""
         return f"row '{row.name}' of the table (line {row.place.line}) can leave {_named(verdict.hazard)} off{together}"
+    if verdict.hazard.asks is not None:
+        return f"row '{row.name}' of the table (line {row.place.line}) leaves {_commanded(verdict.hazard)}"
     return f"row '{row.name}' of the table (line {row.place.line}) commands {switches(verdict.hazard)} together"
 
 
@@ -144,6 +197,8 @@ def cure(verdict: Unsafe, drive: Drive) -> str:
         shortage = verdict.cure.shortage
         missing = "" if shortage is None else f"{shown(shortage)} missing "
         return f"{verdict.cure.words} ({missing}at {verdict.cure.place})"
+    if verdict.hazard.asks is not None:
+        return _cure_of_length(verdict, drive)
     if verdict.hazard.currents:
         return _cure_of_opening(verdict, drive)
     if (row := row_at_fault(verdict, drive)) is not None:
@@ -159,6 +214,22 @@ def cure(verdict: Unsafe, drive: Drive) -> str:
         return f"{switches(verdict.hazard)} must be kept apart {shown(verdict.overlap)} longer"
     bound = "up to" if verdict.greatest else "at least"
     return f"{switches(verdict.hazard)} must be kept apart {bound} {shown(verdict.overlap)} longer"
+
+
+def _cure_of_length(verdict: Unsafe, drive: Drive) -> str:
+    asks = verdict.hazard.asks
+    if isinstance(asks, Following):
+        return f"{shown(verdict.overlap or 0)} more must pass between leaving {asks.left} and entering {asks.entered}"
+    name = verdict.hazard.literals[0].switch
+    if isinstance(asks, Clearing):
+        if verdict.overlap is None:
+            return f"no wait cures this; nothing that follows {asks.trip} turns {name} off"
+        return f"shorten what comes between {asks.trip} and the turn-off of {name}, or allow it more time"
+    if isinstance(asks, Lasting) and asks.longer:
+        if (row := row_at_fault(verdict, drive)) is not None:
+            return f"bound the stay in '{row.name}', or put {name} on a carrier there"
+        return f"{name} must be turned off sooner, or for some time in between"
+    return f"{_commanded(verdict.hazard)} must be commanded for {shown(verdict.overlap or 0)} longer"
 
 
 def _cure_of_opening(verdict: Unsafe, drive: Drive) -> str:

@@ -31,8 +31,8 @@ def check(
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. `kept` takes up the proof of every built-in hazard, for evidence of
-    them. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof of every hazard, but for rules about lengths, for
+    evidence of them. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
     """
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
@@ -71,7 +71,7 @@ def _judged(
     prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None, rule: Place | None
 ) -> Verdict:
     verdict, proof = _with_proof(prover, hazard, observer, rule)
-    if kept is not None and rule is None:
+    if kept is not None and hazard.asks is None:
         kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
     return verdict
 

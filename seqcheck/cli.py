@@ -6,6 +6,7 @@ import errno
 import gc
 import os
 import re
+import shlex
 import stat
 import sys
 import time
@@ -16,7 +17,8 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck import __version__
-from seqcheck.drive import Drive, Library
+from seqcheck.commands import draw
+from seqcheck.drive import Drive, Library, NeverRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems, nearest
@@ -46,6 +48,12 @@ file leaves at worst, and the move, trip or row that sets it; least first."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_REPORT = """\
+Write one page about FILE for a design review: verdict, assumptions, table, mode graph, margins, every finding with its
+timing diagram, waivers, what is not covered. It stands alone. Example: seqcheck report drive.dseq --out page.html"""
+_SERVE = """\
+Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
+once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
 _COMPARE = """\
 What the change from OLD to NEW comes to, for a review: hazards, findings, margins, overlaps, what can be entered, and
 what is said differently. One of them may be '-', standard input: 'git show HEAD:x.dseq | seqcheck compare - x.dseq'.
@@ -55,9 +63,6 @@ exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not s
 that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
 undecided within the limits given; 4 the program itself is at fault. Code 0 does not say that NEW is proven: what was
 possible before and still is, is no change. A smaller margin or a longer overlap alone is told, and is code 0 too."""
-_SERVE = """\
-Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
-once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
@@ -141,16 +146,25 @@ def _parser() -> argparse.ArgumentParser:
     lint.add_argument("--run", metavar="N", help="with --as vcd: the N-th counterexample of the screen, not the worst")
     lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="besides hazards say only this")
-    lint.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
-    lint.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+    _limited(lint)
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
-    lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
     lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
+    lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    drawing = commands.add_parser("draw", help="draw", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False)
+    draw.arguments(drawing)
+    drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
+    _limited(drawing)
+    review = commands.add_parser(
+        "report", help="write the page for a review", description=_REPORT, epilog=_EXITS, allow_abbrev=False
+    )
+    review.add_argument("file", metavar="FILE")
+    review.add_argument("--out", metavar="FILE", help="write the page to FILE instead of standard output")
+    _limited(review)
     compare = commands.add_parser(
         "compare", help="say what a change does", description=_COMPARE, epilog=_COMPARED, allow_abbrev=False
     )
@@ -185,6 +199,11 @@ def _parser() -> argparse.ArgumentParser:
     return parser
 
 
+def _limited(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    parser.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+
+
 def _run(arguments: list[str]) -> int:
     try:
         asked = _parser().parse_args(arguments)
@@ -196,6 +215,10 @@ def _run(arguments: list[str]) -> int:
             return serve(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
         if asked.command == "rows":
             return _rows(asked.file, _one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
+        if asked.command == "draw":
+            return _draw(asked)
+        if asked.command == "report":
+            return _report(asked, shlex.join(["seqcheck", *arguments]))
         if asked.command == "tidy":
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
@@ -400,8 +423,8 @@ def _borne_out(found: "Audited") -> str:
 
 
 def _not_about(drive: Drive) -> str:
-    """What evidence says nothing of: rules of the file, which only a new proof can bear out."""
-    lines = [str(rule.place.line) for rule in drive.rules]
+    """What evidence says nothing of: rules about margins and lengths, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules if not isinstance(rule, NeverRule)]
     if not lines:
         return ""
     return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
@@ -421,6 +444,52 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     painted = _wants_colour(colour, sys.stdout) and not out
     code = _deliver(screen.coloured(report) if painted else screen.plain(report), out)
     return _worse(code, FOUND if table.shorting(found) or any(row.amiss for row in found.rows) else PROVEN)
+
+
+def _draw(asked: argparse.Namespace) -> int:
+    """Draw a picture of a file; the exit code of its verdict."""
+    form = _one_of("--as", asked.form, draw.FORMS)
+    if asked.trace in draw.RUNLESS:
+        _wrong(f"--trace: a finding of '{asked.trace}' is no run; those of {_or(draw.TRACED)} are")
+    if asked.trace is not None:
+        _one_of("--trace", asked.trace, draw.TRACED)
+    if asked.trace is not None and (asked.modes or form == "mermaid"):
+        _wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
+    limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+    wanted = draw.Wanted(asked.trace, _count("--run", asked.run), form)
+    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    if isinstance(outcome, Library):
+        _wrong(f"{printable(asked.file)} only serves 'use'; it has no modes")
+    if not isinstance(outcome, Outcome):
+        return code
+    try:
+        text = draw.drawn(outcome, wanted)
+    except Problems as problems:
+        return _mistaken(problems)
+    except ValueError as why:
+        _wrong(str(why))
+    return _worse(code, _deliver(text, asked.out))
+
+
+def _report(asked: argparse.Namespace, call: str) -> int:
+    """Write the page about a file; the exit code of its verdict."""
+    from seqcheck.commands.review import page
+    from seqcheck.confirming import Fault
+
+    limits = Limits(_count("--most-zones", asked.most_zones), _seconds(asked.give_up_after))
+    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    if isinstance(outcome, Library):
+        _wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
+    if not isinstance(outcome, Outcome):
+        return code
+    try:
+        text = page(outcome, printable(call), _observer(limits))
+    except Problems as problems:
+        return _mistaken(problems)
+    except Fault as fault:
+        _complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    return _worse(code, _deliver(text, asked.out))
 
 
 def _compare(asked: argparse.Namespace) -> int:

@@ -279,7 +279,6 @@ def test_name_like_a_flag() -> None:
         ["lint", "--as", "sreen", "x.dseq"],
         ["lint", "--as"],
         ["lint", "--only", "nothing", "x.dseq"],
-        ["lint", "--only", "late-trip", "x.dseq"],
         ["lint", "--most-zones", "0", "x.dseq"],
         ["lint", "--most-zones", "-1", "x.dseq"],
         ["lint", "--most-zones", "many", "x.dseq"],
@@ -364,7 +363,7 @@ def test_lines_of_a_proven_file(capsys: pytest.CaptureFixture[str]) -> None:
 )
 def test_rules_about_lengths_are_proven(added: str, check: str, capsys: pytest.CaptureFixture[str]) -> None:
     """What breaks them is found with its line, and what keeps them says nothing."""
-    put(x=f"{SAFE}rules\n{added}\n", y=f"{SAFE}rules\n  A on at least 1 ps\n")
+    put(x=f"{SAFE}rules\n{added}\n", y=f"{SAFE}rules\n  A off at least 14 ps\n")
     assert lint("--as", "lines", "x.dseq") == 1
     out = capsys.readouterr().out
     assert f"[{check}]" in out

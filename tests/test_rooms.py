@@ -33,8 +33,8 @@ LOW_TO_HIGH = (
     "confirming",
     "sizing",
     "margins",
-    "failing",
     "rules",
+    "failing",
     "reports",
     "checking",
     "serving",
@@ -48,7 +48,7 @@ APART = {
     "proving": {"language", "evidence"},
     "reports": {
         *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
-        *("confirming", "sizing", "margins", "failing", "rules"),
+        *("confirming", "sizing", "margins", "rules", "failing"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

@@ -142,6 +142,6 @@ def test_lint_says_what_a_row_does_instead(capsys: pytest.CaptureFixture[str]) -
     twin = SAMPLES / "faulty" / "vent_half_brake.dseq"
     assert main(["lint", "--as", "lines", str(twin)]) == 1
     assert capsys.readouterr().out == (
-        f"{twin}:44:41: error: row 'brake' means brake, but it does not short every winding; what it does: "
+        f"{twin}:44:40: error: row 'brake' means brake, but it does not short every winding; what it does: "
         "one end held, U at N; correct its cells, or what it means [row-meaning]\n"
     )

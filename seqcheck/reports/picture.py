@@ -38,7 +38,7 @@ class _Frame:
 
 def picture(run: Run) -> list[Line]:
     """The part of a run that matters, in bands of at most WIDTH columns where the names allow."""
-    drawn = [index for index in range(run.first, run.last + 1) if _shows(run, index)]
+    drawn = [index for index in range(run.first, run.last + 1) if shows(run, index)]
     frame = _frame(run, drawn)
     found: list[Line] = []
     for start in range(0, len(drawn), frame.band):
@@ -48,7 +48,7 @@ def picture(run: Run) -> list[Line]:
     return [*found, (), *(line(GAP, Piece(text, Tone.FAINT)) for text in LEGEND)]
 
 
-def _shows(run: Run, index: int) -> bool:
+def shows(run: Run, index: int) -> bool:
     """Whether an instant is to be seen in a lane, or is the one from which times count."""
     now, before = run.instants[index], run.instants[index - 1]
     same = now.overlap == before.overlap and all(

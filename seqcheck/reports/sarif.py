@@ -23,6 +23,7 @@ from seqcheck.reports.repository import Repository, plain
 from seqcheck.reports.run import Run, run_of
 from seqcheck.reports.standing import sorted_out
 from seqcheck.reports.steps import steps, told_at
+from seqcheck.reports.wording import subject
 from seqcheck.source import Place
 from seqcheck.verdict import Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
@@ -164,7 +165,7 @@ def _fingerprint(remark: Remark) -> str:
 
 
 def _words_of(hazard: Hazard) -> list[str]:
-    return sorted(map(str, hazard.literals)) + list(hazard.joins)
+    return sorted(map(str, hazard.literals)) + list(hazard.joins) + ([subject(hazard)] if hazard.asks else [])
 
 
 def _mode_at(modes: Sequence[tuple[int | None, str]], time: int | None) -> str:

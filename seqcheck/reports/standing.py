@@ -1,11 +1,13 @@
 """The contents of an outcome by what they mean, and the last word on a file."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from enum import Enum
 
+from seqcheck.reports.pieces import counted
 from seqcheck.reports.waived import reason
 from seqcheck.reports.wording import NOTHING
-from seqcheck.verdict import WARNINGS, Finding, Outcome, Safe, Undecided, Unsafe
+from seqcheck.verdict import WARNINGS, Check, Finding, Outcome, Safe, Undecided, Unsafe
 
 
 class Standing(Enum):
@@ -37,6 +39,20 @@ class Sorted:
         if self.findings:
             return Standing.AMISS
         return Standing.UNDECIDED if self.undecided else Standing.PROVEN
+
+
+def worst(found: Sequence[Unsafe]) -> Unsafe:
+    """The counterexample for a form that shows one: a short before all else, then the longest, the first of equals."""
+
+    def badness(one: Unsafe) -> tuple[bool, bool, int]:
+        return one.check is Check.SHORT, one.overlap is None, one.overlap or 0
+
+    return max(found, key=badness)
+
+
+def are(number: int) -> str:
+    """How many counterexamples there are, after `there`."""
+    return f"{'is' if number == 1 else 'are'} {counted(number, 'counterexample') if number else 'no counterexamples'}"
 
 
 def sorted_out(outcome: Outcome) -> Sorted:

@@ -4,7 +4,7 @@ Time 0 is the beginning of the run's trace and one unit is 1 ps. Variables of th
 standard, but common viewers read them; their values hold no blank, so each blank of a text is written as `_`.
 """
 
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 
 from seqcheck import __version__
@@ -12,10 +12,10 @@ from seqcheck.drive import Command, Drive
 from seqcheck.reports.acts import entered, told
 from seqcheck.reports.lanes import Conduct, Lane, lanes
 from seqcheck.reports.pieces import counted
-from seqcheck.reports.standing import Sorted, Standing, sorted_out
+from seqcheck.reports.standing import Sorted, Standing, are, sorted_out, worst
 from seqcheck.reports.wording import CAUTION, shown_for, stated, stretch, subject
 from seqcheck.source import printable
-from seqcheck.verdict import Act, Check, Outcome, Span, Trace, Unsafe
+from seqcheck.verdict import Act, Outcome, Span, Trace, Unsafe
 
 _COMMANDS = {Command.ON: "1", Command.OFF: "0", Command.UNKNOWN: "x"}
 _CONDUCTS = {Conduct.YES: "1", Conduct.NO: "0", Conduct.MAY: "x"}
@@ -47,24 +47,13 @@ def report(outcome: Outcome, number: int | None = None) -> str:
     """
     parts = sorted_out(outcome)
     if number is not None and number > len(parts.unsafe):
-        raise ValueError(f"there {_are(len(parts.unsafe))}")
+        raise ValueError(f"there {are(len(parts.unsafe))}")
     if not parts.unsafe:
         return "".join(f"{row}\n" for row in [*_head(outcome, _no_run(parts)), "$enddefinitions $end"])
-    verdict = _worst(parts.unsafe) if number is None else parts.unsafe[number - 1]
+    verdict = worst(parts.unsafe) if number is None else parts.unsafe[number - 1]
     said = f"run {parts.unsafe.index(verdict) + 1} of {len(parts.unsafe)}: {verdict.check.value}"
     rows = _head(outcome, [said, stated(verdict), *_LEGEND])
     return "".join(f"{row}\n" for row in [*rows, *_dump(verdict, outcome.drive)])
-
-
-def _are(number: int) -> str:
-    return f"{'is' if number == 1 else 'are'} {counted(number, 'counterexample') if number else 'no counterexamples'}"
-
-
-def _worst(found: Sequence[Unsafe]) -> Unsafe:
-    def badness(one: Unsafe) -> tuple[bool, bool, int]:
-        return one.check is Check.SHORT, one.overlap is None, one.overlap or 0
-
-    return max(found, key=badness)
 
 
 def _no_run(parts: Sorted) -> list[str]:

@@ -51,7 +51,8 @@ DRAWN = (
 """What draws contain."""
 
 UNDRAWN = ("several poles", "rule", "waiver")
-"""What draws do not contain: rules have no judge yet; several poles change only which sets there are."""
+"""What draws do not contain: rules are added to them where they are judged (`ruled`); several poles change only which
+sets there are."""
 
 
 def features(drive: Drive) -> Counter[str]:

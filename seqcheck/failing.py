@@ -25,7 +25,7 @@ MOST_ZONES = 6_000
 
 def with_faults(outcome: Outcome, observer: Observer) -> Outcome:
     """The outcome of a file with what single faults bring about; verdicts and findings stay as they are."""
-    hazards = tuple(dict.fromkeys(one.hazard for one in outcome.verdicts))
+    hazards = tuple(dict.fromkeys(one.hazard for one in outcome.verdicts if one.hazard.asks is None))
     unsafe = [one for one in outcome.verdicts if isinstance(one, Unsafe) and one.check is not Check.THIN_MARGIN]
     anyway = frozenset(one.hazard for one in unsafe)
     return replace(outcome, faults=single_faults(outcome.drive, hazards, anyway, observer))

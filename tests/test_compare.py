@@ -95,15 +95,32 @@ def test_a_margin_that_a_rule_asks_for(tmp_path: Path, capsys: Capture) -> None:
     text = "rules\n  margin at least {} us\n"
     code, out = compared(tmp_path, capsys, VENT + text.format(5), VENT + text.format(6))
     assert code == 1
-    assert out.splitlines()[1] == "WORSE: 3 margins too thin now; no hazard became possible."
+    assert out.splitlines()[1] == "WORSE: 3 findings against the rules came up; no hazard became possible."
     assert "THIN-MARGIN" in out
     assert "Kept before, or not asked for." in flat(out)
     code, out = compared(tmp_path, capsys, VENT + text.format(6), VENT + text.format(5))
     assert code == 0
-    assert "its margin is kept now, or not asked for any more" in flat(out)
+    assert "P to N through UH and UL: a rule, kept now, or no longer asked for" in flat(out)
     code, out = compared(tmp_path, capsys, VENT + text.format(6), VENT + text.format(7))
     assert code == 0
-    assert "short by 768.416 ns => 1.768416 us" in flat(out)
+    assert "768.416 ns sooner than the margin of 6 us lets it" in flat(out)
+    assert "1.768416 us sooner than the margin of 7 us lets it" in flat(out)
+
+
+def test_a_rule_about_a_length(tmp_path: Path, capsys: Capture) -> None:
+    """A limit that changes is the same rule; in row brake UL is on for 2 s less 1 % at least."""
+    text = "rules\n  UL on at most {}\n"
+    code, out = compared(tmp_path, capsys, VENT, VENT + text.format("1 s"))
+    assert code == 1
+    assert out.splitlines()[1].startswith("WORSE: 1 finding against the rules came up; no hazard became possible")
+    assert "LONG-ON" in out
+    assert "Not asked for before." in flat(out)
+    code, out = compared(tmp_path, capsys, VENT + text.format("1 s"), VENT + text.format("500 ms"))
+    assert code == 0
+    assert "rule UL on at most (line 66): time 1 s => 500 ms\n" in out
+    code, out = compared(tmp_path, capsys, VENT + text.format("1 s"), VENT)
+    assert code == 0
+    assert "a rule, kept now, or no longer asked for" in out
 
 
 def test_what_is_proven_now_and_what_is_the_same(tmp_path: Path, capsys: Capture) -> None:

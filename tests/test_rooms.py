@@ -39,6 +39,8 @@ LOW_TO_HIGH = (
     "checking",
     "serving",
     "commands",
+    "arguments",
+    "delivering",
     "cli",
     "__main__",
 )

@@ -2,6 +2,7 @@
 
 from collections import Counter
 from collections.abc import Callable, Iterator
+from dataclasses import replace
 
 from seqcheck.changes import Comparison, Moved, Reach, Told, Turn, Turned, Unmeasured, Way, differences
 from seqcheck.checking import check
@@ -87,7 +88,8 @@ def _keyed(outcome: Outcome) -> dict[Key, Verdict]:
     found: dict[Key, Verdict] = {}
     for one in outcome.verdicts:
         hazard = one.hazard
-        key: Key = (frozenset(hazard.literals), bool(hazard.currents), bool(hazard.joins))
+        asks = None if hazard.asks is None else replace(hazard.asks, limit=0)  # what a rule asks, whatever its limit
+        key: Key = (frozenset(hazard.literals), bool(hazard.currents), bool(hazard.joins), asks)
         if isinstance(one, Unsafe) and one.check is Check.THIN_MARGIN:
             key = (*key, one.after)
         while key in found:
@@ -169,7 +171,9 @@ def _margins(
     """The margins of every hazard that both files prove, in either direction; those that a limit leaves out by name."""
     old, new = Prover(before.drive), Prover(after.drive)
     for one in verdicts:
-        if not isinstance(one.old, Safe) or not isinstance(one.new, Safe) or len(one.hazard.literals) < 2:
+        if not isinstance(one.old, Safe) or not isinstance(one.new, Safe):
+            continue
+        if one.hazard.asks is not None or len(one.hazard.literals) < 2:
             continue
         for literal in one.new.hazard.literals:
             was = margin(old, one.old.hazard, one.old.hazard.literals.index(literal), observer)

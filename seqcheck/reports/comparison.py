@@ -33,13 +33,14 @@ def report(found: Comparison) -> list[Line]:
 
 def standing(found: Comparison) -> str:
     """The one sentence that a review needs."""
-    asked = [one for one in found.verdicts if not _thin(one)]
+    asked = [one for one in found.verdicts if not _ruled(one)]
     turns = Counter(one.turn for one in asked if one.turn is not Turn.POSSIBLE or one.worse)
-    thin = [one for one in found.verdicts if _thin(one) and one.worse]
+    broken = [one for one in found.verdicts if _ruled(one) and one.worse]
+    turns[Turn.UNDECIDED] += sum(_ruled(one) and one.turn is Turn.UNDECIDED for one in found.verdicts)
     checks = [one for one, why in found.broken if one.check not in WARNINGS and why is None]
     mended = [one for one, why in found.mended if one.check not in WARNINGS and why is None]
     texts = [f"{counted(len(checks), 'finding')} came up"] if checks else []
-    texts += [f"{counted(len(thin), 'margin')} too thin now"] if thin else []
+    texts += [f"{counted(len(broken), 'finding')} against the rules came up"] if broken else []
     texts += [] if turns[Turn.POSSIBLE] else ["no hazard became possible"]
     texts[:0] = [f"{counted(number, 'hazard')} {turn.value}" for turn in _TOLD if (number := turns[turn])]
     texts += _moved("margin", [(one.old.slack, one.new.slack) for one in found.margins], "shrank", "grew")
@@ -52,10 +53,11 @@ def standing(found: Comparison) -> str:
     return f"{word}: {'; '.join(texts)}."
 
 
-def _thin(one: Turned) -> bool:
-    """Whether it is a margin that a rule asks for, of a hazard that does not happen."""
-    said = one.new or one.old
-    return isinstance(said, Unsafe) and said.check is Check.THIN_MARGIN
+def _ruled(one: Turned) -> bool:
+    """Whether it is what a rule of the file asks for, and no hazard by itself."""
+    if any(isinstance(said, Unsafe) and said.rule is not None for said in (one.old, one.new)):
+        return True
+    return not one.hazard.joins and not one.hazard.currents
 
 
 _TOLD = (Turn.POSSIBLE, Turn.UNDECIDED, Turn.STILL, Turn.PROVEN)
@@ -146,7 +148,7 @@ def before(turned: Turned) -> str:
         thin = isinstance(turned.new, Unsafe) and turned.new.check is Check.THIN_MARGIN
         return "kept before, or not asked for" if thin else "not asked for before"
     if isinstance(turned.old, Safe):
-        return "proven before"
+        return "kept before" if _ruled(turned) else "proven before"
     if isinstance(turned.old, Undecided):
         return "undecided before"
     return "waived before" if turned.old_waived is not None else f"'{turned.old.check.value}' before"
@@ -164,15 +166,19 @@ def run(drive: Drive, trace: Trace) -> str:
 
 
 def _good(one: Turned) -> str:
-    return "its margin is kept now, or not asked for any more" if _thin(one) else one.turn.value
+    if not _ruled(one):
+        return one.turn.value
+    words = {Turn.PROVEN: "kept now", Turn.NEW: "asked for now, and kept"}
+    return f"a rule, {words.get(one.turn, 'kept now, or no longer asked for')}"
 
 
 def _still(one: Turned) -> str:
     old, new = _overlap(one.old), one.new
     assert isinstance(new, Unsafe)
-    if _thin(one):
-        short = f"short by {_length(old)} => {_length(new.overlap)}"
-        return f"{subject(one.hazard)} ({new.check.value} at {new.place}): {short}"
+    if _ruled(one) and isinstance(one.old, Unsafe):
+        as_before = stated(one.old) == stated(new)
+        what = f"{subject(new.hazard)} ({new.check.value} at {new.place}): {stated(new)}"
+        return f"{what}, as before" if as_before else f"{what}; before: {stated(one.old)}"
     name, waived = f"{subject(one.hazard)} ({new.check.value} at {new.place})", ", waived" if one.new_waived else ""
     if old == new.overlap:
         return f"{name}{waived}: {lasting(old, new.greatest)} as before"

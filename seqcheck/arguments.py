@@ -1,0 +1,193 @@
+"""The command line as it is read: commands, options, their help, and what their values must be."""
+
+import argparse
+import re
+import sys
+from collections.abc import Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+from typing import Never
+
+from seqcheck import __version__
+from seqcheck.commands import draw
+from seqcheck.exits import WRONG
+from seqcheck.messages import nearest
+from seqcheck.quantities import PICOSECONDS
+from seqcheck.verdict import Check
+
+FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
+_LINT = """\
+Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
+folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove."""
+_AUDIT = """\
+Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
+nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
+_MARGINS = """\
+The dead-time budget of FILE: for every switch and those that may not conduct with it, what the parts ask for, what the
+file leaves at worst, and the move, trip or row that sets it; least first."""
+_ROWS = """\
+Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
+way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+_REPORT = """\
+Write one page about FILE for a design review: verdict, assumptions, table, mode graph, margins, every finding with its
+timing diagram, waivers, what is not covered. It stands alone. Example: seqcheck report drive.dseq --out page.html"""
+_SERVE = """\
+Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
+once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
+_COMPARE = """\
+What the change from OLD to NEW comes to, for a review: hazards, findings, margins, overlaps, what can be entered, and
+what is said differently. One of them may be '-', standard input: 'git show HEAD:x.dseq | seqcheck compare - x.dseq'.
+Files that it names with 'use' are looked for from the folder you are in, as they are now."""
+_COMPARED = """\
+exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not shown to be in OLD, or a check is broken
+that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
+undecided within the limits given; 4 the program itself is at fault. Code 0 does not say that NEW is proven: what was
+possible before and still is, is no change. A smaller margin or a longer overlap alone is told, and is code 0 too."""
+_TIDY = """\
+Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
+mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
+output. Example: seqcheck tidy --check drives"""
+_TIDY_EXITS = """\
+exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file
+cannot be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1,
+0."""
+_START = """\
+Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
+Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
+_EXITS = """\
+exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
+input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
+program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 3, 0."""
+
+
+@dataclass(frozen=True, slots=True)
+class Limits:
+    """When to give a proof up: after so many zones, or so many seconds for one file."""
+
+    zones: int | None
+    seconds: float | None
+
+
+def complain(text: str) -> None:
+    print(f"seqcheck: {text}", file=sys.stderr)
+
+
+class _Parser(argparse.ArgumentParser):
+    """Wrong calls in our own words, on one line."""
+
+    def error(self, message: str) -> Never:
+        complain(f"error: {message}; '{self.prog} --help' shows the call")
+        raise SystemExit(WRONG)
+
+
+def parser() -> argparse.ArgumentParser:
+    parser = _Parser(
+        prog="seqcheck",
+        description="Prove that a drive sequence never shorts a leg of its power stage.",
+        epilog=_EXITS,
+        allow_abbrev=False,
+    )
+    parser.add_argument("--version", action="version", version=f"seqcheck {__version__}")
+    commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
+    lint = commands.add_parser("lint", help="prove files", description=_LINT, epilog=_EXITS, allow_abbrev=False)
+    lint.add_argument("paths", nargs="*", metavar="PATH", default=[])
+    forms = f"{FORMS[0]} (the default), {one_or_other(FORMS[1:])}"
+    lint.add_argument("--as", dest="form", metavar="FORM", default=FORMS[0], help=forms)
+    lint.add_argument("--run", metavar="N", help="with --as vcd: the N-th counterexample of the screen, not the worst")
+    lint.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    lint.add_argument("--only", metavar="CHECK", action="append", default=[], help="besides hazards say only this")
+    _limited(lint)
+    lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
+    lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
+    lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
+    rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
+    rows.add_argument("file", metavar="FILE")
+    rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    drawing = commands.add_parser("draw", help="draw", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False)
+    draw.arguments(drawing)
+    drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
+    _limited(drawing)
+    review = commands.add_parser(
+        "report", help="write the page for a review", description=_REPORT, epilog=_EXITS, allow_abbrev=False
+    )
+    review.add_argument("file", metavar="FILE")
+    review.add_argument("--out", metavar="FILE", help="write the page to FILE instead of standard output")
+    _limited(review)
+    compare = commands.add_parser(
+        "compare", help="say what a change does", description=_COMPARE, epilog=_COMPARED, allow_abbrev=False
+    )
+    compare.add_argument("old", metavar="OLD")
+    compare.add_argument("new", metavar="NEW")
+    compare.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
+    compare.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    compare.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    compare.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    compare.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    margins = commands.add_parser(
+        "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
+    )
+    margins.add_argument("file", metavar="FILE")
+    margins.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
+    margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    margins.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    audit = commands.add_parser(
+        "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
+    )
+    audit.add_argument("file", metavar="FILE")
+    audit.add_argument("evidence", metavar="EVIDENCE")
+    serve = commands.add_parser("serve", help="serve an editor", description=_SERVE, allow_abbrev=False)
+    serve.add_argument("--most-zones", metavar="N", help="give a proof up after N zones (50000)")
+    serve.add_argument("--give-up-after", metavar="DURATION", help="give a text up after this time (10 s)")
+    tidy = commands.add_parser("tidy", help="line up files", description=_TIDY, epilog=_TIDY_EXITS, allow_abbrev=False)
+    tidy.add_argument("files", nargs="+", metavar="FILE")
+    tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
+    start = commands.add_parser("start", help="print a first file", description=_START, allow_abbrev=False)
+    start.add_argument("kind", nargs="?", metavar="KIND")
+    return parser
+
+
+def _limited(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    parser.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+
+
+def wrong(text: str) -> Never:
+    complain(f"error: {text}")
+    raise SystemExit(WRONG)
+
+
+def one_of(option: str, value: str, known: tuple[str, ...]) -> str:
+    if value not in known:
+        wrong(f"{option} cannot be '{value}'; {nearest(value, known)}")
+    return value
+
+
+def check_named(name: str) -> Check:
+    known = {check.value: check for check in Check}
+    if name in known:
+        return known[name]
+    wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
+
+
+def one_or_other(names: Sequence[str]) -> str:
+    return f"{', '.join(names[:-1])} or {names[-1]}"
+
+
+def count(option: str, text: str | None) -> int | None:
+    if text is None:
+        return None
+    if not re.fullmatch(r"[0-9]{1,15}", text) or int(text) == 0:
+        wrong(f"{option} must be a whole number above 0, not '{text}'")
+    return int(text)
+
+
+def seconds(text: str | None) -> float | None:
+    if text is None:
+        return None
+    match = re.fullmatch(r"([0-9]{1,15}(?:\.[0-9]{1,15})?) *([a-zµμ]+)", text)
+    if match is None or match[2] not in PICOSECONDS or Fraction(match[1]) == 0:
+        wrong(f"--give-up-after must be a time above 0 with its unit, such as '30 s', not '{text}'")
+    return float(Fraction(match[1]) * PICOSECONDS[match[2]] / PICOSECONDS["s"])

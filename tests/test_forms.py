@@ -13,6 +13,7 @@ from seqcheck.language import decode, read
 from seqcheck.reports import annotations, document, lines, sarif, vcd
 from seqcheck.reports.repository import Repository
 from seqcheck.reports.standing import Standing, sorted_out
+from seqcheck.reports.wording import shown_for, stretch
 from seqcheck.verdict import Act, Outcome, Span, Unsafe
 
 ROOT = Path(__file__).parents[1]
@@ -97,8 +98,9 @@ def holds_as_dump(text: str, verdict: Unsafe, outcome: Outcome) -> None:
             elif one.act in EDGES:
                 right.append((one.time, EDGES[one.act]))
         assert dump.states(f"drive.reference.{phase.carrier}") == right
-    ends = [] if trace.overlap_to is None else [(trace.overlap_to, "0")]
-    assert dump.states("drive.overlap") == [(None, "0"), (trace.overlap_from, "1"), *ends]
+    span = shown_for(verdict)
+    ends = [] if span.end is None else [(span.end, "0")]
+    assert dump.states(f"drive.{stretch(verdict)}") == [(None, "0"), (span.start, "1"), *ends]
     assert [time for time, _ in dump.changes["drive.happens"]] == sorted({one.time for one in trace.events})
     assert dump.end is not None
     assert dump.end >= trace.end

@@ -21,14 +21,14 @@ h3{font-size:1.05rem;margin:1.6rem 0 .3rem}p{margin:.5rem 0;max-width:52rem}code
 .faint{color:var(--faint)}nav ul{columns:2;padding-left:1.2rem}a{color:var(--turns-edge)}
 table{border-collapse:collapse;margin:.6rem 0}caption{text-align:left;font-weight:700;padding:.3rem 0}
 th,td{border-bottom:1px solid var(--rule);padding:.2rem .9rem .2rem 0;text-align:left;vertical-align:top}
-th{font-size:.86rem}td.tight{white-space:nowrap}.scroll{overflow-x:auto}
+th{font-size:.86rem}td.tight{white-space:nowrap}td.long{min-width:17rem}.scroll{overflow-x:auto}
 tr.hit td{background:var(--wash)}
 svg.sq{display:block;max-width:100%;height:auto;margin:.8rem 0}
 section.finding{border-top:1px solid var(--rule);padding-top:.2rem}
 footer{margin-top:3rem;border-top:2px solid var(--ink);padding-top:.6rem}
 @media print{body{max-width:none;padding:0;font-size:10.5pt}nav{display:none}a{color:inherit;text-decoration:none}
 h2,h3,caption{break-after:avoid}tr,svg.sq,.verdict{break-inside:avoid}svg.sq{max-height:22cm}.scroll{overflow:visible}
-td,code{font-size:8.5pt}@page{margin:16mm}}
+td,code,th{font-size:8pt}th,td{padding-right:.45rem}td.long{min-width:15rem}@page{margin:16mm}}
 """
 _TIGHT = 22  # a cell of fewer letters is never broken into lines
 Part = Element | str | None
@@ -64,10 +64,16 @@ def table(
     """A table with its caption; the rows of these numbers are marked."""
     body = node("tbody")
     for index, row in enumerate(rows):
-        cells = [node("td", one, kind="tight" if isinstance(one, str) and len(one) < _TIGHT else "") for one in row]
+        cells = [node("td", one, kind=_cell_kind(one)) for one in row]
         body.append(node("tr", *cells, kind="hit" if index in marked else ""))
     head = node("thead", node("tr", *(node("th", text, scope="col") for text in heads)))
     return node("div", node("table", node("caption", caption), head, body), kind="scroll", tabindex="0")
+
+
+def _cell_kind(one: Part) -> str:
+    if isinstance(one, str):
+        return "tight" if len(one) < _TIGHT else ""
+    return "long"
 
 
 def listing(texts: Iterable[str]) -> Element:

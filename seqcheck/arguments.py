@@ -105,7 +105,9 @@ def parser() -> argparse.ArgumentParser:
     rows.add_argument("file", metavar="FILE")
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
-    drawing = commands.add_parser("draw", help="draw", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False)
+    drawing = commands.add_parser(
+        "draw", help="draw the modes or a run", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False
+    )
     draw.arguments(drawing)
     drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
     _limited(drawing)

@@ -54,9 +54,10 @@ def test_possible(
 
 
 def test_possible_with_later_ends() -> None:
-    """Also that of a stretch of no length; but what is over before it begins does not come back."""
+    """A stretch of no length has no end that comes later, and what is over before it begins does not come back."""
     for piece, rise, fall, later, right in (
-        (Stretch(10, 10), 5, 5, 3, [Stretch(15, 18)]),
+        (Stretch(10, 10), 5, 5, 3, []),
+        (Stretch(10, 11), 5, 5, 3, [Stretch(15, 19)]),
         (Stretch(0, 10), 2, 5, 3, [Stretch(2, 18)]),
         (Stretch(0, 0), 9, 5, 9, []),
     ):

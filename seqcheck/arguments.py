@@ -4,7 +4,6 @@ import argparse
 import re
 import sys
 from collections.abc import Sequence
-from dataclasses import dataclass
 from fractions import Fraction
 from typing import Never
 
@@ -13,6 +12,7 @@ from seqcheck.commands import draw
 from seqcheck.exits import WRONG
 from seqcheck.messages import nearest
 from seqcheck.quantities import PICOSECONDS
+from seqcheck.records import dataclass
 from seqcheck.verdict import Check
 
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")

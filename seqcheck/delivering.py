@@ -5,13 +5,13 @@ import errno
 import os
 import stat
 import sys
-from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, TextIO
 
 from seqcheck.arguments import complain, wrong
 from seqcheck.drive import Library
 from seqcheck.exits import PROVEN, WRONG
+from seqcheck.records import dataclass
 from seqcheck.source import printable
 from seqcheck.verdict import Answer, Outcome
 

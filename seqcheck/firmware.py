@@ -11,7 +11,7 @@ later one too, since both may be taken until `within` after it and an earlier on
 it matters how long ago a trip arrived, that one may arrive early too.
 """
 
-from dataclasses import dataclass
+from collections.abc import Sequence
 from typing import NamedTuple
 
 from seqcheck.drive import (
@@ -29,6 +29,7 @@ from seqcheck.drive import (
     When,
 )
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.verdict import Act
 from seqcheck.writing import FREE, KEEP, Put, Write, Writing
 
@@ -125,6 +126,10 @@ class Firmware:
         self._ports = [drive.pins[name].port if name in drive.pins else None for name in drive.columns]
         self._early = next((number for number, trip in enumerate(drive.trips) if trip.name == early), -1)
         self._known: dict[State, tuple[Edge, ...]] = {}
+        self._moves: dict[str, list[tuple[int, Move]]] = {}
+        for number, move in enumerate(drive.moves):
+            for mode in dict.fromkeys(move.sources):
+                self._moves.setdefault(mode, []).append((number, move))
 
     # What a state is
 
@@ -137,7 +142,7 @@ class Firmware:
         """The bound on `x` in a state."""
         if state.run >= 0:
             return state.latest
-        spans = [self.window(move)[2] for move in self._leaving(state.mode)]
+        spans = [self.window(move)[2] for _, move in self.leaving(state.mode)]
         return min((hi for hi in spans if hi is not None), default=None)
 
     def hand_deadline(self, state: State) -> int | None:
@@ -151,6 +156,10 @@ class Firmware:
     def updated(self, state: State, carrier: int) -> State:
         """The state after the writes held for one carrier have acted."""
         return state._replace(put=self.writing.update(state.put, carrier))
+
+    def leaving(self, mode: str) -> Sequence[tuple[int, Move]]:
+        """The moves out of a mode, each with its place in the file."""
+        return self._moves.get(mode, ())
 
     def window(self, move: Move) -> tuple[int, int | None, int | None]:
         """When a move may begin, in ps after entry: (soonest, latest, the bound that it puts on the stay)."""
@@ -186,10 +195,9 @@ class Firmware:
 
     def _moving(self, state: State) -> list[Edge]:
         found = []
-        for number, move in enumerate(self.drive.moves):
-            if state.mode in move.sources:
-                lo, hi, _ = self.window(move)
-                found += [Edge(lo, hi, None, False, True, step) for step in self._begin(state, number)]
+        for number, move in self.leaving(state.mode):
+            lo, hi, _ = self.window(move)
+            found += [Edge(lo, hi, None, False, True, step) for step in self._begin(state, number)]
         return found
 
     def _running(self, state: State) -> list[Edge]:
@@ -205,9 +213,6 @@ class Firmware:
 
     def _edge(self, state: State, step: Step) -> Edge:
         return Edge(state.soonest, state.latest, None, False, False, step)
-
-    def _leaving(self, mode: str) -> list[Move]:
-        return [move for move in self.drive.moves if mode in move.sources]
 
     # Runs
 

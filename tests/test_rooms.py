@@ -10,6 +10,7 @@ import seqcheck
 HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
+    "records",
     "shipped",
     "exits",
     "quantities",

@@ -1,8 +1,8 @@
 """`seqcheck draw`: the picture that is asked for, as a text."""
 
 import argparse
-from dataclasses import dataclass
 
+from seqcheck.records import dataclass
 from seqcheck.reports.standing import Sorted, Standing, are, sorted_out, worst
 from seqcheck.source import printable
 from seqcheck.verdict import Check, Outcome, Unsafe

@@ -4,7 +4,6 @@ Other switches are left with the time that their writes take. Locations are work
 """
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from itertools import product
 
 from seqcheck.circuit import contradicted
@@ -47,6 +46,7 @@ from seqcheck.proving.references import FORGOTTEN, Reference
 from seqcheck.proving.views import View
 from seqcheck.proving.wiring import Wiring
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.verdict import Act
 from seqcheck.zones import FRESH, INFINITE
 

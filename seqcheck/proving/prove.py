@@ -4,7 +4,6 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
 
 from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
@@ -21,6 +20,7 @@ from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
 from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
+from seqcheck.records import dataclass, replace
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
 

@@ -1,10 +1,9 @@
 """What one hazard looks at: which switches, carriers and interlock directions take part, and how it is to be proven."""
 
-from dataclasses import dataclass
-
 from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
 from seqcheck.hazards import Delays, Hazard
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 
 
 @dataclass(frozen=True, slots=True)

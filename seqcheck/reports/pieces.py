@@ -2,9 +2,10 @@
 
 import textwrap
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from enum import Enum
 from unicodedata import category
+
+from seqcheck.records import dataclass
 
 WIDTH = 80  # columns that a report keeps to where it can
 

@@ -10,8 +10,19 @@ from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from seqcheck.arguments import FORMS, Limits, check_named, complain, count, one_of, one_or_other, parser, seconds, wrong
-from seqcheck.commands import draw
+from seqcheck.arguments import (
+    FORMS,
+    Limits,
+    check_named,
+    complain,
+    count,
+    escaping,
+    one_of,
+    one_or_other,
+    parser,
+    seconds,
+    wrong,
+)
 from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
 from seqcheck.drive import Drive, Library, NeverRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
@@ -30,9 +41,7 @@ _STDIN = "-"
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command line; the exit code. No input makes it raise."""
     gc.disable()  # a short-lived process: collecting would cost more than it frees
-    for stream in (sys.stdout, sys.stderr):
-        if hasattr(stream, "reconfigure"):
-            stream.reconfigure(errors="backslashreplace")
+    escaping()
     try:
         code = _run(list(sys.argv[1:] if arguments is None else arguments))
         sys.stdout.flush()
@@ -164,15 +173,19 @@ def _lint(
 def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
 ) -> tuple[Answer, int]:
-    from seqcheck.checking import check
-    from seqcheck.confirming import Fault
     from seqcheck.language import read_any
 
     try:
         drive = read_any(_text(file), file, _text)
-        if isinstance(drive, Library):
-            return drive, PROVEN
-        kept: list[Kept] | None = None if shelf is None else []
+    except Problems as problems:
+        return Unread(file, problems.found), _mistaken(problems)
+    if isinstance(drive, Library):
+        return drive, PROVEN
+    from seqcheck.checking import check
+    from seqcheck.confirming import Fault
+
+    kept: list[Kept] | None = None if shelf is None else []
+    try:
         outcome = check(drive, file, only, _observer(limits), kept)
     except Problems as problems:
         return Unread(file, problems.found), _mistaken(problems)
@@ -253,6 +266,8 @@ def _rows(file: str, colour: str, out: str | None) -> int:
 
 def _draw(asked: argparse.Namespace) -> int:
     """Draw a picture of a file; the exit code of its verdict."""
+    from seqcheck.commands import draw
+
     form = one_of("--as", asked.form, draw.FORMS)
     if asked.trace in draw.RUNLESS:
         wrong(f"--trace: a finding of '{asked.trace}' is no run; those of {one_or_other(draw.TRACED)} are")

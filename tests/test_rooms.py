@@ -43,6 +43,7 @@ LOW_TO_HIGH = (
     "arguments",
     "delivering",
     "cli",
+    "entry",
     "__main__",
 )
 

@@ -18,7 +18,7 @@ SAMPLES = Path(__file__).parents[2] / "samples"
 
 LIBRARIES = ["-c", "import lark, networkx, rich.console, rich.table"]
 BARE = ["-c", "import argparse; argparse.ArgumentParser().parse_args()"]
-COMMAND = ["-c", "import sys; from seqcheck.cli import main; sys.exit(main())"]
+COMMAND = ["-c", "import sys; from seqcheck.entry import main; sys.exit(main())"]
 """As an installed command starts."""
 
 

@@ -3,10 +3,10 @@
 import contextlib
 import time
 from collections.abc import Callable
+from dataclasses import dataclass, field
 from threading import Condition, Thread
 
 from seqcheck.drive import Drive
-from seqcheck.records import dataclass, field
 from seqcheck.verdict import Answer, Failed, Unread
 
 

@@ -66,24 +66,3 @@ def test_lark_is_loaded_where_the_cache_is_empty(tmp_path: Path) -> None:
     surroundings = {**os.environ, "XDG_CACHE_HOME": str(tmp_path)}
     assert "lark" in loaded(surroundings, "lint", str(SAMPLES / "vent.dseq"))[1]
     assert "lark" not in loaded(surroundings, "lint", str(SAMPLES / "vent.dseq"))[1]
-
-
-def test_networkx_is_loaded_where_sources_stand_one_above_another(cache: dict[str, str], tmp_path: Path) -> None:
-    text = """drive "three sources"
-writes together
-stage
-  sources a b c
-  switch S from a to X two way
-  switch T from b to X two way
-modes   S    T
-  idle  off  off
-  feed  on   off  with a above b, b above c
-moves
-  start idle
-  idle -> feed when go
-  feed -> idle when stop
-"""
-    (tmp_path / "t.dseq").write_text(text, encoding="utf-8")
-    code, modules = loaded(cache, "lint", str(tmp_path / "t.dseq"))
-    assert code in (0, 1)
-    assert "networkx" in modules

@@ -24,7 +24,7 @@ def named(hazard: Hazard) -> str:
     """The literals of a hazard in a few words."""
     if isinstance(hazard.asks, Following):
         return f"{hazard.asks.entered} after {hazard.asks.left}"
-    return " with ".join(map(str, hazard.literals))
+    return " with ".join(map(str, hazard.literals)) or "a short by one switch"
 
 
 def place_of(drive: Drive, trace: Trace, replayed: Replayed) -> Place:

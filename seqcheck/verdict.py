@@ -130,6 +130,7 @@ class Check(Enum):
     LONG_ON = "long-on"
     SHORT_PULSE = "short-pulse"
     TOO_SOON = "too-soon"
+    SINGLE_FAULT = "single-fault"
     UNREACHABLE = "unreachable"
     NO_WAY_BACK = "no-way-back"
     AMBIGUOUS = "ambiguous"

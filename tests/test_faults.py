@@ -16,7 +16,8 @@ from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.cli import main
 from seqcheck.drive import Drive
 from seqcheck.failing import single_faults
-from seqcheck.faults import Fault, Faulted, Where
+from seqcheck.faults import Faulted, Where
+from seqcheck.hazards import Fault
 
 MOST_STATES = 20_000
 

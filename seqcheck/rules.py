@@ -45,7 +45,9 @@ def never_so(hazard: Hazard) -> str:
     if isinstance(hazard.asks, Following):
         return f"{hazard.asks.entered} never follows {hazard.asks.left} too soon"
     if isinstance(hazard.asks, Stuck):
-        return f"{' to '.join(hazard.joins)} are not joined in {hazard.asks.mode} with one thing stuck"
+        fault = hazard.asks.faults[0]
+        stuck = f"{'the pin of ' if fault.pin else ''}{fault.switch} stuck"
+        return f"{' to '.join(hazard.joins)} are not joined in {hazard.asks.mode} with {stuck}"
     literal = hazard.literals[0]
     if isinstance(hazard.asks, Clearing):
         return f"{hazard.asks.trip} never clears {literal} too late"

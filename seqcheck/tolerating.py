@@ -4,7 +4,7 @@ from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import replace
 
 from seqcheck.confirming import Fault as Failed
-from seqcheck.confirming import confirmed, named
+from seqcheck.confirming import confirmed, named, place_of
 from seqcheck.drive import Drive, ToleratesRule
 from seqcheck.failing import as_written, left_of, with_pin_stuck
 from seqcheck.faults import affected, concerned
@@ -65,11 +65,12 @@ def _judged(
 
 def _broken(drive: Drive, hazard: Hazard, answer: Refuted, mode: str, rule: Place) -> Unsafe:
     trace, replayed = confirmed(drive, replace(answer.trace, hazard=hazard), whole=True)
+    place = place_of(drive, trace, replayed)
     overlap = None if trace.overlap_to is None else trace.overlap_to - trace.overlap_from
     return Unsafe(
         hazard,
         Check.SINGLE_FAULT,
-        drive.modes[mode].place,
+        place if answer.held is None and hazard.literals else drive.modes[mode].place,
         _as_told(trace, drive),
         replayed,
         overlap,

@@ -1,6 +1,7 @@
 """`tolerates single faults in M`: against the judge on drawn drives, and as a user meets it."""
 
 import contextlib
+import json
 import os
 from collections import Counter
 from collections.abc import Iterator
@@ -8,6 +9,7 @@ from pathlib import Path
 from typing import NamedTuple
 
 import pytest
+from forms import outcome_schema
 from judge.draws import draw
 from judge.shorts import asked
 from judge.stretched import stretched
@@ -20,7 +22,6 @@ from test_judged import SEEDS
 from seqcheck.circuit import shorting_sets
 from seqcheck.cli import main
 from seqcheck.drive import Drive, ToleratesRule
-from seqcheck.failing import single_faults
 from seqcheck.faults import Where
 from seqcheck.hazards import Fault, Stuck
 from seqcheck.messages import Problems
@@ -121,3 +122,172 @@ def test_campaign_of_tolerance(chunk: int) -> None:
             except Problems:
                 continue
             assert [one.differs for one in held if one.differs] == [], f"{seed}\n{text}"
+
+
+# As a user meets it
+
+
+IDLE = "    set UH off, UL off\n    wait {}\n"
+
+
+def linted(tmp_path: Path, capsys: pytest.CaptureFixture[str], text: str, *more: str) -> tuple[int, str]:
+    """The exit code of a lint, and its output."""
+    (tmp_path / "t.dseq").write_text(text, encoding="utf-8")
+    with contextlib.chdir(tmp_path):
+        code = main(["lint", "t.dseq", *more])
+    out, err = capsys.readouterr()
+    assert err == ""
+    return code, out
+
+
+def ruled(rule: str, wait: str = "3 us", text: str | None = None, **more: str) -> str:
+    """The leg, off within 3 us, left for idle with a wait, and a rule."""
+    whole = (leg(**more) if text is None else text).replace("  up -> idle when stop", "  up, down -> idle when stop")
+    return f"{whole}{IDLE.format(wait)}rules\n  {rule}\n"
+
+
+def test_a_rule_is_exact(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A wait as long as the turn-off keeps it, one 1 ps shorter breaks it by 1 ps."""
+    rule = "tolerates single faults in idle"
+    code, out = linted(tmp_path, capsys, ruled(rule))
+    assert code == 0
+    assert "proven  1 shorting set and 2 shorts by a single fault: possible in no run\n" in out
+    code, out = linted(tmp_path, capsys, ruled(rule, "2999999 ps"), "--as", "lines")
+    assert code == 1
+    assert out.splitlines() == [
+        f"t.dseq:25:3: error: with {one}, or its pin, stuck on, P can be joined to N through {one} and {other} at rest "
+        f"in idle, for at least 1 ps, against line 29; to cure it: what leads to idle must end with the turn-off of "
+        f"{other}, and a wait of at least 3 us after it, which belongs to the move [single-fault]"
+        for one, other in (("UH", "UL"), ("UL", "UH"))
+    ]
+
+
+def test_a_row_that_conducts_is_at_fault_itself(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    code, out = linted(tmp_path, capsys, ruled("tolerates single faults in any but idle, up"))
+    assert code == 1
+    assert out.startswith(
+        """\
+t.dseq  "leg"
+
+SINGLE-FAULT  t.dseq:20:3
+  with UH, or its pin, stuck on, P can be joined to N through UH and UL at rest
+  in down, without end, against line 29.
+  Row 'down' of the table (line 20) commands UL.
+
+  The run. t = 0 is where line 24 begins (on lower: idle -> down), 10 us after
+  the start.
+"""
+    )
+    assert "To cure it: no wait cures this; row 'down' must leave UL off, or put another\n  switch in series.\n" in out
+    assert "proven  1 shorting set and 1 short by a single fault: possible in no run\n" in out
+
+
+def test_a_switch_that_shorts_alone_is_tolerated_nowhere(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    more = {"more": "switch X from P to N", "names": " X", "pins": "X PC1 active high rests low"}
+    code, out = linted(tmp_path, capsys, ruled("tolerates single faults in idle", **more), "--as", "lines")
+    assert code == 1
+    (line,) = out.splitlines()
+    assert "with X, or its pin, stuck on, P can be joined to N through X at rest in idle, without end, against" in line
+    assert line.endswith("to cure it: no mode tolerates this; put another switch in series [single-fault]")
+    for form in ("json", "sarif", "vcd", "annotations", "screen"):
+        assert linted(tmp_path, capsys, ruled("tolerates single faults in idle", **more), "--as", form)[0] == 1
+
+
+PASSING = """\
+drive "a pin that an interlock sees"
+writes together
+stage
+  rails P N
+  switch A from P to X
+  switch B from X to Z
+  switch C from X to N
+parts
+  p on 1 us off 1 us
+paths
+  A B C through p
+  interlock B C
+modes  A    B    C
+  idle off  off  off
+  run  on   on   on
+moves
+  start idle
+  idle -> run when go
+  run -> idle when stop
+rules
+  tolerates single faults in run
+"""
+
+
+def test_a_pin_that_an_interlock_sees_is_a_fault_of_its_own(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """B and C on are both off by the interlock; with the pin of B stuck off it lets C through."""
+    code, out = linted(tmp_path, capsys, PASSING, "--as", "json")
+    assert code == 1
+    (entry,) = json.loads(out)["files"]
+    outcome_schema().validate(json.loads(out))
+    unsafe = [one for one in entry["verdicts"] if one["verdict"] == "unsafe"]
+    faults = [one["hazard"]["stuck"]["faults"] for one in unsafe]
+    assert faults == [
+        [{"switch": "B", "on": False, "pin": True}],
+        [{"switch": "C", "on": True, "pin": False}],
+        [{"switch": "C", "on": True, "pin": True}],  # C passes while B is off, and takes 1 us to be off with B on again
+    ]
+    found = unsafe[0]
+    assert "with the pin of B stuck off, P can be joined to N through A and C at rest in run" in found["text"]
+    writes = [write["switch"] for event in found["trace"]["events"] for write in event.get("writes", [])]
+    assert set(writes) == {"A", "B", "C"}
+
+
+def test_a_waiver_names_the_mode_the_leg_or_a_switch(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    for name, left in (("down", 0), ("U", 0), ("UH", 0), ("UL", 0), ("up", 1)):
+        rule = f'tolerates single faults in down\n  waive single-fault for {name} because "fused"'
+        code, out = linted(tmp_path, capsys, ruled(rule), "--as", "lines")
+        assert code == left
+        assert ("; waived because: fused [single-fault]" in out) is not left
+
+
+def test_what_a_limit_leaves_open_is_undecided(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Neither the rule nor its waiver is said to be in order."""
+    rule = 'tolerates single faults in idle\n  waive single-fault for up because "fused"'
+    code, out = linted(tmp_path, capsys, ruled(rule), "--as", "lines", "--most-zones", "1")
+    assert code == 3
+    assert "undecided, not proven: P to N through UH and UL at rest in idle with UH, or its pin, stuck on; the" in out
+    assert "idle-waiver" not in out
+
+
+def test_punctual_is_said_of_a_rule_too(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """UL takes 1 us to conduct, and row down lasts 400 ns: only a firmware that is late lets it come so far there."""
+    text = leg().replace("up -> idle when stop", "up -> idle when stop\n  down -> idle after 200 ns to 400 ns")
+    code, out = linted(tmp_path, capsys, f"{text}rules\n  tolerates single faults in down\n", "--as", "lines")
+    assert code == 0
+    assert "that P to N are not joined in down with UH stuck rests on firmware that is never late" in out
+
+
+def test_what_a_rule_cannot_say(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    for rule, said in (
+        ("in up, up", "mode 'up' is named twice"),
+        ("in reset", "nothing here uses the mode 'reset'"),
+        ("in any but idle, up, down", "no mode is left to be asked for; name the modes [empty-origin]"),
+        ("in ip", "unknown mode 'ip'; known are"),
+        ("of up", "[syntax]"),
+    ):
+        (tmp_path / "t.dseq").write_text(ruled(f"tolerates single faults {rule}"), encoding="utf-8")
+        assert main(["lint", str(tmp_path / "t.dseq")]) == 2
+        assert said in capsys.readouterr().err
+
+
+def test_a_rule_that_came_to_be_broken_is_worse(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    for name, wait in (("old", "3 us"), ("new", "2 us")):
+        (tmp_path / f"{name}.dseq").write_text(ruled("tolerates single faults in idle", wait), encoding="utf-8")
+    with contextlib.chdir(tmp_path):
+        assert main(["compare", "old.dseq", "new.dseq"]) == 1
+        assert "2 findings against the rules came up" in " ".join(capsys.readouterr().out.split())
+        assert main(["compare", "new.dseq", "old.dseq"]) == 0
+
+
+def test_the_runs_can_be_drawn(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (tmp_path / "t.dseq").write_text(ruled("tolerates single faults in down"), encoding="utf-8")
+    with contextlib.chdir(tmp_path):
+        assert main(["draw", "t.dseq", "--trace", "single-fault"]) == 1
+        assert "UL" in capsys.readouterr().out
+        assert main(["report", "t.dseq"]) == 1
+        assert "stuck on" in capsys.readouterr().out

@@ -1,4 +1,4 @@
-"""Whether a hazard comes at rest in given modes: for each of them a place of the search, as few moves away as can be."""
+"""Whether a hazard comes at rest in given modes: for each of them a place of the search, the fewest moves away."""
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass

@@ -67,8 +67,8 @@ ABOUT: dict[str, About] = {
         "A single fault shorts",
         "With one thing stuck, a switch or a pin, a short comes at rest in a mode for which the file says that it"
         " tolerates single faults.",
-        "Turn off in this mode what conducts beside the stuck switch, and let it be through with its turn-off before the"
-        " mode is entered, or put a second switch in series.",
+        "Turn off in this mode what conducts beside the stuck switch, and let it be through with its turn-off before"
+        " the mode is entered, or put a second switch in series.",
     ),
     Check.UNREACHABLE.value: About(
         "A mode is never entered",

@@ -28,6 +28,7 @@ def names_of(drive: Drive, verdict: Unsafe) -> frozenset[str]:
     concerned |= {one.switch for one in asks.faults} if isinstance(asks, Stuck) else set()
     followed = {asks.left, asks.entered} if isinstance(asks, Following) else set()
     trips_asked = {asks.trip} if isinstance(asks, Clearing) else set()
+    followed |= {asks.mode} if isinstance(asks, Stuck) else set()
     modes = followed | {mode.name for mode in drive.modes.values() if mode.place == verdict.place}
     trips = trips_asked | {trip.name for trip in drive.trips if trip.place == verdict.place}
     moves = (move for move in drive.moves if move.place == verdict.place)

@@ -1,6 +1,6 @@
 """Sentences about a hazard and its verdict that every form says alike."""
 
-from seqcheck.drive import Above, Command, CurrentOut, Drive, Known, Mode
+from seqcheck.drive import Above, Command, CurrentOut, Drive, Fixed, Known, Mode
 from seqcheck.hazards import Clearing, Current, Fault, Following, Hazard, Lasting, Length, Stuck, reach
 from seqcheck.quantities import shown
 from seqcheck.reports.pieces import listed
@@ -18,8 +18,8 @@ def switches(hazard: Hazard) -> str:
 
 def subject(hazard: Hazard) -> str:
     """What the hazard is, as a noun: `P to N through UH and UL`, `current out of X with Af and Bf off`, or the switches
-    alone where nothing is joined; for a rule about lengths what must not be: `UH on for more than 225 us`; for one about
-    single faults also the fault and the mode."""
+    alone where nothing is joined; for a rule about lengths what must not be: `UH on for more than 225 us`; for one
+    about single faults also the fault and the mode."""
     if isinstance(hazard.asks, Stuck):
         asks = hazard.asks
         return f"{_ends(hazard.joins)} through {_through(hazard)} at rest in {asks.mode} with {stuck(asks)}"
@@ -265,11 +265,13 @@ def _cure_of_fault(verdict: Unsafe, drive: Drive, asks: Stuck) -> str:
     series = "put another switch in series"
     if not others:
         return f"no mode tolerates this; {series}"
-    if verdict.row is not None:
+    row = dict(zip(drive.columns, drive.modes[asks.mode].cells, strict=True))
+    lingering = [one for one in others if row[one.switch] is Fixed.OFF]
+    if not lingering:
         one_of = str(others[0]) if len(others) == 1 else f"one of {switches(verdict.hazard)}"
         return f"no wait cures this; row '{asks.mode}' must leave {one_of} off, or {series}"
-    longest = max(reach(drive.paths[one.switch])[1].hi or 0 for one in others)
-    names = switches(verdict.hazard)
+    longest = min(reach(drive.paths[one.switch])[1].hi or 0 for one in lingering)
+    names = listed([str(one) for one in lingering], "or")
     wait = f", and a wait of at least {shown(longest)} after it" if longest else ""
     return f"what leads to {asks.mode} must end with the turn-off of {names}{wait}, which belongs to the move"
 

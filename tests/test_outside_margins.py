@@ -123,7 +123,7 @@ def test_the_pause_between_star_and_delta(pause: str, gap: int, told: Tell) -> N
 
 @pytest.mark.parametrize(("before", "after", "off", "on"), TO_NEIGHBOUR)
 def test_the_pause_of_a_clamped_leg(before: str, after: str, off: str, on: str, told: Tell) -> None:
-    """Nabae, Takahashi, Akagi 1981 [memory; sets derived]: off, wait, on; 600 − 100 ns are needed as in a leg of two."""
+    """Nabae, Takahashi, Akagi 1981 [memory; sets derived]: off, wait, on; 600 − 100 ns are needed, as for two."""
     gone = off.split()[0]
     for pause, slack in (("500 ns", 0), ("0.75 us", 250 * NS)):
         code, document = told(clamped_change(before, after, [off, on], pause))

@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 from itertools import product
 
-from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
+from seqcheck.drive import Cell, Command, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length, delays
@@ -238,7 +238,8 @@ class Prover:
         for punctual, manner in product((False, True), _manners(looking)):
             count.next_search()
             projection = Projection(looking, self._firmware(looking, punctual), manner)
-            found = rests(projection.initial(), modes, count)
+            holding = frozenset(mode for mode in modes if _may_hold_in(looking, mode))
+            found = rests(projection.initial(), modes, holding, count)
             sure = punctual and not manner.forget
             if found.limit is not None:
                 answers |= {mode: found.limit for mode in modes if not sure or mode not in found.nodes}
@@ -354,6 +355,18 @@ def _may_hold(looking: View) -> bool:
         if not opposites and all(sides.get(cell, wanted) == wanted for cell, wanted in cells):
             return True
     return False
+
+
+def _may_hold_in(looking: View, mode: str) -> bool:
+    """Whether the row of a mode could command all literals at rest."""
+    drive = looking.drive
+    sides: dict[Cell, Command] = {Fixed.OFF: Command.OFF, Fixed.ON: Command.ON}
+    for one in looking.hazard.literals:
+        cell = drive.modes[mode].cells[drive.columns.index(one.switch)]
+        told = drive.pins[one.switch].resting if cell is Fixed.FREE else sides.get(cell, Command.UNKNOWN)
+        if told is (Command.OFF if one.on else Command.ON):
+            return False
+    return True
 
 
 def _mode(node: Node) -> str:

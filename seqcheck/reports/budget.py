@@ -72,9 +72,8 @@ def after(margin: Margin) -> str:
     """A margin as one sentence without full stop."""
     others = listed([str(one) for one in margin.hazard.literals if one != margin.literal])
     if margin.slack is None:
-        return f"{others} never follows {margin.literal}" if len(margin.hazard.literals) == 2 else (
-            f"{others} never follow {margin.literal} together"
-        )
+        pair = len(margin.hazard.literals) == 2
+        return f"{others} never {'follows' if pair else 'follow'} {margin.literal}{'' if pair else ' together'}"
     left = f"the margin after {margin.literal} until {others} is {_slack(margin)}"
     rest = f"; {margin.limit}" if margin.limit else ""
     return f"{left}; the parts need {shown(margin.needed)} between the commands{rest}"

@@ -215,10 +215,15 @@ def _brought(brought: Brought, text: str, drive: Drive) -> Fields:
         "left": literal_fields(brought.left.literals),
         "anyway": brought.anyway,
         "rows": [name for name in drive.modes if name in spread.held],
-        "places": [_where(one, drive) for one in sorted(spread.places, key=lambda one: (one.mode, one.run or -1))],
+        "places": [_where(one, drive) for one in sorted(spread.places, key=_in_order)],
         "limit": spread.limit,
         "text": text,
     }
+
+
+def _in_order(where: Where) -> tuple[str, int]:
+    """By modes, at rest first."""
+    return where.mode, -1 if where.run is None else where.run
 
 
 def _where(where: Where, drive: Drive) -> Fields:

@@ -1,6 +1,6 @@
 """Sentences about a hazard and its verdict that every form says alike."""
 
-from seqcheck.drive import Above, Command, CurrentOut, Drive, Fixed, Known, Mode
+from seqcheck.drive import RESET, Above, Command, CurrentOut, Drive, Fixed, Known, Mode
 from seqcheck.hazards import Clearing, Current, Fault, Following, Hazard, Lasting, Length, Stuck, reach
 from seqcheck.quantities import shown
 from seqcheck.reports.pieces import listed
@@ -265,6 +265,8 @@ def _cure_of_fault(verdict: Unsafe, drive: Drive, asks: Stuck) -> str:
     series = "put another switch in series"
     if not others:
         return f"no mode tolerates this; {series}"
+    if asks.mode == RESET:
+        return f"no wait cures this, for a reset waits for nothing; {series}"
     row = dict(zip(drive.columns, drive.modes[asks.mode].cells, strict=True))
     lingering = [one for one in others if row[one.switch] is Fixed.OFF]
     if not lingering:

@@ -5,6 +5,7 @@ import json
 import os
 from collections import Counter
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 from typing import NamedTuple
 
@@ -14,7 +15,7 @@ from judge.draws import draw
 from judge.shorts import asked
 from judge.stretched import stretched
 from judge.stuck import places
-from proofs import at_most
+from proofs import at_most, outcome_of
 from reading import drive_of
 from test_faults import INTERLOCKED, leg
 from test_judged import SEEDS
@@ -22,9 +23,11 @@ from test_judged import SEEDS
 from seqcheck.circuit import shorting_sets
 from seqcheck.cli import main
 from seqcheck.drive import Drive, ToleratesRule
+from seqcheck.evidence.replay import NotPermitted, replay
 from seqcheck.faults import Where
 from seqcheck.hazards import Fault, Stuck
 from seqcheck.messages import Problems
+from seqcheck.proving import resting
 from seqcheck.proving.prove import Prover
 from seqcheck.tolerating import tolerated
 from seqcheck.verdict import Safe, Undecided, Unsafe, Verdict
@@ -291,3 +294,63 @@ def test_the_runs_can_be_drawn(tmp_path: Path, capsys: pytest.CaptureFixture[str
         assert "UL" in capsys.readouterr().out
         assert main(["report", "t.dseq"]) == 1
         assert "stuck on" in capsys.readouterr().out
+
+
+def unsafe_of(text: str) -> list[Unsafe]:
+    found = outcome_of(text).verdicts
+    return [one for one in found if isinstance(one, Unsafe)]
+
+
+def test_the_replay_refuses_what_is_not_at_rest_in_the_mode() -> None:
+    """Another mode, a beginning before the mode was entered, and an end after the switch is off."""
+    text = ruled("tolerates single faults in idle", "2 us")
+    drive, (found, _) = drive_of(text), unsafe_of(text)
+    trace = found.trace
+    assert trace.overlap_to == trace.overlap_from + 1_000_000
+    assert replay(drive, trace).overlap == found.replayed.overlap
+    other = replace(trace.hazard, asks=Stuck("up", found.hazard.asks.faults))  # type: ignore[union-attr]
+    for wrong in (
+        replace(trace, hazard=other),
+        replace(trace, hazard=replace(trace.hazard, asks=None)),
+        replace(trace, overlap_from=trace.overlap_from - 1),
+        replace(trace, overlap_to=trace.overlap_to + 1, end=trace.end + 1),
+        replace(trace, overlap_to=None),
+    ):
+        with pytest.raises(NotPermitted):
+            replay(drive, wrong)
+
+
+LATER = """\
+drive "a row that acts later"
+writes together
+stage
+  rails P N
+  leg U UH UL
+parts
+  p on 1 us off 1 us
+paths
+  UH UL through p
+carriers
+  main 20 kHz duty 50 % updates within a period
+modes  UH   UL
+  idle off  off
+  chop off  main
+  hold off  on
+moves
+  start idle
+  idle -> chop when go
+  chop -> hold when seated
+  hold -> idle when stop
+rules
+  tolerates single faults in hold
+"""
+
+
+def test_a_row_at_fault_is_looked_for_no_longer_than_it_is_worth(monkeypatch: pytest.MonkeyPatch) -> None:
+    """In `hold` UL conducts first by its carrier, until the write of the row acts."""
+    (found,) = unsafe_of(LATER)
+    assert found.row == "hold"
+    monkeypatch.setattr(resting, "MOST_MORE", 0)
+    (found,) = unsafe_of(LATER)
+    assert found.row is None
+    assert found.hazard.asks == Stuck("hold", (Fault("UH", True, False), Fault("UH", True, True)))

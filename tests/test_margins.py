@@ -225,6 +225,22 @@ def test_lines_have_the_place_that_sets_a_margin(tmp_path: Path, capsys: pytest.
     assert "note: A never follows B [margin]\n" in answered(tmp_path, capsys, once, "--as", "lines")[1]
 
 
+def test_a_switch_that_shorts_alone_has_no_margin(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Neither in `margins`, nor for a rule, nor on the page."""
+    text = leg("a off off", "  start a").replace("leg U A B", "switch A from P to N\n  switch B from P to Q")
+    text = text.replace("rails P N", "rails P N") + "rules\n  margin at least 1 us\n"
+    code, out, err = answered(tmp_path, capsys, text)
+    assert (code, err) == (0, "")
+    assert "1 hazard, each proven in no run.\n" in out
+    assert "P to N through A: one switch alone, so that there is no margin to tell.\n" in out
+    data = json.loads(answered(tmp_path, capsys, text, "--as", "json")[1])
+    margins_schema().validate(data)
+    assert (data["margins"], [one["text"] for one in data["alone"]]) == ([], ["P to N through A"])
+    with contextlib.chdir(tmp_path):
+        assert main(["lint", "t.dseq"]) == 0
+        assert main(["report", "t.dseq"]) == 0
+
+
 def test_wrong_calls_say_so(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     code, out, err = answered(tmp_path, capsys, PAIR, "--as", "sarif")
     assert (code, out) == (2, "")

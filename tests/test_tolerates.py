@@ -194,6 +194,8 @@ def test_a_switch_that_shorts_alone_is_tolerated_nowhere(tmp_path: Path, capsys:
     assert line.endswith("to cure it: no mode tolerates this; put another switch in series [single-fault]")
     for form in ("json", "sarif", "vcd", "annotations", "screen"):
         assert linted(tmp_path, capsys, ruled("tolerates single faults in idle", **more), "--as", form)[0] == 1
+    for command in (["report"], ["draw", "--trace", "single-fault"]):
+        assert main([*command, str(tmp_path / "t.dseq")]) == 1
 
 
 PASSING = """\

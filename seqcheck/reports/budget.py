@@ -31,7 +31,7 @@ def _standing(budget: Budget) -> list[Line]:
     if budget.undecided:
         count = counted(len(budget.undecided), "hazard")
         return paragraph(f"{count} undecided, not proven: {budget.undecided[0].limit}.", 0, Tone.DOUBT)
-    hazards = {one.hazard for one in budget.margins}
+    hazards = {*(one.hazard for one in budget.margins), *budget.alone}
     if not hazards:
         return paragraph("No switches of this stage can short it.", 0, Tone.GOOD)
     return paragraph(f"{counted(len(hazards), 'hazard')}, each proven in no run.", 0, Tone.GOOD)
@@ -150,6 +150,8 @@ def _notes(budget: Budget) -> Iterator[str]:
         yield f"'{NEVER}': in no run can the second conduct after the first."
     for one in budget.undecided:
         yield f"Undecided, not proven: {subject(one.hazard)}; the limit was reached: {one.limit}."
+    for hazard in budget.alone:
+        yield f"{subject(hazard)}: one switch alone, so that there is no margin to tell."
     held = [switches(one.hazard) for one in budget.margins if one.hazard in budget.held]
     for names in dict.fromkeys(held):
         yield f"{names} are kept apart by an interlock alone; the firmware would bring them together without it."

@@ -44,6 +44,7 @@ def report(budget: Budget) -> str:
             {"hazard": hazard_fields(one.hazard), "limit": one.limit, "text": subject(one.hazard)}
             for one in budget.undecided
         ],
+        "alone": [hazard_fields(one) for one in budget.alone],
     }
     return json.dumps(data, separators=(",", ":")) + "\n"
 

@@ -3,18 +3,8 @@
 from collections.abc import Sequence
 
 from seqcheck.drive import Drive, Move, Trip
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Fault, Hazard
 from seqcheck.records import dataclass
-
-
-@dataclass(frozen=True, slots=True, order=True)
-class Fault:
-    """One thing stuck for ever: a switch conducts always (`on`) or never; or, with `pin`, it is the command at the pin
-    of that switch that is always on or always off, whatever is written."""
-
-    switch: str
-    on: bool
-    pin: bool
 
 
 @dataclass(frozen=True, slots=True, order=True)

@@ -43,7 +43,7 @@ def tables(parser: Lark) -> Tables:
         known: Mapping[str, tuple[Any, Any]] = table.states[state]
         actions.append({})
         gotos.append({})
-        for symbol, (action, argument) in known.items():
+        for symbol, (action, argument) in sorted(known.items(), key=lambda one: one[0]):  # lark's own order is no order
             if not symbol.isupper():
                 gotos[-1][symbol] = argument
             elif action is Shift:

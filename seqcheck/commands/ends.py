@@ -15,6 +15,9 @@ from seqcheck.verdict import WARNINGS, Check, Finding, Outcome, Undecided, Unsaf
 FARTHEST = 1 << 10
 """No range is looked for beyond so many times the value that it begins with, or so many steps if that is more."""
 
+FARTHEST_OFF = 1 << 20
+"""No value that holds is looked for farther from one that does not than so many times that one, or so many steps."""
+
 MOST_PARTS = 32
 """Pieces that one side of a range may be put together from before it is given up."""
 
@@ -81,7 +84,7 @@ class Search:
     def _some_near(self, value: Fraction) -> Fraction | None:
         """A value that holds, looked for at distances that double."""
         width = 1
-        most = self._most(value)
+        most = max(abs(value), self._step) * FARTHEST_OFF
         sides = [Steps(value, self._step, up) for up in (True, False)]
         while True:
             for away in sorted(sides, key=lambda side: abs(side(width) - value)):
@@ -101,13 +104,7 @@ class Search:
 
     def _point(self, value: Fraction) -> bool:
         """Whether a single value holds; the quick way first."""
-        return self._over.holds(value, value) or (bool(self._waivers(value)) and self.judged(value) is None)
-
-    def _waivers(self, value: Fraction) -> tuple[object, ...]:
-        try:
-            return self._over.drive_at(value).waivers
-        except Problems:
-            return ()
+        return self._over.holds(value, value) or (self._over.waives_runs and self.judged(value) is None)
 
     # One end
 
@@ -176,12 +173,12 @@ class Search:
     def _both(self, one: Part, other: Part) -> Part | None:
         if one.whole and other.whole and one.last == other.first and self._over.holds(one.first, other.last):
             return Part(one.first, other.last, True)
-        if one.first == other.first == other.last:
-            return one
+        if one.last == other.first and (one.first == one.last or other.first == other.last):
+            return one if other.first == other.last else other
         if one.last is None or other.last is None or other.first - one.last > self._step:
             return None
         alone = (not one.whole or one.first == one.last) and (not other.whole or other.first == other.last)
-        return Part(one.first, other.last, False) if alone and other.first != one.last else None
+        return Part(one.first, other.last, False) if alone else None
 
 
 def holds(outcome: Outcome) -> bool:

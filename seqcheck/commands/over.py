@@ -29,7 +29,7 @@ from seqcheck.ranging import Mixed, Stretch
 from seqcheck.reports.waived import own_names, reason
 from seqcheck.rules import asked_by, check_of_rule
 from seqcheck.source import Place
-from seqcheck.verdict import Check
+from seqcheck.verdict import WARNINGS, Check
 
 Observer = Callable[[int], None]
 Interval = tuple[Fraction, Fraction | None]
@@ -40,6 +40,12 @@ MOST_ZONES = 20_000
 
 _TOGETHER: Key = ("together",)
 """The question whether values can be taken together at all, and what needs no run is in order."""
+
+_WITHOUT_RUN = frozenset(
+    one.value
+    for one in (Check.UNREACHABLE, Check.NO_WAY_BACK, Check.AMBIGUOUS, Check.STALLED, Check.ROW_MEANING, *WARNINGS)
+)
+"""Checks whose findings need no run: what waives them is known without a proof."""
 
 _KEPT = 8
 """Wide drives that are kept, with what their provers know."""
@@ -57,7 +63,10 @@ class _Wide:
 
 
 class Over:
-    """Proofs of one file over intervals of one `let`; what was found for one interval serves those within."""
+    """Proofs of one file over intervals of one `let`; what was found for one interval serves those within.
+
+    `waives_runs`: whether a waiver may let a run pass, which only `lint` itself decides for a single value.
+    """
 
     def __init__(self, varied: Varied, name: str, observer: Observer) -> None:
         self._varied = varied
@@ -67,6 +76,7 @@ class Over:
         self._proven: dict[Key, list[Interval]] = {}
         self._refuted: dict[Key, list[Interval]] = {}
         self._suspects: dict[Key, None] = {}
+        self.waives_runs = any(one.check not in _WITHOUT_RUN for one in varied.drive.waivers)
         self._sets = (*shorting_sets(varied.drive.stage), *opening_sets(varied.drive.stage))
 
     def holds(self, first: Fraction, last: Fraction | None) -> bool:
@@ -186,8 +196,17 @@ class Over:
             return False
         if Check.SHORT.value in checks:
             return True
-        proof = wide.prover.prove(hazard, True, self._limited)
-        return isinstance(proof, Refuted) and proof.held is None and proof.greatest
+        ended: list[int] = []
+
+        def watched(zones: int) -> None:
+            try:
+                self._limited(zones)
+            except LimitReached:
+                ended.append(zones)
+                raise
+
+        proof = wide.prover.prove(hazard, True, watched)
+        return isinstance(proof, Refuted) and proof.held is None and not ended
 
     def _far_enough(self, wide: _Wide, hazard: Hazard, rule: MarginRule) -> bool:
         names = own_names(wide.drive, hazard)

@@ -97,11 +97,14 @@ def size(text: str, asked: Asked, fetch: Callable[[str], str], observer: Observe
 
 
 def exit_of(found: Sized) -> int:
-    """1 where the value of today does not hold, 3 where it, or an end of its range, is undecided."""
+    """1 where the value of today does not hold, 3 where it, or an end of its range, is undecided.
+
+    An end that was looked for as far as it is said is none that a limit of the call left open.
+    """
     if not found.holds:
         return UNDECIDED if open_limit(found.now) else FOUND
     sides = [one for one in (found.low, found.high) if one is not None]
-    return UNDECIDED if any(one.how in (Ends.UNDECIDED, Ends.FAR) for one in sides) else PROVEN
+    return UNDECIDED if any(one.how is Ends.UNDECIDED for one in sides) else PROVEN
 
 
 def _unknown(varied: Varied, asked: Asked) -> str:

@@ -113,7 +113,7 @@ def _slack(found: Sized) -> str:
     if not found.holds:
         return f"Proven with {found.name} {_span(found, found.low, found.high)}"
     sides = [_room(found, found.low, "below"), _room(found, found.high, "above")]
-    return f"Today {value(found, found.today)}: slack {' and '.join(sides)}"
+    return f"Slack: {', '.join(sides)}"
 
 
 def _room(found: Sized, end: End, side: str) -> str:

@@ -27,14 +27,18 @@ class Mixed(Exception):  # noqa: N818
 
 
 class Stretch:
-    """An interval of values: both ends included, `last` None without end. `outer` says how is rounded."""
+    """An interval of values: both ends included, `last` None without end. `outer` says how is rounded.
 
-    __slots__ = ("first", "last", "outer")
+    `asked` tells whether anything but arithmetic was ever asked of a number of it.
+    """
+
+    __slots__ = ("asked", "first", "last", "outer")
 
     def __init__(self, first: Fraction, last: Fraction | None, outer: bool) -> None:
         self.first = first
         self.last = last
         self.outer = outer
+        self.asked = False
 
     def quantity(self) -> "Ranging":
         """The quantity itself: t counts from 0 to 1 over the interval, or from 0 on where it has no end."""
@@ -96,6 +100,7 @@ class Ranging(Fraction):
     def _ends(self) -> tuple[Fraction | None, Fraction | None]:
         """The least and the greatest value (None: there is none), where the number grows or falls all the way."""
         stretch, up, low = self.stretch, self.upper, self.lower
+        stretch.asked = True
         slope = _less(_product(_slope(up), low), _product(up, _slope(low)))
         first = _at(up, Fraction(0)) / _at(low, Fraction(0))
         if stretch.not_negative(slope):
@@ -168,6 +173,7 @@ class Ranging(Fraction):
     def __eq__(self, other: object) -> bool:
         if not isinstance(other, int | Fraction):
             return NotImplemented
+        self.stretch.asked = True
         apart = (self - other).upper
         if not apart:
             return True
@@ -198,6 +204,7 @@ class Ranging(Fraction):
 
 def _above(one: Ranging, strictly: bool) -> bool:
     """Whether a number is above zero, or not below it; its divisor is above zero everywhere."""
+    one.stretch.asked = True
     holds, fails = one.stretch.positive, one.stretch.not_negative
     if not strictly:
         holds, fails = fails, holds

@@ -10,6 +10,7 @@ where today's value does not hold the judge must agree. What the mode graph of a
 import os
 import re
 from collections import Counter
+from collections.abc import Iterator
 from fractions import Fraction
 from random import Random
 
@@ -17,12 +18,14 @@ import pytest
 from judge.delays import delays_of
 from judge.draws import draw, flowing
 from judge.literal import Says, judge
+from judge.ruled import ruled
 from judge.shorts import asked
 from proofs import at_most
 from reading import FILE, drive_of
 from test_campaign_judged import chunks, named
 
 from seqcheck.checking import check
+from seqcheck.commands.over import Over
 from seqcheck.commands.size import Asked, size
 from seqcheck.language.varied import Varied
 from seqcheck.messages import Problems
@@ -36,6 +39,8 @@ MOST = 9
 """Values of one range that the judge looks at."""
 
 _TIME = re.compile(r"(?<![\w.])(\d+) ps")
+_ANY = re.compile(r"(?<![\w.])(\d+) (ps|%|GHz)")
+_STEPS = {"ps": Fraction(1), "%": Fraction(1, 100), "GHz": Fraction(10**9)}
 
 
 def quantified(text: str, rng: Random) -> str | None:
@@ -88,7 +93,7 @@ def safe(varied: Varied, value: Fraction) -> bool | None:
 
 
 def sized(text: str) -> Sized:
-    call = Asked(FILE, "quantity", None, "screen", False)
+    call = Asked(FILE, "quantity", "1 ps", "screen", False)
     return size(text, call, lambda name: pytest.fail(f"reads {name}"), at_most(ZONES))
 
 
@@ -175,3 +180,46 @@ def run(seeds: range) -> None:
 @pytest.mark.parametrize("seeds", chunks(), ids=named)
 def test_ranges_of_drawn_drives(seeds: range) -> None:
     run(seeds)
+
+
+def wide_and_single(text: str, rng: Random, ends: Counter[str]) -> Iterator[str]:
+    """One number of a drive ranges: what is proven of an interval must be proven of each of its values by itself."""
+    found = list(_ANY.finditer(text))
+    chosen = rng.choice(found)
+    today, step = int(chosen[1]), _STEPS[chosen[2]]
+    said = f"{text[: chosen.start()]}quantity{text[chosen.end() :]}".strip()
+    head, _, rest = said.partition("\n")
+    whole = f"{head}\nlet quantity = {today} {chosen[2]}\n{rest}\n"
+    over = Over(Varied(whole, FILE, lambda _: ""), "quantity", at_most(ZONES))
+    single = Over(Varied(whole, FILE, lambda _: ""), "quantity", at_most(20 * ZONES))
+    for _ in range(4):
+        first = max(0, today + rng.randint(-4, 2)) * step
+        last = first + rng.randint(1, 5) * step
+        for key in over.questions(first, last):
+            if not over.fine(key, first, last):
+                ends["not shown together"] += 1
+                continue
+            ends["shown together"] += 1
+            for at in range(5):
+                value = first + (last - first) * at / 4
+                if not single.fine(key, value, value):
+                    ends["contradicted"] += 1
+                    yield f"{key} holds from {first} to {last}, but not at {value} of\n{whole}"
+                ends["single values"] += 1
+
+
+@pytest.mark.campaign
+@pytest.mark.parametrize("seeds", chunks(), ids=named)
+def test_what_holds_of_all_values_holds_of_each(seeds: range) -> None:
+    """Against the prover itself: quicker than the judge, so that times, shares and frequencies of all kinds count."""
+    ends: Counter[str] = Counter()
+    wrong = []
+    for seed in seeds:
+        rng = Random(f"wide {seed}")
+        text = flowing(seed) if seed % 3 == 1 else draw(seed)
+        if seed % 3 == 0:
+            text = f"{ruled(text, seed)}  margin at least {rng.randint(1, 4)} ps\n"
+        wrong += list(wide_and_single(text, rng, ends))
+    print(dict(ends))
+    assert not wrong, "\n\n".join(wrong)
+    assert ends["single values"]

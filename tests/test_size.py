@@ -216,6 +216,12 @@ def test_a_quantity_that_nothing_depends_on() -> None:
     assert exit_of(found) == 0
 
 
+def test_a_quantity_that_makes_no_difference_from_today_on_is_not_idle() -> None:
+    """10 ps over a thousand or more is rounded alike; over one it is not."""
+    text = leg("let share = 1000\nlet pause = 60 us + 10 ps / share")
+    assert not sized(text, "share", None).idle
+
+
 def test_a_quantity_that_only_a_lower_bound_depends_on_is_not_idle() -> None:
     text = leg("let rest = 1 s", wait="60 us").replace("earliest 1 s", "earliest rest")
     found = sized(text, "rest")

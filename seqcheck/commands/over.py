@@ -97,6 +97,11 @@ class Over:
         order = dict.fromkeys((*reversed(suspects), *questions))
         return next((key for key in order if not self._answer(key, questions[key], here)), None)
 
+    def questions(self, first: Fraction, last: Fraction | None) -> tuple[Key, ...]:
+        """The names of all questions about an interval; empty where its values cannot be taken together."""
+        wide = self._wide((first, last))
+        return () if wide is None else tuple(key for key, _ in self._questions(wide))
+
     def fine(self, key: Key, first: Fraction, last: Fraction | None) -> bool:
         """Whether one question is answered by yes for all values of an interval at once."""
         here = (first, last)
@@ -111,11 +116,13 @@ class Over:
         return self._varied.with_values({self._name: value})
 
     def idle(self, today: Fraction) -> bool:
-        """Whether the drive is the same for any value at all, from today's on."""
+        """Whether nothing of the drive is made of the quantity."""
+        stretch = Stretch(today, None, True)
         try:
-            return self._read((today, None), True) == self._read((today, None), False) == self._varied.drive
+            self._varied.with_values({self._name: stretch.quantity()})
         except (Mixed, Problems):
             return False
+        return not stretch.asked
 
     # The wide drive
 

@@ -374,6 +374,22 @@ def test_a_range_is_rounded_inwards(file: Callable[[str], str], capsys: Say) -> 
     assert "from 175 ticks (about 58.333334 us) on" in out
 
 
+def test_no_value_is_promised_where_none_was_found(file: Callable[[str], str], capsys: Say) -> None:
+    assert main(["size", file(leg("let pause = 60 us").replace("up   on   off", "up   on   on")), "pause"]) == 1
+    first, second, third, *rest = capsys.readouterr().out.splitlines()
+    assert first.endswith("let pause = 60 us, line 3")
+    assert second == "Today's value does NOT hold, and no value that does was found."
+    assert third.startswith("Values at distances that double were tried")
+    assert any(line.startswith("SHORT") for line in rest)
+
+
+def test_an_undecided_value_is_said_to_be_so(capsys: Say) -> None:
+    path = str(SAMPLES / "faulty" / "vent_short_pause.dseq")
+    assert main(["size", path, "settle", "--most-zones", "3"]) == 3
+    second = capsys.readouterr().out.splitlines()[1]
+    assert second.startswith("UNDECIDED, not proven: with today's value a limit was reached")
+
+
 def test_lines(file: Callable[[str], str], capsys: Say) -> None:
     path = file(leg("let pause = 57 us"))
     assert main(["size", path, "pause", "--step", "1 us", "--as", "lines"]) == 1

@@ -82,7 +82,7 @@ def _range(found: Sized) -> str:
     if low is None or high is None:
         if found.tried is None:
             return f"UNDECIDED, not proven: with today's value a limit was reached: {_limit_now(found)}"
-        return "Today's value does NOT hold, and no value was found that does: something else is amiss"
+        return "Today's value does NOT hold, and no value that does was found"
     how = "" if all(part.whole for part in found.parts) else f", in steps of {value(found, found.step)}"
     if found.holds:
         return f"Proven with {name} {_span(found, low, high)}{how}"
@@ -109,7 +109,9 @@ def _slack(found: Sized) -> str:
         used = f"It is used in line {lines}" if found.lines else "No line of the file uses it"
         return f"{used}; a range would say nothing"
     if found.low is None or found.high is None:
-        return f"Today: {value(found, found.today)}"
+        if found.tried is None:
+            return f"Nothing else was looked at; let {found.name} stays {value(found, found.today)}"
+        return "Values at distances that double were tried, below and above, up to a million times as far"
     if not found.holds:
         return f"Proven with {found.name} {_span(found, found.low, found.high)}"
     sides = [_room(found, found.low, "below"), _room(found, found.high, "above")]
@@ -204,10 +206,10 @@ def _broken(found: Sized, beyond: Beyond, where: str) -> list[Line]:
         (len(parts.undecided), "hazard", " undecided"),
     ]
     said = listed([f"{counted(number, name)}{rest}" for number, name, rest in counts if number])
-    told = [(), line(Piece(f"{title}: {said}", Tone.BAD)), ()]
+    told = [(), line(Piece(f"{title}: {said}", Tone.BAD))]
     shown_one = worst(parts.unsafe) if parts.unsafe else None
     if shown_one is not None:
-        told += counterexample(shown_one, beyond.why.drive)
+        told += [(), *counterexample(shown_one, beyond.why.drive)]
     for one in parts.unsafe:
         if one is not shown_one:
             told += [(), line(Piece(one.check.value, Tone.BAD), f"  {one.place}"), *sentence(stated(one))]

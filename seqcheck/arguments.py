@@ -16,6 +16,8 @@ from seqcheck.quantities import PICOSECONDS
 from seqcheck.verdict import Check
 
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
+COMPARE_FORMS = ("screen", "lines")
+SHELLS = ("bash", "zsh", "fish")
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
 folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove."""
@@ -54,6 +56,9 @@ cannot be written; 4 the program itself is at fault. Where several files differ 
 _START = """\
 Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
 Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
+_COMPLETION = """\
+Print the script with which a shell completes calls of seqcheck: commands, options, their values, files. SHELL is bash,
+zsh or fish. Example, for the shell that you are in: source <(seqcheck completion bash)"""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -148,6 +153,10 @@ def parser() -> argparse.ArgumentParser:
     tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
     start = commands.add_parser("start", help="print a first file", description=_START, allow_abbrev=False)
     start.add_argument("kind", nargs="?", metavar="KIND")
+    completion = commands.add_parser(
+        "completion", help="let a shell complete calls", description=_COMPLETION, allow_abbrev=False
+    )
+    completion.add_argument("shell", metavar="SHELL")
     return parser
 
 

@@ -76,7 +76,8 @@ def test_what_joins_must_conduct_both_ways() -> None:
 
 def test_a_row_that_drives_in_series_by_turns_does_not_brake() -> None:
     stage = (*SERIES, "switch Q from U to X two way", "switch R from V to Z two way")
-    text = at_rest(stage, "A B C J Q R".split(), "110111").replace("modes", "carriers\n  k 9 kHz duty 50 %\nmodes")
+    text = at_rest(stage, ["A", "B", "C", "J", "Q", "R"], "110111")
+    text = text.replace("modes", "carriers\n  k 9 kHz duty 50 %\nmodes")
     for cells, amiss in (("on on off on on on", ""), ("on k ~k on k k", "it drives a winding by turns")):
         rows = f"idle {'off ' * 6}\n  only {cells} means brake"
         asked = text.replace("only on on off on on on", rows).replace("start only", "start idle")

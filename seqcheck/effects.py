@@ -68,8 +68,8 @@ class Wound:
 
     DRIVEN: from `nodes[0]`, at `levels[0]`, to `nodes[1]`, or the other way where it is not `ordered` by what is known.
     STAR: `nodes[0]` at `levels[0]`, the other end joined to those of the other windings of `group` (the ends of all,
-    its own too), whose held ends are not all at one level. BRAKED: both ends at `levels[0]`, or without a level where they are
-    joined by switches alone. HELD: `nodes[0]` at `levels[0]`.
+    its own too), whose held ends are not all at one level. BRAKED: both ends at `levels[0]`, or without a level where
+    they are joined by switches alone. HELD: `nodes[0]` at `levels[0]`.
     """
 
     ends: tuple[str, ...]

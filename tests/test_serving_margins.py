@@ -13,6 +13,7 @@ from test_serving_inside import Wire
 
 from seqcheck import checking, margins
 from seqcheck.proving.search import LimitReached
+from seqcheck.serving.proofs import Limits, Proofs
 from seqcheck.verdict import Budget
 
 
@@ -154,3 +155,17 @@ def test_margins_are_the_same_after_a_proof(text: str, monkeypatch: pytest.Monke
 def _few(zones: int) -> None:
     if zones > 60:
         raise LimitReached("60 zones")
+
+
+def test_when_nobody_listens_any_more_the_thread_goes_on_to_the_margins_and_ends_there() -> None:
+    """A text whose answer could not be said is not proven again and again."""
+    told, over = [], threading.Event()
+
+    def broken(task: Any, answer: Any) -> None:
+        told.append(answer)
+        raise BrokenPipeError
+
+    proofs = Proofs(Limits(10**6, PATIENCE, 0.0), broken, lambda *_: over.set())
+    proofs.ask("key", "t.dseq", drive_of(SAFE))
+    assert over.wait(PATIENCE)
+    assert len(told) == 1

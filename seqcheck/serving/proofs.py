@@ -82,14 +82,18 @@ class Proofs:
     def _work(self) -> None:
         while True:
             task = self._next()
-            with contextlib.suppress(_Old, _PutOff, OSError):  # OSError: nobody listens any more
-                if task.proven is not None:
-                    self._measured(task, self._margins(task, task.proven))
-                    self._done(task, None)
-                else:
-                    answer = self._answer(task)
-                    self._tell(task, answer)
-                    self._done(task, answer if isinstance(answer, Outcome) else None)
+            with contextlib.suppress(_Old, _PutOff):
+                self._done(task, self._one(task))
+
+    def _one(self, task: Task) -> Outcome | None:
+        """Prove a text or measure its margins, and tell; what is proven now, and has margins to be measured."""
+        if task.proven is not None:
+            self._measured(task, self._margins(task, task.proven))
+            return None
+        answer = self._answer(task)
+        with contextlib.suppress(OSError):  # nobody listens any more, and the reading end will see that too
+            self._tell(task, answer)
+        return answer if isinstance(answer, Outcome) else None
 
     def _done(self, task: Task, proven: Outcome | None) -> None:
         """Ask no more for a task that is over, but for the margins of what is proven now."""

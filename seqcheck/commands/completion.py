@@ -3,6 +3,7 @@
 import argparse
 
 from seqcheck.commands import draw
+from seqcheck.commands.margins import FORMS as MARGINS_FORMS
 from seqcheck.commands.start import KINDS
 from seqcheck.completing import bash, fish, zsh
 from seqcheck.completing.calls import call_of
@@ -21,6 +22,7 @@ def script(shell: str, parser: argparse.ArgumentParser, forms: tuple[str, ...], 
         "SHELL": tuple(WRITERS),
         "lint FORM": forms,
         "compare FORM": compared,
+        "margins FORM": MARGINS_FORMS,
         "draw FORM": draw.FORMS,
         "draw CHECK": draw.TRACED,
     }

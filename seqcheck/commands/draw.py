@@ -1,6 +1,5 @@
 """`seqcheck draw`: the picture that is asked for, as a text."""
 
-
 from seqcheck.records import dataclass
 from seqcheck.reports.standing import Sorted, Standing, are, sorted_out, worst
 from seqcheck.source import printable

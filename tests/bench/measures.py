@@ -3,6 +3,7 @@
 import gc
 import math
 import os
+import subprocess
 import sys
 import tempfile
 import time
@@ -58,10 +59,17 @@ def child(arguments: list[str]) -> Used:
     return Used(usage.ru_utime + usage.ru_stime, usage.ru_maxrss / unit)
 
 
+def _warmed(arguments: list[str]) -> None:
+    """The first run writes byte code and fills the cache; one that fails is not worth measuring."""
+    ended = subprocess.run([sys.executable, *arguments], capture_output=True, text=True, check=False)
+    if "Traceback" in ended.stderr or "internal error" in ended.stderr:
+        raise Unmeasured(ended.stderr.strip().splitlines()[-1])
+
+
 def _against(one: list[str], other: list[str], rounds: int) -> Measured:
     """The processor time of one process as a multiple of another's: medians, taken in turn."""
-    child(one)
-    child(other)  # the first runs write byte code and fill the cache
+    _warmed(one)
+    _warmed(other)
     pairs = [(child(one).seconds, child(other).seconds) for _ in range(rounds)]
     first, second = median(pair[0] for pair in pairs), median(pair[1] for pair in pairs)
     return Measured(first / second, f"{first * 1000:.0f} ms against {second * 1000:.0f} ms")
@@ -86,6 +94,7 @@ def mistake(rounds: int) -> Measured:
 
 def memory(rounds: int) -> Measured:
     with _file(drives.table(10_000)) as path:
+        _warmed([*COMMAND, "lint", path])
         used = [child([*COMMAND, "lint", path]) for _ in range(rounds)]
     seconds = median(one.seconds for one in used)
     return Measured(median(one.megabytes for one in used), f"the whole lint, in {seconds:.1f} s")

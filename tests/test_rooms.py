@@ -40,6 +40,7 @@ LOW_TO_HIGH = (
     "serving",
     "commands",
     "arguments",
+    "opening",
     "delivering",
     "cli",
     "__main__",

@@ -94,8 +94,8 @@ class Uses:
     def _fetched(self, scope: Scope, path: str, said: Word) -> str | None:
         try:
             return self.fetch(path)
-        except OSError as error:
-            why = error.strerror or "it cannot be opened"
+        except (OSError, ValueError) as error:  # ValueError: a name that the system cannot spell
+            why = getattr(error, "strerror", None) or "it cannot be opened"
             scope.notes.add(said.place, "unreadable-file", f"cannot read '{path}': {why}", "correct the path")
         except Problems as problems:
             self.found.extend(problems.found)

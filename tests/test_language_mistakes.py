@@ -752,6 +752,16 @@ def test_writes_are_needed_after_what_a_row_keeps() -> None:
     assert [one.split(" error:")[0] for one in found] == ["t.dseq:18:1:"]
 
 
+def test_writes_are_needed_where_a_break_input_cancels_held_writes() -> None:
+    """A is written off but still follows the carrier; cancelled, its write is to be made again, with that of B."""
+    rows, moves = "a off off\nb k off\nc off on", "start a\na -> b when x\nb -> a when y\nc -> a when z"
+    more = "carriers\n  k 10 kHz duty 50 % {}\ntrips\n  t from a -> c at once\n    set B on\n    set B off\n"
+    assert mistakes_of(row_drive("A B", rows, moves, "", more.format(""))) == []
+    (found,) = mistakes_of(row_drive("A B", rows, moves, "", more.format("updates at rise")))
+    assert "'t' cancels held writes, so that more may change in one step, but no line 'writes' says how" in found
+    assert found.endswith("add a line 'writes', such as 'writes together' [missing-writes]")
+
+
 def test_writes_are_needed_in_the_wait_of_a_cut_move() -> None:
     moves = "start a\na -> b when x\nset A on\nwait 1 us\nset A off\nset B on\ntrips\nt from any -> a"
     assert mistakes_of(row_drive("A B", "a off off\nb off on", moves, "")) == []

@@ -36,7 +36,7 @@ def check(
     """
     prover = Prover(drive, kept is not None)
     verdicts: list[Verdict] = []
-    findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
+    findings: list[Finding] = [*graph_findings(drive), *row_meanings(drive), *_without_path(drive)]
     for hazard, rule in _asked(drive):
         verdict = _judged(prover, hazard, observer, kept, rule)
         verdicts.append(verdict)
@@ -130,7 +130,7 @@ def _without_path(drive: Drive) -> Iterator[Finding]:
             yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
 
 
-def _row_meanings(drive: Drive) -> Iterator[Finding]:
+def row_meanings(drive: Drive) -> Iterator[Finding]:
     """Rows that do not do what their `means` says, with what they do instead."""
     saying = [mode for mode in drive.modes.values() if mode.means]
     if not saying:

@@ -82,6 +82,8 @@ def _run(arguments: list[str]) -> int:
             return _start(asked.kind)
         if asked.command == "compare":
             return _compare(asked)
+        if asked.command == "size":
+            return _size(asked)
         limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
@@ -342,6 +344,27 @@ def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None)
         complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
         return FAULT
     return _worse(code, deliver(text, out))
+
+
+def _size(asked: argparse.Namespace) -> int:
+    """Tell the range of a quantity; the exit code."""
+    form = one_of("--as", asked.form, ("screen", "lines", "json"))
+    colour = one_of("--color", asked.color, ("auto", "always", "never"))
+    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    from seqcheck.commands.size import Asked, WrongCall, run
+    from seqcheck.confirming import Fault
+
+    painted = wants_colour(colour, sys.stdout) and not asked.out
+    try:
+        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)
+    except Problems as problems:
+        return _mistaken(problems)
+    except WrongCall as why:
+        wrong(str(why))
+    except Fault as fault:
+        complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    return _worse(code, deliver(text, asked.out))
 
 
 def _tidy(paths: list[str], only_say: bool) -> int:

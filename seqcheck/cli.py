@@ -356,7 +356,7 @@ def _size(asked: argparse.Namespace) -> int:
 
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
-        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)
+        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), (text_of, used_text), observer)
     except Problems as problems:
         return _mistaken(problems)
     except WrongCall as why:

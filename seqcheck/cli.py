@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 from seqcheck.arguments import FORMS, Limits, check_named, complain, count, one_of, one_or_other, parser, seconds, wrong
 from seqcheck.commands import draw
 from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
-from seqcheck.drive import Drive, Library, NeverRule
+from seqcheck.drive import Drive, Library
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems
@@ -213,7 +213,7 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}{_not_about(drive)}")
+    print(f"{printable(file)}: {_borne_out(found)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
@@ -225,14 +225,6 @@ def _borne_out(found: "Audited") -> str:
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
-
-
-def _not_about(drive: Drive) -> str:
-    """What evidence says nothing of: rules about margins and lengths, which only a new proof can bear out."""
-    lines = [str(rule.place.line) for rule in drive.rules if not isinstance(rule, NeverRule)]
-    if not lines:
-        return ""
-    return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
 
 
 def _rows(file: str, colour: str, out: str | None) -> int:

@@ -62,7 +62,18 @@ class Clearing:
     limit: int
 
 
-Question = Lasting | Following | Clearing
+@dataclass(frozen=True, slots=True)
+class Nearing:
+    """That all other literals can be possible less than `limit` ps after the one at place `after` could last.
+
+    A rule about margins asks so for evidence, of a short that is safe; the prover measures margins in another way.
+    """
+
+    after: int
+    limit: int
+
+
+Question = Lasting | Following | Clearing | Nearing
 """What a rule of the file forbids, where it is about lengths of time."""
 
 

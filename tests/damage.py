@@ -77,14 +77,17 @@ def entry_dropped(rng: Random, _: Data, claim: Data) -> str:
     return "an entry dropped"
 
 
-def _points(claim: Data) -> list[list[Any]]:
-    points: list[list[Any]] = claim.get("potentials", {}).get("points", [])
+def _points(data: Data, claim: Data) -> list[list[Any]]:
+    """The points of the potentials that a claim rests on."""
+    if "potentials" not in claim:
+        return []
+    points: list[list[Any]] = data["potentials"][claim["potentials"]]["points"]
     return points
 
 
-def potential_raised(rng: Random, _: Data, claim: Data) -> str:
+def potential_raised(rng: Random, data: Data, claim: Data) -> str:
     """A least time made longer by 1 ps."""
-    places = [(times, cell) for point in _points(claim) for times in point[3:] for cell in times]
+    places = [(times, cell) for point in _points(data, claim) for times in point[3:] for cell in times]
     if not places:
         return ""
     times, cell = rng.choice(places)
@@ -92,9 +95,9 @@ def potential_raised(rng: Random, _: Data, claim: Data) -> str:
     return "a potential raised"
 
 
-def potential_dropped(rng: Random, _: Data, claim: Data) -> str:
+def potential_dropped(rng: Random, data: Data, claim: Data) -> str:
     """A least time left out, which says that the command never went away so."""
-    places = [(times, cell) for point in _points(claim) for times in point[3:] for cell in times]
+    places = [(times, cell) for point in _points(data, claim) for times in point[3:] for cell in times]
     if not places:
         return ""
     times, cell = rng.choice(places)
@@ -102,18 +105,18 @@ def potential_dropped(rng: Random, _: Data, claim: Data) -> str:
     return "a potential dropped"
 
 
-def point_dropped(rng: Random, _: Data, claim: Data) -> str:
+def point_dropped(rng: Random, data: Data, claim: Data) -> str:
     """A point left out."""
-    points = _points(claim)
+    points = _points(data, claim)
     if not points:
         return ""
     del points[rng.randrange(len(points))]
     return "a point dropped"
 
 
-def command_changed(rng: Random, _: Data, claim: Data) -> str:
+def command_changed(rng: Random, data: Data, claim: Data) -> str:
     """A command of a point changed to another."""
-    points = _points(claim)
+    points = _points(data, claim)
     if not points:
         return ""
     point, place = rng.choice(points), rng.choice((1, 2))
@@ -125,7 +128,7 @@ def stand_changed(rng: Random, data: Data, claim: Data) -> str:
     """A cell of a stand changed to another."""
     if "potentials" not in claim:
         return ""
-    stand = rng.choice(data["stands"][claim["potentials"]["stands"]])
+    stand = rng.choice(data["stands"][data["potentials"][claim["potentials"]]["stands"]])
     row = stand[rng.choice(("written", "effective"))]
     place = rng.randrange(len(row))
     row[place] = rng.choice([one for one in ("off", "on", "free") if one != row[place]])

@@ -28,7 +28,7 @@ def require_too_short(drive: Drive, trace: Trace, commands: dict[str, Timeline[C
     """Refuse a claim that is not of something that lasts too short a time and ends with the trace."""
     asks = trace.hazard.asks
     short = asks is not None and trace.end - trace.overlap_from < asks.limit
-    if asks is None or isinstance(asks, Clearing) or not short or trace.overlap_to != trace.end:
+    if not isinstance(asks, Lasting | Following) or not short or trace.overlap_to != trace.end:
         raise NotPermitted("The claim is not of what is too short and ends with the run.")
     if isinstance(asks, Lasting):
         (literal,) = trace.hazard.literals

@@ -35,6 +35,7 @@ def _forbidden(hazard: Hazard) -> str:
         return f"{asks.entered} entered less than {shown(asks.limit)} after {asks.left} is left"
     if isinstance(asks, Clearing):
         return f"{hazard.literals[0]} able to conduct more than {shown(asks.limit)} after {asks.trip} arrives"
+    assert isinstance(asks, Lasting)
     return f"{_commanded(hazard)} for {'more' if asks.longer else 'less'} than {shown(asks.limit)}"
 
 

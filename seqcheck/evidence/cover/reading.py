@@ -6,8 +6,10 @@ from seqcheck.evidence.cover.apart import Said
 from seqcheck.evidence.cover.check import Bounds, Entry
 from seqcheck.evidence.cover.scope import Scope
 from seqcheck.evidence.cover.stand import Group, Stand
+from seqcheck.evidence.cover.watch import GAP, SINCE
 from seqcheck.evidence.cover.wires import Point
 from seqcheck.evidence.cover.writes import Cells, Held
+from seqcheck.hazards import Nearing
 
 
 def entries(cover: Fields, scope: Scope) -> list[Entry]:
@@ -35,7 +37,7 @@ def _names(scope: Scope) -> set[str]:
         "out": len(scope.delays),
         "held": len(scope.drive.columns),
     }
-    return {"x", "y", *(f"{word} {place}" for word, count in counted.items() for place in range(count))}
+    return {"x", "y", SINCE, GAP, *(f"{word} {place}" for word, count in counted.items() for place in range(count))}
 
 
 def _zone(entry: Fields, value: object, clocks: int) -> Bounds:
@@ -57,7 +59,8 @@ def _point(state: Fields, scope: Scope) -> Point:
         state.texts("guards"),
         state.texts("literals"),
     )
-    wanted = (len(scope.carriers), len(scope.switches), len(scope.guards), len(scope.delays))
+    watched = len(scope.delays) + isinstance(scope.hazard.asks, Nearing)
+    wanted = (len(scope.carriers), len(scope.switches), len(scope.guards), watched)
     if tuple(map(len, point[1:])) != wanted:
         raise state.wrong("carriers, pins, guards or literals")
     return point

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 
 from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
 from seqcheck.evidence.possible import delays
-from seqcheck.hazards import Delays, Hazard
+from seqcheck.hazards import Clearing, Delays, Following, Hazard, Lasting
 from seqcheck.quantities import Interval
 
 
@@ -43,7 +43,13 @@ class Scope:
 
     def firmware(self) -> tuple[object, ...]:
         """What the firmware of the scope depends on, beside the drive: scopes that agree in it can share one."""
-        return self.in_time, self.carriers if self.waiting else (), self.waiting, self.held if self.waiting else ()
+        held = (self.carriers, self.waiting, self.held) if self.waiting else ()
+        return self.in_time, self.watched, held
+
+    @property
+    def watched(self) -> str | None:
+        """The trip of which it is asked how long ago it arrived."""
+        return self.hazard.asks.trip if isinstance(self.hazard.asks, Clearing) else None
 
 
 def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
@@ -62,18 +68,29 @@ def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
         carriers |= {name for name, carrier in drive.carriers.items() if carrier.update is not Update.AT_ONCE}
     waiting = frozenset(name for name in carriers if drive.carriers[name].update is not Update.AT_ONCE)
     everyone = cancelling or any(drive.carriers[name].update is Update.WITHIN_PERIOD for name in waiting)
-    found = delays(drive, hazard)
     return Scope(
         drive,
         hazard,
         in_time,
-        tuple(found[literal] for literal in hazard.literals),
+        _delays(drive, hazard),
         switches,
         guards,
         tuple(name for name in drive.carriers if name in carriers),
         waiting,
         frozenset(drive.columns) if everyone else frozenset(switches),
     )
+
+
+def _delays(drive: Drive, hazard: Hazard) -> tuple[Delays, ...]:
+    """Of each literal; and of what is watched the age at which it is told no more, as `in`: see `watch`."""
+    asks = hazard.asks
+    if isinstance(asks, Lasting):
+        return (Delays(asks.limit if asks.longer else asks.limit - 1, 0),)
+    if isinstance(asks, Following):
+        return (Delays(asks.limit - 1, 0),)
+    found = delays(drive, hazard)
+    own = tuple(found[literal] for literal in hazard.literals)
+    return (*own, Delays(asks.limit, 0)) if isinstance(asks, Clearing) else own
 
 
 def _followed(drive: Drive, switches: tuple[str, ...]) -> set[str]:

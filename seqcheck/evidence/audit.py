@@ -11,7 +11,7 @@ from seqcheck.evidence.cover.openings import first_unclaimed, opens
 from seqcheck.evidence.cover.questions import first_unclaimed as unasked
 from seqcheck.evidence.cover.questions import is_of_a_rule, margins
 from seqcheck.evidence.cover.reading import entries, points, stand
-from seqcheck.evidence.cover.scope import Scope, scope
+from seqcheck.evidence.cover.scope import Scope, followed, scope
 from seqcheck.evidence.cover.shorts import TooLarge, first_uncovered, shorts
 from seqcheck.evidence.cover.stand import Firmware, Stand
 from seqcheck.evidence.digest import digest
@@ -118,6 +118,7 @@ class _Auditor:
     def __init__(self, drive: Drive, evidence: Evidence) -> None:
         self._drive = drive
         self._evidence = evidence
+        self._used = followed(drive)
         self._lists: dict[int, list[Stand]] = {}
         self._firmwares: dict[tuple[object, ...], Firmware] = {}
         self._grounds: dict[tuple[int, Firmware], Ground] = {}
@@ -131,7 +132,7 @@ class _Auditor:
                 self._require_run(claim.hazard, proof)
             elif isinstance(proof, Cover):
                 late = proof.data.flag("however late")
-                looking = scope(self._drive, claim.hazard, in_time=not late)
+                looking = scope(self._drive, claim.hazard, not late, self._used)
                 check(Behaviour(looking, self._firmware(looking)), entries(proof.data, looking))
                 return late
             elif isinstance(proof, Potentials):
@@ -166,7 +167,7 @@ class _Auditor:
     def _apart(self, hazard: Hazard, number: int) -> dict[int, float]:
         """What the potentials of that number show of a hazard: the margins after two of its literals, by place."""
         data, stands = self._evidence.potentials[number]
-        looking = scope(self._drive, hazard, in_time=False)
+        looking = scope(self._drive, hazard, False, self._used)
         firmware = self._firmware(looking)
         if stands not in self._lists:
             self._lists[stands] = [stand(one) for one in self._evidence.stands[stands]]

@@ -8,6 +8,7 @@ commanded; UNKNOWN where x may have begun before. Then x itself adds to it. Pote
 effect when the command went away, since an output's complement comes no sooner than the dead time after it.
 """
 
+from functools import cache
 from typing import NamedTuple
 
 from seqcheck.drive import Command
@@ -25,9 +26,10 @@ Point = tuple[int, Pair]
 """The number of a stand, and the commands of both switches in it."""
 Times = dict[str, int]
 """Potentials by the cell that the command went away from."""
-Said = dict[Point, tuple[Times, Times]]
-"""What is claimed of each point, for each of both switches. A cell that is not named: the command went away from none
-such."""
+Both = tuple[Times, Times]
+"""What is claimed of each of both switches. A cell that is not named: the command went away from none such."""
+Said = dict[int, dict[Pair, Both]]
+"""What is claimed of each point, by its stand and its commands."""
 
 
 class Arcs(NamedTuple):
@@ -117,14 +119,14 @@ class _Apart:
         self._cells: dict[int, Pair] = {number: (row[first], row[second]) for number, row in ground.rows.items()}
         self._least: list[float] = [NO_BOUND, NO_BOUND]
         self._waiting: list[Point] = []
-        self._seen: set[Point] = set()
+        self._reached: Said = {number: {} for number in ground.rows}
 
     def required(self) -> tuple[float, float]:
         """Go through all points that can be reached, then hold the least times against what must pass."""
         if not all(self._on):
             raise NotCovered("Only switches that are wanted on are held apart by least times.")
         for pair, _ in self._after(self._rests, self._cells[self._ground.start]):
-            self._reach((self._ground.start, pair))
+            self._reach(self._ground.start, pair)
         while self._waiting:
             self._leave(self._waiting.pop())
         one, other = self._delays
@@ -139,16 +141,18 @@ class _Apart:
             raise NotCovered("One switch may outlast a whole pulse of the other.")
         return self._least[0] - needs[0], self._least[1] - needs[1]
 
-    def _reach(self, point: Point) -> tuple[Times, Times]:
+    def _reach(self, number: int, pair: Pair) -> Both:
         """What is said of a point that can be reached."""
-        if point not in self._seen:
-            self._seen.add(point)
-            self._waiting.append(point)
-            if _commanded(point[1][0]) and _commanded(point[1][1]):
+        claimed = self._reached[number].get(pair)
+        if claimed is None:
+            if _commanded(pair[0]) and _commanded(pair[1]):
                 raise NotCovered(f"{' and '.join(self._names)} may be commanded on at once.")
-            if point not in self._said:
+            claimed = self._said.get(number, {}).get(pair)
+            if claimed is None:
                 raise NotCovered("A point that can be reached is not spoken of.")
-        return self._said[point]
+            self._reached[number][pair] = claimed
+            self._waiting.append((number, pair))
+        return claimed
 
     def _leave(self, point: Point) -> None:
         """Everything that can come next at a point."""
@@ -158,9 +162,10 @@ class _Apart:
             for target in targets:
                 cells = self._cells[target]
                 for after, off in self._after(pair, cells):
-                    claimed = self._reach((target, after))
+                    claimed = self._reach(target, after)
                     for leaving, comes in off:
-                        self._hold(leaving, since[leaving], claimed[leaving], cells[1 - leaving] if comes else None)
+                        if since[leaving]:
+                            self._hold(leaving, since[leaving], claimed[leaving], cells[1 - leaving] if comes else None)
 
     def _hold(self, leaving: int, since: Times, claimed: Times, coming: str | None) -> None:
         """What is said of one switch must not be more than what is so; `coming` is the other's cell if that comes."""
@@ -175,7 +180,7 @@ class _Apart:
         if _commanded(point[1][leaving]):
             cell = self._cells[point[0]][leaving]
             return {cell if self._dead.get(cell) else "": UNKNOWN if least is None else 0}
-        times = self._said[point][leaving]
+        times = self._reached[point[0]][point[1]][leaving]
         if least is None:
             return times
         return {cell: 0 if time < 0 else time + least for cell, time in times.items()}
@@ -215,6 +220,7 @@ def _commanded(command: str) -> bool:
     return command != "off"
 
 
+@cache
 def _off(before: Pair, after: Pair) -> tuple[tuple[int, bool], ...]:
     return tuple(
         (place, _commanded(after[1 - place]) and not _commanded(before[1 - place]))

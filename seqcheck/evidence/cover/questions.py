@@ -36,9 +36,10 @@ def of_hazard(hazard: Hazard) -> Asked:
 
 def is_of_a_rule(drive: Drive, hazard: Hazard) -> bool:
     """Whether a rule of the drive forbids just this, always."""
-    if hazard.joins or hazard.needs or hazard.currents or len(set(hazard.literals)) < len(hazard.literals):
+    if not drive.rules or hazard.joins or hazard.needs or hazard.currents:
         return False
-    return any(of_hazard(hazard) == one for rule in drive.rules for one in asked(rule))
+    once = len(set(hazard.literals)) == len(hazard.literals)
+    return once and any(of_hazard(hazard) == one for rule in drive.rules for one in asked(rule))
 
 
 def first_unclaimed(drive: Drive, hazards: Iterable[Hazard]) -> Rule | None:

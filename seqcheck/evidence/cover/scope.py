@@ -52,8 +52,27 @@ class Scope:
         return self.hazard.asks.trip if isinstance(self.hazard.asks, Clearing) else None
 
 
-def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
-    """What is looked at for `hazard`."""
+Followed = dict[str, set[str]]
+"""By switch: the carriers that some row or step puts it on."""
+
+
+def followed(drive: Drive) -> Followed:
+    """What the switches of a drive follow."""
+    found: Followed = {switch: set() for switch in drive.columns}
+    for mode in drive.modes.values():
+        for switch, cell in zip(drive.columns, mode.cells, strict=True):
+            if isinstance(cell, Follow):
+                found[switch].add(cell.carrier)
+    lines = (*drive.moves, *drive.trips)
+    for step in (step for line in lines for step in (*line.steps,)):
+        for switch, one in step.writes if isinstance(step, SetStep) else ():
+            if isinstance(one, Follow):
+                found[switch].add(one.carrier)
+    return found
+
+
+def scope(drive: Drive, hazard: Hazard, in_time: bool, used: Followed) -> Scope:
+    """What is looked at for `hazard`; `used` is what the switches of the drive follow."""
     own = [literal.switch for literal in hazard.literals]
     guards = tuple(
         Guard(guarded, partner, lock.dead)
@@ -62,7 +81,7 @@ def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
         if guarded in own
     )
     switches = tuple(dict.fromkeys([*own, *(guard.partner for guard in guards)]))
-    carriers = _followed(drive, switches)
+    carriers = _looked_at(drive, switches, used)
     cancelling = any(trip.at_once and trip.target != RESET for trip in drive.trips)
     if cancelling:
         carriers |= {name for name, carrier in drive.carriers.items() if carrier.update is not Update.AT_ONCE}
@@ -93,27 +112,13 @@ def _delays(drive: Drive, hazard: Hazard) -> tuple[Delays, ...]:
     return (*own, Delays(asks.limit, 0)) if isinstance(asks, Clearing) else own
 
 
-def _followed(drive: Drive, switches: tuple[str, ...]) -> set[str]:
+def _looked_at(drive: Drive, switches: tuple[str, ...], used: Followed) -> set[str]:
     """The carriers that the switches may follow; for one that acts within a period, also all that the switches on it
     may follow, since the oldest write held for it sets the time for all."""
-    used = {switch: _cells_of(drive, switch) for switch in drive.columns}
-    found: set[str] = set()
-    for switch in switches:
-        found |= used[switch]
+    found: set[str] = set().union(*(used[switch] for switch in switches))
     grown = True
     while grown:
         timed = {name for name in found if drive.carriers[name].update is Update.WITHIN_PERIOD}
         wider = found.union(*(names for names in used.values() if names & timed))
         grown, found = wider != found, wider
     return found
-
-
-def _cells_of(drive: Drive, switch: str) -> set[str]:
-    """The carriers that some row or step puts the switch on."""
-    place = drive.columns.index(switch)
-    cells = [mode.cells[place] for mode in drive.modes.values()]
-    runs = [line.steps for line in drive.moves] + [line.steps for line in drive.trips]
-    for steps in runs:
-        for step in steps:
-            cells += [cell for name, cell in step.writes if name == switch] if isinstance(step, SetStep) else []
-    return {cell.carrier for cell in cells if isinstance(cell, Follow)}

@@ -66,8 +66,10 @@ class Edge(NamedTuple):
 
 def placed(stand: Stand) -> Stand:
     """A stand after an event, its held groups counted anew."""
+    if not stand.cells.held:
+        return stand
     held = tuple(one._replace(place=place) for place, one in enumerate(stand.cells.held))
-    return stand._replace(cells=stand.cells._replace(held=held)) if held else stand
+    return stand._replace(cells=stand.cells._replace(held=held))
 
 
 class Firmware:
@@ -95,6 +97,7 @@ class Firmware:
                 self._from.setdefault(mode, []).append(number)
         self._items = tuple(map(self._items_of, self._lines))
         self._known: dict[Stand, tuple[Edge, ...]] = {}
+        self._own: dict[Stand, list[Edge]] = {}
         self._grouped: dict[tuple[Group, tuple[str, ...]], tuple[Group, ...]] = {}
         self._cells: dict[str, Cell] = {}
         self._begins: dict[tuple[str, int, Cells], tuple[Stand, ...]] = {}
@@ -169,7 +172,7 @@ class Firmware:
         return known
 
     def _edges(self, stand: Stand) -> Iterator[Edge]:
-        own = [*self._onward(stand), *self._broken(stand)]
+        own = self._own_of(stand if stand.hand == NOBODY else stand._replace(hand=NOBODY))
         takes = self._takes(stand)
         if stand.hand == NOBODY:
             yield from own
@@ -189,6 +192,13 @@ class Firmware:
             yield from self._taken(stand, stand.hand, self._patience(stand.hand))
         yield from self._carried(stand, stand.hand, own, y_anew=not takes)
 
+    def _own_of(self, stand: Stand) -> list[Edge]:
+        """What can come next without a firmware trip; stands with one in hand differ in nothing else."""
+        known = self._own.get(stand)
+        if known is None:
+            known = self._own[stand] = [*self._onward(stand), *self._broken(stand)]
+        return known
+
     def _carried(self, stand: Stand, number: int, own: list[Edge], *, y_anew: bool) -> Iterator[Edge]:
         """Events that leave a trip in hand; where it may still arrive afterwards, it does so only then."""
         goal = self._drive.trips[number].target
@@ -198,7 +208,7 @@ class Firmware:
                 if number == self._watched:
                     yield edge
             elif number == self._watched or not self._hears(number, there):
-                yield edge._replace(y_anew=y_anew, target=there._replace(hand=number))
+                yield Edge(edge.lo, edge.hi, edge.y_hi, y_anew, Stand(*there[:6], number, there.cells))
 
     def _firmware_trips(self) -> Iterator[int]:
         return (number for number, trip in enumerate(self._drive.trips) if not trip.at_once)

@@ -7,7 +7,7 @@ a period after the oldest write held for it, whosever that is.
 
 from dataclasses import dataclass
 
-from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
+from seqcheck.drive import RESET, Drive, Follow, Move, SetStep, Trip, Update
 from seqcheck.evidence.possible import delays
 from seqcheck.hazards import Clearing, Delays, Following, Hazard, Lasting
 from seqcheck.quantities import Interval
@@ -63,8 +63,8 @@ def followed(drive: Drive) -> Followed:
         for switch, cell in zip(drive.columns, mode.cells, strict=True):
             if isinstance(cell, Follow):
                 found[switch].add(cell.carrier)
-    lines = (*drive.moves, *drive.trips)
-    for step in (step for line in lines for step in (*line.steps,)):
+    lines: tuple[Move | Trip, ...] = (*drive.moves, *drive.trips)
+    for step in (step for line in lines for step in line.steps):
         for switch, one in step.writes if isinstance(step, SetStep) else ():
             if isinstance(one, Follow):
                 found[switch].add(one.carrier)

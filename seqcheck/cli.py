@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 from seqcheck.arguments import FORMS, Limits, check_named, complain, count, one_of, one_or_other, parser, seconds, wrong
 from seqcheck.commands import draw
 from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
-from seqcheck.drive import Drive, Library
+from seqcheck.drive import Drive, Library, NeverRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems
@@ -213,15 +213,16 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}")
+    print(f"{printable(file)}: {_borne_out(found, drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
 
 
-def _borne_out(found: "Audited") -> str:
+def _borne_out(found: "Audited", drive: Drive) -> str:
+    asked = "hazards" if all(isinstance(rule, NeverRule) for rule in drive.rules) else "hazards, lengths and margins"
     late = f" ({found.however_late} of them however late the firmware is)" if found.however_late else ""
-    parts = [f"{found.safe} {'hazard' if found.safe == 1 else 'hazards'} safe{late}"] if found.safe else []
+    parts = [f"{found.safe} {'hazard' if found.safe == 1 else asked} safe{late}"] if found.safe else []
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"

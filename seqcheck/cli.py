@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING
 from seqcheck.arguments import FORMS, Limits, check_named, complain, count, one_of, one_or_other, parser, seconds, wrong
 from seqcheck.commands import draw
 from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
-from seqcheck.drive import Drive, Library, NeverRule
+from seqcheck.drive import Drive, Library, NeverRule, ToleratesRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problem, Problems
@@ -69,13 +69,15 @@ def _run(arguments: list[str]) -> int:
             return _start(asked.kind)
         if asked.command == "compare":
             return _compare(asked)
+        if asked.command == "size":
+            return _size(asked)
         limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
-            return _margins(asked.file, limits, colour, asked.out)
+            return _margins(asked.file, limits, asked.form, colour, asked.out)
         form = one_of("--as", asked.form, FORMS)
-        if asked.with_fault and form not in ("screen", "lines"):
-            wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
+        if asked.with_fault and form not in ("screen", "lines", "json"):
+            wrong(f"--with-fault goes with '--as screen', 'lines' or 'json'; '{form}' has no place for what it tells")
         only = frozenset(check_named(name) for name in asked.only)
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
         files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
@@ -213,7 +215,7 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found, drive)}")
+    print(f"{printable(file)}: {_borne_out(found, drive)}{_not_about(drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
@@ -226,6 +228,14 @@ def _borne_out(found: "Audited", drive: Drive) -> str:
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
+
+
+def _not_about(drive: Drive) -> str:
+    """What evidence says nothing of: rules about single faults, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules if isinstance(rule, ToleratesRule)]
+    if not lines:
+        return ""
+    return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
 
 
 def _rows(file: str, colour: str, out: str | None) -> int:
@@ -311,25 +321,44 @@ def _compare(asked: argparse.Namespace) -> int:
     return _worse(code, deliver(text, asked.out))
 
 
-def _margins(file: str, limits: Limits, colour: str, out: str | None) -> int:
+def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None) -> int:
     """Tell the margins of a file; the exit code."""
+    from seqcheck.commands.margins import FORMS as FORMS_OF_MARGINS
+    from seqcheck.commands.margins import run
     from seqcheck.confirming import Fault
     from seqcheck.language import read
-    from seqcheck.margins import budget
-    from seqcheck.reports import budget as wording
-    from seqcheck.reports import screen
 
+    one_of("--as", form, FORMS_OF_MARGINS)
+    painted = wants_colour(colour, sys.stdout) and not out
     try:
-        found = budget(read(_text(file), file, _text), file, _observer(limits))
+        text, code = run(read(_text(file), file, _text), file, _observer(limits), form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
         complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
         return FAULT
-    report = wording.report(found)
-    painted = wants_colour(colour, sys.stdout) and not out
-    code = deliver(screen.coloured(report) if painted else screen.plain(report), out)
-    return _worse(code, FOUND if found.unsafe else UNDECIDED if found.undecided else PROVEN)
+    return _worse(code, deliver(text, out))
+
+
+def _size(asked: argparse.Namespace) -> int:
+    """Tell the range of a quantity; the exit code."""
+    form = one_of("--as", asked.form, ("screen", "lines", "json"))
+    colour = one_of("--color", asked.color, ("auto", "always", "never"))
+    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    from seqcheck.commands.size import Asked, WrongCall, run
+    from seqcheck.confirming import Fault
+
+    painted = wants_colour(colour, sys.stdout) and not asked.out
+    try:
+        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)
+    except Problems as problems:
+        return _mistaken(problems)
+    except WrongCall as why:
+        wrong(str(why))
+    except Fault as fault:
+        complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    return _worse(code, deliver(text, asked.out))
 
 
 def _tidy(paths: list[str], only_say: bool) -> int:

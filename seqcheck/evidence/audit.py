@@ -37,7 +37,7 @@ class Audited:
 def audit(drive: Drive, evidence: Evidence) -> Audited:
     """Check all claims, and that they are about all shorts and open windings of the stage and all rules of the file.
 
-    The mode graph and what rows mean are no part of evidence.
+    Single faults, the mode graph and what rows mean are no part of evidence.
 
     Raises NoEvidence where the evidence is of another drive or malformed, NotProven where it does not prove what it
     says.

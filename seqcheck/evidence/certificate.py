@@ -188,6 +188,7 @@ def _asks(asks: Question) -> list[object]:
             return ["clears", asks.trip, asks.limit]
         case Nearing():
             return ["nears", asks.after, asks.limit]
+    raise ValueError(f"evidence is not about {asks}")
 
 
 T = TypeVar("T")

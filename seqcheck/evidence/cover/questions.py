@@ -11,7 +11,7 @@ Asked = tuple[frozenset[Literal], Question | None]
 
 
 def asked(rule: Rule) -> Iterator[Asked]:
-    """What a rule forbids; nothing where nothing can be so short, and of rules about margins."""
+    """What a rule forbids; nothing where nothing can be so short, and of rules about margins and single faults."""
     match rule:
         case NeverRule():
             yield frozenset(Literal(switch, on) for switch, on in rule.literals), None
@@ -49,8 +49,8 @@ def first_unclaimed(drive: Drive, hazards: Iterable[Hazard]) -> Rule | None:
 
 
 def margins(drive: Drive, short: Hazard) -> Iterator[tuple[MarginRule, Hazard]]:
-    """What rules about margins ask of a short that is safe, after each of its literals."""
+    """What rules about margins ask of a short that is safe, after each of its literals; one alone has no margin."""
     for rule in drive.rules:
-        if isinstance(rule, MarginRule) and rule.least > 0:
+        if isinstance(rule, MarginRule) and rule.least > 0 and len(short.literals) > 1:
             for after in range(len(short.literals)):
                 yield rule, replace(short, asks=Nearing(after, rule.least))

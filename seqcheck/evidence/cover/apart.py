@@ -157,7 +157,8 @@ class _Apart:
     def _leave(self, point: Point) -> None:
         """Everything that can come next at a point."""
         number, pair = point
-        for least, targets in (Arcs(None, (number,)), *self._ground.arcs[number]):
+        alone = () if pair == self._cells[number] else (Arcs(None, (number,)),)  # constant cells change by writes alone
+        for least, targets in (*alone, *self._ground.arcs[number]):
             since = self._since(point, least, 0), self._since(point, least, 1)
             for target in targets:
                 cells = self._cells[target]

@@ -26,7 +26,7 @@ from seqcheck.arguments import (
 )
 from seqcheck.commands import draw
 from seqcheck.delivering import Answering, answer_text, deliver, let_go, ready_streams, spare, wants_colour
-from seqcheck.drive import Drive, Library, NeverRule
+from seqcheck.drive import Drive, Library, NeverRule, ToleratesRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problems
@@ -229,23 +229,24 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}{_not_about(drive)}")
+    print(f"{printable(file)}: {_borne_out(found, drive)}{_not_about(drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
 
 
-def _borne_out(found: "Audited") -> str:
+def _borne_out(found: "Audited", drive: Drive) -> str:
+    asked = "hazards" if all(isinstance(rule, NeverRule) for rule in drive.rules) else "hazards, lengths and margins"
     late = f" ({found.however_late} of them however late the firmware is)" if found.however_late else ""
-    parts = [f"{found.safe} {'hazard' if found.safe == 1 else 'hazards'} safe{late}"] if found.safe else []
+    parts = [f"{found.safe} {'hazard' if found.safe == 1 else asked} safe{late}"] if found.safe else []
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
 
 
 def _not_about(drive: Drive) -> str:
-    """What evidence says nothing of: rules about margins and lengths, which only a new proof can bear out."""
-    lines = [str(rule.place.line) for rule in drive.rules if not isinstance(rule, NeverRule)]
+    """What evidence says nothing of: rules about single faults, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules if isinstance(rule, ToleratesRule)]
     if not lines:
         return ""
     return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"

@@ -5,14 +5,17 @@ import errno
 import os
 import stat
 import sys
+from collections.abc import Iterable
 from pathlib import Path
 from typing import TYPE_CHECKING, TextIO
 
 from seqcheck.arguments import complain, wrong
 from seqcheck.drive import Library
 from seqcheck.exits import PROVEN, WRONG
+from seqcheck.opening import SUFFIX, reason_of
 from seqcheck.records import dataclass
 from seqcheck.source import printable
+from seqcheck.streams import let_go
 from seqcheck.verdict import Answer, Outcome
 
 if TYPE_CHECKING:
@@ -33,6 +36,19 @@ def wants_colour(asked: str, stream: TextIO) -> bool:
     return stream.isatty() and os.environ.get("TERM") != "dumb"
 
 
+def spare(out: str | None, inputs: Iterable[str]) -> None:
+    """Refuse an answer that would take the place of a file that the call reads, or of any drive-sequence file."""
+    if out is not None and (out.endswith(SUFFIX) or any(_one_file(out, one) for one in inputs)):
+        wrong(f"--out: '{printable(out)}' is a drive-sequence file; the answer must go elsewhere")
+
+
+def _one_file(one: str, other: str) -> bool:
+    try:
+        return os.path.isfile(one) and os.path.samefile(one, other)
+    except (OSError, ValueError):
+        return False
+
+
 def deliver(text: str, out: str | None) -> int:
     try:
         if out is None:
@@ -43,8 +59,10 @@ def deliver(text: str, out: str | None) -> int:
     except BrokenPipeError:
         raise
     except (OSError, ValueError) as refusal:
+        if out is None:
+            let_go()
         name = "the answer" if out is None else f"'{printable(out)}'"
-        complain(f"error: cannot write {name}: {getattr(refusal, 'strerror', None) or refusal}")
+        complain(f"error: cannot write {name}: {reason_of(refusal)}")
         return WRONG
     return PROVEN
 

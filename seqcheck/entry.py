@@ -4,8 +4,9 @@ import gc
 import os
 import sys
 
-from seqcheck.arguments import escaping, parser
-from seqcheck.exits import FOUND
+from seqcheck.arguments import complain, parser
+from seqcheck.exits import FOUND, WRONG
+from seqcheck.streams import let_go, ready_streams
 
 _AT_ONCE = frozenset({"-h", "--help", "--version"})
 
@@ -14,7 +15,7 @@ def main() -> int:
     """Run the command line of this process; the exit code."""
     gc.disable()  # a short-lived process: collecting would cost more than it frees, while loading too
     if _AT_ONCE.intersection(sys.argv[1:]):
-        escaping()
+        ready_streams()
         try:
             parser().parse_args()
         except SystemExit as stop:
@@ -30,4 +31,8 @@ def _flushed(code: int) -> int:
     except BrokenPipeError:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return FOUND
+    except OSError as refusal:
+        complain(f"error: {refusal.strerror or refusal}")
+        let_go()
+        return WRONG
     return code

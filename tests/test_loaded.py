@@ -42,7 +42,7 @@ def test_help_and_version_load_the_arguments_only(cache: dict[str, str], argumen
     assert code == 0
     assert not modules & HEAVY
     own = {name for name in modules if name.startswith("seqcheck.")}
-    assert own <= {f"seqcheck.{name}" for name in ("arguments", "entry", "exits", "records", "commands")}
+    assert own <= {f"seqcheck.{name}" for name in ("arguments", "entry", "exits", "records", "streams")}
 
 
 def test_a_mistake_loads_no_prover(cache: dict[str, str], tmp_path: Path) -> None:

@@ -16,6 +16,12 @@ _NAMES = {"NAME": "a name", "NUMBER": "a number", "STRING": "a text in quotes", 
 _NUMBER_BEFORE = re.compile(r"[0-9][ \t]*$")
 _WORD = re.compile(r"[^\W\d]\w*|\w+|.")
 _MOST = 10
+_INSTEAD = (
+    (".", "write a number with digits on both sides of the point, such as 0.5"),
+    ("\u2192\u21d2\u27f6\u279c", "write '->'"),
+    ("'\u2018\u2019\u201c\u201d\u201e\u00ab\u00bb", "put a text in straight double quotes"),
+)
+"""Characters that people write for others, and what to write."""
 
 
 def explained(misfit: Misfit, text: str, file: str, line: int, terminals: Mapping[str, str]) -> Problem:
@@ -29,9 +35,15 @@ def explained(misfit: Misfit, text: str, file: str, line: int, terminals: Mappin
     word = found.group() if found else ""
     place = Place(file, line, column, line, column + len(word))
     if misfit.stray and word != '"':
-        place = Place(file, line, column, line, column + 1)
-        return Problem(place, "syntax", f"{_shown(word[:1])} has no meaning here", "take it out")
+        return stray(text, Place(file, line, column, line, column + 1))
     return _told(misfit, text, word, place, terminals)
+
+
+def stray(text: str, place: Place) -> Problem:
+    """The mistake of a character that no word of the language has; `text` is its line."""
+    character = text[place.column - 1 : place.column]
+    way_out = next((way for characters, way in _INSTEAD if character and character in characters), "take it out")
+    return Problem(place, "syntax", f"{_shown(character)} has no meaning here", way_out)
 
 
 def reserved(place: Place, word: str) -> Problem:
@@ -42,6 +54,8 @@ def reserved(place: Place, word: str) -> Problem:
 
 def _told(misfit: Misfit, text: str, word: str, place: Place, terminals: Mapping[str, str]) -> Problem:
     accepted = misfit.accepted
+    if word == '"' and '"' in text[place.column :]:
+        return Problem(place, "syntax", "a text does not fit here", _wanted(misfit, terminals))
     if word == '"':
         return Problem(place, "syntax", "this text has no closing quote", "close it with '\"' on the same line")
     if "NAME" in accepted and word in RESERVED:

@@ -263,7 +263,7 @@ class Projection:
         """
         edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
         measured = hot or key.ended == LATELY or any(not edge.resets_x for edge in edges)
-        if self._cutting is None or key.state.hand >= 0 or measured:
+        if self._cutting is None or measured or self.firmware.hand_is_timed(key.state):
             return edges, deadline
         return self._cutting.cut(edges, deadline)
 

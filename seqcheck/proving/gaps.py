@@ -8,9 +8,10 @@ raised. What is found with carriers' phases forgotten is a lower bound only, but
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.conduction import POSSIBLE
 from seqcheck.proving.keys import GAP, LATELY, Key
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.search import LimitReached, Node, nodes, ticks
 
 Observer = Callable[[int], None]

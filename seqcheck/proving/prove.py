@@ -6,21 +6,23 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
-from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
+from seqcheck.drive import Cell, Command, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Literal, delays
 from seqcheck.proving.certify import Data, cover
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
 from seqcheck.proving.potentials import potentials, stands
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.screen import Map, Places, least_after, screened
-from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
+from seqcheck.proving.search import LimitReached, Longest, Node, first_hazard, first_held, longest_overlap
 from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
 from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
+from seqcheck.proving.wiring import Wiring
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
 
@@ -112,28 +114,44 @@ class Prover:
             here = self._map(self._firmware(looking, punctual=False), count)
             if (apart := screened(looking, here)) is not None:
                 return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
+        looks = self._looks(looking)
+        try:
+            return self._searched(looks, keep, interlocks, count)
+        finally:
+            looks.release()
+
+    def _searched(self, looks: "_Looks", keep: bool, interlocks: bool, count: _Count) -> Proven | Refuted:
+        """What zones say.
+
+        A run that was found with phases forgotten, or with firmware that may be late, is looked for at once where it
+        would count: if it is found there, nothing else needs to be searched.
+        """
+        looking = looks.view
         for punctual in (False, True):
             for manner in _manners(looking):
-                projection = self._searched(looking, punctual, manner, count)
-                if projection is not None:
+                projection = looks.projection(punctual, manner)
+                count.next_search()
+                node = first_hazard(projection.initial(), count)
+                if node is None:
                     kept = cover(projection, not punctual) if keep else None
                     return Proven("zones", count.total, not punctual, kept)
-        if _must_last(hazard):
-            return self._too_short(looking, count)
-        return self._refute(looking, interlocks, count)
+                if _must_last(looking.hazard):
+                    continue
+                found = node if punctual and manner == _manners(looking)[-1] else _along(looks, projection, node, count)
+                if found is not None:
+                    return self._refute(looks, interlocks, found, count)
+        return self._too_short(looks, count)
 
-    def _too_short(self, looking: View, count: _Count) -> Refuted:
+    def _too_short(self, looks: "_Looks", count: _Count) -> Refuted:
         """The run in which what is too short is shortest."""
-        assert looking.hazard.asks is not None, "it asks for a length"
-        limit = looking.hazard.asks.limit
-        firmware = self._firmware(looking, punctual=True)
+        assert looks.view.hazard.asks is not None, "it asks for a length"
+        limit = looks.view.hazard.asks.limit
         count.next_search()
-        projection = Projection(looking, firmware, _manners(looking)[-1])
+        projection = looks.projection(True, _manners(looks.view)[-1])
         try:
             found = shortest(projection, count)
         except LimitReached:  # the search for any such run ended before
-            projection = Projection(looking, firmware, _manners(looking)[-1])
-            found = shortest(projection, lambda _: None, any_will_do=True)
+            found = shortest(projection.anew(), lambda _: None, any_will_do=True)
         assert found is not None, "it was found before"
         return Refuted(short_trace(projection, found.node), None, limit - found.time, count.total, found.least)
 
@@ -149,13 +167,16 @@ class Prover:
             here = self._map(self._firmware(looking, punctual=False), count)
             if screened(looking, here) is not None:
                 return True
-        return any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking))
+        looks = self._looks(looking)
+        try:
+            return any(
+                first_hazard(looks.projection(True, manner).initial(), count) is None for manner in _manners(looking)
+            )
+        finally:
+            looks.release()
 
-    def _searched(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> Projection | None:
-        """The projection with all that its search stored, if no run in it brings the hazard."""
-        count.next_search()
-        projection = Projection(looking, self._firmware(looking, punctual), manner)
-        return projection if first_hazard(projection.initial(), count) is None else None
+    def _looks(self, looking: View) -> "_Looks":
+        return _Looks(looking, self._firmware(looking, punctual=False), self._firmware(looking, punctual=True))
 
     def gap(self, hazard: Hazard, watched: int, observer: Observer, below: int | None = None) -> Gap:
         """The least gap of a safe hazard after the literal at place `watched`: its margin in that direction.
@@ -173,16 +194,19 @@ class Prover:
             return Gap(None, None)
         if below is not None and floor >= below:
             return Gap(floor, None)
-        firmware = self._firmware(looking, punctual=True)
+        looks = self._looks(looking)
 
         def look(manner: Manner) -> Projection:
             count.next_search()
-            return Projection(looking, firmware, manner)
+            return looks.projection(True, manner)
 
-        least = least_gap(look, watched, bool(looking.carriers), Asked(floor, below), count)
-        if least.node is not None:
-            return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
-        return Gap(least.time if least.within or least.limit else None, None, least.limit)
+        try:
+            least = least_gap(look, watched, bool(looking.carriers), Asked(floor, below), count)
+            if least.node is not None:
+                return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
+            return Gap(least.time if least.within or least.limit else None, None, least.limit)
+        finally:
+            looks.release()
 
     def _floor(self, looking: View, watched: int, count: _Count) -> int | None:
         """A lower bound of a gap from least times alone; None where nothing ever follows."""
@@ -207,14 +231,17 @@ class Prover:
         except LimitReached as limit:
             return Spread(frozenset(), frozenset(), str(limit))
         *rough, exact = _manners(looking)
-        firmware = self._firmware(looking, punctual=True)
+        looks = self._looks(looking)
         ceiling = None
-        for manner in rough:
-            ceiling = spread(Projection(looking, firmware, manner).initial(), count, None)
-            if ceiling.limit is not None or not ceiling.places:
-                return Spread(frozenset(), frozenset(), ceiling.limit)
-            count.next_search()
-        return spread(Projection(looking, firmware, exact).initial(), count, ceiling)
+        try:
+            for manner in rough:
+                ceiling = spread(looks.projection(True, manner).initial(), count, None)
+                if ceiling.limit is not None or not ceiling.places:
+                    return Spread(frozenset(), frozenset(), ceiling.limit)
+                count.next_search()
+            return spread(looks.projection(True, exact).initial(), count, ceiling)
+        finally:
+            looks.release()
 
     def _screened(self, looking: View, here: Map, apart: Places) -> Data:
         """The proof of the screen as data; hazards that share a map share the list of its states."""
@@ -222,50 +249,41 @@ class Prover:
             self._stands[here] = stands(here)
         return {**potentials(looking, here, apart), "stands": self._stands[here]}
 
-    def _refute(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+    def _refute(self, looks: "_Looks", interlocks: bool, first: Node, count: _Count) -> Refuted:
+        """The longest overlap of a hazard that happens; `first` is a run that brings it."""
         try:
-            return self._measured(looking, interlocks, count)
+            return self._measured(looks, interlocks, count)
         except LimitReached:
-            return self._first(looking, interlocks)
+            return self._first(looks, interlocks, first)
 
-    def _measured(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+    def _measured(self, looks: "_Looks", interlocks: bool, count: _Count) -> Refuted:
         """The run with the longest overlap, or to a mode that holds the hazard."""
-        firmware = self._firmware(looking, punctual=True)
-        ceiling: int | None = None
-        *rough, exact = (Projection(looking, firmware, manner) for manner in _manners(looking, measure=True))
-        for projection in rough:
-            count.next_search()
-            bound = longest_overlap(projection.initial(), count, None)
-            ceiling = bound.time if bound and bound.greatest else None
-        count.next_search()
-        found = longest_overlap(exact.initial(), count, ceiling)
-        assert found is not None, "a first hazard was found before"
+        exact = looks.projection(True, _manners(looks.view, measure=True)[-1])
+        found = _longest(looks, count)
         longest = trace_of(exact, found.node, found.time is None, interlocks)
         if found.held is not None:
             return Refuted(longest, _mode(found.held), found.time, count.total, found.greatest)
-        if not _may_hold(looking):
+        if not _may_hold(looks.view):
             return Refuted(longest, None, found.time, count.total, found.greatest)
-        trace, mode = self._held(looking, interlocks, count)
+        trace, mode = self._held(looks, interlocks, count)
         return Refuted(trace or longest, mode, found.time, count.total, found.greatest)
 
-    def _first(self, looking: View, interlocks: bool) -> Refuted:
-        """The first run found: a limit was reached before a longer one was. The search is one that ended before."""
-        projection = Projection(looking, self._firmware(looking, punctual=True), _manners(looking)[-1])
-        node = first_hazard(projection.initial(), lambda count: None)
-        assert node is not None, "it was found before"
+    def _first(self, looks: "_Looks", interlocks: bool, node: Node) -> Refuted:
+        """The first run found: a limit was reached before a longer one was."""
+        projection = looks.projection(True, _manners(looks.view)[-1])
         endless = not node.location.bounds
         trace = trace_of(projection, node, endless, interlocks)
         overlap = None if endless else trace.end - trace.overlap_from
         return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
-    def _held(self, looking: View, interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
+    def _held(self, looks: "_Looks", interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
-        count.next_search()
-        manner = _manners(looking)[-1]
-        projection = Projection(looking, self._firmware(looking, punctual=True), manner)
-        node = first_held(projection.initial(), count)
-        if node is None:
-            return None, None
+        for manner in _manners(looks.view):
+            count.next_search()
+            projection = looks.projection(True, manner)
+            node = first_held(projection.initial(), count)
+            if node is None:
+                return None, None
         return trace_of(projection, node, not node.location.bounds, interlocks), _mode(node)
 
     def _firmware(self, looking: View, punctual: bool) -> Firmware:
@@ -285,6 +303,67 @@ class Prover:
         return self._maps[firmware]
 
 
+class _Looks:
+    """The projections of one hazard, each made once: what the drive can do is worked out for all its searches."""
+
+    def __init__(self, looking: View, late: Firmware, in_time: Firmware) -> None:
+        self.view = looking
+        self._wirings = tuple(Wiring(looking, firmware) for firmware in (late, in_time))
+        self._made: dict[tuple[bool, Manner], Projection] = {}
+
+    def projection(self, punctual: bool, manner: Manner) -> Projection:
+        """The drive as it is looked at, with nothing stored; a search of it before this one is over."""
+        made = self._made.get((punctual, manner))
+        if made is not None:
+            return made.anew()
+        wiring = self._wirings[punctual]
+        made = self._made[punctual, manner] = Projection(self.view, wiring.firmware, manner, wiring)
+        return made
+
+    def release(self) -> None:
+        """Let go of all locations, which hold each other; nothing that was found may be asked for hops any more."""
+        for made in self._made.values():
+            made.release()
+
+
+def _along(looks: _Looks, projection: Projection, node: Node, count: _Count) -> Node | None:
+    """A run like the one to a node, with exact phases and with firmware in time; None if none is found."""
+    images = {projection.image(key) for key in _keys(node)}
+    exact = looks.projection(True, _manners(looks.view)[-1])
+    count.next_search()
+    return first_hazard(exact.initial(), count, exact.along(images))
+
+
+def _longest(looks: _Looks, count: _Count) -> Longest:
+    """The longest overlap. With phases forgotten none is shorter; so one that is as long is looked for along that run
+    first, and the search for any other ends with it."""
+    ceiling: int | None = None
+    *rough, exact = _manners(looks.view, measure=True)
+    for manner in rough:
+        projection = looks.projection(True, manner)
+        count.next_search()
+        bound = longest_overlap(projection.initial(), count, None)
+        if bound is None or not bound.greatest:
+            continue
+        ceiling = bound.time
+        images = {projection.image(key) for key in _keys(bound.node)}
+        projection = looks.projection(True, exact)
+        count.next_search()
+        found = longest_overlap(projection.initial(), count, ceiling, projection.along(images))
+        if found is not None and found.time == ceiling:
+            return found
+    count.next_search()
+    found = longest_overlap(looks.projection(True, exact).initial(), count, ceiling)
+    assert found is not None, "a first hazard was found before"
+    return found
+
+
+def _keys(node: Node) -> list[Key]:
+    keys = [one.location.key for one in node.path()]
+    assert all(isinstance(key, Key) for key in keys)
+    return keys  # type: ignore[return-value]
+
+
 def _manners(looking: View, measure: bool = False) -> tuple[Manner, ...]:
     exact = Manner(forget=False, cut=True, measure=measure)
     return (Manner(forget=True, cut=True, measure=measure), exact) if looking.carriers else (exact,)
@@ -301,15 +380,21 @@ def _may_hold(looking: View) -> bool:
     if isinstance(looking.hazard.asks, Clearing):
         return False
     drive = looking.drive
-    columns = [drive.columns.index(one.switch) for one in looking.hazard.literals]
-    sides: dict[Cell, bool] = {Fixed.OFF: False, Fixed.ON: True}
+    columns = [(drive.columns.index(one.switch), one) for one in looking.hazard.literals]
     for mode in drive.modes.values():
-        cells = [(mode.cells[column], one.on) for column, one in zip(columns, looking.hazard.literals, strict=True)]
-        on = {cell for cell, wanted_on in cells if wanted_on}
+        cells = [(mode.cells[column], one) for column, one in columns]
+        on = {cell for cell, one in cells if one.on}
         opposites = any(isinstance(cell, Follow) and replace(cell, inverted=not cell.inverted) in on for cell in on)
-        if not opposites and all(sides.get(cell, wanted) == wanted for cell, wanted in cells):
+        if not opposites and all(_may_be(drive, cell, one) for cell, one in cells):
             return True
     return False
+
+
+def _may_be(drive: Drive, cell: Cell, literal: Literal) -> bool:
+    """Whether a cell at rest can command what a literal wants."""
+    if cell is Fixed.FREE and literal.switch in drive.pins:
+        return drive.pins[literal.switch].resting is not (Command.OFF if literal.on else Command.ON)
+    return cell is not (Fixed.OFF if literal.on else Fixed.ON)
 
 
 def _mode(node: Node) -> str:

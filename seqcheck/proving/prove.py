@@ -278,12 +278,16 @@ class Prover:
 
     def _held(self, looks: "_Looks", interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
-        for manner in _manners(looks.view):
+        *rough, exact = _manners(looks.view)
+        for manner in rough:
             count.next_search()
-            projection = looks.projection(True, manner)
-            node = first_held(projection.initial(), count)
-            if node is None:
+            if first_held(looks.projection(True, manner).initial(), count) is None:
                 return None, None
+        count.next_search()
+        projection = looks.projection(True, exact)
+        node = first_held(projection.initial(), count)
+        if node is None:
+            return None, None
         return trace_of(projection, node, not node.location.bounds, interlocks), _mode(node)
 
     def _firmware(self, looking: View, punctual: bool) -> Firmware:
@@ -335,8 +339,8 @@ def _along(looks: _Looks, projection: Projection, node: Node, count: _Count) -> 
 
 
 def _longest(looks: _Looks, count: _Count) -> Longest:
-    """The longest overlap. With phases forgotten none is shorter; so one that is as long is looked for along that run
-    first, and the search for any other ends with it."""
+    """The longest overlap. With phases forgotten none is shorter, and none takes fewer moves; so one like it is looked for
+    along that run first, and else the search for any other ends with one that is as long."""
     ceiling: int | None = None
     *rough, exact = _manners(looks.view, measure=True)
     for manner in rough:
@@ -350,7 +354,7 @@ def _longest(looks: _Looks, count: _Count) -> Longest:
         projection = looks.projection(True, exact)
         count.next_search()
         found = longest_overlap(projection.initial(), count, ceiling, projection.along(images))
-        if found is not None and found.time == ceiling:
+        if found is not None and found.time == ceiling and found.node.moves == bound.node.moves:
             return found
     count.next_search()
     found = longest_overlap(looks.projection(True, exact).initial(), count, ceiling)

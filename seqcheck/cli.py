@@ -7,10 +7,23 @@ import shlex
 import sys
 import time
 from collections.abc import Callable, Iterator, Sequence
+from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from seqcheck.arguments import FORMS, Limits, check_named, complain, count, one_of, one_or_other, parser, seconds, wrong
+from seqcheck.arguments import (
+    FORMS,
+    Limits,
+    check_named,
+    complain,
+    count,
+    one_of,
+    one_or_other,
+    parser,
+    reductions_named,
+    seconds,
+    wrong,
+)
 from seqcheck.commands import draw
 from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
 from seqcheck.drive import Drive, Library, NeverRule
@@ -73,6 +86,7 @@ def _run(arguments: list[str]) -> int:
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
             return _margins(asked.file, limits, colour, asked.out)
+        limits = replace(limits, without=reductions_named(asked.without))
         form = one_of("--as", asked.form, FORMS)
         if asked.with_fault and form not in ("screen", "lines"):
             wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
@@ -173,7 +187,7 @@ def _one_file(
         if isinstance(drive, Library):
             return drive, PROVEN
         kept: list[Kept] | None = None if shelf is None else []
-        outcome = check(drive, file, only, _observer(limits), kept)
+        outcome = check(drive, file, only, _observer(limits), kept, limits.without)
     except Problems as problems:
         return Unread(file, problems.found), _mistaken(problems)
     except Fault as fault:

@@ -11,6 +11,7 @@ later one too, since both may be taken until `within` after it and an earlier on
 it matters how long ago a trip arrived, that one may arrive early too.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -124,11 +125,11 @@ class Firmware:
         self._items = tuple(self._items_of(run) for run in self._runs)
         self._ports = [drive.pins[name].port if name in drive.pins else None for name in drive.columns]
         self._early = next((number for number, trip in enumerate(drive.trips) if trip.name == early), -1)
-        self._leaving: dict[str, list[tuple[int, Move]]] = {name: [] for name in drive.modes}
-        for number, move in enumerate(drive.moves):
-            for source in move.sources:
-                self._leaving.setdefault(source, []).append((number, move))
         self._known: dict[State, tuple[Edge, ...]] = {}
+        self._moves: dict[str, list[tuple[int, Move]]] = {}
+        for number, move in enumerate(drive.moves):
+            for mode in dict.fromkeys(move.sources):
+                self._moves.setdefault(mode, []).append((number, move))
 
     # What a state is
 
@@ -141,7 +142,7 @@ class Firmware:
         """The bound on `x` in a state."""
         if state.run >= 0:
             return state.latest
-        spans = [self.window(move)[2] for _, move in self._leaving.get(state.mode, ())]
+        spans = [self.window(move)[2] for _, move in self.leaving(state.mode)]
         return min((hi for hi in spans if hi is not None), default=None)
 
     def hand_deadline(self, state: State) -> int | None:
@@ -159,6 +160,10 @@ class Firmware:
     def updated(self, state: State, carrier: int) -> State:
         """The state after the writes held for one carrier have acted."""
         return state._replace(put=self.writing.update(state.put, carrier))
+
+    def leaving(self, mode: str) -> Sequence[tuple[int, Move]]:
+        """The moves out of a mode, each with its place in the file."""
+        return self._moves.get(mode, ())
 
     def window(self, move: Move) -> tuple[int, int | None, int | None]:
         """When a move may begin, in ps after entry: (soonest, latest, the bound that it puts on the stay)."""
@@ -194,7 +199,7 @@ class Firmware:
 
     def _moving(self, state: State) -> list[Edge]:
         found = []
-        for number, move in self._leaving.get(state.mode, ()):
+        for number, move in self.leaving(state.mode):
             lo, hi, _ = self.window(move)
             found += [Edge(lo, hi, None, False, True, step) for step in self._begin(state, number)]
         return found

@@ -6,23 +6,24 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
-from seqcheck.drive import Cell, Command, Drive, Fixed, Follow, Interlock, Update
+from seqcheck.drive import Drive, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Literal, delays
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.clocks import Manner
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
+from seqcheck.proving.looks import Looks, along, longest, may_hold
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Projection
+from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.screen import Map, Places, least_after, screened
-from seqcheck.proving.search import LimitReached, Longest, Node, first_hazard, first_held, longest_overlap
+from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held
 from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
 from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
-from seqcheck.proving.wiring import Wiring
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
 
@@ -93,12 +94,14 @@ class _Count:
 class Prover:
     """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
-    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate.
+    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate. Some of what
+    makes proofs short can be left out (`without`); no answer changes by that.
     """
 
-    def __init__(self, drive: Drive, keep: bool = False) -> None:
+    def __init__(self, drive: Drive, keep: bool = False, without: frozenset[Reduction] = frozenset()) -> None:
         self.drive = drive
         self.keep = keep
+        self.without = without
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool, str | None], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
         self._stands: dict[Map, list[Data]] = {}
@@ -110,7 +113,7 @@ class Prover:
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         count, keep = _Count(observer), self.keep and interlocks and hazard.asks is None
-        if hazard.asks is None:
+        if hazard.asks is None and Reduction.SCREEN not in self.without:
             here = self._map(self._firmware(looking, punctual=False), count)
             if (apart := screened(looking, here)) is not None:
                 return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
@@ -120,7 +123,7 @@ class Prover:
         finally:
             looks.release()
 
-    def _searched(self, looks: "_Looks", keep: bool, interlocks: bool, count: _Count) -> Proven | Refuted:
+    def _searched(self, looks: Looks, keep: bool, interlocks: bool, count: _Count) -> Proven | Refuted:
         """What zones say.
 
         A run that was found with phases forgotten, or with firmware that may be late, is looked for at once where it
@@ -128,7 +131,7 @@ class Prover:
         """
         looking = looks.view
         for punctual in (False, True):
-            for manner in _manners(looking):
+            for manner in looks.manners():
                 projection = looks.projection(punctual, manner)
                 count.next_search()
                 node = first_hazard(projection.initial(), count)
@@ -137,17 +140,17 @@ class Prover:
                     return Proven("zones", count.total, not punctual, kept)
                 if _must_last(looking.hazard):
                     continue
-                found = node if punctual and manner == _manners(looking)[-1] else _along(looks, projection, node, count)
+                found = node if punctual and manner == looks.manners()[-1] else along(looks, projection, node, count)
                 if found is not None:
                     return self._refute(looks, interlocks, found, count)
         return self._too_short(looks, count)
 
-    def _too_short(self, looks: "_Looks", count: _Count) -> Refuted:
+    def _too_short(self, looks: Looks, count: _Count) -> Refuted:
         """The run in which what is too short is shortest."""
         assert looks.view.hazard.asks is not None, "it asks for a length"
         limit = looks.view.hazard.asks.limit
         count.next_search()
-        projection = looks.projection(True, _manners(looks.view)[-1])
+        projection = looks.projection(True, looks.manners()[-1])
         try:
             found = shortest(projection, count)
         except LimitReached:  # the search for any such run ended before
@@ -163,20 +166,21 @@ class Prover:
         drive = self.drive if locks is None else replace(self.drive, interlocks=locks)
         looking = view(drive, hazard, delays(hazard, drive.paths), interlocks=True)
         count = _Count(observer)
-        if hazard.asks is None:
+        if hazard.asks is None and Reduction.SCREEN not in self.without:
             here = self._map(self._firmware(looking, punctual=False), count)
             if screened(looking, here) is not None:
                 return True
         looks = self._looks(looking)
         try:
             return any(
-                first_hazard(looks.projection(True, manner).initial(), count) is None for manner in _manners(looking)
+                first_hazard(looks.projection(True, manner).initial(), count) is None for manner in looks.manners()
             )
         finally:
             looks.release()
 
-    def _looks(self, looking: View) -> "_Looks":
-        return _Looks(looking, self._firmware(looking, punctual=False), self._firmware(looking, punctual=True))
+    def _looks(self, looking: View) -> Looks:
+        late, in_time = (self._firmware(looking, punctual) for punctual in (False, True))
+        return Looks(looking, late, in_time, self.without)
 
     def gap(self, hazard: Hazard, watched: int, observer: Observer, below: int | None = None) -> Gap:
         """The least gap of a safe hazard after the literal at place `watched`: its margin in that direction.
@@ -201,7 +205,7 @@ class Prover:
             return looks.projection(True, manner)
 
         try:
-            least = least_gap(look, watched, bool(looking.carriers), Asked(floor, below), count)
+            least = least_gap(look, watched, looks.manners(), Asked(floor, below), count)
             if least.node is not None:
                 return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
             return Gap(least.time if least.within or least.limit else None, None, least.limit)
@@ -210,6 +214,8 @@ class Prover:
 
     def _floor(self, looking: View, watched: int, count: _Count) -> int | None:
         """A lower bound of a gap from least times alone; None where nothing ever follows."""
+        if Reduction.SCREEN in self.without:
+            return 0
         if len(looking.hazard.literals) != 2 or looking.locks or not all(one.on for one in looking.hazard.literals):
             return 0
         bound = least_after(looking, self._map(self._firmware(looking, punctual=False), count), watched)
@@ -226,12 +232,13 @@ class Prover:
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = _Count(observer)
         try:
-            if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
+            screens = Reduction.SCREEN not in self.without
+            if screens and screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
                 return Spread(frozenset(), frozenset())
         except LimitReached as limit:
             return Spread(frozenset(), frozenset(), str(limit))
-        *rough, exact = _manners(looking)
         looks = self._looks(looking)
+        *rough, exact = looks.manners()
         ceiling = None
         try:
             for manner in rough:
@@ -249,36 +256,36 @@ class Prover:
             self._stands[here] = stands(here)
         return {**potentials(looking, here, apart), "stands": self._stands[here]}
 
-    def _refute(self, looks: "_Looks", interlocks: bool, first: Node, count: _Count) -> Refuted:
+    def _refute(self, looks: Looks, interlocks: bool, first: Node, count: _Count) -> Refuted:
         """The longest overlap of a hazard that happens; `first` is a run that brings it."""
         try:
             return self._measured(looks, interlocks, count)
         except LimitReached:
             return self._first(looks, interlocks, first)
 
-    def _measured(self, looks: "_Looks", interlocks: bool, count: _Count) -> Refuted:
+    def _measured(self, looks: Looks, interlocks: bool, count: _Count) -> Refuted:
         """The run with the longest overlap, or to a mode that holds the hazard."""
-        exact = looks.projection(True, _manners(looks.view, measure=True)[-1])
-        found = _longest(looks, count)
-        longest = trace_of(exact, found.node, found.time is None, interlocks)
+        exact = looks.projection(True, looks.manners(measure=True)[-1])
+        found = longest(looks, count)
+        whole = trace_of(exact, found.node, found.time is None, interlocks)
         if found.held is not None:
-            return Refuted(longest, _mode(found.held), found.time, count.total, found.greatest)
-        if not _may_hold(looks.view):
-            return Refuted(longest, None, found.time, count.total, found.greatest)
+            return Refuted(whole, _mode(found.held), found.time, count.total, found.greatest)
+        if not may_hold(looks.view):
+            return Refuted(whole, None, found.time, count.total, found.greatest)
         trace, mode = self._held(looks, interlocks, count)
-        return Refuted(trace or longest, mode, found.time, count.total, found.greatest)
+        return Refuted(trace or whole, mode, found.time, count.total, found.greatest)
 
-    def _first(self, looks: "_Looks", interlocks: bool, node: Node) -> Refuted:
+    def _first(self, looks: Looks, interlocks: bool, node: Node) -> Refuted:
         """The first run found: a limit was reached before a longer one was."""
-        projection = looks.projection(True, _manners(looks.view)[-1])
+        projection = looks.projection(True, looks.manners()[-1])
         endless = not node.location.bounds
         trace = trace_of(projection, node, endless, interlocks)
         overlap = None if endless else trace.end - trace.overlap_from
         return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
-    def _held(self, looks: "_Looks", interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
+    def _held(self, looks: Looks, interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
-        *rough, exact = _manners(looks.view)
+        *rough, exact = looks.manners()
         for manner in rough:
             count.next_search()
             if first_held(looks.projection(True, manner).initial(), count) is None:
@@ -307,98 +314,10 @@ class Prover:
         return self._maps[firmware]
 
 
-class _Looks:
-    """The projections of one hazard, each made once: what the drive can do is worked out for all its searches."""
-
-    def __init__(self, looking: View, late: Firmware, in_time: Firmware) -> None:
-        self.view = looking
-        self._wirings = tuple(Wiring(looking, firmware) for firmware in (late, in_time))
-        self._made: dict[tuple[bool, Manner], Projection] = {}
-
-    def projection(self, punctual: bool, manner: Manner) -> Projection:
-        """The drive as it is looked at, with nothing stored; a search of it before this one is over."""
-        made = self._made.get((punctual, manner))
-        if made is not None:
-            return made.anew()
-        wiring = self._wirings[punctual]
-        made = self._made[punctual, manner] = Projection(self.view, wiring.firmware, manner, wiring)
-        return made
-
-    def release(self) -> None:
-        """Let go of all locations, which hold each other; nothing that was found may be asked for hops any more."""
-        for made in self._made.values():
-            made.release()
-
-
-def _along(looks: _Looks, projection: Projection, node: Node, count: _Count) -> Node | None:
-    """A run like the one to a node, with exact phases and with firmware in time; None if none is found."""
-    images = {projection.image(key) for key in _keys(node)}
-    exact = looks.projection(True, _manners(looks.view)[-1])
-    count.next_search()
-    return first_hazard(exact.initial(), count, exact.along(images))
-
-
-def _longest(looks: _Looks, count: _Count) -> Longest:
-    """The longest overlap. With phases forgotten none is shorter, and none takes fewer moves; so one like it is looked for
-    along that run first, and else the search for any other ends with one that is as long."""
-    ceiling: int | None = None
-    *rough, exact = _manners(looks.view, measure=True)
-    for manner in rough:
-        projection = looks.projection(True, manner)
-        count.next_search()
-        bound = longest_overlap(projection.initial(), count, None)
-        if bound is None or not bound.greatest:
-            continue
-        ceiling = bound.time
-        images = {projection.image(key) for key in _keys(bound.node)}
-        projection = looks.projection(True, exact)
-        count.next_search()
-        found = longest_overlap(projection.initial(), count, ceiling, projection.along(images))
-        if found is not None and found.time == ceiling and found.node.moves == bound.node.moves:
-            return found
-    count.next_search()
-    found = longest_overlap(looks.projection(True, exact).initial(), count, ceiling)
-    assert found is not None, "a first hazard was found before"
-    return found
-
-
-def _keys(node: Node) -> list[Key]:
-    keys = [one.location.key for one in node.path()]
-    assert all(isinstance(key, Key) for key in keys)
-    return keys  # type: ignore[return-value]
-
-
-def _manners(looking: View, measure: bool = False) -> tuple[Manner, ...]:
-    exact = Manner(forget=False, cut=True, measure=measure)
-    return (Manner(forget=True, cut=True, measure=measure), exact) if looking.carriers else (exact,)
-
-
 def _must_last(hazard: Hazard) -> bool:
     """Whether the question is about a length that is too short."""
     asks = hazard.asks
     return isinstance(asks, Following) or (isinstance(asks, Lasting) and not asks.longer)
-
-
-def _may_hold(looking: View) -> bool:
-    """Whether some row could command all literals at once."""
-    if isinstance(looking.hazard.asks, Clearing):
-        return False
-    drive = looking.drive
-    columns = [(drive.columns.index(one.switch), one) for one in looking.hazard.literals]
-    for mode in drive.modes.values():
-        cells = [(mode.cells[column], one) for column, one in columns]
-        on = {cell for cell, one in cells if one.on}
-        opposites = any(isinstance(cell, Follow) and replace(cell, inverted=not cell.inverted) in on for cell in on)
-        if not opposites and all(_may_be(drive, cell, one) for cell, one in cells):
-            return True
-    return False
-
-
-def _may_be(drive: Drive, cell: Cell, literal: Literal) -> bool:
-    """Whether a cell at rest can command what a literal wants."""
-    if cell is Fixed.FREE and literal.switch in drive.pins:
-        return drive.pins[literal.switch].resting is not (Command.OFF if literal.on else Command.ON)
-    return cell is not (Fixed.OFF if literal.on else Fixed.ON)
 
 
 def _mode(node: Node) -> str:

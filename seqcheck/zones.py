@@ -43,6 +43,8 @@ def limited(zone: Zone, size: int, upper: int, lower: int, bound: int) -> Zone |
         if first >= INFINITE:
             continue
         first += bound
+        if first >= zone[start + lower]:
+            continue  # no bound of this row follows more closely than the one that it has
         for end in range(size):
             if tail[end] < INFINITE and first + tail[end] < zone[start + end]:
                 zone[start + end] = first + tail[end]

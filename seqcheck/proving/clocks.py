@@ -68,17 +68,24 @@ class Layout:
 Timing = tuple[tuple[Edge, ...], int | None]
 
 
-class _Rest(NamedTuple):
-    """All of a key but the firmware's state that its clocks depend on."""
+_Rest = tuple[
+    tuple[int, ...],
+    tuple[tuple[int, int], ...],
+    tuple[int, ...],
+    tuple[int, ...],
+    tuple[int, ...],
+    bool,
+    bool,
+    int,
+]
+"""All of a key but the firmware's state that its clocks depend on, and whether its location is hot."""
 
-    carriers: tuple[int, ...]
-    holds: tuple[tuple[int, int], ...]
-    pins: tuple[int, ...]
-    locks: tuple[int, ...]
-    literals: tuple[int, ...]
-    hot: bool
-    paused: bool
-    ended: int
+
+class _Numbered(NamedTuple):
+    """Some clocks, with one number for all that are equal."""
+
+    number: int
+    clocks: tuple[Clock, ...]
 
 
 class Clocks:
@@ -95,9 +102,10 @@ class Clocks:
         repeats = not view.locks or len(view.carriers) <= 1
         self._cutting = Cutting(view, references) if manner.cut and repeats else None
         self._timings: dict[tuple[State, bool], Timing] = {}
-        self._of_firmware: dict[tuple[State, bool, bool], tuple[Clock, ...]] = {}
-        self._of_rest: dict[_Rest, tuple[Clock, ...]] = {}
-        self._layouts: dict[tuple[Clock, ...], Layout] = {}
+        self._numbers: dict[tuple[Clock, ...], _Numbered] = {}
+        self._of_firmware: dict[tuple[State, bool, bool], _Numbered] = {}
+        self._of_rest: dict[_Rest, _Numbered] = {}
+        self._layouts: dict[tuple[int, int], Layout] = {}
         self._asked: dict[State, bool] = {}
 
     @property
@@ -126,19 +134,21 @@ class Clocks:
     def layout(self, key: Key, hot: bool) -> Layout:
         """The clocks of a location."""
         state, carriers, pins, locks, literals, paused, ended = key
-        late = ended == LATELY
-        firmware = self._of_firmware.get((state, hot, late))
+        moment = (state, hot, ended == LATELY)
+        firmware = self._of_firmware.get(moment)
         if firmware is None:
-            firmware = self._of_firmware[state, hot, late] = tuple(self._firmware_clocks(key, hot))
-        like = _Rest(carriers, state.put[2], pins, locks, literals, hot, paused, ended)
+            firmware = self._of_firmware[moment] = self._numbered(tuple(self._firmware_clocks(key, hot)))
+        like: _Rest = (carriers, state.put[2], pins, locks, literals, hot, paused, ended)
         rest = self._of_rest.get(like)
         if rest is None:
-            rest = self._of_rest[like] = tuple(self._other_clocks(key, hot))
-        clocks = firmware + rest
-        known = self._layouts.get(clocks)
+            rest = self._of_rest[like] = self._numbered(tuple(self._other_clocks(key, hot)))
+        known = self._layouts.get((firmware.number, rest.number))
         if known is None:
-            known = self._layouts[clocks] = _layout(clocks)
+            known = self._layouts[firmware.number, rest.number] = _layout(firmware.clocks + rest.clocks)
         return known
+
+    def _numbered(self, clocks: tuple[Clock, ...]) -> _Numbered:
+        return self._numbers.setdefault(clocks, _Numbered(len(self._numbers), clocks))
 
     def timing(self, key: Key, hot: bool) -> Timing:
         """The firmware's edges and deadline, long stays cut short where that changes nothing.

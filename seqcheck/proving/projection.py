@@ -45,6 +45,18 @@ from seqcheck.proving.wiring import Wiring
 from seqcheck.verdict import Act
 from seqcheck.zones import FRESH
 
+_Renaming = tuple[
+    Layout | None,
+    Layout,
+    frozenset[int],
+    tuple[tuple[int, int], ...],
+    tuple[tuple[int, int], ...],
+    tuple[int, ...],
+    tuple[tuple[int, int], ...],
+]
+"""What a hop's clocks depend on: those before it (None: it is a start) and after it, those that it starts anew, its
+bounds, the carriers after it, and where the clocks of held groups come from."""
+
 _ANEW = {
     (x, y): frozenset([X] * x + [Y] * y)
     for x in (False, True)
@@ -136,32 +148,41 @@ class Projection:
             key = key._replace(ended=ended)
         target = self._location(key)
         before = None if old is None else self._layouts[old]
-        holds = _holds(old, key, written) if key.state.put[2] else {}
-        asked = _Renaming(before, self._layouts[key], resets, least, most, key.carriers, tuple(holds.items()))
+        holds = tuple(_holds(old, key, written).items()) if key.state.put[2] else ()
+        asked: _Renaming = (before, self._layouts[key], resets, least, most, key.carriers, holds)
         known = self._renamings.get(asked)
         if known is None:
-            known = self._renamings[asked] = self._renamed(asked, holds)
+            known = self._renamings[asked] = self._renamed(*asked)
         return Hop(known.least, known.most, known.sources, known.after, target, cost, event)
 
-    def _renamed(self, asked: "_Renaming", holds: dict[int, int]) -> "_Renamed":
-        names = {} if asked.old is None else asked.old.places
+    def _renamed(
+        self,
+        old: Layout | None,
+        new: Layout,
+        resets: frozenset[int],
+        least: tuple[tuple[int, int], ...],
+        most: tuple[tuple[int, int], ...],
+        carriers: tuple[int, ...],
+        holds: tuple[tuple[int, int], ...],
+    ) -> "_Renamed":
+        names, held = {} if old is None else old.places, dict(holds)
         sources, after = [], []
-        for clock, place in asked.new.places.items():
-            name = holds.get(clock, clock)
+        for clock, place in new.places.items():
+            name = held.get(clock, clock)
             if CARRIER <= name < HOLD and name not in names:
                 sources.append(FRESH)
                 reference = self._references[name - CARRIER]
-                floor = dict(reference.starts())[asked.carriers[name - CARRIER]]
+                floor = dict(reference.starts())[carriers[name - CARRIER]]
                 if floor:
                     after.append(Bound(place, floor))
-            elif name == SINCE and asked.old is None:  # it has been possible for ever
+            elif name == SINCE and old is None:  # it has been possible for ever
                 sources.append(FRESH)
                 after.append(Bound(place, 1))
             else:
-                sources.append(0 if name in asked.resets else names.get(name, 0))
+                sources.append(0 if name in resets else names.get(name, 0))
         return _Renamed(
-            tuple(Bound(names[name], value) for name, value in asked.least if value > 0),
-            tuple(Bound(names[name], value) for name, value in asked.most),
+            tuple(Bound(names[name], value) for name, value in least if value > 0),
+            tuple(Bound(names[name], value) for name, value in most),
             tuple(sources),
             tuple(after),
         )
@@ -293,7 +314,8 @@ class Projection:
             times = self.view.delays[place]
             for by_rise, after in timeouts(state):
                 name, least = (RISE + place, times.rise) if by_rise else (FALL + place, times.fall)
-                new = key._replace(literals=(*key.literals[:place], after, *key.literals[place + 1 :]))
+                literals = (*key.literals[:place], after, *key.literals[place + 1 :])
+                new = Key(key.state, key.carriers, key.pins, key.locks, literals, key.paused, key.ended)
                 if place == self.manner.gap and POSSIBLE[state] and not POSSIBLE[after]:
                     yield from self._end_of_watched(key, new, (name, least))
                 else:
@@ -385,18 +407,6 @@ class Projection:
             new, resets = self._wiring.settle(key, key.state, key.carriers, key.pins, locks)
             happening = Happening(Act.CLEARS, self.view.switches[lock.guarded])
             yield self._hop(key, new, resets, ((LOCK + place, lock.dead.lo),), (), 0, happening)
-
-
-class _Renaming(NamedTuple):
-    """What a hop's clocks depend on: those before it (None: it is a start) and after it, and what it does to them."""
-
-    old: Layout | None
-    new: Layout
-    resets: frozenset[int]
-    least: tuple[tuple[int, int], ...]
-    most: tuple[tuple[int, int], ...]
-    carriers: tuple[int, ...]
-    holds: tuple[tuple[int, int], ...]
 
 
 class _Renamed(NamedTuple):

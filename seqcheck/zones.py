@@ -128,7 +128,8 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
     for start, gone in widened:
         for end in gone:
             zone[start + end] = INFINITE
-    _close(zone, size, widened)
+    if widened:
+        _close(zone, size, widened)
     return zone
 
 
@@ -137,7 +138,7 @@ def _close(zone: Zone, size: int, widened: Sequence[tuple[int, list[int]]]) -> N
 
     No other can follow from them, since none is as small as before; so only they are worked out, as `closed` does.
     """
-    for mid in range(size if widened else 0):
+    for mid in range(size):
         row = zone[mid * size : mid * size + size]
         for start, gone in widened:
             first = zone[start + mid]

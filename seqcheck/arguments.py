@@ -26,6 +26,14 @@ nothing with the prover. Evidence that does not bear out what it says ends with 
 _MARGINS = """\
 The dead-time budget of FILE: for every switch and those that may not conduct with it, what the parts ask for, what the
 file leaves at worst, and the move, trip or row that sets it; least first."""
+_SIZE = """\
+The range of NAME, a 'let' of FILE, in which the whole file is proven: all that 'lint' proves, with any value of the
+range; and what breaks one step outside it. If today's value fails, the nearest that was found to hold. Example:
+seqcheck size drive.dseq settle --step 100ns"""
+_SIZED = """\
+exit codes: 0 today's value holds, and the ends of the range are decided (or it was looked for a thousand times as far);
+1 today's value does not hold; 2 the input or the call is wrong; 3 today's value or an end is undecided within the
+limits given; 4 the program itself is at fault."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
 way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
@@ -134,10 +142,22 @@ def parser() -> argparse.ArgumentParser:
         "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
     )
     margins.add_argument("file", metavar="FILE")
+    margins.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (as it is), lines or json")
     margins.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
     margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
     margins.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    size = commands.add_parser(
+        "size", help="how far a quantity may go", description=_SIZE, epilog=_SIZED, allow_abbrev=False
+    )
+    size.add_argument("file", metavar="FILE")
+    size.add_argument("name", metavar="NAME")
+    size.add_argument("--step", metavar="D", help="how finely to look (a tick of the clock, else 1 ps, Hz, ppm)")
+    size.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default), lines or json")
+    size.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    size.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    size.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    size.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )

@@ -5,7 +5,7 @@ from dataclasses import replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
-from seqcheck.drive import Drive, Interlock, MarginRule
+from seqcheck.drive import Drive, Interlock, MarginRule, ToleratesRule
 from seqcheck.hazards import Hazard
 from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
@@ -43,13 +43,14 @@ def check(
     """
     prover = Prover(drive, kept is not None, without)
     verdicts: list[Verdict] = []
-    findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
+    findings: list[Finding] = [*graph_findings(drive), *row_meanings(drive), *_without_path(drive)]
     for hazard, rule in _asked(drive):
         verdict = _judged(prover, hazard, observer, kept, rule)
         verdicts.append(verdict)
         if isinstance(verdict, Safe) and hazard.joins:
             findings += _held_by_interlock(prover, hazard, observer)
             verdicts += (one for least in _margin_rules(drive) for one in thin(prover, least, hazard, observer))
+    verdicts += _tolerated(prover, observer)
     findings += _punctual(drive, verdicts)
     findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
@@ -61,6 +62,15 @@ def _asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
     for rule in drive.rules:
         for hazard in asked_by(rule):
             yield hazard, rule.place
+
+
+def _tolerated(prover: Prover, observer: Observer) -> Iterator[Verdict]:
+    """What single faults bring in the modes that must tolerate them."""
+    rules = [rule for rule in prover.drive.rules if isinstance(rule, ToleratesRule)]
+    if rules:
+        from seqcheck.tolerating import tolerated
+
+        yield from tolerated(prover, shorting_sets(prover.drive.stage), rules, observer)
 
 
 def _margin_rules(drive: Drive) -> list[MarginRule]:
@@ -127,7 +137,7 @@ def _without_path(drive: Drive) -> Iterator[Finding]:
             yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
 
 
-def _row_meanings(drive: Drive) -> Iterator[Finding]:
+def row_meanings(drive: Drive) -> Iterator[Finding]:
     """Rows that do not do what their `means` says, with what they do instead."""
     saying = [mode for mode in drive.modes.values() if mode.means]
     if not saying:
@@ -223,7 +233,7 @@ _OF_A_VERDICT = frozenset(
     one.value
     for one in (
         *(Check.SHORT, Check.OVERLAP, Check.OPEN_WINDING, Check.TOGETHER, Check.THIN_MARGIN),
-        *(Check.LONG_ON, Check.SHORT_PULSE, Check.TOO_SOON, Check.LATE_TRIP),
+        *(Check.LONG_ON, Check.SHORT_PULSE, Check.TOO_SOON, Check.LATE_TRIP, Check.SINGLE_FAULT),
         *(Check.HELD_BY_INTERLOCK, Check.PUNCTUAL),
     )
 )

@@ -12,6 +12,7 @@ HOUSE = Path(seqcheck.__file__).parent
 LOW_TO_HIGH = (
     "shipped",
     "exits",
+    "ranging",
     "quantities",
     "source",
     "messages",
@@ -24,6 +25,7 @@ LOW_TO_HIGH = (
     "circuit",
     "verdict",
     "changes",
+    "ranges",
     "writing",
     "firmware",
     "modegraph",
@@ -35,6 +37,7 @@ LOW_TO_HIGH = (
     "margins",
     "rules",
     "failing",
+    "tolerating",
     "reports",
     "checking",
     "serving",
@@ -50,7 +53,7 @@ APART = {
     "proving": {"language", "evidence"},
     "reports": {
         *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
-        *("confirming", "sizing", "margins", "rules", "failing"),
+        *("confirming", "sizing", "margins", "rules", "failing", "tolerating"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

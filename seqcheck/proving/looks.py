@@ -116,6 +116,13 @@ def may_hold(looking: View) -> bool:
     return False
 
 
+def may_hold_in(looking: View, mode: str) -> bool:
+    """Whether the row of a mode could command all literals at rest."""
+    drive = looking.drive
+    cells = drive.modes[mode].cells
+    return all(_may_be(drive, cells[drive.columns.index(one.switch)], one) for one in looking.hazard.literals)
+
+
 def _may_be(drive: Drive, cell: Cell, literal: Literal) -> bool:
     """Whether a cell at rest can command what a literal wants."""
     if cell is Fixed.FREE and literal.switch in drive.pins:

@@ -1,28 +1,31 @@
 """The proof of one hazard: the screen, then zones with phases forgotten, then exact zones.
 
 Everything is tried first with the firmware's upper bounds removed: what holds then holds however late the firmware is.
+A run that is found where it proves nothing is followed at once where it would.
 """
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from itertools import product
 
 from seqcheck.drive import Drive, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.clocks import Manner
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
-from seqcheck.proving.looks import Looks, along, longest, may_hold
+from seqcheck.proving.looks import Looks, along, longest, may_hold, may_hold_in
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.reductions import Reduction
+from seqcheck.proving.resting import rests
 from seqcheck.proving.screen import Map, Places, least_after, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held
 from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
-from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
+from seqcheck.proving.tracing import gap_trace, rest_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
@@ -147,7 +150,7 @@ class Prover:
 
     def _too_short(self, looks: Looks, count: _Count) -> Refuted:
         """The run in which what is too short is shortest."""
-        assert looks.view.hazard.asks is not None, "it asks for a length"
+        assert isinstance(looks.view.hazard.asks, Length), "it asks for a length"
         limit = looks.view.hazard.asks.limit
         count.next_search()
         projection = looks.projection(True, looks.manners()[-1])
@@ -250,6 +253,51 @@ class Prover:
         finally:
             looks.release()
 
+    def at_rest(
+        self, hazard: Hazard, modes: frozenset[str], observer: Observer
+    ) -> dict[str, "Proven | Refuted | str"]:
+        """For each mode whether the hazard comes at rest in it, with interlocks; a text names the limit that left it
+        open.
+
+        A hazard without literals comes wherever it is asked for. The overlap of a run is one at rest, not the greatest.
+        Raises Infeasible.
+        """
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+        count = _Count(observer)
+        try:
+            screens = Reduction.SCREEN not in self.without
+            if screens and screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
+                return {mode: Proven("screen", 0, True) for mode in modes}
+        except LimitReached as limit:
+            return dict.fromkeys(modes, str(limit))
+        looks = self._looks(looking)
+        try:
+            return self._rests(looks, modes, count)
+        finally:
+            looks.release()
+
+    def _rests(self, looks: Looks, modes: frozenset[str], count: _Count) -> dict[str, "Proven | Refuted | str"]:
+        answers: dict[str, Proven | Refuted | str] = {}
+        before = 0
+        for punctual, manner in product((False, True), looks.manners()):
+            count.next_search()
+            projection = looks.projection(punctual, manner)
+            holding = frozenset(mode for mode in modes if may_hold_in(looks.view, mode))
+            found = rests(projection.initial(), modes, holding, count)
+            sure = punctual and not manner.forget
+            if found.limit is not None:
+                answers |= {mode: found.limit for mode in modes if not sure or mode not in found.nodes}
+                modes = modes & found.nodes.keys() if sure else frozenset()
+            for mode in sorted(modes - found.nodes.keys()):
+                answers[mode] = Proven("zones", count.total - before, not punctual)
+                before = count.total  # zones that serve several modes are counted once
+            modes = modes & found.nodes.keys()
+            if sure:
+                answers |= {mode: _at_rest(projection, found.nodes[mode]) for mode in modes}
+            if not modes:
+                break
+        return answers
+
     def _screened(self, looking: View, here: Map, apart: Places) -> Data:
         """The proof of the screen as data; hazards that share a map share the list of its states."""
         if here not in self._stands:
@@ -312,6 +360,13 @@ class Prover:
         if firmware not in self._maps:
             self._maps[firmware] = Map(firmware, observer)
         return self._maps[firmware]
+
+
+def _at_rest(projection: Projection, node: Node) -> Refuted:
+    endless = not node.location.bounds
+    trace = rest_trace(projection, node, endless)
+    overlap = None if endless else trace.end - trace.overlap_from
+    return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
 
 def _must_last(hazard: Hazard) -> bool:

@@ -12,7 +12,9 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from seqcheck.arguments import (
+    COMPARE_FORMS,
     FORMS,
+    SHELLS,
     Limits,
     check_named,
     complain,
@@ -80,6 +82,11 @@ def _run(arguments: list[str]) -> int:
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
             return _start(asked.kind)
+        if asked.command == "completion":
+            from seqcheck.commands.completion import script
+
+            shell = one_of("SHELL", asked.shell, SHELLS)
+            return deliver(script(shell, parser(), FORMS, COMPARE_FORMS), None)
         if asked.command == "compare":
             return _compare(asked)
         if asked.command == "size":
@@ -315,7 +322,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
 
 def _compare(asked: argparse.Namespace) -> int:
     """Hold two files against each other; the exit code."""
-    form = one_of("--as", asked.form, ("screen", "lines"))
+    form = one_of("--as", asked.form, COMPARE_FORMS)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
     observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
     if asked.old == asked.new == _STDIN:
@@ -355,12 +362,13 @@ def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None)
 
 def _size(asked: argparse.Namespace) -> int:
     """Tell the range of a quantity; the exit code."""
-    form = one_of("--as", asked.form, ("screen", "lines", "json"))
-    colour = one_of("--color", asked.color, ("auto", "always", "never"))
-    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    from seqcheck.commands.size import FORMS as FORMS_OF_SIZES
     from seqcheck.commands.size import Asked, WrongCall, run
     from seqcheck.confirming import Fault
 
+    form = one_of("--as", asked.form, FORMS_OF_SIZES)
+    colour = one_of("--color", asked.color, ("auto", "always", "never"))
+    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
         text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)

@@ -41,6 +41,7 @@ LOW_TO_HIGH = (
     "reports",
     "checking",
     "serving",
+    "completing",
     "commands",
     "arguments",
     "delivering",

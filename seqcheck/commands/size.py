@@ -38,6 +38,9 @@ class WrongCall(Exception):  # noqa: N818
     """A name or a step that means nothing for this file, in words."""
 
 
+FORMS = ("screen", "lines", "json")
+
+
 @dataclass(frozen=True, slots=True)
 class Asked:
     """What is asked of a file: which quantity, with which step (None: the finest that has a meaning), in which form."""

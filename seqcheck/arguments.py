@@ -278,7 +278,12 @@ def check_named(name: str) -> Check:
     wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
 
 
-def reductions_named(names: Sequence[str]) -> frozenset[Reduction]:
+def limits_of(asked: argparse.Namespace) -> Limits:
+    zones = count("--most-zones", asked.most_zones)
+    return Limits(zones, seconds(asked.give_up_after), _left_out(getattr(asked, "without", [])))
+
+
+def _left_out(names: list[str]) -> frozenset[Reduction]:
     known = {one.value: one for one in Reduction}
     for name in names:
         if name not in known:

@@ -6,7 +6,7 @@ from dataclasses import replace
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
 from seqcheck.drive import Drive, Interlock, MarginRule, ToleratesRule
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Hazard, Nearing
 from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
@@ -37,26 +37,29 @@ def check(
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. `kept` takes up the proof of every hazard, but for rules about lengths, for
-    evidence of them. `without` leaves out some of what makes proofs short. Raises Problems for a stage that cannot be
-    proven, Fault if a trace does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. `without`
+    leaves out some of what makes proofs short. Raises Problems for a stage that cannot be proven, Fault if a trace does
+    not replay.
     """
     prover = Prover(drive, kept is not None, without)
     verdicts: list[Verdict] = []
     findings: list[Finding] = [*graph_findings(drive), *row_meanings(drive), *_without_path(drive)]
-    for hazard, rule in _asked(drive):
+    for hazard, rule in asked(drive):
         verdict = _judged(prover, hazard, observer, kept, rule)
         verdicts.append(verdict)
         if isinstance(verdict, Safe) and hazard.joins:
             findings += _held_by_interlock(prover, hazard, observer)
-            verdicts += (one for least in _margin_rules(drive) for one in thin(prover, least, hazard, observer))
+            for least in margin_rules(drive):
+                verdicts += (broken := list(thin(prover, least, hazard, observer)))
+                if kept is not None:
+                    kept += _kept_margins(prover, hazard, least, broken)
     verdicts += _tolerated(prover, observer)
     findings += _punctual(drive, verdicts)
     findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
 
 
-def _asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
+def asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
     """Everything that must never be possible at once, and the rule that asks for it (None: it is built in)."""
     yield from ((hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)))
     for rule in drive.rules:
@@ -73,7 +76,8 @@ def _tolerated(prover: Prover, observer: Observer) -> Iterator[Verdict]:
         yield from tolerated(prover, shorting_sets(prover.drive.stage), rules, observer)
 
 
-def _margin_rules(drive: Drive) -> list[MarginRule]:
+def margin_rules(drive: Drive) -> list[MarginRule]:
+    """The rules of a drive about margins."""
     return [rule for rule in drive.rules if isinstance(rule, MarginRule)]
 
 
@@ -88,9 +92,19 @@ def _judged(
     prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None, rule: Place | None
 ) -> Verdict:
     verdict, proof = _with_proof(prover, hazard, observer, rule)
-    if kept is not None and hazard.asks is None:
+    if kept is not None:
         kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
     return verdict
+
+
+def _kept_margins(
+    prover: Prover, hazard: Hazard, rule: MarginRule, broken: list[Unsafe | Undecided]
+) -> Iterator[Kept]:
+    """What a rule about margins asks of a short, with its proofs and runs."""
+    runs = {one.after: one.trace for one in broken if isinstance(one, Unsafe)}
+    for after in range(len(hazard.literals)) if rule.least and len(hazard.literals) > 1 else ():
+        asked = replace(hazard, asks=Nearing(after, rule.least))
+        yield asked, runs.get(after) or prover.margins.get(asked)
 
 
 def _with_proof(

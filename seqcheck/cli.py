@@ -1,4 +1,4 @@
-"""Arguments, opening files and exit codes: the only room that touches the world."""
+"""The commands and their exit codes."""
 
 import argparse
 import gc
@@ -6,8 +6,7 @@ import os
 import shlex
 import sys
 import time
-from collections.abc import Callable, Iterator, Sequence
-from pathlib import Path
+from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING
 
 from seqcheck.arguments import (
@@ -22,30 +21,28 @@ from seqcheck.arguments import (
     one_of,
     one_or_other,
     parser,
+    tell,
     wrong,
 )
 from seqcheck.commands import draw
-from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
-from seqcheck.drive import Drive, Library, NeverRule
+from seqcheck.delivering import Answering, answer_text, deliver, let_go, ready_streams, spare, wants_colour
+from seqcheck.drive import Drive, Library, NeverRule, ToleratesRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
-from seqcheck.messages import Problem, Problems
-from seqcheck.source import Place, printable
+from seqcheck.messages import Problems
+from seqcheck.opening import STDIN, data_of, files_of, reason_of, text_of, used_text
+from seqcheck.source import printable
 from seqcheck.verdict import WARNINGS, Answer, Check, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
     from seqcheck.evidence.audit import Audited
 
-_STDIN = "-"
-
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command line; the exit code. No input makes it raise."""
     gc.disable()  # a short-lived process: collecting would cost more than it frees
-    for stream in (sys.stdout, sys.stderr):
-        if hasattr(stream, "reconfigure"):
-            stream.reconfigure(errors="backslashreplace")
+    ready_streams()
     try:
         code = _run(list(sys.argv[1:] if arguments is None else arguments))
         sys.stdout.flush()
@@ -55,6 +52,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
     except KeyboardInterrupt:
         complain("stopped by the keyboard; nothing is proven")
         return UNDECIDED
+    except OSError as refusal:  # of a stream or a folder; files have their own words
+        complain(f"error: {reason_of(refusal)}")
+        let_go()
+        return WRONG
     except Exception as fault:
         complain(f"internal error, please report it: {type(fault).__name__}: {fault}")
         return FAULT
@@ -64,6 +65,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
 def _run(arguments: list[str]) -> int:
     try:
         asked = parser().parse_args(arguments)
+        spare(getattr(asked, "out", None), _inputs(asked))
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
         if asked.command == "serve":
@@ -99,7 +101,7 @@ def _run(arguments: list[str]) -> int:
             wrong(f"--with-fault goes with '--as screen', 'lines' or 'json'; '{form}' has no place for what it tells")
         only = frozenset(check_named(name) for name in asked.only)
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
-        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
+        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(files_of(asked.paths or ["."])))
         _one_run(answering, files)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
     except SystemExit as stop:
@@ -112,6 +114,12 @@ def _run(arguments: list[str]) -> int:
     return code if text is None else _worse(code, deliver(text, asked.out))
 
 
+def _inputs(asked: argparse.Namespace) -> list[str]:
+    """The files that a call names to be read."""
+    given = vars(asked)
+    return [*given.get("paths", ()), *(given[name] for name in ("file", "old", "new") if name in given)]
+
+
 def _one_run(answering: Answering, files: list[str]) -> None:
     """Refuse what a dump of one run cannot do."""
     if answering.run is not None and answering.form != "vcd":
@@ -120,21 +128,10 @@ def _one_run(answering: Answering, files: list[str]) -> None:
         wrong(f"--as vcd dumps one run of one file, but here are {len(files)} files; name one of them")
 
 
-def _files(paths: list[str]) -> Iterator[str]:
-    for path in paths:
-        if path == _STDIN or not os.path.isdir(path):
-            yield path
-            continue
-        found = sorted(name for name in os.listdir(path) if name.endswith(".dseq"))
-        if not found:
-            wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
-        yield from (name if path == "." else os.path.join(path, name) for name in found)
-
-
 def _changed(paths: list[str]) -> list[str]:
     from seqcheck.commands.users import concerned
 
-    if any(path == _STDIN or os.path.isdir(path) for path in paths):
+    if any(path == STDIN or os.path.isdir(path) for path in paths):
         wrong("--changed needs the files that a change touches, not a folder or standard input")
     return concerned(paths)
 
@@ -155,11 +152,10 @@ class _Shelf:
         try:
             os.makedirs(folder, exist_ok=True)
         except (OSError, ValueError) as refusal:
-            why = getattr(refusal, "strerror", None) or refusal
-            wrong(f"--evidence: there can be no folder '{printable(folder)}': {why}")
+            wrong(f"--evidence: there can be no folder '{printable(folder)}': {reason_of(refusal)}")
 
     def _path(self, file: str) -> str:
-        name = "standard-input" if file == _STDIN else os.path.basename(file)
+        name = "standard-input" if file == STDIN else os.path.basename(file)
         return os.path.join(self._folder, f"{name}.json")
 
     def put(self, file: str, drive: Drive, kept: "list[Kept]") -> int:
@@ -190,7 +186,7 @@ def _one_file(
     from seqcheck.language import read_any
 
     try:
-        drive = read_any(_text(file), file, _text)
+        drive = read_any(text_of(file), file, used_text)
         if isinstance(drive, Library):
             return drive, PROVEN
         kept: list[Kept] | None = None if shelf is None else []
@@ -212,7 +208,7 @@ def _with_faults(outcome: Outcome, limits: Limits) -> Outcome:
 
 def _mistaken(problems: Problems) -> int:
     for problem in problems.found:
-        print(problem.line(), file=sys.stderr)
+        tell(problem.line())
     return WRONG
 
 
@@ -224,8 +220,8 @@ def _audit(file: str, evidence: str) -> int:
     from seqcheck.language import read
 
     try:
-        drive = read(_text(file), file, _text)
-        found = audit(drive, read_evidence(_text(evidence)))
+        drive = read(text_of(file), file, used_text)
+        found = audit(drive, read_evidence(text_of(evidence)))
     except Problems as problems:
         return _mistaken(problems)
     except NoEvidence as why:
@@ -234,23 +230,24 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}{_not_about(drive)}")
+    print(f"{printable(file)}: {_borne_out(found, drive)}{_not_about(drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
 
 
-def _borne_out(found: "Audited") -> str:
+def _borne_out(found: "Audited", drive: Drive) -> str:
+    asked = "hazards" if all(isinstance(rule, NeverRule) for rule in drive.rules) else "hazards, lengths and margins"
     late = f" ({found.however_late} of them however late the firmware is)" if found.however_late else ""
-    parts = [f"{found.safe} {'hazard' if found.safe == 1 else 'hazards'} safe{late}"] if found.safe else []
+    parts = [f"{found.safe} {'hazard' if found.safe == 1 else asked} safe{late}"] if found.safe else []
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
 
 
 def _not_about(drive: Drive) -> str:
-    """What evidence says nothing of: rules about margins and lengths, which only a new proof can bear out."""
-    lines = [str(rule.place.line) for rule in drive.rules if not isinstance(rule, NeverRule)]
+    """What evidence says nothing of: rules about single faults, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules if isinstance(rule, ToleratesRule)]
     if not lines:
         return ""
     return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
@@ -263,7 +260,7 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     from seqcheck.reports import screen, table
 
     try:
-        found = read_back(read(_text(file), file, _text), file)
+        found = read_back(read(text_of(file), file, used_text), file)
     except Problems as problems:
         return _mistaken(problems)
     report = table.report(found)
@@ -323,14 +320,14 @@ def _compare(asked: argparse.Namespace) -> int:
     form = one_of("--as", asked.form, COMPARE_FORMS)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
     observer = _observer(limits_of(asked))
-    if asked.old == asked.new == _STDIN:
+    if asked.old == asked.new == STDIN:
         wrong("only one of two files can come from standard input; name the other")
     from seqcheck.commands.compare import run
     from seqcheck.confirming import Fault
 
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
-        text, code = run((asked.old, asked.new), _text, observer, form, painted)
+        text, code = run((asked.old, asked.new), (text_of, used_text), observer, form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
@@ -349,7 +346,7 @@ def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None)
     one_of("--as", form, FORMS_OF_MARGINS)
     painted = wants_colour(colour, sys.stdout) and not out
     try:
-        text, code = run(read(_text(file), file, _text), file, _observer(limits), form, painted)
+        text, code = run(read(text_of(file), file, used_text), file, _observer(limits), form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
@@ -369,7 +366,7 @@ def _size(asked: argparse.Namespace) -> int:
     observer = _observer(limits_of(asked))
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
-        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)
+        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), (text_of, used_text), observer)
     except Problems as problems:
         return _mistaken(problems)
     except WrongCall as why:
@@ -385,13 +382,13 @@ def _tidy(paths: list[str], only_say: bool) -> int:
     from seqcheck.commands.tidy import World, run
 
     def write(text: str, file: str) -> int:
-        if file != _STDIN:
+        if file != STDIN:
             return deliver(text, file)
         if hasattr(sys.stdout, "reconfigure"):
             sys.stdout.reconfigure(encoding="utf-8", newline="")  # what came in goes out, whatever the terminal speaks
         return deliver(text, None)
 
-    return run(list(dict.fromkeys(_files(paths))), only_say, World(_data, _text, write, _mistaken, complain))
+    return run(list(dict.fromkeys(files_of(paths))), only_say, World(data_of, used_text, write, _mistaken, complain))
 
 
 def _start(kind: str | None) -> int:
@@ -402,24 +399,6 @@ def _start(kind: str | None) -> int:
         return deliver(listing() if kind is None else first_file(kind), None)
     except KeyError as unknown:
         wrong(unknown.args[0])
-
-
-def _text(file: str) -> str:
-    from seqcheck.language import decode
-
-    return decode(_data(file), file)
-
-
-def _data(file: str) -> bytes:
-    try:
-        return sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
-    except (OSError, ValueError) as refusal:
-        why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
-        raise Problems([_unreadable(file, why)]) from refusal
-
-
-def _unreadable(file: str, why: str) -> Problem:
-    return Problem(Place(file, 1, 1, 1, 1), "cannot-read", f"cannot read this file: {why}", "check its name and rights")
 
 
 def _observer(limits: Limits) -> Callable[[int], None]:

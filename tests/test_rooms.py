@@ -44,6 +44,7 @@ LOW_TO_HIGH = (
     "completing",
     "commands",
     "arguments",
+    "opening",
     "delivering",
     "cli",
     "__main__",

@@ -12,6 +12,7 @@ from seqcheck.exits import WRONG
 from seqcheck.records import dataclass
 
 if TYPE_CHECKING:
+    from seqcheck.proving.reductions import Reduction
     from seqcheck.verdict import Check
 
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
@@ -128,10 +129,11 @@ program itself is at fault. Where several files differ the worst counts, in the 
 
 @dataclass(frozen=True, slots=True)
 class Limits:
-    """When to give a proof up: after so many zones, or so many seconds for one file."""
+    """When to give a proof up: after so many zones, or so many seconds for one file. `without`: reductions left out."""
 
     zones: int | None
     seconds: float | None
+    without: "frozenset[Reduction]" = frozenset()
 
 
 def complain(text: str) -> None:
@@ -200,6 +202,7 @@ def parser() -> argparse.ArgumentParser:
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
+    lint.add_argument("--without", metavar="REDUCTION", action="append", default=[], help=argparse.SUPPRESS)
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -297,6 +300,22 @@ def check_named(name: str) -> "Check":
     if name in known:
         return known[name]
     wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
+
+
+def limits_of(asked: argparse.Namespace) -> Limits:
+    zones = count("--most-zones", asked.most_zones)
+    return Limits(zones, seconds(asked.give_up_after), _left_out(getattr(asked, "without", [])))
+
+
+def _left_out(names: list[str]) -> "frozenset[Reduction]":
+    from seqcheck.messages import nearest
+    from seqcheck.proving.reductions import Reduction
+
+    known = {one.value: one for one in Reduction}
+    for name in names:
+        if name not in known:
+            wrong(f"--without {name}: there is no such reduction; {nearest(name, known)}")
+    return frozenset(known[name] for name in names)
 
 
 def one_or_other(names: Sequence[str]) -> str:

@@ -10,6 +10,7 @@ from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
 from seqcheck.proving.prove import Proven, Prover, Refuted
+from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
 from seqcheck.records import replace
@@ -25,16 +26,22 @@ Kept = tuple[Hazard, Data | Trace | None]
 
 
 def check(
-    drive: Drive, file: str, only: frozenset[Check], observer: Observer, kept: list[Kept] | None = None
+    drive: Drive,
+    file: str,
+    only: frozenset[Check],
+    observer: Observer,
+    kept: list[Kept] | None = None,
+    without: frozenset[Reduction] = frozenset(),
 ) -> Outcome:
     """Everything about one drive.
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. Raises
-    Problems for a stage that cannot be proven, Fault if a trace does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. `without`
+    leaves out some of what makes proofs short. Raises Problems for a stage that cannot be proven, Fault if a trace does
+    not replay.
     """
-    prover = Prover(drive, kept is not None)
+    prover = Prover(drive, kept is not None, without)
     verdicts: list[Verdict] = []
     findings: list[Finding] = [*graph_findings(drive), *row_meanings(drive), *_without_path(drive)]
     for hazard, rule in asked(drive):

@@ -17,10 +17,10 @@ from seqcheck.arguments import (
     check_named,
     complain,
     count,
+    limits_of,
     one_of,
     one_or_other,
     parser,
-    seconds,
     tell,
     wrong,
 )
@@ -71,7 +71,8 @@ def _run(arguments: list[str]) -> int:
         if asked.command == "serve":
             from seqcheck.serving.command import serve
 
-            return serve(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+            limits = limits_of(asked)
+            return serve(limits.zones, limits.seconds)
         if asked.command == "rows":
             return _rows(asked.file, one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         if asked.command == "draw":
@@ -91,7 +92,7 @@ def _run(arguments: list[str]) -> int:
             return _compare(asked)
         if asked.command == "size":
             return _size(asked)
-        limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+        limits = limits_of(asked)
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
             return _margins(asked.file, limits, asked.form, colour, asked.out)
@@ -193,7 +194,7 @@ def _one_file(
 
     kept: list[Kept] | None = None if shelf is None else []
     try:
-        outcome = check(drive, file, only, _observer(limits), kept)
+        outcome = check(drive, file, only, _observer(limits), kept, limits.without)
     except Problems as problems:
         return Unread(file, problems.found), _mistaken(problems)
     except Fault as fault:
@@ -283,7 +284,7 @@ def _draw(asked: argparse.Namespace) -> int:
         one_of("--trace", asked.trace, draw.TRACED)
     if asked.trace is not None and (asked.modes or form == "mermaid"):
         wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
-    limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+    limits = limits_of(asked)
     wanted = draw.Wanted(asked.trace, count("--run", asked.run), form)
     outcome, code = _one_file(asked.file, frozenset(), limits, None)
     if isinstance(outcome, Library):
@@ -304,7 +305,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
     from seqcheck.commands.review import page
     from seqcheck.confirming import Fault
 
-    limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+    limits = limits_of(asked)
     outcome, code = _one_file(asked.file, frozenset(), limits, None)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
@@ -324,7 +325,7 @@ def _compare(asked: argparse.Namespace) -> int:
     """Hold two files against each other; the exit code."""
     form = one_of("--as", asked.form, COMPARE_FORMS)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
-    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    observer = _observer(limits_of(asked))
     if asked.old == asked.new == STDIN:
         wrong("only one of two files can come from standard input; name the other")
     from seqcheck.commands.compare import run
@@ -368,7 +369,7 @@ def _size(asked: argparse.Namespace) -> int:
 
     form = one_of("--as", asked.form, FORMS_OF_SIZES)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
-    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    observer = _observer(limits_of(asked))
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
         text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), (text_of, used_text), observer)

@@ -150,6 +150,10 @@ class Firmware:
         """The bound on `y` in a state: None with no trip in hand, or where it cannot be taken."""
         return self._within(state.hand) if state.hand >= 0 and self._interruptible(state) else None
 
+    def hand_is_timed(self, state: State) -> bool:
+        """Whether it matters how long the trip in hand has been there while the stay lasts."""
+        return state.hand >= 0 and (self._early >= 0 or self.hand_deadline(state) is not None)
+
     def facts(self, state: State) -> tuple[Known, ...]:
         """What is known in a state."""
         return self._runs[state.run].known if state.run >= 0 else self.drive.modes[state.mode].known

@@ -155,7 +155,8 @@ def zones(rounds: int) -> Measured:
 def counterexample(rounds: int) -> Measured:
     from seqcheck.checking import check
     from seqcheck.confirming import confirmed
-    from seqcheck.proving.projection import Manner, Projection
+    from seqcheck.proving.clocks import Manner
+    from seqcheck.proving.projection import Projection
     from seqcheck.proving.prove import Prover, Refuted
     from seqcheck.proving.search import first_hazard
     from seqcheck.proving.tracing import trace_of
@@ -216,7 +217,8 @@ def baseline(rounds: int) -> Measured:
         from bench.baseline import bounded
     except ImportError as why:
         raise Unmeasured("z3 is not installed") from why
-    from seqcheck.proving.projection import Manner, Projection
+    from seqcheck.proving.clocks import Manner
+    from seqcheck.proving.projection import Projection
     from seqcheck.proving.prove import Prover, Refuted
     from seqcheck.proving.search import first_hazard
 
@@ -292,7 +294,8 @@ def _looking(drive, hazard):  # type: ignore[no-untyped-def]
 
 def _exact(drive, hazard) -> int:  # type: ignore[no-untyped-def]
     """Prove a hazard with exact zones alone; the number of zones."""
-    from seqcheck.proving.projection import Manner, Projection
+    from seqcheck.proving.clocks import Manner
+    from seqcheck.proving.projection import Projection
     from seqcheck.proving.search import first_hazard
 
     looking, firmware = _looking(drive, hazard)

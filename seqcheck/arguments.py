@@ -308,6 +308,8 @@ def limits_of(asked: argparse.Namespace) -> Limits:
 
 
 def _left_out(names: list[str]) -> "frozenset[Reduction]":
+    if not names:
+        return frozenset()
     from seqcheck.messages import nearest
     from seqcheck.proving.reductions import Reduction
 

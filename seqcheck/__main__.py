@@ -2,7 +2,7 @@
 
 import sys
 
-from seqcheck.cli import main
+from seqcheck.entry import main
 
 if __name__ == "__main__":
     sys.exit(main())

@@ -5,17 +5,15 @@ import io
 import re
 import sys
 from collections.abc import Sequence
-from dataclasses import dataclass
-from fractions import Fraction
-from typing import Any, Never
+from typing import TYPE_CHECKING, Any, Never
 
 from seqcheck import __version__
-from seqcheck.commands import draw
 from seqcheck.exits import WRONG
-from seqcheck.messages import nearest
-from seqcheck.proving.reductions import Reduction
-from seqcheck.quantities import PICOSECONDS
-from seqcheck.verdict import Check
+from seqcheck.records import dataclass
+
+if TYPE_CHECKING:
+    from seqcheck.proving.reductions import Reduction
+    from seqcheck.verdict import Check
 
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
 COMPARE_FORMS = ("screen", "lines")
@@ -63,6 +61,14 @@ timing diagram, waivers, what is not covered. It stands alone.
 
 example:
   seqcheck report drive.dseq --out page.html"""
+_DRAW = """\
+Draw FILE: the graph of its modes, coloured by what each does to the winding, with the path of the worst counterexample
+marked; or with --trace a counterexample as a timing diagram. The picture is SVG; it says so where there is no
+counterexample. The exit code is that of 'lint'.
+
+example:
+  seqcheck draw drive.dseq --out modes.svg
+  seqcheck draw drive.dseq --trace overlap --out overlap.svg"""
 _SERVE = """\
 Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
 once, findings after a proof; hover, definition, completion and formatting are answered. The exit code is the
@@ -127,7 +133,7 @@ class Limits:
 
     zones: int | None
     seconds: float | None
-    without: frozenset[Reduction] = frozenset()
+    without: "frozenset[Reduction]" = frozenset()
 
 
 def complain(text: str) -> None:
@@ -203,9 +209,13 @@ def parser() -> argparse.ArgumentParser:
     rows.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     rows.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     drawing = commands.add_parser(
-        "draw", help="draw the modes or a run", description=draw.ABOUT, epilog=_EXITS, allow_abbrev=False
+        "draw", help="draw the modes or a run", description=_DRAW, epilog=_EXITS, allow_abbrev=False
     )
-    draw.arguments(drawing)
+    drawing.add_argument("file", metavar="FILE")
+    drawing.add_argument("--modes", action="store_true", help="the graph of modes (what is drawn if nothing is said)")
+    drawing.add_argument("--trace", metavar="CHECK", help="a timing diagram of a run of this check, such as 'overlap'")
+    drawing.add_argument("--run", metavar="N", help="the N-th counterexample of the screen, not the worst")
+    drawing.add_argument("--as", dest="form", metavar="FORM", default="svg", help="svg (the default) or mermaid")
     drawing.add_argument("--out", metavar="FILE", help="write the picture to FILE instead of standard output")
     _limited(drawing)
     review = commands.add_parser(
@@ -276,11 +286,16 @@ def wrong(text: str) -> Never:
 
 def one_of(option: str, value: str, known: tuple[str, ...]) -> str:
     if value not in known:
+        from seqcheck.messages import nearest
+
         wrong(f"{option} cannot be '{value}'; {nearest(value, known)}")
     return value
 
 
-def check_named(name: str) -> Check:
+def check_named(name: str) -> "Check":
+    from seqcheck.messages import nearest
+    from seqcheck.verdict import Check
+
     known = {check.value: check for check in Check}
     if name in known:
         return known[name]
@@ -292,7 +307,12 @@ def limits_of(asked: argparse.Namespace) -> Limits:
     return Limits(zones, seconds(asked.give_up_after), _left_out(getattr(asked, "without", [])))
 
 
-def _left_out(names: list[str]) -> frozenset[Reduction]:
+def _left_out(names: list[str]) -> "frozenset[Reduction]":
+    if not names:
+        return frozenset()
+    from seqcheck.messages import nearest
+    from seqcheck.proving.reductions import Reduction
+
     known = {one.value: one for one in Reduction}
     for name in names:
         if name not in known:
@@ -315,6 +335,10 @@ def count(option: str, text: str | None) -> int | None:
 def seconds(text: str | None) -> float | None:
     if text is None:
         return None
+    from fractions import Fraction
+
+    from seqcheck.quantities import PICOSECONDS
+
     match = re.fullmatch(r"([0-9]{1,15}(?:\.[0-9]{1,15})?) *([a-zµμ]+)", text)
     if match is None or match[2] not in PICOSECONDS or Fraction(match[1]) == 0:
         wrong(f"--give-up-after must be a time above 0 with its unit, such as '30 s', not '{text}'")

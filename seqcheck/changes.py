@@ -1,13 +1,13 @@
 """What a change of a file comes to, as data: what it says, what can be entered, what is proven, how much is left."""
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
 from enum import Enum
 from itertools import zip_longest
 
 from seqcheck.contents import Entry, contents
 from seqcheck.drive import Drive
 from seqcheck.hazards import Hazard, Literal
+from seqcheck.records import dataclass
 from seqcheck.source import Place
 from seqcheck.verdict import WARNINGS, Finding, Margin, Outcome, Undecided, Unsafe, Verdict
 

@@ -1,7 +1,6 @@
 """The pipeline from a drive to everything that is to be said about it, as one pure function."""
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
@@ -14,6 +13,7 @@ from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
+from seqcheck.records import replace
 from seqcheck.reports.waived import lets_pass
 from seqcheck.rules import asked_by, check_of_rule, never_so
 from seqcheck.sizing import cure

@@ -24,14 +24,14 @@ from seqcheck.arguments import (
     tell,
     wrong,
 )
-from seqcheck.commands import draw
-from seqcheck.delivering import Answering, answer_text, deliver, let_go, ready_streams, spare, wants_colour
+from seqcheck.delivering import Answering, answer_text, deliver, spare, wants_colour
 from seqcheck.drive import Drive, Library, NeverRule, ToleratesRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.messages import Problems
 from seqcheck.opening import STDIN, data_of, files_of, reason_of, text_of, used_text
 from seqcheck.source import printable
+from seqcheck.streams import let_go, ready_streams
 from seqcheck.verdict import WARNINGS, Answer, Check, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
 if TYPE_CHECKING:
@@ -181,15 +181,19 @@ def _lint(
 def _one_file(
     file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
 ) -> tuple[Answer, int]:
-    from seqcheck.checking import check
-    from seqcheck.confirming import Fault
     from seqcheck.language import read_any
 
     try:
         drive = read_any(text_of(file), file, used_text)
-        if isinstance(drive, Library):
-            return drive, PROVEN
-        kept: list[Kept] | None = None if shelf is None else []
+    except Problems as problems:
+        return Unread(file, problems.found), _mistaken(problems)
+    if isinstance(drive, Library):
+        return drive, PROVEN
+    from seqcheck.checking import check
+    from seqcheck.confirming import Fault
+
+    kept: list[Kept] | None = None if shelf is None else []
+    try:
         outcome = check(drive, file, only, _observer(limits), kept, limits.without)
     except Problems as problems:
         return Unread(file, problems.found), _mistaken(problems)
@@ -271,6 +275,8 @@ def _rows(file: str, colour: str, out: str | None) -> int:
 
 def _draw(asked: argparse.Namespace) -> int:
     """Draw a picture of a file; the exit code of its verdict."""
+    from seqcheck.commands import draw
+
     form = one_of("--as", asked.form, draw.FORMS)
     if asked.trace in draw.RUNLESS:
         wrong(f"--trace: a finding of '{asked.trace}' is no run; those of {one_or_other(draw.TRACED)} are")

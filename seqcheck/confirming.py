@@ -1,7 +1,6 @@
 """Before a run is shown: it is replayed, and the place of the file is found at which it goes wrong."""
 
 from seqcheck.drive import Drive
-from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
 from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Replayed, Trace
@@ -13,6 +12,8 @@ class Fault(Exception):  # noqa: N818 - the program is at fault, not the input
 
 def confirmed(drive: Drive, trace: Trace, *, whole: bool = False) -> tuple[Trace, Replayed]:
     """The trace and its replay; with `whole` its overlap from its true beginning on. Raises Fault."""
+    from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay  # a drive that is safe has no run
+
     try:
         shown = from_its_beginning(drive, trace) if whole else trace
         return shown, replay(drive, shown)

@@ -6,7 +6,6 @@ another clock is one difference and not a hundred.
 
 from collections import Counter
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
 from fractions import Fraction
 from math import ceil, floor
 
@@ -38,6 +37,7 @@ from seqcheck.drive import (
     fact_words,
 )
 from seqcheck.quantities import HERTZ, RATIOS, Interval, shown, widened
+from seqcheck.records import dataclass
 from seqcheck.source import Place
 
 Fields = dict[str, str]

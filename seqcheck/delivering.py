@@ -2,20 +2,20 @@
 
 import contextlib
 import errno
-import io
 import os
 import stat
 import sys
 from collections.abc import Iterable
-from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, Never, TextIO
+from typing import TYPE_CHECKING, TextIO
 
 from seqcheck.arguments import complain, wrong
 from seqcheck.drive import Library
 from seqcheck.exits import PROVEN, WRONG
 from seqcheck.opening import SUFFIX, reason_of
+from seqcheck.records import dataclass
 from seqcheck.source import printable
+from seqcheck.streams import let_go
 from seqcheck.verdict import Answer, Outcome
 
 if TYPE_CHECKING:
@@ -23,30 +23,6 @@ if TYPE_CHECKING:
 
 _WHATEVER_COMES = ("annotations", "json", "sarif")
 """The forms that also say which files could not be judged."""
-
-
-class _Closed(io.TextIOBase):
-    """A standard stream that was closed before the program began: to use it is refused, where Python has None."""
-
-    def __init__(self, name: str) -> None:
-        self._name = name
-
-    def write(self, text: str, /) -> Never:
-        raise OSError(errno.EBADF, f"{self._name} is closed")
-
-    @property
-    def buffer(self) -> Never:
-        self.write("")
-
-
-def ready_streams() -> None:
-    """Make the standard streams fit for any text; what was closed refuses, standard error swallows."""
-    sys.stdin = sys.stdin or _Closed("standard input")
-    sys.stdout = sys.stdout or _Closed("standard output")
-    sys.stderr = sys.stderr or io.StringIO()
-    for stream in (sys.stdout, sys.stderr):
-        if isinstance(stream, io.TextIOWrapper):
-            stream.reconfigure(errors="backslashreplace")
 
 
 def wants_colour(asked: str, stream: TextIO) -> bool:
@@ -58,11 +34,6 @@ def wants_colour(asked: str, stream: TextIO) -> bool:
     if os.environ.get("FORCE_COLOR"):
         return True
     return stream.isatty() and os.environ.get("TERM") != "dumb"
-
-
-def let_go() -> None:
-    """Have done with standard output after it refused, or what is stuck in it would spoil the exit code at the end."""
-    sys.stdout = _Closed("standard output")
 
 
 def spare(out: str | None, inputs: Iterable[str]) -> None:

@@ -5,11 +5,11 @@ outwards; `late by at most` is not yet added to them (it is `Clock.late`). `any`
 already expanded. Every object keeps its place in the source.
 """
 
-from dataclasses import dataclass
 from enum import Enum
 from fractions import Fraction
 
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.source import Place
 
 RESET = "reset"

@@ -1,10 +1,10 @@
 """What the rows of a switching table do to the stage, as data: levels, windings, shorts, swaps."""
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.drive import Mode
 from seqcheck.hazards import Current, Hazard
+from seqcheck.records import dataclass
 
 
 @dataclass(frozen=True, slots=True, order=True)

@@ -7,7 +7,6 @@ so: always released, and resting at that level.
 """
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import replace
 
 from seqcheck.drive import Drive, Fixed, Level, Mode, Move, Pin, SetStep, Step, Trip
 from seqcheck.faults import Brought, Faulted, affected, concerned
@@ -15,6 +14,7 @@ from seqcheck.hazards import Fault, Hazard
 from seqcheck.proving.prove import Prover
 from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import INSTANT
+from seqcheck.records import replace
 from seqcheck.verdict import Check, Outcome, Unsafe
 
 Observer = Callable[[int], None]

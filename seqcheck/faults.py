@@ -1,10 +1,10 @@
 """Single faults, as data: what is stuck, what it then brings about, and where."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from seqcheck.drive import Drive, Move, Trip
 from seqcheck.hazards import Fault, Hazard
+from seqcheck.records import dataclass
 
 
 @dataclass(frozen=True, slots=True, order=True)

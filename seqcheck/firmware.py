@@ -12,7 +12,6 @@ it matters how long ago a trip arrived, that one may arrive early too.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from typing import NamedTuple
 
 from seqcheck.drive import (
@@ -30,6 +29,7 @@ from seqcheck.drive import (
     When,
 )
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.verdict import Act
 from seqcheck.writing import FREE, KEEP, Put, Write, Writing
 
@@ -126,6 +126,7 @@ class Firmware:
         self._ports = [drive.pins[name].port if name in drive.pins else None for name in drive.columns]
         self._early = next((number for number, trip in enumerate(drive.trips) if trip.name == early), -1)
         self._known: dict[State, tuple[Edge, ...]] = {}
+        self._breaks: dict[tuple[int, Put], Step] = {}
         self._moves: dict[str, list[tuple[int, Move]]] = {}
         for number, move in enumerate(drive.moves):
             for mode in dict.fromkeys(move.sources):
@@ -353,7 +354,13 @@ class Firmware:
         run = len(self.drive.moves) + number
         if trip.target == RESET:
             return [Edge(0, None, None, False, True, self._reset(run))]
-        return [Edge(0, None, None, False, True, self._break_in(state, run))]
+        key = run, state.put
+        if key not in self._breaks:  # but for the mode that it left, the same wherever the same is written
+            self._breaks[key] = self._break_in(state, run)
+        step = self._breaks[key]
+        if step.target.run >= 0:
+            step = step._replace(target=step.target._replace(mode=state.mode))
+        return [Edge(0, None, None, False, True, step)]
 
     def _break_in(self, state: State, run: int) -> Step:
         """A break input cancels what is held and makes its first writes in one instant, in effect at once."""

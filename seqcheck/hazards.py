@@ -2,10 +2,10 @@
 
 from collections import Counter
 from collections.abc import Mapping
-from dataclasses import dataclass
 
 from seqcheck.drive import Known, Part
 from seqcheck.quantities import INSTANT, Interval
+from seqcheck.records import dataclass
 
 
 @dataclass(frozen=True, slots=True, order=True)

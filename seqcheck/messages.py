@@ -1,9 +1,9 @@
 """What is wrong with an input: place, class and words; many collected into one answer."""
 
 from collections.abc import Iterable
-from dataclasses import dataclass
 from difflib import get_close_matches
 
+from seqcheck.records import dataclass
 from seqcheck.source import Place
 
 

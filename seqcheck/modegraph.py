@@ -5,14 +5,13 @@ the file keep from ever beginning. The modes that it reaches are exactly those t
 counts from its entry, so that whether a move can begin depends on the mode alone, and no trip has to come.
 """
 
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 
-import networkx as nx
-
-from seqcheck.drive import RESET, Above, AtOnce, CurrentInto, CurrentOut, Drive, Known, Move, Trip, When
+from seqcheck.circuit.facts import circular
+from seqcheck.drive import RESET, AtOnce, CurrentInto, CurrentOut, Drive, Known, Move, Trip, When
 from seqcheck.firmware import Firmware
 from seqcheck.quantities import shown
+from seqcheck.records import dataclass
 from seqcheck.verdict import Check, Finding
 
 
@@ -59,12 +58,18 @@ class ModeGraph:
         self.modes = tuple(mode for mode in drive.modes if mode != RESET or mode in entered)
         self.openings = tuple(_openings(drive, self.modes))
         self.ways = tuple(self._ways())
-        graph: nx.DiGraph[str] = nx.DiGraph()
-        graph.add_nodes_from(self.modes)
-        graph.add_edges_from((way.source, way.run.target) for way in self.ways if way.possible)
-        self.graph = graph
-        self.reached = frozenset(nx.descendants(graph, drive.start)) | {drive.start}
-        self.leads_back = frozenset(nx.ancestors(graph, drive.start)) | {drive.start}
+        pairs = [(way.source, way.run.target) for way in self.ways if way.possible]
+        self._next = _grouped(pairs)
+        self.reached = frozenset(_followed(self._next, drive.start))
+        self.leads_back = frozenset(_followed(_grouped((after, before) for before, after in pairs), drive.start))
+
+    def after(self, mode: str) -> frozenset[str]:
+        """The other modes that can come after a mode."""
+        return frozenset(_followed(self._next, mode)) - {mode}
+
+    def repeats(self, mode: str) -> bool:
+        """Whether a mode can follow itself at once."""
+        return mode in self._next.get(mode, ())
 
     def _ways(self) -> Iterator[_Way]:
         for one in self.openings:
@@ -73,10 +78,29 @@ class ModeGraph:
             yield from (_Way(trip, mode, True) for mode in self.modes if mode in trip.resting)
 
 
+def _grouped(pairs: Iterable[tuple[str, str]]) -> dict[str, list[str]]:
+    """What follows each first one of the pairs."""
+    found: dict[str, list[str]] = {}
+    for first, second in pairs:
+        found.setdefault(first, []).append(second)
+    return found
+
+
+def _followed(following: Mapping[str, Sequence[str]], start: str) -> set[str]:
+    """A mode and all that can come after it."""
+    found, waiting = {start}, [start]
+    while waiting:
+        for one in following.get(waiting.pop(), ()):
+            if one not in found:
+                found.add(one)
+                waiting.append(one)
+    return found
+
+
 def _openings(drive: Drive, modes: tuple[str, ...]) -> Iterator[_Opening]:
     firmware = Firmware(drive, frozenset(), frozenset(), True)
     for mode in modes:
-        moves = [(move, *firmware.window(move)) for move in drive.moves if mode in move.sources]
+        moves = [(move, *firmware.window(move)) for _, move in firmware.leaving(mode)]
         bounds = [(bound, move) for move, _, _, bound in moves if bound is not None]
         stay, ender = min(bounds, key=lambda pair: pair[0], default=(None, None))
         yield from (_Opening(move, mode, soonest, latest, stay, ender) for move, soonest, latest, _ in moves)
@@ -112,10 +136,13 @@ def alike_throughout(outer: Drive, inner: Drive) -> bool:
 
 def _unreachable(graph: ModeGraph) -> Iterator[Finding]:
     start = graph.drive.start
+    leading: dict[str, list[_Way]] = {}
+    for way in graph.ways:
+        leading.setdefault(way.run.target, []).append(way)
     for mode in graph.modes:
         if mode in graph.reached:
             continue
-        ways = [way for way in graph.ways if way.run.target == mode and way.source != mode]
+        ways = [way for way in leading.get(mode, ()) if way.source != mode]
         text, way_out = f"no move and no trip leads to mode '{mode}'", "add one that does, or take its row out"
         if ways:
             runs = list(dict.fromkeys(way.run for way in ways))
@@ -159,9 +186,9 @@ def _without_way_back(graph: ModeGraph) -> Iterator[Finding]:
     for mode in graph.modes:
         if mode in graph.leads_back:
             continue
-        after = nx.descendants(graph.graph, mode) - {mode}
+        after = graph.after(mode)
         only = f"only {_quoted([one for one in graph.modes if one in after])} can follow it" if after else ""
-        said = only or f"{'nothing else' if graph.graph.has_edge(mode, mode) else 'nothing'} can follow it"
+        said = only or f"{'nothing else' if graph.repeats(mode) else 'nothing'} can follow it"
         text = f"mode '{mode}' has no way back to the start '{start}': {said}{_dead(graph, {mode, *after})}"
         way_out = f"add a move or a trip that leads back; if it is meant so, 'waive no-way-back for {mode}' says why"
         yield Finding(Check.NO_WAY_BACK, drive.modes[mode].place, text, way_out, (mode,))
@@ -178,8 +205,11 @@ def _dead(graph: ModeGraph, inside: set[str]) -> str:
 
 def _ambiguous(graph: ModeGraph) -> Iterator[Finding]:
     """A move is told of with all earlier ones of its mode that the same event may begin at the same moment."""
-    for number, one in enumerate(graph.openings):
-        earlier = [other for other in graph.openings[:number] if other.mode == one.mode and _alike(other, one)]
+    before: dict[str, list[_Opening]] = {}
+    for one in graph.openings:
+        of_mode = before.setdefault(one.mode, [])
+        earlier = [other for other in of_mode if _alike(other, one)]
+        of_mode.append(one)
         if not earlier:
             continue
         assert isinstance(one.move.trigger, When)
@@ -205,8 +235,7 @@ def _contradicts(known: tuple[Known, ...]) -> bool:
     """Whether not all of this can hold together: a current both ways, or a source above itself."""
     out = {one.node for one in known if isinstance(one, CurrentOut)}
     into = {one.node for one in known if isinstance(one, CurrentInto)}
-    above: nx.DiGraph[str] = nx.DiGraph([(one.upper, one.lower) for one in known if isinstance(one, Above)])
-    return bool(out & into) or not nx.is_directed_acyclic_graph(above)
+    return bool(out & into) or circular(known)
 
 
 # Moves that can never begin

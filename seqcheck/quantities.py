@@ -1,8 +1,9 @@
 """Exact quantities: rational numbers go in, whole picoseconds come out, rounded so that no behaviour is lost."""
 
-from dataclasses import dataclass
 from fractions import Fraction
 from math import ceil, floor
+
+from seqcheck.records import dataclass
 
 PICOSECONDS: dict[str, Fraction] = {
     "ps": Fraction(1),

@@ -1,7 +1,6 @@
 """What would cure an overlap, with the number, each proposal proven before it is made."""
 
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import permutations
 from math import ceil
@@ -12,6 +11,7 @@ from seqcheck.hazards import Clearing, Hazard, Lasting, delays
 from seqcheck.proving.prove import Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import Interval, shown, widened
+from seqcheck.records import dataclass, replace
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Cure, Trace
 

@@ -5,7 +5,7 @@ mark at the start of a file is no column at all. The end of a place is exclusive
 its last character, so that an empty place has equal ends.
 """
 
-from dataclasses import dataclass
+from seqcheck.records import dataclass
 
 
 def printable(name: str) -> str:

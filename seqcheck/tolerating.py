@@ -1,7 +1,6 @@
 """Whether modes tolerate single faults: every short that one stuck thing can bring, asked at rest in each of them."""
 
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import replace
 
 from seqcheck.confirming import Fault as Failed
 from seqcheck.confirming import confirmed, named, place_of
@@ -11,6 +10,7 @@ from seqcheck.faults import affected, concerned
 from seqcheck.hazards import Fault, Hazard, Stuck
 from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.tracing import Infeasible
+from seqcheck.records import replace
 from seqcheck.source import Place
 from seqcheck.verdict import Check, Event, Safe, Trace, Undecided, Unsafe, Verdict
 

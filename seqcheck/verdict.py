@@ -1,12 +1,12 @@
 """What a proof ends with: safe, unsafe with the run that shows it, or undecided. All that a report may read."""
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.drive import Cell, Command, Drive, Library
 from seqcheck.faults import Faulted
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.messages import Problem
+from seqcheck.records import dataclass
 from seqcheck.source import Place
 
 

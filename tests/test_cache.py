@@ -1,7 +1,8 @@
 """The private cache of built parsers."""
 
+import marshal
 import os
-import pickle
+from importlib.util import source_hash
 from pathlib import Path
 
 import pytest
@@ -17,6 +18,12 @@ BROKEN = SAMPLE.replace("when boot", "whenever boot").replace("wait settle", "wa
 def folder(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     monkeypatch.setenv("XDG_CACHE_HOME", str(tmp_path))
     return tmp_path / "seqcheck"
+
+
+def kept_as(thing: object) -> bytes:
+    """How the cache writes a thing."""
+    data = marshal.dumps(thing)
+    return source_hash(data) + data
 
 
 def anew() -> None:
@@ -68,7 +75,7 @@ def test_a_link_in_place_of_the_folder_is_not_used(folder: Path, tmp_path: Path)
     assert not any((tmp_path / "elsewhere").iterdir())
 
 
-@pytest.mark.parametrize("damage", [b"", b"no pickle", pickle.dumps(5), pickle.dumps(({}, {}))])
+@pytest.mark.parametrize("damage", [b"", b"nothing", b"x" * 100, kept_as(5), kept_as(({}, {}))])
 def test_a_damaged_file_is_as_none(folder: Path, damage: bytes) -> None:
     anew()
     built = read(SAMPLE, "t.dseq", lambda path: "")
@@ -77,6 +84,16 @@ def test_a_damaged_file_is_as_none(folder: Path, damage: bytes) -> None:
     anew()
     assert read(SAMPLE, "t.dseq", lambda path: "") == built
     assert file.read_bytes() != damage
+
+
+def test_no_single_bit_can_change_unnoticed(folder: Path) -> None:
+    cache.kept("a", ["some", {"plain": 1}])
+    whole = (folder / "a").read_bytes()
+    for place in range(len(whole) * 8):
+        damaged = bytearray(whole)
+        damaged[place // 8] ^= 1 << place % 8
+        (folder / "a").write_bytes(damaged)
+        assert cache.recalled("a") is None
 
 
 def test_no_home_is_no_trouble(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:

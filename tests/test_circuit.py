@@ -10,6 +10,7 @@ import pytest
 from reading import drive_of
 
 from seqcheck.circuit import contradicted, graph, shorting_sets
+from seqcheck.circuit.facts import circular
 from seqcheck.drive import Above, Capacitor, Conducts, Diode, Rails, Sources, Stage, Switch
 from seqcheck.evidence.cover.shorts import first_uncovered, shorts
 from seqcheck.hazards import Hazard
@@ -472,3 +473,9 @@ def test_sets_are_counted_over_all_supplies(monkeypatch: pytest.MonkeyPatch) -> 
     assert len(shorting_sets(two)) == 6
     monkeypatch.setattr(graph, "MOST_SETS", 5)
     assert "has 6 minimal shorting sets; at most 5 " in refusal(two)
+
+
+@pytest.mark.parametrize(("order", "circle"), [("", False), ("ab", False), ("aa", True), ("ab bc", False),
+                                               ("ab ba", True), ("ab bc ca", True), ("ab cd dc", True)])  # fmt: skip
+def test_a_source_cannot_lie_above_itself(order: str, circle: bool) -> None:
+    assert circular(Above(*pair) for pair in order.split()) is circle

@@ -11,7 +11,8 @@ from pathlib import Path
 import pytest
 from proofs import leg
 
-from seqcheck import checking, cli, confirming
+from seqcheck import checking, cli
+from seqcheck.evidence import replay as replaying
 from seqcheck.evidence.replay import NotPermitted
 
 ROOT = Path(__file__).parent.parent
@@ -106,7 +107,7 @@ def _refuses(*_: object) -> None:
 def test_fault(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
     """A counterexample that does not replay is never shown; the program says that it is at fault."""
     put(x=UNSAFE)
-    monkeypatch.setattr(confirming, "replay", _refuses)
+    monkeypatch.setattr(replaying, "replay", _refuses)
     assert lint("x.dseq") == 4
     out, err = capsys.readouterr()
     assert out == ""
@@ -146,7 +147,7 @@ def test_worst_counts(files: tuple[str, ...], code: int) -> None:
 def test_fault_is_worst(monkeypatch: pytest.MonkeyPatch) -> None:
     """A fault counts above wrong input."""
     put(u=UNSAFE, w=WRONG, s=SAFE)
-    monkeypatch.setattr(confirming, "replay", _refuses)
+    monkeypatch.setattr(replaying, "replay", _refuses)
     assert lint("w.dseq", "u.dseq", "s.dseq") == 4
 
 
@@ -410,7 +411,7 @@ def test_a_form_for_programs_tells_of_every_file(form: str, capsys: pytest.Captu
 def test_json_and_sarif_of_a_fault(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
     """What the program got wrong is said in the document too, and nothing else of the file."""
     put(u=UNSAFE)
-    monkeypatch.setattr(confirming, "replay", _refuses)
+    monkeypatch.setattr(replaying, "replay", _refuses)
     assert lint("--as", "json", "u.dseq") == 4
     (entry,) = json.loads(capsys.readouterr().out)["files"]
     assert (entry["standing"], set(entry)) == ("internal-error", {"file", "standing", "fault"})

@@ -5,23 +5,23 @@ import time
 import pytest
 from lark import GrammarError, Lark
 
-from seqcheck.language import grammar
+from seqcheck.language import grammar, making
 from seqcheck.language.words import NO_QUANTITY, RESERVED, SECTIONS, SINGLES
 
 
 @pytest.fixture(scope="module")
 def parser() -> Lark:
-    return grammar.built(grammar.grammar_text(), None)
+    return making.built(grammar.grammar_text(), grammar.STARTS)
 
 
 def test_it_builds_without_any_conflict() -> None:
-    assert grammar.built(grammar.grammar_text(), None, strict=True)
+    assert making.built(grammar.grammar_text(), grammar.STARTS, strict=True)
 
 
 def test_a_conflict_would_be_noticed() -> None:
     text = grammar.grammar_text().replace("names: NAME", "other: NAME\nnames: other\n    | NAME", 1)
     with pytest.raises(GrammarError, match="Reduce/Reduce collision"):
-        grammar.built(text, None, strict=True)
+        making.built(text, grammar.STARTS, strict=True)
 
 
 def words_of(parser: Lark) -> dict[str, str]:

@@ -10,6 +10,7 @@ import seqcheck
 HOUSE = Path(seqcheck.__file__).parent
 
 LOW_TO_HIGH = (
+    "records",
     "shipped",
     "exits",
     "ranging",
@@ -43,10 +44,12 @@ LOW_TO_HIGH = (
     "serving",
     "completing",
     "commands",
+    "streams",
     "arguments",
     "opening",
     "delivering",
     "cli",
+    "entry",
     "__main__",
 )
 

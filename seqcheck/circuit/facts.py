@@ -2,8 +2,6 @@
 
 from collections.abc import Iterable
 
-import networkx as nx
-
 from seqcheck.drive import Above, CurrentInto, CurrentOut, Known
 from seqcheck.hazards import Hazard
 
@@ -23,7 +21,16 @@ def excluded(known: frozenset[Known], needs: frozenset[Known]) -> bool:
     """Whether what is known leaves no way for all of the needs to be so as well."""
     if any(opposite(one) in known for one in needs):
         return True
-    above = {(one.upper, one.lower) for one in known | needs if isinstance(one, Above)}
+    return circular(known | needs)
+
+
+def circular(facts: Iterable[Known]) -> bool:
+    """Whether a source would have to lie above itself."""
+    above = {(one.upper, one.lower) for one in facts if isinstance(one, Above)}
+    if len(above) < 2:
+        return any(upper == lower for upper, lower in above)
+    import networkx as nx  # takes longer to load than most proofs, and few drives have sources
+
     return not nx.is_directed_acyclic_graph(nx.DiGraph(above))
 
 

@@ -1,24 +1,21 @@
-"""The stage as a directed graph, and the minimal sets of switches over all ways through it.
+"""The stage as a directed graph.
 
 Every edge carries the switch that must be on for it to conduct (none: it always conducts) and the polarity that it
 needs.
 """
 
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
-
-import networkx as nx
 
 from seqcheck.circuit.ways import Needs, Passage
 from seqcheck.drive import Above, Capacitor, Conducts, Rails, Sources, Stage, Switch
 from seqcheck.hazards import Hazard
+from seqcheck.records import dataclass
 
 MOST_SETS = 1000
 """More minimal sets than this are refused, with their number."""
 MOST_STEPS = 3_000_000
 """Comparisons of sets, two seconds or three, after which counting is given up, and the stage is refused."""
 
-Graph = nx.MultiDiGraph  # nodes are names of the stage; edges carry `switch`, `needs` and `element`
 Stiff = Rails | Sources | Capacitor
 
 NOTHING: Needs = frozenset()
@@ -77,23 +74,14 @@ def stiff_edges(number: int, element: Stiff) -> Iterator[Edge]:
                 yield Edge(upper, lower, None, frozenset({Above(lower, upper)}), number)
 
 
-def graph_of(edges: Iterable[Edge]) -> "Graph[str]":
-    """The edges as a graph."""
-    graph: Graph[str] = nx.MultiDiGraph()
+def passages(edges: Iterable[Edge]) -> dict[str, list[Passage]]:
+    """The edges as the search for least ways reads them: by the node where they start, those to one end together."""
+    found: dict[str, dict[str, list[Passage]]] = {}
     for edge in edges:
-        graph.add_edge(edge.start, edge.end, switch=edge.switch, needs=edge.needs, element=edge.element)
-    return graph
-
-
-def passages(graph: "Graph[str]") -> dict[str, list[Passage]]:
-    """The graph as the search for least ways reads it."""
-    return {
-        node: [
-            Passage(end, frozenset(filter(None, (data["switch"],))), data["needs"], data["element"])
-            for _, end, data in graph.out_edges(node, data=True)
-        ]
-        for node in graph
-    }
+        passage = Passage(edge.end, frozenset(filter(None, (edge.switch,))), edge.needs, edge.element)
+        found.setdefault(edge.start, {}).setdefault(edge.end, []).append(passage)
+        found.setdefault(edge.end, {})
+    return {node: [one for some in ends.values() for one in some] for node, ends in found.items()}
 
 
 def in_order(hazards: Iterable[Hazard], stage: Stage) -> list[Hazard]:

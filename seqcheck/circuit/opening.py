@@ -8,7 +8,7 @@ from collections import Counter
 from collections.abc import Iterable, Iterator
 
 from seqcheck.circuit import graph as graphs
-from seqcheck.circuit.graph import NOTHING, Edge, conducting, graph_of, in_order, nodes_of, passages, stiff
+from seqcheck.circuit.graph import NOTHING, Edge, conducting, in_order, nodes_of, passages, stiff
 from seqcheck.circuit.ways import Needs, Quest, Steps, TooMuch, least_ways
 from seqcheck.drive import Capacitor, CurrentInto, CurrentOut, Stage, Winding
 from seqcheck.hazards import Current, Hazard, Literal
@@ -99,7 +99,7 @@ def flow_edges(stage: Stage, joined: bool) -> Iterator[Edge]:
 def _ways(stage: Stage, winding: Winding, current: Current) -> list[frozenset[str]]:
     """The minimal sets of switches on the ways of a current: from where it leaves the winding to where it enters it."""
     start, end = current.into or _SUPPLY, current.out_of or _SUPPLY
-    graph = passages(graph_of(flow_edges(stage, None in (current.out_of, current.into))))
+    graph = passages(flow_edges(stage, None in (current.out_of, current.into)))
     found: list[frozenset[str]] = []
     try:
         for _, (switches, _) in least_ways(

@@ -2,7 +2,6 @@
 
 from cmath import exp, phase, pi
 from collections.abc import Iterator
-from dataclasses import replace
 from itertools import combinations, product
 from math import prod
 
@@ -16,6 +15,7 @@ from seqcheck.drive import Carrier, Cell, Command, Drive, Fixed, Follow, Known, 
 from seqcheck.effects import Kind, Level, Node, Row, Swap, Table, Vector, Word, Wound
 from seqcheck.hazards import Current, Hazard
 from seqcheck.messages import Problem, Problems
+from seqcheck.records import replace
 
 MOST_WORDS = 4096
 """More words than this in one row are refused."""

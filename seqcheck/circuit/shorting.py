@@ -12,7 +12,6 @@ from seqcheck.circuit.graph import (
     NOTHING,
     Stiff,
     conducting,
-    graph_of,
     in_order,
     nodes_of,
     passages,
@@ -50,7 +49,7 @@ def _found(stage: Stage) -> tuple[dict[frozenset[str], tuple[tuple[str, str], se
     Of several supplies that the same switches short the first of the file is named.
     """
     passed = (edge for number, element in enumerate(stiff(stage)) for edge in stiff_edges(number, element))
-    graph = passages(graph_of([*conducting(stage), *passed]))
+    graph = passages([*conducting(stage), *passed])
     quests, elements = [], []
     for number, element in enumerate(stiff(stage)):
         for upper, lower, first in _ends(element):

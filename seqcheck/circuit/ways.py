@@ -6,11 +6,11 @@ stop is final, and its number a lower bound.
 """
 
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass
 from heapq import heappop, heappush
 from typing import NamedTuple
 
 from seqcheck.drive import Known
+from seqcheck.records import dataclass
 
 Switches = frozenset[str]
 Needs = frozenset[Known]

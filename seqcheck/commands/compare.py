@@ -2,7 +2,6 @@
 
 from collections import Counter
 from collections.abc import Callable, Iterator
-from dataclasses import replace
 
 from seqcheck.changes import Comparison, Moved, Reach, Told, Turn, Turned, Unmeasured, Way, differences
 from seqcheck.checking import check
@@ -15,6 +14,7 @@ from seqcheck.margins import margin
 from seqcheck.messages import Problem, Problems
 from seqcheck.modegraph import ModeGraph
 from seqcheck.proving.prove import Prover
+from seqcheck.records import replace
 from seqcheck.reports import comparison, screen
 from seqcheck.reports.waived import reason
 from seqcheck.verdict import Check, Outcome, Safe, Unsafe, Verdict

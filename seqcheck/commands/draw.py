@@ -1,21 +1,11 @@
 """`seqcheck draw`: the picture that is asked for, as a text."""
 
-import argparse
-from dataclasses import dataclass
-
+from seqcheck.records import dataclass
 from seqcheck.reports.standing import Sorted, Standing, are, sorted_out, worst
 from seqcheck.source import printable
 from seqcheck.verdict import Check, Outcome, Unsafe
 
 FORMS = ("svg", "mermaid")
-ABOUT = """\
-Draw FILE: the graph of its modes, coloured by what each does to the winding, with the path of the worst counterexample
-marked; or with --trace a counterexample as a timing diagram. The picture is SVG; it says so where there is no
-counterexample. The exit code is that of 'lint'.
-
-example:
-  seqcheck draw drive.dseq --out modes.svg
-  seqcheck draw drive.dseq --trace overlap --out overlap.svg"""
 RUNLESS = tuple(
     check.value
     for check in (
@@ -35,15 +25,6 @@ class Wanted:
     check: str | None
     run: int | None
     form: str
-
-
-def arguments(parser: argparse.ArgumentParser) -> None:
-    """Give the parser what is special to this command."""
-    parser.add_argument("file", metavar="FILE")
-    parser.add_argument("--modes", action="store_true", help="the graph of modes (what is drawn if nothing is said)")
-    parser.add_argument("--trace", metavar="CHECK", help="a timing diagram of a run of this check, such as 'overlap'")
-    parser.add_argument("--run", metavar="N", help="the N-th counterexample of the screen, not the worst")
-    parser.add_argument("--as", dest="form", metavar="FORM", default="svg", help="svg (the default) or mermaid")
 
 
 def drawn(outcome: Outcome, wanted: Wanted) -> str:

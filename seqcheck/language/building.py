@@ -2,10 +2,9 @@
 
 from typing import Any
 
-from lark import Token, Transformer, v_args
-
 from seqcheck.drive import Conducts, Fixed, How, Lasts, Level, Order, Purpose, Update
 from seqcheck.language import syntax as s
+from seqcheck.language.driver import Token
 from seqcheck.language.words import NO_QUANTITY, RESERVED
 from seqcheck.source import Place
 
@@ -15,12 +14,10 @@ def _always(value: object) -> Any:
     return lambda self, *_: value
 
 
-@v_args(inline=True)
-class Builder(Transformer[Token, Any]):
+class Builder:
     """Builds the syntax of a line; `file` and `line` say where, and are set before each line."""
 
     def __init__(self) -> None:
-        super().__init__()
         self.file = ""
         self.line = 0
         self.reserved: list[s.Word] = []  # words of this line that stand in a name's place but cannot be names
@@ -28,11 +25,11 @@ class Builder(Transformer[Token, Any]):
     def _place(self, first: Token, last: Token | None = None) -> Place:
         """The span from one token to another."""
         end = last or first
-        return Place(self.file, self.line, first.column or 1, self.line, end.end_column or 1)
+        return Place(self.file, self.line, first.column, self.line, end.end_column)
 
     def _word(self, token: Token) -> s.Word:
         """A name; `reset` is left to the definitions, since it may be referred to."""
-        word = s.Word(self._place(token), str(token))
+        word = s.Word(self._place(token), token.text)
         if word.text in RESERVED and word.text != "reset":
             self.reserved.append(word)
         return word
@@ -43,7 +40,7 @@ class Builder(Transformer[Token, Any]):
 
     def _quoted(self, token: Token) -> s.Word:
         """A text, without its quotes."""
-        return s.Word(self._place(token), str(token)[1:-1])
+        return s.Word(self._place(token), token.text[1:-1])
 
     # Small rules that only hand something on
 
@@ -77,10 +74,10 @@ class Builder(Transformer[Token, Any]):
     # Quantities
 
     def plain(self, number: Token) -> s.Term:
-        return s.Term(self._place(number), str(number), "")
+        return s.Term(self._place(number), number.text, "")
 
     def term(self, number: Token, unit: Token) -> s.Term:
-        return s.Term(self._place(number, unit), str(number), str(unit))
+        return s.Term(self._place(number, unit), number.text, unit.text)
 
     def named(self, name: Token) -> s.Word:
         return self._word(name)
@@ -110,7 +107,7 @@ class Builder(Transformer[Token, Any]):
         self, left: list[s.Operand | s.Sign], sign: Token, right: list[s.Operand | s.Sign]
     ) -> list[s.Operand | s.Sign]:
         left.extend(right)
-        left.append(s.Sign(self._place(sign), str(sign)))
+        left.append(s.Sign(self._place(sign), sign.text))
         return left
 
     # Lines outside sections
@@ -199,7 +196,7 @@ class Builder(Transformer[Token, Any]):
         return s.RowLine(self._word(name), cells, _joined(one for one in parts if type(one) is tuple), means)
 
     def cell_on(self, token: Token) -> s.CellWord:
-        return s.CellWord(self._place(token), Fixed(str(token)), None, False)
+        return s.CellWord(self._place(token), Fixed(token.text), None, False)
 
     cell_off = cell_keep = cell_free = cell_on
 
@@ -214,7 +211,7 @@ class Builder(Transformer[Token, Any]):
         return s.MeansWord(self._place(start, last), word, self._words(nodes))
 
     def purpose(self, word: Token, *nodes: Token) -> tuple[Purpose, Token, tuple[Token, ...]]:
-        return Purpose(str(word)), nodes[-1] if nodes else word, nodes
+        return Purpose(word.text), nodes[-1] if nodes else word, nodes
 
     def facts(self, *facts: s.FactWord) -> tuple[s.FactWord, ...]:
         return facts
@@ -315,7 +312,7 @@ class Builder(Transformer[Token, Any]):
         return s.ToleratesLine(modes)
 
     def waive(self, check: Token, name: Token, reason: Token) -> s.WaiveLine:
-        return s.WaiveLine(s.Word(self._place(check), str(check)), self._word(name), self._quoted(reason))
+        return s.WaiveLine(s.Word(self._place(check), check.text), self._word(name), self._quoted(reason))
 
 
 def _joined(groups: Any) -> tuple[s.FactWord, ...]:

@@ -1,25 +1,26 @@
 """A private cache of built parsers: building one from the grammar's text costs more than a small proof.
 
-The folder belongs to the user alone: what it holds is unpickled, so nobody else may write there. Whatever goes wrong,
-from a foreign folder to a damaged file, the answer is that there is nothing in the cache.
+The folder belongs to the user alone: what it holds decides how files are read, so nobody else may write there. Whatever
+goes wrong, from a foreign folder to a damaged file, the answer is that there is nothing in the cache.
 """
 
 import contextlib
-import hashlib
+import marshal
 import os
-import pickle
 import stat
 import sys
+from importlib.util import source_hash
 from pathlib import Path
 from typing import Any
 
+_CHECK = 8  # bytes in front that tell whether the others are whole
 _KEPT = 4  # files of older grammars and versions that may stay
 
 
 def key_of(*parts: str) -> str:
     """A name for what depends on these texts and on this Python."""
     whole = "\0".join((*parts, sys.version))
-    return hashlib.sha256(whole.encode("utf-8")).hexdigest()
+    return source_hash(whole.encode("utf-8")).hex()
 
 
 def recalled(key: str) -> Any | None:
@@ -28,19 +29,21 @@ def recalled(key: str) -> Any | None:
         file = _folder() / key
         with file.open("rb") as stream:
             if _private(os.fstat(stream.fileno())):
-                return pickle.load(stream)
+                check, data = stream.read(_CHECK), stream.read()
+                return marshal.loads(data) if check == source_hash(data) else None
     return None
 
 
-def kept(key: str, thing: object) -> None:
-    """Keep a thing under a key, whole or not at all."""
+def kept(key: str, thing: Any) -> None:
+    """Keep plain data under a key, whole or not at all."""
     with contextlib.suppress(Exception):
         folder = _folder()
         draft = folder / f"{key}.{os.getpid()}"
         try:
             with draft.open("xb") as stream:
                 os.fchmod(stream.fileno(), 0o600)
-                pickle.dump(thing, stream, pickle.HIGHEST_PROTOCOL)
+                data = marshal.dumps(thing)
+                stream.write(source_hash(data) + data)
             draft.replace(folder / key)
         finally:
             draft.unlink(missing_ok=True)

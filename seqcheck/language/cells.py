@@ -6,8 +6,9 @@ word stands where follows from its place, never from its look, since most words 
 
 import re
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from itertools import pairwise
+
+from seqcheck.records import dataclass
 
 _UNIT = r"(?:%|(?:ps|ns|us|µs|μs|ms|s|ticks|Hz|kHz|MHz|GHz|ppm)(?!\w))"
 _AMOUNT = rf"[0-9]+(?:\.[0-9]+)?(?:[ \t]*{_UNIT})?"

@@ -1,7 +1,8 @@
 """Cells one below the other: how wide each column of a table is, and the lines that come of it."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+
+from seqcheck.records import dataclass
 
 MARGIN = "  "
 """Before the lines of a section; steps have it twice."""

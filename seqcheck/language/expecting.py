@@ -6,25 +6,22 @@ rule, the word that follows tells; so a line is finished once for each word that
 """
 
 from collections import deque
-from typing import Any, NamedTuple
+from contextlib import suppress
+from typing import NamedTuple
 
-from lark import Lark, UnexpectedInput
-from lark.lexer import PatternStr
-from lark.parsers.lalr_analysis import Shift
-
+from seqcheck.language.driver import END, Driver, Misread
 from seqcheck.language.grammar import STATEMENT, parsed, ready
 from seqcheck.language.names import Kind, names_in
 from seqcheck.language.words import CHECKS, STARTS
 from seqcheck.messages import Problem
 from seqcheck.quantities import HERTZ, PICOSECONDS, RATIOS
 
-_END = "$END"
 _SAMPLES = {"NAME": "x", "NUMBER": "1", "UNIT": "us", "STRING": '""', "CHECK": CHECKS[0]}
 _UNITS = (*PICOSECONDS, "ticks", *HERTZ, *RATIOS)
 _HERE = "name_that_is_being_written"
 _LONGEST = 12  # words that may be missing from a line; none of the grammar lacks as many
 
-Stack = tuple[Any, ...]
+Stack = tuple[int, ...]
 """The parser's states, the last one on top."""
 
 
@@ -79,8 +76,8 @@ def _kinds(automaton: "_Automaton", before: str, start: str) -> frozenset[Kind]:
     found = set()
     named = automaton.fed(automaton.stack, "NAME")
     assert named is not None
-    for following in (_END, *automaton.accepted(named)):
-        rest = [] if following == _END else automaton.rest(named, following)
+    for following in (END, *automaton.accepted(named)):
+        rest = [] if following == END else automaton.rest(named, following)
         if rest is None:
             continue
         line = " ".join([f"{before}{_HERE}", *(automaton.sample(one) for one in rest)])
@@ -93,18 +90,12 @@ def _kinds(automaton: "_Automaton", before: str, start: str) -> frozenset[Kind]:
 class _Automaton:
     """The parser's tables without what is built by them: which words may come, and how a line is finished."""
 
-    def __init__(self, parser: Lark, before: str, start: str) -> None:
-        patterns = ((one.name, one.pattern) for one in parser.terminals)
-        self.literals = {name: pattern.value for name, pattern in patterns if isinstance(pattern, PatternStr)}
-        reading = parser.parse_interactive(before, start)
-        self._table: Any = reading.parser_state.parse_conf.parse_table.states
-        self._last = reading.parser_state.parse_conf.end_state
+    def __init__(self, parser: Driver, before: str, start: str) -> None:
+        self._parser = parser
+        self.literals = parser.literals
         self.stack: Stack = ()  # nothing may come after what cannot be read
-        try:
-            reading.exhaust_lexer()
-            self.stack = tuple(reading.parser_state.state_stack)
-        except UnexpectedInput:
-            pass
+        with suppress(Misread):
+            self.stack = tuple(parser.stack(before, start))
 
     def sample(self, terminal: str) -> str:
         """A text for a terminal."""
@@ -114,22 +105,13 @@ class _Automaton:
         """The terminals that may come, the end of the line not among them."""
         if not stack:
             return []
-        known = self._table[stack[-1]]
+        known = self._parser.tables.actions[stack[-1]]
         return [one for one in known if (one in _SAMPLES or one in self.literals) and self.fed(stack, one) is not None]
 
     def fed(self, stack: Stack, terminal: str) -> Stack | None:
-        """The states after a terminal; None where it may not come, an empty stack after the end of the line."""
-        states = list(stack)
-        while terminal in self._table[states[-1]]:
-            action, argument = self._table[states[-1]][terminal]
-            if action is Shift:
-                return (*states, argument)
-            size = len(argument.expansion)
-            del states[len(states) - size :]
-            states.append(self._table[states[-1]][argument.origin.name][1])
-            if terminal == _END and states[-1] == self._last:
-                return ()
-        return None
+        """The states after a terminal; None where it may not come."""
+        states = self._parser.fed(stack, terminal)
+        return None if states is None else tuple(states)
 
     def rest(self, stack: Stack, following: str) -> list[str] | None:
         """The fewest terminals that finish a line and begin with `following`."""
@@ -138,7 +120,7 @@ class _Automaton:
         seen = set()
         while queue:
             here, words = queue.popleft()
-            if self.fed(here, _END) is not None:
+            if self.fed(here, END) is not None:
                 return words
             for one in self.accepted(here) if len(words) < _LONGEST else ():
                 after = self.fed(here, one)

@@ -1,17 +1,12 @@
-"""Building the grammar; parsing one line."""
+"""The grammar, its parser, and the parsing of one line."""
 
-from collections.abc import Iterator
 from functools import lru_cache
+from importlib.util import find_spec
 from typing import Any
-
-from lark import Lark, Token, UnexpectedInput
-from lark import __version__ as lark_version
-from lark.grammar import Rule
-from lark.lark import _LOAD_ALLOWED_OPTIONS, PostLex
-from lark.lexer import TerminalDef
 
 from seqcheck.language import cache
 from seqcheck.language.building import Builder
+from seqcheck.language.driver import Driver, Misread, Tables
 from seqcheck.language.mistakes import explained, reserved
 from seqcheck.language.syntax import Node
 from seqcheck.language.words import SECTIONS
@@ -27,51 +22,42 @@ def grammar_text() -> str:
     return shipped("drive.lark")
 
 
-class _WholeWords(PostLex):
-    """Lets the contextual lexer try NAME everywhere, or `legs` would be read as `leg` and `s`."""
-
-    always_accept = ("NAME",)
-
-    def process(self, stream: Iterator[Token]) -> Iterator[Token]:
-        """The tokens as they are."""
-        return stream
-
-
-def built(text: str, builder: Builder | None, strict: bool = False) -> Lark:
-    """A parser from the grammar's text."""
-    return Lark(text, parser="lalr", start=list(STARTS), transformer=builder, strict=strict, postlex=_WholeWords())
-
-
 @lru_cache(maxsize=1)
-def _ready() -> tuple[Lark, Builder]:
+def _ready() -> tuple[Driver, Builder]:
     builder = Builder()
     text = grammar_text()
-    key = cache.key_of(text, lark_version)
-    parser = _revived(cache.recalled(key), builder)
-    if parser is None:
-        parser = built(text, builder)
-        cache.kept(key, _laid_down(parser))
-    return parser, builder
+    key = cache.key_of(text, _source_of("lark"), _source_of("seqcheck.language.making"))
+    driver = _revived(cache.recalled(key), builder)
+    if driver is None:
+        from seqcheck.language import making
+
+        tables = making.tables(making.built(text, STARTS))
+        cache.kept(key, tuple(tables))
+        driver = Driver(tables, builder)
+    return driver, builder
 
 
-def ready() -> Lark:
-    """The parser of single lines, built once."""
+def _source_of(module: str) -> str:
+    """The text of a module, which tells its version, without loading it; empty where it cannot be read."""
+    try:
+        found = find_spec(module)
+        assert found is not None
+        assert found.origin is not None
+        with open(found.origin, "rb") as stream:
+            return stream.read().decode("latin-1")
+    except (OSError, ImportError, AssertionError):
+        return ""
+
+
+def ready() -> Driver:
+    """The parser of single lines, made once."""
     return _ready()[0]
 
 
-def _laid_down(parser: Lark) -> tuple[Any, Any]:
-    """A parser as data, without the options that are given anew; as Lark itself does for its own cache."""
-    data, memo = parser.memo_serialize([TerminalDef, Rule])
-    data["options"] = {name: one for name, one in data["options"].items() if name not in _LOAD_ALLOWED_OPTIONS}
-    return data, memo
-
-
-def _revived(laid_down: Any, builder: Builder) -> Lark | None:
-    """The parser from its data; None if there is none or it does not fit."""
+def _revived(tables: Any, builder: Builder) -> Driver | None:
+    """The parser from what the cache kept; None if there is nothing or it does not fit."""
     try:
-        data, memo = laid_down
-        parser = Lark.__new__(Lark)
-        return parser._load({"data": data, "memo": memo}, transformer=builder, postlex=_WholeWords())
+        return Driver(Tables(*tables), builder)
     except Exception:
         return None
 
@@ -83,8 +69,8 @@ def parsed(text: str, start: str, file: str, line: int) -> Node | Problem:
     builder.reserved.clear()
     try:
         node: Any = parser.parse(text, start)
-    except UnexpectedInput as error:
-        return explained(error, text, file, line, {one.name: one.pattern.value for one in parser.terminals})
+    except Misread as why:
+        return explained(why.misfit, text, file, line, parser.tables.terminals)
     if builder.reserved:
         return reserved(*builder.reserved[0])
     return node  # type: ignore[no-any-return] # the builder made it

@@ -2,11 +2,10 @@
 
 import re
 import unicodedata
-from collections.abc import Collection, Mapping
+from collections.abc import Mapping
 from difflib import get_close_matches
 
-from lark import UnexpectedCharacters, UnexpectedInput, UnexpectedToken
-
+from seqcheck.language.driver import END, Misfit
 from seqcheck.language.words import RESERVED
 from seqcheck.messages import Problem, nearest
 from seqcheck.quantities import HERTZ, PICOSECONDS, RATIOS
@@ -25,19 +24,19 @@ _INSTEAD = (
 """Characters that people write for others, and what to write."""
 
 
-def explained(error: UnexpectedInput, text: str, file: str, line: int, terminals: Mapping[str, str]) -> Problem:
-    """The mistake of a line, from the parser's exception; `terminals` gives the text of each terminal."""
-    if isinstance(error, UnexpectedToken) and error.token.type == "$END":
+def explained(misfit: Misfit, text: str, file: str, line: int, terminals: Mapping[str, str]) -> Problem:
+    """The mistake of a line, from where it cannot be read on; `terminals` gives the text of each terminal."""
+    if misfit.at_end:
         column = len(text.rstrip()) + 1
         place = Place(file, line, column, line, column)
-        return Problem(place, "syntax", "the line ends too soon", _wanted(error, terminals))
-    column = error.column if isinstance(error.column, int) and error.column > 0 else 1
+        return Problem(place, "syntax", "the line ends too soon", _wanted(misfit, terminals))
+    column = misfit.column
     found = _WORD.match(text, column - 1)
     word = found.group() if found else ""
     place = Place(file, line, column, line, column + len(word))
-    if isinstance(error, UnexpectedCharacters) and word != '"':
+    if misfit.stray and word != '"':
         return stray(text, Place(file, line, column, line, column + 1))
-    return _misfit(error, text, word, place, terminals)
+    return _told(misfit, text, word, place, terminals)
 
 
 def stray(text: str, place: Place) -> Problem:
@@ -53,10 +52,10 @@ def reserved(place: Place, word: str) -> Problem:
     return Problem(place, "reserved-word", f"'{word}' is a reserved word and cannot be a name", way_out)
 
 
-def _misfit(error: UnexpectedInput, text: str, word: str, place: Place, terminals: Mapping[str, str]) -> Problem:
-    accepted = _accepted(error)
+def _told(misfit: Misfit, text: str, word: str, place: Place, terminals: Mapping[str, str]) -> Problem:
+    accepted = misfit.accepted
     if word == '"' and '"' in text[place.column :]:
-        return Problem(place, "syntax", "a text does not fit here", _wanted(error, terminals))
+        return Problem(place, "syntax", "a text does not fit here", _wanted(misfit, terminals))
     if word == '"':
         return Problem(place, "syntax", "this text has no closing quote", "close it with '\"' on the same line")
     if "NAME" in accepted and word in RESERVED:
@@ -65,7 +64,7 @@ def _misfit(error: UnexpectedInput, text: str, word: str, place: Place, terminal
         way_out = nearest(word, UNITS) or "units are ps ns us ms s ticks, Hz kHz MHz GHz, % ppm"
         return Problem(place, "unknown-unit", f"'{word}' is no unit", way_out)
     close = get_close_matches(word[:30], (terminals[one] for one in accepted if one in terminals), n=1, cutoff=0.75)
-    way_out = f"did you mean '{close[0]}'?" if close else _wanted(error, terminals)
+    way_out = f"did you mean '{close[0]}'?" if close else _wanted(misfit, terminals)
     return Problem(place, "syntax", f"'{word[:40]}' does not fit here", way_out)
 
 
@@ -73,19 +72,12 @@ def _follows_number(text: str, column: int) -> bool:
     return bool(_NUMBER_BEFORE.search(text[max(0, column - 20) : column - 1]))
 
 
-def _accepted(error: UnexpectedInput) -> Collection[str]:
-    """The terminals that could stand where the mistake is."""
-    if isinstance(error, UnexpectedToken):
-        return error.accepts or error.expected
-    return error.allowed or () if isinstance(error, UnexpectedCharacters) else ()
-
-
-def _wanted(error: UnexpectedInput, terminals: Mapping[str, str]) -> str:
+def _wanted(misfit: Misfit, terminals: Mapping[str, str]) -> str:
     """What could have stood there, in words."""
-    accepted = {one for one in _accepted(error) if one in _NAMES or one in terminals or one == "$END"}
+    accepted = {one for one in misfit.accepted if one in _NAMES or one in terminals or one == END}
     words = [_NAMES[one] for one in sorted(accepted & _NAMES.keys())]
-    words += sorted(f"'{terminals[one]}'" for one in accepted - _NAMES.keys() - {"$END"} if _plain(terminals[one]))
-    words += ["the end of the line"] if "$END" in accepted else []
+    words += sorted(f"'{terminals[one]}'" for one in accepted - _NAMES.keys() - {END} if _plain(terminals[one]))
+    words += ["the end of the line"] if END in accepted else []
     if not words or len(words) > _MOST:
         return ""
     return "expected " + (", ".join(words[:-1]) + " or " if len(words) > 1 else "") + words[-1]

@@ -1,6 +1,6 @@
 """Collecting the mistakes of a file, and keeping quiet about those that only follow from others."""
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Collection, Iterable, Mapping
 
 from seqcheck.language.syntax import Word
 from seqcheck.messages import Problem, nearest
@@ -24,7 +24,8 @@ class Notes:
 
     def known(self, word: Word, names: Iterable[str], what: str, section: str) -> bool:
         """Whether a name is among the known ones of its kind; if not, that is a mistake."""
-        if word.text in (names := tuple(names)):
+        names = names if isinstance(names, Collection) else tuple(names)
+        if word.text in names:
             return True
         if section not in self.broken:
             self.add(word.place, "unknown-name", f"unknown {what} '{word.text}'", nearest(word.text, names))

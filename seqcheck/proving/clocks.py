@@ -5,7 +5,6 @@ firmware, and for all the rest of a key.
 """
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from typing import NamedTuple
 
 from seqcheck.circuit import contradicted
@@ -35,6 +34,7 @@ from seqcheck.proving.location import Bound
 from seqcheck.proving.references import FORGOTTEN, Reference
 from seqcheck.proving.wiring import Wiring
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.zones import INFINITE
 
 

@@ -5,7 +5,6 @@ its cycle after its first edge in the settled dwell; what comes after the dwell 
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
 from math import lcm
 from typing import NamedTuple
 
@@ -16,6 +15,7 @@ from seqcheck.proving.location import Hop
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.references import Reference
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass, replace
 from seqcheck.verdict import Act, Cycles, Event
 
 _EDGES = (Act.RISES, Act.FALLS)

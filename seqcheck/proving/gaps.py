@@ -6,13 +6,13 @@ raised. What is found with carriers' phases forgotten is a lower bound only, but
 """
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, replace
 
 from seqcheck.proving.clocks import Manner
 from seqcheck.proving.conduction import POSSIBLE
 from seqcheck.proving.keys import GAP, LATELY, Key
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.search import LimitReached, Node, nodes, ticks
+from seqcheck.records import dataclass, replace
 
 Observer = Callable[[int], None]
 Look = Callable[[Manner], Projection]

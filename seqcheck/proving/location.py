@@ -1,9 +1,9 @@
 """What the search sees: locations with clocks, and hops between them. It knows of no drive, no pins and no file."""
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
 from typing import NamedTuple
 
+from seqcheck.records import dataclass, field
 from seqcheck.zones import Zone
 
 

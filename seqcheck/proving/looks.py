@@ -1,7 +1,6 @@
 """How one hazard is looked at: its projections, the run that one of them has found looked for in another, and the
 longest overlap."""
 
-from dataclasses import replace
 from typing import Protocol
 
 from seqcheck.drive import Cell, Command, Drive, Fixed, Follow
@@ -14,6 +13,7 @@ from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.search import Longest, Node, first_hazard, longest_overlap
 from seqcheck.proving.views import View
 from seqcheck.proving.wiring import Wiring
+from seqcheck.records import replace
 
 
 class Count(Protocol):

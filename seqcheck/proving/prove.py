@@ -5,7 +5,6 @@ A run that is found where it proves nothing is followed at once where it would.
 """
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
 from itertools import product
 
 from seqcheck.drive import Drive, Interlock, Update
@@ -27,6 +26,7 @@ from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
 from seqcheck.proving.tracing import gap_trace, rest_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
+from seqcheck.records import dataclass, replace
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
 

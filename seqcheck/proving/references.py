@@ -1,11 +1,11 @@
 """A carrier's reference as a small automaton: level, and whether the dead time since its last edge is over."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from typing import NamedTuple
 
 from seqcheck.drive import Carrier
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.verdict import Act
 from seqcheck.zones import INFINITE
 

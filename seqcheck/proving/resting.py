@@ -1,11 +1,11 @@
 """Whether a hazard comes at rest in given modes: for each of them a place of the search, the fewest moves away."""
 
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass
 
 from seqcheck.proving.keys import Key
 from seqcheck.proving.location import Hop
 from seqcheck.proving.search import LimitReached, Node, nodes, ticks
+from seqcheck.records import dataclass
 
 Observer = Callable[[int], None]
 

@@ -6,9 +6,9 @@ late after it as the system allows (Bellman-Ford; Dechter, Meiri and Pearl 1991)
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from seqcheck.proving.location import Hop
+from seqcheck.records import dataclass
 from seqcheck.zones import FRESH, INFINITE
 
 

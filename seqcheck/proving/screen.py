@@ -10,7 +10,7 @@ Interlocks are left out: they only shorten pulses.
 from collections import deque
 from collections.abc import Callable, Iterator
 from heapq import heappop, heappush
-from itertools import combinations
+from itertools import combinations, product
 from typing import NamedTuple
 
 from seqcheck.firmware import Firmware, State
@@ -26,6 +26,9 @@ Point = tuple[int, Pair]
 """The number of a state, and the commands of both switches in it."""
 Places = tuple[int, int]
 """Where two literals stand in a hazard."""
+
+
+_COMMANDS = (C_OFF, C_ON, C_BOTH)
 
 
 class Arc(NamedTuple):
@@ -108,6 +111,15 @@ class Pairing:
         self.rests = tuple(C_OFF if pin is None else CODES[pin.resting] for pin in pins)
         carriers = tuple(drive.carriers.values())
         self.dead = tuple(carrier.dead.lo for carrier in carriers)
+        first, second = self.columns
+        self._wanted = [
+            frozenset(pair for pair in product(_COMMANDS, repeat=2) if self._wants(pair[which], which))
+            for which in (0, 1)
+        ]
+        self._cells: list[Pair] = [(state.put[1][first], state.put[1][second]) for state in here.states]
+        self._steps: dict[Point, list[tuple[Arc | None, Point, bool]]] = {}
+        self._begun: dict[tuple[Pair, Pair, Pair], list[Pair]] = {}  # few, however many states there are
+        self._drifted: dict[tuple[Pair, Pair], list[Pair]] = {}
 
     def apart(self) -> bool:
         points = self.points()
@@ -121,21 +133,24 @@ class Pairing:
 
     def wanted(self, pair: Pair, which: int) -> bool:
         """Whether one of the literals is commanded, or may be."""
-        return pair[which] == C_BOTH or (pair[which] == C_ON) == self.literals[which].on
+        return pair in self._wanted[which]
+
+    def _wants(self, command: int, which: int) -> bool:
+        return command == C_BOTH or (command == C_ON) == self.literals[which].on
 
     def cells(self, state: int) -> Pair:
         """The cells of both switches that are in effect."""
-        effective = self.here.states[state].put[1]
-        return effective[self.columns[0]], effective[self.columns[1]]
+        return self._cells[state]
 
     def points(self) -> set[Point] | None:
         """All points that can be reached; None if one of them commands both."""
-        starts = [(0, pair) for pair in self._joined(0, None)]
+        starts = [(0, pair) for pair in self._joined(self._cells[0], None)]
         seen = set(starts)
         waiting = deque(starts)
+        both = self._wanted[0] & self._wanted[1]
         while waiting:
             point = waiting.popleft()
-            if self.wanted(point[1], 0) and self.wanted(point[1], 1):
+            if point[1] in both:
                 return None
             for _, target, _ in self.steps(point):
                 if target not in seen:
@@ -143,27 +158,30 @@ class Pairing:
                     waiting.append(target)
         return seen
 
-    def steps(self, point: Point) -> Iterator[tuple[Arc | None, Point, bool]]:
+    def steps(self, point: Point) -> list[tuple[Arc | None, Point, bool]]:
         """What can come next: (the firmware's arc or None, the point after it, whether the arc restarts the clock)."""
+        known = self._steps.get(point)
+        if known is None:
+            known = self._steps[point] = self._next(point)
+        return known
+
+    def _next(self, point: Point) -> list[tuple[Arc | None, Point, bool]]:
         state, pair = point
-        for other in self._drifting(state, pair):
-            yield None, (state, other), False
-        before = self.cells(state)
+        before = self._cells[state]
+        drifted = self._drifted.get((before, pair))
+        if drifted is None:
+            drifted = self._drifted[before, pair] = self._drifting(before, pair)
+        found: list[tuple[Arc | None, Point, bool]] = [(None, (state, other), False) for other in drifted]
         for arc in self.here.arcs[state]:
-            kept = self._kept(before, pair, arc.target)
-            for other in self._joined(arc.target, kept):
-                yield arc, (arc.target, other), arc.restarts
+            key = before, pair, self._cells[arc.target]
+            begun = self._begun.get(key)
+            if begun is None:
+                begun = self._begun[key] = self._joined(key[2], _kept(*key))
+            found += [(arc, (arc.target, other), arc.restarts) for other in begun]
+        return found
 
-    def _kept(self, before: Pair, pair: Pair, target: int) -> tuple[int | None, int | None]:
-        """The commands that an arc leaves as they were; None where the switch joins a carrier."""
-        after = self.cells(target)
-        first = pair[0] if after[0] == before[0] or after[0] == FREE else None
-        second = pair[1] if after[1] == before[1] or after[1] == FREE else None
-        return first, second
-
-    def _joined(self, state: int, kept: tuple[int | None, int | None] | None) -> list[Pair]:
-        """The commands with which a state can begin."""
-        cells = self.cells(state)
+    def _joined(self, cells: Pair, kept: tuple[int | None, int | None] | None) -> list[Pair]:
+        """The commands with which a state of these cells can begin."""
         choices = []
         for which in (0, 1):
             cell, old = cells[which], kept[which] if kept else None
@@ -175,9 +193,8 @@ class Pairing:
                 choices.append([self.rests[which]] if cell == FREE else [C_OFF, C_ON])
         return [(a, b) for a in choices[0] for b in choices[1] if self._fits(cells, (a, b))]
 
-    def _drifting(self, state: int, pair: Pair) -> list[Pair]:
+    def _drifting(self, cells: Pair, pair: Pair) -> list[Pair]:
         """The commands that carriers and resting pins can make of these without the firmware."""
-        cells = self.cells(state)
         choices = []
         for which in (0, 1):
             if cells[which] <= ON:
@@ -199,15 +216,16 @@ class Pairing:
         """The least time from the command of one literal going away to the other's coming."""
         sources: dict[int, set[tuple[int, Pair, bool]]] = {}
         coming = 1 - leaving
+        goes, comes = self._wanted[leaving], self._wanted[coming]
         best = INFINITE
         for point in points:
-            if not self.wanted(point[1], leaving):
+            if point[1] not in goes:
                 continue
-            cell = self.cells(point[0])[leaving]
+            cell = self._cells[point[0]][leaving]
             for arc, target, restarts in self.steps(point):
-                if self.wanted(target[1], leaving):
+                if target[1] in goes:
                     continue
-                if not self.wanted(point[1], coming) and self.wanted(target[1], coming):
+                if point[1] not in comes and target[1] in comes:
                     best = min(best, self._floor(cell, target, coming))
                 sources.setdefault(cell, set()).add((*target, arc is not None and restarts))
         for cell, starts in sources.items():
@@ -225,6 +243,7 @@ class Pairing:
         """Dijkstra's algorithm; an arc costs its least time where the clock is known to have started on the way."""
         best = dict.fromkeys(starts, 0)
         queue = [(0, start) for start in sorted(starts)]
+        comes = self._wanted[coming]
         while queue:
             time, here = heappop(queue)
             if time >= ceiling:
@@ -234,10 +253,17 @@ class Pairing:
             state, pair, known = here
             for arc, target, restarts in self.steps((state, pair)):
                 later = time + (arc.least if arc is not None and known and restarts else 0)
-                if not self.wanted(pair, coming) and self.wanted(target[1], coming):
+                if pair not in comes and target[1] in comes:
                     ceiling = min(ceiling, max(later, self._floor(cell, target, coming)))
                 there = (*target, restarts or known)
                 if later < best.get(there, INFINITE):
                     best[there] = later
                     heappush(queue, (later, there))
         return ceiling
+
+
+def _kept(before: Pair, pair: Pair, after: Pair) -> tuple[int | None, int | None]:
+    """The commands that an arc leaves as they were; None where the switch joins a carrier."""
+    first = pair[0] if after[0] == before[0] or after[0] == FREE else None
+    second = pair[1] if after[1] == before[1] or after[1] == FREE else None
+    return first, second

@@ -6,10 +6,10 @@ that keeps what can be reached (Alur and Dill 1994), and with it the fewest move
 """
 
 from collections.abc import Callable, Iterable, Iterator
-from dataclasses import dataclass
 
 from seqcheck.proving.circles import goes_on, idle
 from seqcheck.proving.location import Among, Bound, Hop, Location
+from seqcheck.records import dataclass
 from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limited, renamed
 
 Observer = Callable[[int], None]

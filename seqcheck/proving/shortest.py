@@ -1,10 +1,9 @@
 """The shortest of what lasts too short a time: a pulse, or the time from leaving one mode to entering another."""
 
-from dataclasses import dataclass
-
 from seqcheck.proving.keys import RISE, Key
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.search import MOST_MEASURED, LimitReached, Node, Observer, nodes
+from seqcheck.records import dataclass
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,7 +1,5 @@
 """From a path of hops to a run with concrete times."""
 
-from dataclasses import replace
-
 from seqcheck.drive import Drive, Move, Trip
 from seqcheck.firmware import Deed
 from seqcheck.proving.cutting import longest_memory
@@ -14,6 +12,7 @@ from seqcheck.proving.references import FORGOTTEN, HIGH_DEAD, HIGH_OUT, LOW_OUT
 from seqcheck.proving.schedule import Difference, Path, constraints_of, scheduled
 from seqcheck.proving.search import Node, endless_circle, hops_out
 from seqcheck.proving.shortest import begun_at
+from seqcheck.records import replace
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Phase, Trace
 

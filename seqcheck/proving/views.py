@@ -1,10 +1,9 @@
 """What one hazard looks at: which switches, carriers and interlock directions take part, and how it is to be proven."""
 
-from dataclasses import dataclass
-
 from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
 from seqcheck.hazards import Delays, Hazard
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 
 
 @dataclass(frozen=True, slots=True)
@@ -63,7 +62,7 @@ def _carriers(drive: Drive, switches: tuple[str, ...]) -> tuple[str, ...]:
     Where one of them updates within a period, a switch that may be held for it counts with all of its carriers, since
     the oldest write held sets the time for all.
     """
-    used = {name: _followed(drive, name) for name in drive.columns}
+    used = _followed(drive)
     found = set().union(*(used[name] for name in switches))
     while any(drive.carriers[name].update is Update.WITHIN_PERIOD for name in found):
         spans = {name for name in found if drive.carriers[name].update is Update.WITHIN_PERIOD}
@@ -74,11 +73,17 @@ def _carriers(drive: Drive, switches: tuple[str, ...]) -> tuple[str, ...]:
     return tuple(name for name in drive.carriers if name in found)
 
 
-def _followed(drive: Drive, switch: str) -> set[str]:
-    column = drive.columns.index(switch)
-    cells = [mode.cells[column] for mode in drive.modes.values()]
-    runs = [run.steps for run in drive.moves] + [run.steps for run in drive.trips]
-    for step in (step for steps in runs for step in steps):
-        if isinstance(step, SetStep):
-            cells += [cell for name, cell in step.writes if name == switch]
-    return {cell.carrier for cell in cells if isinstance(cell, Follow)}
+def _followed(drive: Drive) -> dict[str, set[str]]:
+    """The carriers that each switch may follow."""
+    found: dict[str, set[str]] = {name: set() for name in drive.columns}
+    every = list(found.values())
+    for mode in drive.modes.values():
+        for used, cell in zip(every, mode.cells, strict=True):
+            if isinstance(cell, Follow):
+                used.add(cell.carrier)
+    for steps in (*(move.steps for move in drive.moves), *(trip.steps for trip in drive.trips)):
+        for step in steps:
+            for name, cell in step.writes if isinstance(step, SetStep) else ():
+                if isinstance(cell, Follow):
+                    found[name].add(cell.carrier)
+    return found

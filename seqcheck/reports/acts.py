@@ -1,10 +1,10 @@
 """The events of a trace in words, with the line of the file that is behind each."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from seqcheck.drive import RESET, After, Cell, Drive, Move, SetStep, Step, Trip, WaitStep, When, cell_text
 from seqcheck.quantities import shown
+from seqcheck.records import dataclass
 from seqcheck.reports.pieces import Tone, counted, listed
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Trace

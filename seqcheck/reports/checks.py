@@ -1,7 +1,6 @@
 """What each check asks, for forms that describe what they name: one table."""
 
-from dataclasses import dataclass
-
+from seqcheck.records import dataclass
 from seqcheck.reports.remarks import FAULT, UNDECIDED, WRONG_INPUT
 from seqcheck.verdict import Check
 

@@ -2,12 +2,12 @@
 
 from collections import Counter
 from collections.abc import Iterable, Iterator, Sequence
-from dataclasses import replace
 
 from seqcheck.changes import Change, Comparison, Field, How, Moved, Reach, Told, Turn, Turned
 from seqcheck.drive import Drive
 from seqcheck.hazards import Hazard
 from seqcheck.quantities import shown
+from seqcheck.records import replace
 from seqcheck.reports.acts import told
 from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, counted, line, listed, paragraph, visible
 from seqcheck.reports.wording import CAUTION, cure, lasting, stated, stretch, subject

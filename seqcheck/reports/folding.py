@@ -1,9 +1,9 @@
 """Rows in which carriers only run on, folded into one."""
 
 from collections.abc import Sequence
-from dataclasses import replace
 from itertools import groupby
 
+from seqcheck.records import replace
 from seqcheck.reports.acts import Note
 from seqcheck.reports.instants import Instant
 from seqcheck.reports.pieces import counted, listed

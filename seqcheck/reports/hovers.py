@@ -1,7 +1,6 @@
 """What a name of a file means, in a few lines of plain text: what an editor shows where the name stands."""
 
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import dataclass
 from fractions import Fraction
 from math import ceil, floor
 
@@ -29,6 +28,7 @@ from seqcheck.drive import (
 from seqcheck.effects import Row
 from seqcheck.hazards import reach
 from seqcheck.quantities import Interval, shown, widened
+from seqcheck.records import dataclass
 from seqcheck.reports.does import does, meant
 from seqcheck.reports.pieces import listed
 

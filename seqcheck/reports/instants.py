@@ -1,8 +1,7 @@
 """One instant of a run: what happens in it, and how the switches stand from then on."""
 
-from dataclasses import dataclass
-
 from seqcheck.drive import Command
+from seqcheck.records import dataclass
 from seqcheck.reports.acts import Note
 from seqcheck.reports.lanes import Conduct
 

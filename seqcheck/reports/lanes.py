@@ -1,12 +1,12 @@
 """What each switch of a hazard is commanded and may conduct over one run, read off the replay."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.drive import Command, Drive
 from seqcheck.hazards import Literal, reach
 from seqcheck.quantities import Interval
+from seqcheck.records import dataclass
 from seqcheck.verdict import Replayed, Span, Unsafe
 
 

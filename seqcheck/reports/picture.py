@@ -5,9 +5,9 @@ be seen; the picture says so, and gives the time of every instant.
 """
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
 
 from seqcheck.drive import Command
+from seqcheck.records import dataclass
 from seqcheck.reports.instants import Instant, State
 from seqcheck.reports.lanes import Conduct
 from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, line, merged

@@ -3,11 +3,11 @@
 import re
 import textwrap
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
 from enum import Enum
 from unicodedata import category
 
 from seqcheck.quantities import PICOSECONDS
+from seqcheck.records import dataclass
 
 WIDTH = 80  # columns that a report keeps to where it can
 

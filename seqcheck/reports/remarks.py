@@ -1,12 +1,12 @@
 """Everything that is amiss in a file, one sentence each with its place and severity: what forms for programs say."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.drive import Drive, Library
 from seqcheck.faults import Faulted
 from seqcheck.messages import Problem
+from seqcheck.records import dataclass
 from seqcheck.reports.waived import reason
 from seqcheck.reports.wording import NOTHING, SERVES, cure, stated, subject, where
 from seqcheck.source import Place

@@ -1,8 +1,9 @@
 """The names of files as code hosts know them: relative to the top of the repository."""
 
 import os
-from dataclasses import dataclass
 from pathlib import Path
+
+from seqcheck.records import dataclass
 
 
 def plain(name: str) -> str:

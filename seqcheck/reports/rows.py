@@ -1,8 +1,7 @@
 """The run of a counterexample as rows of time."""
 
-from dataclasses import dataclass
-
 from seqcheck.quantities import shown
+from seqcheck.records import dataclass
 from seqcheck.reports.acts import Note
 from seqcheck.reports.instants import Instant
 from seqcheck.reports.lanes import Conduct

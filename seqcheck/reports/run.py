@@ -1,10 +1,10 @@
 """One unsafe run as numbered instants: what happens at each, and how the switches stand from then on."""
 
-from dataclasses import dataclass
 from string import ascii_lowercase
 
 from seqcheck.drive import Command, Drive
 from seqcheck.quantities import PICOSECONDS, shown
+from seqcheck.records import dataclass
 from seqcheck.reports.acts import Note, begun_by, told
 from seqcheck.reports.folding import folded
 from seqcheck.reports.instants import Instant, State

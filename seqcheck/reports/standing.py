@@ -1,9 +1,9 @@
 """The contents of an outcome by what they mean, and the last word on a file."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from enum import Enum
 
+from seqcheck.records import dataclass
 from seqcheck.reports.pieces import counted
 from seqcheck.reports.waived import reason
 from seqcheck.reports.wording import NOTHING

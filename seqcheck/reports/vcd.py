@@ -5,10 +5,10 @@ standard, but common viewers read them; their values hold no blank, so each blan
 """
 
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
 
 from seqcheck import __version__
 from seqcheck.drive import Command, Drive
+from seqcheck.records import dataclass
 from seqcheck.reports.acts import entered, told
 from seqcheck.reports.lanes import Conduct, Lane, lanes
 from seqcheck.reports.pieces import counted

@@ -2,7 +2,6 @@
 
 import os
 from collections.abc import Callable
-from dataclasses import dataclass
 from pathlib import Path
 from urllib.parse import quote, unquote, urlsplit
 
@@ -12,6 +11,7 @@ from seqcheck.language.lines import Book
 from seqcheck.language.notes import Notes
 from seqcheck.language.reading import Draft, drafted, settled
 from seqcheck.messages import Problem, Problems
+from seqcheck.records import dataclass
 from seqcheck.serving.positions import Lines
 from seqcheck.source import Place
 from seqcheck.verdict import Budget

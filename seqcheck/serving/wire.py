@@ -5,9 +5,10 @@ A message is a header block, whose `Content-Length` counts bytes, an empty line,
 
 import json
 import re
-from dataclasses import dataclass
 from threading import Lock
 from typing import Any, BinaryIO
+
+from seqcheck.records import dataclass
 
 LARGEST = 2**26
 """Bytes of a body; a larger one is passed over unread."""

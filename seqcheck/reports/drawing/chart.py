@@ -1,11 +1,11 @@
 """The mode graph as a report sees it: modes, what each does, the ways between them, and the path of an unsafe run."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from seqcheck.drive import RESET, After, AtOnce, CurrentInto, CurrentOut, Drive, Known, Move, Trip, When, fact_words
 from seqcheck.effects import Row
 from seqcheck.quantities import PICOSECONDS
+from seqcheck.records import dataclass
 from seqcheck.reports.acts import begun_by
 from seqcheck.reports.pieces import listed
 from seqcheck.verdict import Act, Unsafe

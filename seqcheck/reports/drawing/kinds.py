@@ -1,9 +1,9 @@
 """What a row does to the windings in one or two words: what a mode's box in the mode graph is coloured by and says."""
 
-from dataclasses import dataclass
 from enum import Enum
 
 from seqcheck.effects import Kind, Row, Word
+from seqcheck.records import dataclass
 
 
 class Does(Enum):

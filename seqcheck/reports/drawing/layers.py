@@ -11,8 +11,9 @@ slots themselves, in layers between those of the nodes, so that no label covers 
 
 from bisect import bisect_right, insort
 from collections.abc import Sequence
-from dataclasses import dataclass, field
 from itertools import pairwise
+
+from seqcheck.records import dataclass, field
 
 _PORT = 15.0  # between two links at one side of a node
 _APART, _TIGHT = 22.0, 8.0  # between neighbours of a layer of nodes, and of one of labels

@@ -5,12 +5,12 @@ is taken from the run; nothing is worked out anew but differences of its times.
 """
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 from itertools import pairwise
 from statistics import median
 
 from seqcheck.drive import Command, Drive
 from seqcheck.quantities import shown
+from seqcheck.records import dataclass
 from seqcheck.reports.acts import begun_by
 from seqcheck.reports.drawing.elements import folded
 from seqcheck.reports.lanes import Lane

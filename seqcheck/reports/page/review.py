@@ -1,11 +1,11 @@
 """The page for a design review: everything there is to know of one file, in the order in which a reviewer asks."""
 
 from collections.abc import Iterator
-from dataclasses import dataclass
 from xml.etree.ElementTree import Element
 
 from seqcheck.drive import cell_text
 from seqcheck.effects import Table
+from seqcheck.records import dataclass
 from seqcheck.reports.checks import ABOUT
 from seqcheck.reports.does import does, meant
 from seqcheck.reports.drawing import modes

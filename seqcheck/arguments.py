@@ -4,7 +4,6 @@ import argparse
 import re
 import sys
 from collections.abc import Sequence
-from dataclasses import dataclass
 from fractions import Fraction
 from typing import Never
 
@@ -16,6 +15,8 @@ from seqcheck.quantities import PICOSECONDS
 from seqcheck.verdict import Check
 
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
+MOST_JOBS = 256
+"""More processes than any one machine has use for here."""
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
 folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove."""
@@ -60,14 +61,6 @@ input or the call is wrong, nothing was judged; 3 undecided within the limits gi
 program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 3, 0."""
 
 
-@dataclass(frozen=True, slots=True)
-class Limits:
-    """When to give a proof up: after so many zones, or so many seconds for one file."""
-
-    zones: int | None
-    seconds: float | None
-
-
 def complain(text: str) -> None:
     print(f"seqcheck: {text}", file=sys.stderr)
 
@@ -100,6 +93,7 @@ def parser() -> argparse.ArgumentParser:
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
+    lint.add_argument("--jobs", metavar="N", help="let N processes share the work (1); the answer is the same")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -184,6 +178,12 @@ def count(option: str, text: str | None) -> int | None:
     if not re.fullmatch(r"[0-9]{1,15}", text) or int(text) == 0:
         wrong(f"{option} must be a whole number above 0, not '{text}'")
     return int(text)
+
+
+def at_most(most: int, option: str, number: int) -> int:
+    if number > most:
+        wrong(f"{option} cannot be above {most}")
+    return number
 
 
 def seconds(text: str | None) -> float | None:

@@ -1,7 +1,7 @@
 """The pipeline from a drive to everything that is to be said about it, as one pure function."""
 
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
@@ -20,8 +20,23 @@ from seqcheck.source import Place
 from seqcheck.verdict import Check, Finding, Outcome, Safe, Trace, Undecided, Unsafe, Verdict
 
 Observer = Callable[[int], None]
-Kept = tuple[Hazard, Data | Trace | None]
-"""A hazard with the proof that it is safe as data, the run that shows it, or None where neither is at hand."""
+Proof = Data | Trace | None
+"""The proof that a hazard is safe as data, the run that shows it, or None where neither is at hand."""
+Kept = tuple[Hazard, Proof]
+Asked = tuple[Hazard, Place | None]
+"""What must never be possible, and the rule that asks for it (None: it is built in)."""
+
+
+@dataclass(frozen=True, slots=True)
+class Settled:
+    """All that is said about one hazard: its verdict first, then those about its margins, and warnings.
+
+    `proof` is for evidence, if that is asked for.
+    """
+
+    verdicts: tuple[Verdict, ...]
+    findings: tuple[Finding, ...]
+    proof: Proof
 
 
 def check(
@@ -35,25 +50,45 @@ def check(
     evidence of them. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
     """
     prover = Prover(drive, kept is not None)
-    verdicts: list[Verdict] = []
+    settled = [settle(prover, one, observer) for one in asked(drive)]
+    if kept is not None:
+        kept += evidence_of(settled)
+    return gathered(drive, file, only, settled)
+
+
+def asked(drive: Drive) -> tuple[Asked, ...]:
+    """Everything that must never be possible at once; raises Problems for a stage that cannot be proven."""
+    built_in = [(hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage))]
+    return (*built_in, *((hazard, rule.place) for rule in drive.rules for hazard in asked_by(rule)))
+
+
+def settle(prover: Prover, one: Asked, observer: Observer) -> Settled:
+    """One hazard, which needs no other; raises Fault."""
+    hazard, rule = one
+    verdict, proof = _with_proof(prover, hazard, observer, rule)
+    if isinstance(verdict, Unsafe):
+        return Settled((verdict,), (), verdict.trace)
+    if not isinstance(verdict, Safe) or not hazard.joins:
+        return Settled((verdict,), (), proof)
+    findings = tuple(_held_by_interlock(prover, hazard, observer))
+    least = _margin_rules(prover.drive)
+    return Settled((verdict, *(one for rule in least for one in thin(prover, rule, hazard, observer))), findings, proof)
+
+
+def gathered(drive: Drive, file: str, only: frozenset[Check], settled: Sequence[Settled]) -> Outcome:
+    """Everything about one drive of which each hazard is settled, in the order in which they are asked."""
     findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
-    for hazard, rule in _asked(drive):
-        verdict = _judged(prover, hazard, observer, kept, rule)
-        verdicts.append(verdict)
-        if isinstance(verdict, Safe) and hazard.joins:
-            findings += _held_by_interlock(prover, hazard, observer)
-            verdicts += (one for least in _margin_rules(drive) for one in thin(prover, least, hazard, observer))
+    findings += (finding for one in settled for finding in one.findings)
+    verdicts = [verdict for one in settled for verdict in one.verdicts]
     findings += _punctual(drive, verdicts)
     findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
 
 
-def _asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
-    """Everything that must never be possible at once, and the rule that asks for it (None: it is built in)."""
-    yield from ((hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)))
-    for rule in drive.rules:
-        for hazard in asked_by(rule):
-            yield hazard, rule.place
+def evidence_of(settled: Sequence[Settled]) -> list[Kept]:
+    """What evidence says of each hazard; it is not about lengths."""
+    hazards = [one.verdicts[0].hazard for one in settled]
+    return [(hazard, one.proof) for hazard, one in zip(hazards, settled, strict=True) if hazard.asks is None]
 
 
 def _margin_rules(drive: Drive) -> list[MarginRule]:
@@ -65,15 +100,6 @@ def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
         return outcome
     findings = tuple(one for one in outcome.findings if one.check in only)
     return replace(outcome, findings=findings)
-
-
-def _judged(
-    prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None, rule: Place | None
-) -> Verdict:
-    verdict, proof = _with_proof(prover, hazard, observer, rule)
-    if kept is not None and hazard.asks is None:
-        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
-    return verdict
 
 
 def _with_proof(

@@ -1,30 +1,45 @@
 """Arguments, opening files and exit codes: the only room that touches the world."""
 
 import argparse
+import contextlib
 import gc
 import os
 import shlex
 import sys
-import time
-from collections.abc import Callable, Iterator, Sequence
-from pathlib import Path
+from collections.abc import Generator, Iterator, Sequence
 from typing import TYPE_CHECKING
 
-from seqcheck.arguments import FORMS, Limits, check_named, complain, count, one_of, one_or_other, parser, seconds, wrong
+from seqcheck.arguments import (
+    FORMS,
+    MOST_JOBS,
+    at_most,
+    check_named,
+    complain,
+    count,
+    one_of,
+    one_or_other,
+    parser,
+    seconds,
+    wrong,
+)
 from seqcheck.commands import draw
 from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
 from seqcheck.drive import Drive, Library, NeverRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
-from seqcheck.messages import Problem, Problems
-from seqcheck.source import Place, printable
-from seqcheck.verdict import WARNINGS, Answer, Check, Failed, Finding, Outcome, Undecided, Unread, Unsafe
+from seqcheck.limits import Limits
+from seqcheck.limits import observer as _observer
+from seqcheck.messages import Problems
+from seqcheck.opening import STDIN
+from seqcheck.opening import data_of as _data
+from seqcheck.opening import text_of as _text
+from seqcheck.source import printable
+from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
+from seqcheck.work.pieces import Call, Judged, judged
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
     from seqcheck.evidence.audit import Audited
-
-_STDIN = "-"
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -80,10 +95,12 @@ def _run(arguments: list[str]) -> int:
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
         files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
+        jobs = at_most(MOST_JOBS, "--jobs", count("--jobs", asked.jobs) or 1)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
+        call = Call(only, limits, shelf is not None, asked.with_fault)
+        answers, code = _lint(files, call, shelf, jobs)
     except SystemExit as stop:
         return int(stop.code or 0)
-    answers, code = _lint(files, only, limits, shelf, asked.with_fault)
     try:
         text = answer_text(answers, answering)
     except SystemExit as stop:
@@ -101,7 +118,7 @@ def _one_run(answering: Answering, files: list[str]) -> None:
 
 def _files(paths: list[str]) -> Iterator[str]:
     for path in paths:
-        if path == _STDIN or not os.path.isdir(path):
+        if path == STDIN or not os.path.isdir(path):
             yield path
             continue
         found = sorted(name for name in os.listdir(path) if name.endswith(".dseq"))
@@ -113,7 +130,7 @@ def _files(paths: list[str]) -> Iterator[str]:
 def _changed(paths: list[str]) -> list[str]:
     from seqcheck.commands.users import concerned
 
-    if any(path == _STDIN or os.path.isdir(path) for path in paths):
+    if any(path == STDIN or os.path.isdir(path) for path in paths):
         wrong("--changed needs the files that a change touches, not a folder or standard input")
     return concerned(paths)
 
@@ -138,7 +155,7 @@ class _Shelf:
             wrong(f"--evidence: there can be no folder '{printable(folder)}': {why}")
 
     def _path(self, file: str) -> str:
-        name = "standard-input" if file == _STDIN else os.path.basename(file)
+        name = "standard-input" if file == STDIN else os.path.basename(file)
         return os.path.join(self._folder, f"{name}.json")
 
     def put(self, file: str, drive: Drive, kept: "list[Kept]") -> int:
@@ -148,45 +165,50 @@ class _Shelf:
         return deliver(written(drive, kept), self._path(file))
 
 
-def _lint(
-    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None, with_fault: bool
-) -> tuple[list[Answer], int]:
+def _lint(files: list[str], call: Call, shelf: _Shelf | None, jobs: int) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
-    for file in files:
-        answer, own = _one_file(file, only, limits, shelf)
-        code = _worse(code, own)
-        if with_fault and isinstance(answer, Outcome):
-            answer = _with_faults(answer, limits)
-        answers.append(answer)
+    with contextlib.closing(_judged(files, call, jobs)) as every:
+        for file, judged in zip(files, every, strict=True):
+            answers.append(judged.answer)
+            code = _worse(code, _told(file, judged, shelf))
     return answers, code
 
 
-def _one_file(
-    file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
-) -> tuple[Answer, int]:
-    from seqcheck.checking import check
-    from seqcheck.confirming import Fault
-    from seqcheck.language import read_any
+def _judged(files: list[str], call: Call, jobs: int) -> Generator[Judged, None, None]:
+    """What there is to say of each file, in their order."""
+    if jobs == 1:
+        yield from (judged(file, call, None) for file in files)
+        return
+    from seqcheck.work.plan import by_many
+    from seqcheck.work.processes import Crew, NoProcess
 
+    crew = Crew(jobs)
     try:
-        drive = read_any(_text(file), file, _text)
-        if isinstance(drive, Library):
-            return drive, PROVEN
-        kept: list[Kept] | None = None if shelf is None else []
-        outcome = check(drive, file, only, _observer(limits), kept)
-    except Problems as problems:
-        return Unread(file, problems.found), _mistaken(problems)
-    except Fault as fault:
-        complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
-        return Failed(file, str(fault)), FAULT
-    stored = PROVEN if shelf is None or kept is None else shelf.put(file, drive, kept)
-    return outcome, _worse(stored, _exit_of(outcome))
+        yield from by_many(files, call, crew, None)
+    except NoProcess as why:
+        complain(f"no process can be started ({why}); without --jobs none is needed")
+        raise SystemExit(FAULT) from why
+    finally:
+        crew.close()
 
 
-def _with_faults(outcome: Outcome, limits: Limits) -> Outcome:
-    from seqcheck.failing import with_faults
+def _one_file(file: str, limits: Limits) -> tuple[Answer, int]:
+    one = judged(file, Call(limits=limits), None)
+    return one.answer, _told(file, one, None)
 
-    return with_faults(outcome, _observer(limits))
+
+def _told(file: str, one: Judged, shelf: _Shelf | None) -> int:
+    """Say what there is to complain of in a file, put its evidence away; its exit code."""
+    match one.answer:
+        case Unread(_, found):
+            return _mistaken(Problems(found))
+        case Failed():
+            complain(f"{printable(file)}: {one.complaint}")
+            return FAULT
+        case Outcome() as outcome:
+            stored = PROVEN if shelf is None else shelf.put(file, outcome.drive, list(one.kept))
+            return _worse(stored, _exit_of(outcome))
+    return PROVEN
 
 
 def _mistaken(problems: Problems) -> int:
@@ -262,7 +284,7 @@ def _draw(asked: argparse.Namespace) -> int:
         wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
     limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
     wanted = draw.Wanted(asked.trace, count("--run", asked.run), form)
-    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    outcome, code = _one_file(asked.file, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; it has no modes")
     if not isinstance(outcome, Outcome):
@@ -282,7 +304,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
     from seqcheck.confirming import Fault
 
     limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
-    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    outcome, code = _one_file(asked.file, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
     if not isinstance(outcome, Outcome):
@@ -302,7 +324,7 @@ def _compare(asked: argparse.Namespace) -> int:
     form = one_of("--as", asked.form, ("screen", "lines"))
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
     observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
-    if asked.old == asked.new == _STDIN:
+    if asked.old == asked.new == STDIN:
         wrong("only one of two files can come from standard input; name the other")
     from seqcheck.commands.compare import run
     from seqcheck.confirming import Fault
@@ -344,7 +366,7 @@ def _tidy(paths: list[str], only_say: bool) -> int:
     from seqcheck.commands.tidy import World, run
 
     def write(text: str, file: str) -> int:
-        if file != _STDIN:
+        if file != STDIN:
             return deliver(text, file)
         if hasattr(sys.stdout, "reconfigure"):
             sys.stdout.reconfigure(encoding="utf-8", newline="")  # what came in goes out, whatever the terminal speaks
@@ -361,38 +383,6 @@ def _start(kind: str | None) -> int:
         return deliver(listing() if kind is None else first_file(kind), None)
     except KeyError as unknown:
         wrong(unknown.args[0])
-
-
-def _text(file: str) -> str:
-    from seqcheck.language import decode
-
-    return decode(_data(file), file)
-
-
-def _data(file: str) -> bytes:
-    try:
-        return sys.stdin.buffer.read() if file == _STDIN else Path(file).read_bytes()
-    except (OSError, ValueError) as refusal:
-        why = refusal.strerror if isinstance(refusal, OSError) and refusal.strerror else str(refusal)
-        raise Problems([_unreadable(file, why)]) from refusal
-
-
-def _unreadable(file: str, why: str) -> Problem:
-    return Problem(Place(file, 1, 1, 1, 1), "cannot-read", f"cannot read this file: {why}", "check its name and rights")
-
-
-def _observer(limits: Limits) -> Callable[[int], None]:
-    from seqcheck.proving.search import LimitReached
-
-    end = None if limits.seconds is None else time.monotonic() + limits.seconds
-
-    def observe(zones: int) -> None:
-        if limits.zones is not None and zones > limits.zones:
-            raise LimitReached(f"{limits.zones} zones (--most-zones)")
-        if end is not None and zones % 64 == 0 and time.monotonic() > end:
-            raise LimitReached(f"{limits.seconds:g} s (--give-up-after)")
-
-    return observe
 
 
 def _exit_of(outcome: Outcome) -> int:

@@ -159,8 +159,8 @@ def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None, lists: list[
 
 
 def _number(stands: object, lists: list[object]) -> int:
-    """The number of a list of stands, which is written once for all claims that share it."""
-    known = next((number for number, one in enumerate(lists) if one is stands), None)
+    """The number of a list of stands, which is written once for all claims that share it, whoever proved them."""
+    known = next((number for number, one in enumerate(lists) if one is stands or one == stands), None)
     if known is not None:
         return known
     lists.append(stands)

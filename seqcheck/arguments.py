@@ -148,6 +148,7 @@ def parser() -> argparse.ArgumentParser:
 def _limited(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     parser.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+    parser.add_argument("--fresh", action="store_true", help="prove all anew, use no answer kept from an earlier run")
 
 
 def wrong(text: str) -> Never:

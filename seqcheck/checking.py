@@ -10,6 +10,7 @@ from seqcheck.hazards import Hazard
 from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
+from seqcheck.proving.memory import Memory
 from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
@@ -40,16 +41,22 @@ class Settled:
 
 
 def check(
-    drive: Drive, file: str, only: frozenset[Check], observer: Observer, kept: list[Kept] | None = None
+    drive: Drive,
+    file: str,
+    only: frozenset[Check],
+    observer: Observer,
+    kept: list[Kept] | None = None,
+    memory: Memory | None = None,
 ) -> Outcome:
     """Everything about one drive.
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
     proof and may raise LimitReached. `kept` takes up the proof of every hazard, but for rules about lengths, for
-    evidence of them. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
+    evidence of them. A `memory` may know answers. Raises Problems for a stage that cannot be proven, Fault if a trace
+    does not replay.
     """
-    prover = Prover(drive, kept is not None)
+    prover = Prover(drive, kept is not None, memory)
     settled = [settle(prover, one, observer) for one in asked(drive)]
     if kept is not None:
         kept += evidence_of(settled)
@@ -121,13 +128,14 @@ def _with_proof(
         raise Fault(f"a path to {named(hazard)} has no times") from fault
     if isinstance(proof, Proven):
         return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.data
-    return _unsafe(prover.drive, hazard, proof, observer, rule), None
+    return _unsafe(prover, hazard, proof, observer, rule), None
 
 
-def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
+def _unsafe(prover: Prover, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
+    drive = prover.drive
     whole = proof.held is not None or not proof.greatest or proof.overlap is None
     trace, replayed = confirmed(drive, proof.trace, whole=whole)
-    remedy = None if proof.held else cure(drive, hazard, proof, observer)
+    remedy = None if proof.held else cure(drive, hazard, proof, observer, prover.memory)
     place = place_of(drive, proof.trace, replayed) if proof.held is None else drive.modes[proof.held].place
     check = _check_of(hazard, proof.held) if rule is None else check_of_rule(hazard)
     return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held, rule)

@@ -97,7 +97,7 @@ def _run(arguments: list[str]) -> int:
         _one_run(answering, files)
         jobs = at_most(MOST_JOBS, "--jobs", count("--jobs", asked.jobs) or 1)
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
-        call = Call(only, limits, shelf is not None, asked.with_fault)
+        call = Call(only, limits, shelf is not None, asked.with_fault, asked.fresh)
         answers, code = _lint(files, call, shelf, jobs)
     except SystemExit as stop:
         return int(stop.code or 0)
@@ -192,9 +192,9 @@ def _judged(files: list[str], call: Call, jobs: int) -> Generator[Judged, None, 
         crew.close()
 
 
-def _one_file(file: str, limits: Limits) -> tuple[Answer, int]:
-    one = judged(file, Call(limits=limits), None)
-    return one.answer, _told(file, one, None)
+def _one_file(asked: argparse.Namespace, limits: Limits) -> tuple[Answer, int]:
+    one = judged(asked.file, Call(limits=limits, fresh=asked.fresh), None)
+    return one.answer, _told(asked.file, one, None)
 
 
 def _told(file: str, one: Judged, shelf: _Shelf | None) -> int:
@@ -284,7 +284,7 @@ def _draw(asked: argparse.Namespace) -> int:
         wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
     limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
     wanted = draw.Wanted(asked.trace, count("--run", asked.run), form)
-    outcome, code = _one_file(asked.file, limits)
+    outcome, code = _one_file(asked, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; it has no modes")
     if not isinstance(outcome, Outcome):
@@ -304,7 +304,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
     from seqcheck.confirming import Fault
 
     limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
-    outcome, code = _one_file(asked.file, limits)
+    outcome, code = _one_file(asked, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
     if not isinstance(outcome, Outcome):

@@ -39,6 +39,7 @@ LOW_TO_HIGH = (
     "limits",
     "opening",
     "checking",
+    "store",
     "work",
     "serving",
     "commands",

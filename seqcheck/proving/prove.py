@@ -5,6 +5,7 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from typing import TypeVar, cast
 
 from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
@@ -13,6 +14,7 @@ from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
+from seqcheck.proving.memory import Count, Known, Memory, Question
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
 from seqcheck.proving.screen import Map, Places, least_after, screened
@@ -68,35 +70,17 @@ class Gap:
     limit: str = ""
 
 
-@dataclass(slots=True)
-class _Count:
-    """Zones over all searches of one proof."""
-
-    observer: Observer
-    before: int = 0
-    last: int = 0
-
-    def __call__(self, count: int) -> None:
-        self.last = count
-        self.observer(self.before + count)
-
-    def next_search(self) -> None:
-        self.before, self.last = self.before + self.last, 0
-
-    @property
-    def total(self) -> int:
-        return self.before + self.last
-
-
 class Prover:
     """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
-    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate.
+    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate. A `memory`
+    may know answers that take long; it is not asked then, since an answer has no proof with it.
     """
 
-    def __init__(self, drive: Drive, keep: bool = False) -> None:
+    def __init__(self, drive: Drive, keep: bool = False, memory: Memory | None = None) -> None:
         self.drive = drive
         self.keep = keep
+        self.memory = None if keep else memory
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool, str | None], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
         self._stands: dict[Map, list[Data]] = {}
@@ -107,22 +91,27 @@ class Prover:
         What the observer raises passes through.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
-        count, keep = _Count(observer), self.keep and interlocks and hazard.asks is None
+        keep = self.keep and interlocks and hazard.asks is None
         if hazard.asks is None:
-            here = self._map(self._firmware(looking, punctual=False), count)
+            here = self._map(self._firmware(looking, punctual=False), observer)
             if (apart := screened(looking, here)) is not None:
                 return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
+        count = Count(observer, self.memory, Question("prove", looking, (interlocks,)))
+        return _remembered(count, lambda: self._explored(looking, interlocks, count, keep))
+
+    def _explored(self, looking: View, interlocks: bool, count: Count, keep: bool) -> Proven | Refuted:
+        """By zones."""
         for punctual in (False, True):
             for manner in _manners(looking):
                 projection = self._searched(looking, punctual, manner, count)
                 if projection is not None:
                     kept = cover(projection, not punctual) if keep else None
                     return Proven("zones", count.total, not punctual, kept)
-        if _must_last(hazard):
+        if _must_last(looking.hazard):
             return self._too_short(looking, count)
         return self._refute(looking, interlocks, count)
 
-    def _too_short(self, looking: View, count: _Count) -> Refuted:
+    def _too_short(self, looking: View, count: Count) -> Refuted:
         """The run in which what is too short is shortest."""
         assert looking.hazard.asks is not None, "it asks for a length"
         limit = looking.hazard.asks.limit
@@ -144,14 +133,17 @@ class Prover:
         """
         drive = self.drive if locks is None else replace(self.drive, interlocks=locks)
         looking = view(drive, hazard, delays(hazard, drive.paths), interlocks=True)
-        count = _Count(observer)
         if hazard.asks is None:
-            here = self._map(self._firmware(looking, punctual=False), count)
+            here = self._map(self._firmware(looking, punctual=False), observer)
             if screened(looking, here) is not None:
                 return True
-        return any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking))
+        count = Count(observer, self.memory, Question("holds", looking))
+        return _remembered(
+            count,
+            lambda: any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking)),
+        )
 
-    def _searched(self, looking: View, punctual: bool, manner: Manner, count: _Count) -> Projection | None:
+    def _searched(self, looking: View, punctual: bool, manner: Manner, count: Count) -> Projection | None:
         """The projection with all that its search stored, if no run in it brings the hazard."""
         count.next_search()
         projection = Projection(looking, self._firmware(looking, punctual), manner)
@@ -164,7 +156,10 @@ class Prover:
         looked for. Where the observer raises LimitReached the answer is a lower bound. Raises Infeasible.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
-        count = _Count(observer)
+        count = Count(observer, self.memory, Question("gap", looking, (watched, below)))
+        return _remembered(count, lambda: self._gap(looking, watched, count, below))
+
+    def _gap(self, looking: View, watched: int, count: Count, below: int | None) -> Gap:
         try:
             floor = self._floor(looking, watched, count)
         except LimitReached as limit:
@@ -184,7 +179,7 @@ class Prover:
             return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
         return Gap(least.time if least.within or least.limit else None, None, least.limit)
 
-    def _floor(self, looking: View, watched: int, count: _Count) -> int | None:
+    def _floor(self, looking: View, watched: int, count: Count) -> int | None:
         """A lower bound of a gap from least times alone; None where nothing ever follows."""
         if len(looking.hazard.literals) != 2 or looking.locks or not all(one.on for one in looking.hazard.literals):
             return 0
@@ -200,7 +195,7 @@ class Prover:
         is named.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
-        count = _Count(observer)
+        count = Count(observer)
         try:
             if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
                 return Spread(frozenset(), frozenset())
@@ -222,13 +217,13 @@ class Prover:
             self._stands[here] = stands(here)
         return {**potentials(looking, here, apart), "stands": self._stands[here]}
 
-    def _refute(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+    def _refute(self, looking: View, interlocks: bool, count: Count) -> Refuted:
         try:
             return self._measured(looking, interlocks, count)
         except LimitReached:
             return self._first(looking, interlocks)
 
-    def _measured(self, looking: View, interlocks: bool, count: _Count) -> Refuted:
+    def _measured(self, looking: View, interlocks: bool, count: Count) -> Refuted:
         """The run with the longest overlap, or to a mode that holds the hazard."""
         firmware = self._firmware(looking, punctual=True)
         ceiling: int | None = None
@@ -258,7 +253,7 @@ class Prover:
         overlap = None if endless else trace.end - trace.overlap_from
         return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
-    def _held(self, looking: View, interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
+    def _held(self, looking: View, interlocks: bool, count: Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
         count.next_search()
         manner = _manners(looking)[-1]
@@ -283,6 +278,19 @@ class Prover:
         if firmware not in self._maps:
             self._maps[firmware] = Map(firmware, observer)
         return self._maps[firmware]
+
+
+Answer = TypeVar("Answer")
+
+
+def _remembered(count: Count, found: Callable[[], Answer]) -> Answer:
+    """What the memory of a count knows, or what is found; the memory keeps the kind of answer that it was given."""
+    try:
+        answer = found()
+    except Known as known:
+        return cast(Answer, known.answer)
+    count.keep(answer)
+    return answer
 
 
 def _manners(looking: View, measure: bool = False) -> tuple[Manner, ...]:

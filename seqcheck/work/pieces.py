@@ -17,7 +17,9 @@ if TYPE_CHECKING:
     from seqcheck.checking import Asked, Kept, Settled
     from seqcheck.faults import Faulted
     from seqcheck.hazards import Hazard
+    from seqcheck.proving.memory import Memory, Question, Remembered
     from seqcheck.proving.prove import Prover
+    from seqcheck.store import Store
 
 SHARED_AFTER = 0.2
 """Seconds after which a process lets others have hazards of its file: before, that would cost more than it saves."""
@@ -28,12 +30,13 @@ _ASK_FOR_HELP = "internal error, please report it with the file: "
 
 @dataclass(frozen=True, slots=True)
 class Call:
-    """What is asked of every file: `keep` its proofs as evidence, what single `faults` bring."""
+    """What is asked of every file: `keep` its proofs as evidence, what single `faults` bring, all proven `fresh`."""
 
     only: frozenset[Check] = frozenset()
     limits: Limits = NO_LIMITS
     keep: bool = False
     faults: bool = False
+    fresh: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -174,6 +177,7 @@ class Hand:
         self._due = 0.0
         self._file: _Open | None = None
         self._last: tuple[object, Prover] | None = None
+        self._answers = _Answers()
 
     def done(self, piece: Piece) -> Result:
         """The answer to a piece; what goes wrong is an answer too."""
@@ -201,7 +205,7 @@ class Hand:
         drive = read_any(text, piece.file, text_of)
         if isinstance(drive, Library):
             return Judged(drive)
-        prover, end = Prover(drive, piece.call.keep), piece.call.limits.end()
+        prover, end = Prover(drive, piece.call.keep, self._memory(piece.call)), piece.call.limits.end()
         hazards = list(enumerate(asked(drive)))
         count = len(hazards)
         self._count(Told(count, 0, 0))
@@ -258,8 +262,11 @@ class Hand:
 
         key = piece.drive, isinstance(piece, Share) and piece.call.keep
         if self._last is None or self._last[0] != key:
-            self._last = key, Prover(loads(piece.drive), key[1])
+            self._last = key, Prover(loads(piece.drive), key[1], self._memory(piece.call))
         return self._last[1]
+
+    def _memory(self, call: Call) -> "Memory | None":
+        return None if call.fresh else self._answers
 
     # Words on the way
 
@@ -302,6 +309,26 @@ class Hand:
         del file.hazards[file.at + 1 :]
         self._last = (drive, call.keep), file.prover
         self._tell(Instead(Share(number, drive, tuple(file.hazards), call, file.end), rest, count))
+
+
+class _Answers:
+    """The store of answers, which is opened when a proof first asks for one."""
+
+    def __init__(self) -> None:
+        self._store: Store | None = None
+
+    def recalled(self, question: "Question") -> "Remembered | None":
+        return self._opened().recalled(question)
+
+    def kept(self, question: "Question", found: "Remembered") -> None:
+        self._opened().kept(question, found)
+
+    def _opened(self) -> "Store":
+        if self._store is None:
+            from seqcheck.store import Store
+
+            self._store = Store()
+        return self._store
 
 
 @dataclass(slots=True)

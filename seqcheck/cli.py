@@ -35,11 +35,12 @@ from seqcheck.opening import data_of as _data
 from seqcheck.opening import text_of as _text
 from seqcheck.source import printable
 from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
-from seqcheck.work.pieces import Call, Judged, judged
+from seqcheck.work.pieces import Call, Instead, Judged, Told, judged
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
     from seqcheck.evidence.audit import Audited
+    from seqcheck.reports.progress import Progress
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -167,24 +168,48 @@ class _Shelf:
 
 def _lint(files: list[str], call: Call, shelf: _Shelf | None, jobs: int) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
-    with contextlib.closing(_judged(files, call, jobs)) as every:
-        for file, judged in zip(files, every, strict=True):
-            answers.append(judged.answer)
-            code = _worse(code, _told(file, judged, shelf))
+    progress = _progress(len(files))
+    try:
+        with contextlib.closing(_judged(files, call, jobs, progress)) as every:
+            for file, one in zip(files, every, strict=True):
+                if progress:
+                    progress.file_done()
+                answers.append(one.answer)
+                code = _worse(code, _told(file, one, shelf))
+    finally:
+        if progress:
+            progress.clear()
     return answers, code
 
 
-def _judged(files: list[str], call: Call, jobs: int) -> Generator[Judged, None, None]:
+def _progress(files: int) -> "Progress | None":
+    """The line that tells how far it is; None where nobody watches."""
+    if not sys.stderr.isatty() or os.environ.get("TERM") == "dumb":
+        return None
+    from seqcheck.reports.progress import Progress
+
+    return Progress(sys.stderr, files)
+
+
+def _judged(
+    files: list[str], call: Call, jobs: int, progress: "Progress | None"
+) -> Generator[Judged, None, None]:
     """What there is to say of each file, in their order."""
+
+    def tell(said: Told | Instead) -> None:
+        if progress and isinstance(said, Told):
+            progress.count(said.hazards, said.settled, said.zones)
+
+    teller = tell if progress else None
     if jobs == 1:
-        yield from (judged(file, call, None) for file in files)
+        yield from (judged(file, call, teller) for file in files)
         return
     from seqcheck.work.plan import by_many
     from seqcheck.work.processes import Crew, NoProcess
 
     crew = Crew(jobs)
     try:
-        yield from by_many(files, call, crew, None)
+        yield from by_many(files, call, crew, teller)
     except NoProcess as why:
         complain(f"no process can be started ({why}); without --jobs none is needed")
         raise SystemExit(FAULT) from why

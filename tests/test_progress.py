@@ -48,7 +48,8 @@ def test_a_long_proof_tells_how_far_it_is(tmp_path: Path, more: list[str], colum
     """The line is gone when something else is said."""
     (tmp_path / "a.dseq").write_text(SAFE)
     (tmp_path / "z.dseq").write_text(slow())
-    said, out, code = shown([str(tmp_path / "a.dseq"), str(tmp_path / "z.dseq"), *more], b"1 of 2 fi.*1 of 2 fi", columns=columns)
+    call = [str(tmp_path / "a.dseq"), str(tmp_path / "z.dseq"), *more]
+    said, out, code = shown(call, b"1 of 2 fi.*1 of 2 fi", columns=columns)
     assert code == 3
     assert out == b""
     if columns == 80:

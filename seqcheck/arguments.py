@@ -125,6 +125,7 @@ def parser() -> argparse.ArgumentParser:
         "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
     )
     margins.add_argument("file", metavar="FILE")
+    margins.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (as it is), lines or json")
     margins.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
     margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
     margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")

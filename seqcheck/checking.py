@@ -5,7 +5,7 @@ from dataclasses import dataclass, replace
 
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
-from seqcheck.drive import Drive, Interlock, MarginRule
+from seqcheck.drive import Drive, Interlock, MarginRule, ToleratesRule
 from seqcheck.hazards import Hazard
 from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
@@ -24,8 +24,9 @@ Observer = Callable[[int], None]
 Proof = Data | Trace | None
 """The proof that a hazard is safe as data, the run that shows it, or None where neither is at hand."""
 Kept = tuple[Hazard, Proof]
-Asked = tuple[Hazard, Place | None]
-"""What must never be possible, and the rule that asks for it (None: it is built in)."""
+Asked = tuple[Hazard | None, Place | None]
+"""What must never be possible, and the rule that asks for it (None: it is built in). Without a hazard: all that single
+faults may not bring."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,12 +67,16 @@ def check(
 def asked(drive: Drive) -> tuple[Asked, ...]:
     """Everything that must never be possible at once; raises Problems for a stage that cannot be proven."""
     built_in = [(hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage))]
-    return (*built_in, *((hazard, rule.place) for rule in drive.rules for hazard in asked_by(rule)))
+    ruled = [(hazard, rule.place) for rule in drive.rules for hazard in asked_by(rule)]
+    faulty = any(isinstance(rule, ToleratesRule) for rule in drive.rules)
+    return (*built_in, *ruled, *([(None, None)] if faulty else []))
 
 
 def settle(prover: Prover, one: Asked, observer: Observer) -> Settled:
     """One hazard, which needs no other; raises Fault."""
     hazard, rule = one
+    if hazard is None:
+        return Settled(tuple(_tolerated(prover, observer)), (), None)
     verdict, proof = _with_proof(prover, hazard, observer, rule)
     if isinstance(verdict, Unsafe):
         return Settled((verdict,), (), verdict.trace)
@@ -93,9 +98,17 @@ def gathered(drive: Drive, file: str, only: frozenset[Check], settled: Sequence[
 
 
 def evidence_of(settled: Sequence[Settled]) -> list[Kept]:
-    """What evidence says of each hazard; it is not about lengths."""
-    hazards = [one.verdicts[0].hazard for one in settled]
-    return [(hazard, one.proof) for hazard, one in zip(hazards, settled, strict=True) if hazard.asks is None]
+    """What evidence says of each hazard; it is not about lengths and faults."""
+    asked_for = [(one.verdicts[0].hazard, one.proof) for one in settled if one.verdicts]
+    return [(hazard, proof) for hazard, proof in asked_for if hazard.asks is None]
+
+
+def _tolerated(prover: Prover, observer: Observer) -> Iterator[Verdict]:
+    """What single faults bring in the modes that must tolerate them."""
+    from seqcheck.tolerating import tolerated
+
+    rules = [rule for rule in prover.drive.rules if isinstance(rule, ToleratesRule)]
+    yield from tolerated(prover, shorting_sets(prover.drive.stage), rules, observer)
 
 
 def _margin_rules(drive: Drive) -> list[MarginRule]:
@@ -250,7 +263,7 @@ _OF_A_VERDICT = frozenset(
     one.value
     for one in (
         *(Check.SHORT, Check.OVERLAP, Check.OPEN_WINDING, Check.TOGETHER, Check.THIN_MARGIN),
-        *(Check.LONG_ON, Check.SHORT_PULSE, Check.TOO_SOON, Check.LATE_TRIP),
+        *(Check.LONG_ON, Check.SHORT_PULSE, Check.TOO_SOON, Check.LATE_TRIP, Check.SINGLE_FAULT),
         *(Check.HELD_BY_INTERLOCK, Check.PUNCTUAL),
     )
 )

@@ -88,10 +88,10 @@ def _run(arguments: list[str]) -> int:
         limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
-            return _margins(asked.file, limits, colour, asked.out)
+            return _margins(asked.file, limits, asked.form, colour, asked.out)
         form = one_of("--as", asked.form, FORMS)
-        if asked.with_fault and form not in ("screen", "lines"):
-            wrong(f"--with-fault makes a table for '--as screen' or '--as lines'; '{form}' has no place for it")
+        if asked.with_fault and form not in ("screen", "lines", "json"):
+            wrong(f"--with-fault goes with '--as screen', 'lines' or 'json'; '{form}' has no place for what it tells")
         only = frozenset(check_named(name) for name in asked.only)
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
         files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
@@ -365,25 +365,23 @@ def _compare(asked: argparse.Namespace) -> int:
     return _worse(code, deliver(text, asked.out))
 
 
-def _margins(file: str, limits: Limits, colour: str, out: str | None) -> int:
+def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None) -> int:
     """Tell the margins of a file; the exit code."""
+    from seqcheck.commands.margins import FORMS as FORMS_OF_MARGINS
+    from seqcheck.commands.margins import run
     from seqcheck.confirming import Fault
     from seqcheck.language import read
-    from seqcheck.margins import budget
-    from seqcheck.reports import budget as wording
-    from seqcheck.reports import screen
 
+    one_of("--as", form, FORMS_OF_MARGINS)
+    painted = wants_colour(colour, sys.stdout) and not out
     try:
-        found = budget(read(_text(file), file, _text), file, _observer(limits))
+        text, code = run(read(_text(file), file, _text), file, _observer(limits), form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
         complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
         return FAULT
-    report = wording.report(found)
-    painted = wants_colour(colour, sys.stdout) and not out
-    code = deliver(screen.coloured(report) if painted else screen.plain(report), out)
-    return _worse(code, FOUND if found.unsafe else UNDECIDED if found.undecided else PROVEN)
+    return _worse(code, deliver(text, out))
 
 
 def _tidy(paths: list[str], only_say: bool) -> int:

@@ -2,7 +2,7 @@
 
 from seqcheck.drive import Drive
 from seqcheck.evidence.replay import NotPermitted, from_its_beginning, replay
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length
 from seqcheck.source import Place
 from seqcheck.verdict import Act, Event, Replayed, Trace
 
@@ -24,7 +24,7 @@ def named(hazard: Hazard) -> str:
     """The literals of a hazard in a few words."""
     if isinstance(hazard.asks, Following):
         return f"{hazard.asks.entered} after {hazard.asks.left}"
-    return " with ".join(map(str, hazard.literals))
+    return " with ".join(map(str, hazard.literals)) or "a short by one switch"
 
 
 def place_of(drive: Drive, trace: Trace, replayed: Replayed) -> Place:
@@ -35,7 +35,8 @@ def place_of(drive: Drive, trace: Trace, replayed: Replayed) -> Place:
         return next(_line(drive, one) for one in reversed(trace.events) if one.act is Act.BEGINS)
     if isinstance(asks, Clearing):
         return next(trip.place for trip in drive.trips if trip.name == asks.trip)
-    shown = trace.overlap_from if asks is None or (isinstance(asks, Lasting) and asks.longer) else trace.end
+    longer = isinstance(asks, Lasting) and asks.longer
+    shown = trace.overlap_from if longer or not isinstance(asks, Length) else trace.end
     last = max((time for time in changes if time <= shown), default=0)
     concerned = {literal.switch for literal in trace.hazard.literals}
     mode, run, at_rest, written = drive.start, drive.modes[drive.start].place, True, False

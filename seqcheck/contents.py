@@ -31,6 +31,7 @@ from seqcheck.drive import (
     SetStep,
     Step,
     Switch,
+    ToleratesRule,
     Trip,
     When,
     cell_text,
@@ -261,8 +262,10 @@ def _rule(rule: Rule) -> tuple[str, Fields]:
         return f"{rule.trip} clears {' '.join(rule.switches)}", _said(within=shown(rule.within))
     if isinstance(rule, LastsRule):
         return f"{rule.switch} {rule.lasts.value}", _said(time=shown(rule.limit))
-    assert isinstance(rule, ApartRule)
-    return f"{rule.first} and {rule.second} apart", _said(at_least=shown(rule.least))
+    if isinstance(rule, ApartRule):
+        return f"{rule.first} and {rule.second} apart", _said(at_least=shown(rule.least))
+    assert isinstance(rule, ToleratesRule)
+    return "tolerates single faults", _said(modes=", ".join(rule.modes))
 
 
 # Quantities as they may have been written

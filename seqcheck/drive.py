@@ -470,7 +470,15 @@ class ApartRule:
     least: int
 
 
-Rule = MarginRule | NeverRule | ClearsRule | LastsRule | ApartRule
+@dataclass(frozen=True, slots=True)
+class ToleratesRule:
+    """`tolerates single faults in M…`; the modes in the order of the line, or of the table where it says `any`."""
+
+    place: Place
+    modes: tuple[str, ...]
+
+
+Rule = MarginRule | NeverRule | ClearsRule | LastsRule | ApartRule | ToleratesRule
 
 
 @dataclass(frozen=True, slots=True)

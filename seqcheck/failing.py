@@ -10,8 +10,8 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import replace
 
 from seqcheck.drive import Drive, Fixed, Level, Mode, Move, Pin, SetStep, Step, Trip
-from seqcheck.faults import Brought, Fault, Faulted, affected, concerned
-from seqcheck.hazards import Hazard
+from seqcheck.faults import Brought, Faulted, affected, concerned
+from seqcheck.hazards import Fault, Hazard
 from seqcheck.proving.prove import Prover
 from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import INSTANT
@@ -58,7 +58,7 @@ def faults_of(
     for on in (True, False):
         own, wired = Fault(switch, on, pin=False), Fault(switch, on, pin=True)
         alike = (own,) if concerned(drive, switch) else (own, wired)
-        brings = _brought(prover, _left(own, affected(drive, own, hazards)), anyway, observer)
+        brings = _brought(prover, left_of(own, affected(drive, own, hazards)), anyway, observer)
         found.append(Faulted(alike, tuple(brings)))
         if wired not in alike:
             asked = [(one, one) for one in affected(drive, wired, hazards)]
@@ -67,7 +67,7 @@ def faults_of(
     return found
 
 
-def _left(fault: Fault, hazards: Sequence[Hazard]) -> list[tuple[Hazard, Hazard]]:
+def left_of(fault: Fault, hazards: Sequence[Hazard]) -> list[tuple[Hazard, Hazard]]:
     """Hazards with what is left of them when a switch is stuck; those that it makes impossible left out."""
     found = []
     for hazard in hazards:
@@ -100,7 +100,7 @@ def with_pin_stuck(drive: Drive, switch: str, on: bool) -> Drive:
     What the firmware writes there goes to a column of its own, at the place of the old one, so that it takes the time
     that it took; nothing looks at it. The switch itself is `free` in every row and rests at the level.
     """
-    ghost = f"{switch} as written"
+    ghost = as_written(switch)
     stuck = Pin(drive.place, switch, "", True, Level.HIGH if on else Level.LOW, INSTANT, None)
     pins = {**drive.pins, switch: stuck}
     if switch in drive.pins:
@@ -115,6 +115,11 @@ def with_pin_stuck(drive: Drive, switch: str, on: bool) -> Drive:
         moves=tuple(_redirected_move(move, switch, ghost) for move in drive.moves),
         trips=tuple(_redirected_trip(trip, switch, ghost) for trip in drive.trips),
     )
+
+
+def as_written(switch: str) -> str:
+    """The column of such a drive that takes up what the firmware writes to a switch; no file can have the name."""
+    return f"{switch} as written"
 
 
 def _freed(mode: Mode) -> Mode:

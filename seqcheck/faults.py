@@ -4,17 +4,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from seqcheck.drive import Drive, Move, Trip
-from seqcheck.hazards import Hazard
-
-
-@dataclass(frozen=True, slots=True, order=True)
-class Fault:
-    """One thing stuck for ever: a switch conducts always (`on`) or never; or, with `pin`, it is the command at the pin
-    of that switch that is always on or always off, whatever is written."""
-
-    switch: str
-    on: bool
-    pin: bool
+from seqcheck.hazards import Fault, Hazard
 
 
 @dataclass(frozen=True, slots=True, order=True)

@@ -62,8 +62,33 @@ class Clearing:
     limit: int
 
 
-Question = Lasting | Following | Clearing
+Length = Lasting | Following | Clearing
 """What a rule of the file forbids, where it is about lengths of time."""
+
+
+@dataclass(frozen=True, slots=True, order=True)
+class Fault:
+    """One thing stuck for ever: a switch conducts always (`on`) or never; or, with `pin`, it is the command at the pin
+    of that switch that is always on or always off, whatever is written."""
+
+    switch: str
+    on: bool
+    pin: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Stuck:
+    """That a short comes at rest in a mode while one thing is stuck; `faults` are those that come to the same.
+
+    The literals are those that must come together beside what a stuck switch does by itself.
+    """
+
+    mode: str
+    faults: tuple[Fault, ...]
+
+
+Question = Length | Stuck
+"""What a rule of the file forbids that is more than to be possible together."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -75,7 +100,8 @@ class Hazard:
     where all entries contradict what is known, the hazard is not asked for. An empty `needs` means always. `currents`
     are those that lose their way where the hazard is an open winding.
 
-    With `asks` it is another question, about a length of time: then the literals name the switch that it is about.
+    With `asks` it is another question: about a length of time, then the literals name the switch that it is about, or
+    about what one thing that is stuck brings.
     """
 
     literals: tuple[Literal, ...]
@@ -103,7 +129,7 @@ def delays(hazard: Hazard, paths: Mapping[str, tuple[Part, ...]]) -> tuple[Delay
     if isinstance(hazard.asks, Lasting | Following):
         return (Delays(hazard.asks.limit - 1, 0),)
     plain = tuple(_plain(literal, paths[literal.switch]) for literal in hazard.literals)
-    if hazard.asks is not None:
+    if isinstance(hazard.asks, Clearing):
         return (*plain, Delays(hazard.asks.limit, 0))
     if len(plain) != 2 or not all(literal.on for literal in hazard.literals):
         return plain

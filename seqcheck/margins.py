@@ -34,6 +34,7 @@ def budget(drive: Drive, file: str, observer: Observer) -> Budget:
     undecided: list[Undecided] = []
     held: list[Hazard] = []
     punctual: list[Hazard] = []
+    alone: list[Hazard] = []
     for hazard in shorting_sets(drive.stage):
         try:
             proof = prover.prove(hazard, True, observer)
@@ -43,11 +44,18 @@ def budget(drive: Drive, file: str, observer: Observer) -> Budget:
         if not isinstance(proof, Proven):
             unsafe.append((hazard, proof.overlap, proof.greatest))
             continue
-        margins += (margin(prover, hazard, at, observer) for at in range(len(hazard.literals)))
+        margins += (margin(prover, hazard, at, observer) for at in _places(hazard))
+        alone += [] if _places(hazard) else [hazard]
         punctual += [] if proof.however_late else [hazard]
         held += [hazard] if _held(prover, hazard, observer) else []
     margins.sort(key=lambda one: (one.slack is None, one.slack or 0))
-    return Budget(file, drive, tuple(margins), tuple(unsafe), tuple(undecided), tuple(held), tuple(punctual))
+    left = (tuple(undecided), tuple(held), tuple(punctual), tuple(alone))
+    return Budget(file, drive, tuple(margins), tuple(unsafe), *left)
+
+
+def _places(hazard: Hazard) -> range:
+    """The literals that have a margin, by their places; none where one switch shorts by itself."""
+    return range(len(hazard.literals) if len(hazard.literals) > 1 else 0)
 
 
 def _held(prover: Prover, hazard: Hazard, observer: Observer) -> bool:
@@ -85,7 +93,7 @@ def margin(prover: Prover, hazard: Hazard, at: int, observer: Observer, below: i
 
 def thin(prover: Prover, rule: MarginRule, hazard: Hazard, observer: Observer) -> Iterator[Unsafe | Undecided]:
     """Where a safe short comes nearer than a rule lets it. Raises Fault."""
-    for at in range(len(hazard.literals)):
+    for at in _places(hazard):
         found = margin(prover, hazard, at, observer, rule.least)
         if found.limit and (found.slack or 0) < rule.least:
             yield Undecided(hazard, found.limit, 0)

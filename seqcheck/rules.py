@@ -3,12 +3,15 @@
 from collections.abc import Iterator
 
 from seqcheck.drive import ApartRule, ClearsRule, Lasts, LastsRule, NeverRule, Rule
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Literal
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Literal, Stuck
 from seqcheck.verdict import Check
 
 
 def asked_by(rule: Rule) -> Iterator[Hazard]:
-    """The hazards that a rule asks for; none for one about margins, or where nothing can be shorter than its limit."""
+    """The hazards that a rule asks for; none where nothing can be shorter than its limit.
+
+    One about margins or single faults asks for no hazard of its own, but about shorts.
+    """
     if isinstance(rule, NeverRule):
         yield Hazard(tuple(Literal(switch, on) for switch, on in rule.literals), ())
     elif isinstance(rule, LastsRule):
@@ -32,6 +35,8 @@ def check_of_rule(hazard: Hazard) -> Check:
         return Check.LATE_TRIP
     if isinstance(hazard.asks, Lasting):
         return Check.LONG_ON if hazard.asks.longer else Check.SHORT_PULSE
+    if isinstance(hazard.asks, Stuck):
+        return Check.SINGLE_FAULT
     return Check.TOGETHER
 
 
@@ -39,6 +44,10 @@ def never_so(hazard: Hazard) -> str:
     """What is proven of a hazard, to stand after `that`."""
     if isinstance(hazard.asks, Following):
         return f"{hazard.asks.entered} never follows {hazard.asks.left} too soon"
+    if isinstance(hazard.asks, Stuck):
+        fault = hazard.asks.faults[0]
+        stuck = f"{'the pin of ' if fault.pin else ''}{fault.switch} stuck"
+        return f"{' to '.join(hazard.joins)} are not joined in {hazard.asks.mode} with {stuck}"
     literal = hazard.literals[0]
     if isinstance(hazard.asks, Clearing):
         return f"{hazard.asks.trip} never clears {literal} too late"

@@ -130,6 +130,7 @@ class Check(Enum):
     LONG_ON = "long-on"
     SHORT_PULSE = "short-pulse"
     TOO_SOON = "too-soon"
+    SINGLE_FAULT = "single-fault"
     UNREACHABLE = "unreachable"
     NO_WAY_BACK = "no-way-back"
     AMBIGUOUS = "ambiguous"
@@ -220,7 +221,8 @@ class Budget:
     """The margins of one file, least first; what is unsafe, with its greatest overlap (None: without end) and whether
     that is exact; and what a limit left undecided.
 
-    `held` are safe hazards that only interlocks prevent, `punctual` those that rest on firmware keeping upper bounds.
+    `held` are safe hazards that only interlocks prevent, `punctual` those that rest on firmware keeping upper bounds,
+    `alone` those of a single switch, which have no margin.
     """
 
     file: str
@@ -230,6 +232,7 @@ class Budget:
     undecided: tuple[Undecided, ...]
     held: tuple[Hazard, ...] = ()
     punctual: tuple[Hazard, ...] = ()
+    alone: tuple[Hazard, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -11,6 +11,7 @@ from jsonschema.protocols import Validator
 from jsonschema.validators import validator_for
 from vcd.reader import TokenKind, tokenize
 
+from seqcheck.reports import budget_document
 from seqcheck.reports.document import SCHEMA
 from seqcheck.shipped import shipped
 
@@ -21,6 +22,14 @@ Changes = dict[str, list[tuple[int, str]]]
 def outcome_schema() -> Validator:
     """Our own schema, with every object closed: what the schema does not describe must not be written."""
     schema = json.loads(shipped(SCHEMA))
+    Draft202012Validator.check_schema(schema)
+    return Draft202012Validator(_closed(schema))
+
+
+@cache
+def margins_schema() -> Validator:
+    """That of margins, likewise."""
+    schema = json.loads(shipped(budget_document.SCHEMA))
     Draft202012Validator.check_schema(schema)
     return Draft202012Validator(_closed(schema))
 

@@ -1,10 +1,12 @@
 """Single faults against the judge: where each hazard happens when one thing is stuck."""
 
 import contextlib
+import json
 from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
+from forms import outcome_schema
 from judge.draws import draw, flowing
 from judge.shorts import asked
 from judge.stuck import places
@@ -16,9 +18,11 @@ from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.cli import main
 from seqcheck.drive import Drive
 from seqcheck.failing import single_faults
-from seqcheck.faults import Fault, Faulted, Where
+from seqcheck.faults import Faulted, Where
+from seqcheck.hazards import Fault
 
 MOST_STATES = 20_000
+SAMPLES = Path(__file__).parent.parent / "samples"
 
 
 def said(text: str) -> Iterator[tuple[str, frozenset[Where], frozenset[Where] | None]]:
@@ -182,12 +186,44 @@ def test_what_a_limit_leaves_open_is_said(
     assert "undecided whether P to N while UL can conduct (limit reached:\n                   1 zones)\n" in out
 
 
-@pytest.mark.parametrize("form", ["json", "sarif", "vcd", "annotations"])
+def test_json_has_the_table(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """Every fault, also those of which nothing comes, each place, and the words of the screen."""
+    code, out = linted(tmp_path, capsys, leg(locks="interlock UH UL"), "--as", "json")
+    outcome_schema().validate(json.loads(out))
+    (entry,) = json.loads(out)["files"]
+    assert code == 1
+    assert len(entry["faults"]) == 8
+    first = entry["faults"][0]
+    assert (first["name"], first["stuck"]) == ("UH on", [{"switch": "UH", "on": True, "pin": False}])
+    (brought,) = first["brings"]
+    assert brought["left"] == [{"switch": "UL", "on": True}]
+    assert (brought["rows"], brought["places"]) == (["down"], [{"mode": "down"}])
+    assert (brought["anyway"], brought["limit"]) == (False, None)
+    assert brought["text"] == "P to N while UL can conduct: in row down"
+    assert sum(bool(one["brings"]) for one in entry["faults"]) == 2
+
+
+def test_json_names_moves_and_trips_by_number_and_place(capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["lint", str(SAMPLES / "pump.dseq"), "--with-fault", "--as", "json"]) == 0
+    data = json.loads(capsys.readouterr().out)
+    outcome_schema().validate(data)
+    places = [place for one in data["files"][0]["faults"] for brought in one["brings"] for place in brought["places"]]
+    (move,) = [place for place in places if "move" in place]
+    assert (move["mode"], move["move"], move["place"]["line"]) == ("star", 2, 52)
+
+
+def test_json_says_nothing_of_faults_unless_asked(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (tmp_path / "t.dseq").write_text(leg(), encoding="utf-8")
+    main(["lint", str(tmp_path / "t.dseq"), "--as", "json"])
+    assert "faults" not in json.loads(capsys.readouterr().out)["files"][0]
+
+
+@pytest.mark.parametrize("form", ["sarif", "vcd", "annotations"])
 def test_forms_without_a_place_for_the_table(form: str, capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["lint", "x.dseq", "--with-fault", "--as", form]) == 2
     out, err = capsys.readouterr()
     assert out == ""
     assert err == (
-        "seqcheck: error: --with-fault makes a table for '--as screen' or '--as lines'; "
-        f"'{form}' has no place for it\n"
+        "seqcheck: error: --with-fault goes with '--as screen', 'lines' or 'json'; "
+        f"'{form}' has no place for what it tells\n"
     )

@@ -35,6 +35,7 @@ LOW_TO_HIGH = (
     "margins",
     "rules",
     "failing",
+    "tolerating",
     "reports",
     "limits",
     "opening",
@@ -54,7 +55,7 @@ APART = {
     "proving": {"language", "evidence"},
     "reports": {
         *("language", "circuit", "writing", "firmware", "modegraph", "zones", "proving", "evidence"),
-        *("confirming", "sizing", "margins", "rules", "failing"),
+        *("confirming", "sizing", "margins", "rules", "failing", "tolerating"),
     },
 }
 """Rooms that must not know each other although one is below the other: the replay must be able to contradict the

@@ -10,7 +10,7 @@ import pytest
 from seqcheck import shipped
 
 ROOT = Path(__file__).parents[1]
-NAMES = ("drive.lark", "outcome.schema.json", "dseq.tmLanguage.json", "start/h-bridge.dseq")
+NAMES = ("drive.lark", "outcome.schema.json", "margins.schema.json", "dseq.tmLanguage.json", "start/h-bridge.dseq")
 
 
 def asked(code: str, folder: Path, path: Path) -> str:

@@ -9,6 +9,7 @@ from seqcheck.checking import check
 from seqcheck.drive import AtOnce, Drive, Move, Trip, When
 from seqcheck.evidence.digest import digest
 from seqcheck.exits import FOUND, PROVEN, UNDECIDED
+from seqcheck.hazards import Length
 from seqcheck.language import read
 from seqcheck.margins import margin
 from seqcheck.messages import Problem, Problems
@@ -88,7 +89,8 @@ def _keyed(outcome: Outcome) -> dict[Key, Verdict]:
     found: dict[Key, Verdict] = {}
     for one in outcome.verdicts:
         hazard = one.hazard
-        asks = None if hazard.asks is None else replace(hazard.asks, limit=0)  # what a rule asks, whatever its limit
+        asks = hazard.asks
+        asks = replace(asks, limit=0) if isinstance(asks, Length) else asks  # what a rule asks, whatever its limit
         key: Key = (frozenset(hazard.literals), bool(hazard.currents), bool(hazard.joins), asks)
         if isinstance(one, Unsafe) and one.check is Check.THIN_MARGIN:
             key = (*key, one.after)

@@ -27,8 +27,8 @@ def from_zero(pieces: list[Stretch]) -> list[Stretch]:
 def require_too_short(drive: Drive, trace: Trace, commands: dict[str, Timeline[Command]]) -> None:
     """Refuse a claim that is not of something that lasts too short a time and ends with the trace."""
     asks = trace.hazard.asks
-    short = asks is not None and trace.end - trace.overlap_from < asks.limit
-    if asks is None or isinstance(asks, Clearing) or not short or trace.overlap_to != trace.end:
+    claims = isinstance(asks, Lasting | Following) and trace.end - trace.overlap_from < asks.limit
+    if not isinstance(asks, Lasting | Following) or not claims or trace.overlap_to != trace.end:
         raise NotPermitted("The claim is not of what is too short and ends with the run.")
     if isinstance(asks, Lasting):
         (literal,) = trace.hazard.literals
@@ -86,6 +86,20 @@ def late(drive: Drive, trace: Trace, asks: Clearing) -> Iterator[Stretch]:
             since = event.time
     if since is not None:
         yield Stretch(since + asks.limit, None)
+
+
+def at_rest(drive: Drive, trace: Trace, mode: str) -> Iterator[Stretch]:
+    """When the firmware is at rest in a mode, each stay by itself."""
+    since: int | None = None
+    here = drive.start == mode
+    for event in trace.events:
+        if event.act is Act.BEGINS and here:
+            yield Stretch(since, event.time)
+            here = False
+        elif event.act is Act.ENTERS:
+            since, here = event.time, event.name == mode
+    if here:
+        yield Stretch(since, None)
 
 
 def _over(start: int, end: int) -> Iterator[Stretch]:

@@ -1,16 +1,17 @@
 """The replay of a trace: by the meaning of the drive alone, so that it can contradict whatever made the trace."""
 
+from collections.abc import Iterable
 from dataclasses import replace
 
 from seqcheck.drive import Drive
 from seqcheck.evidence.cycles import bridged
 from seqcheck.evidence.endless import require_endless
 from seqcheck.evidence.facts import asked_for
-from seqcheck.evidence.lengths import from_zero, late, long_enough, require_too_short
+from seqcheck.evidence.lengths import at_rest, from_zero, late, long_enough, require_too_short
 from seqcheck.evidence.possible import Stretch, delays, possible, stretches, together, wanted, within_trace
 from seqcheck.evidence.refusal import NotPermitted
 from seqcheck.evidence.walk import Walk
-from seqcheck.hazards import Clearing, Delays, Following, Hazard, Lasting, Literal
+from seqcheck.hazards import Clearing, Delays, Following, Hazard, Lasting, Literal, Stuck
 from seqcheck.quantities import shown
 from seqcheck.verdict import Replayed, Span, Trace
 
@@ -78,8 +79,16 @@ def from_its_beginning(drive: Drive, trace: Trace) -> Trace:
 
 def _overlaps(drive: Drive, walk: Walk, trace: Trace, spans: dict[Literal, tuple[Span, ...]]) -> tuple[Span, ...]:
     asked = possible(stretches(walk.known, asked_for(trace.hazard)), Delays(0, 0))
-    over = late(drive, trace, trace.hazard.asks) if isinstance(trace.hazard.asks, Clearing) else [Stretch(None, None)]
+    over = list(_looked_at(drive, trace))
     return together([*spans.values(), within_trace(asked, trace.end), within_trace(over, trace.end)])
+
+
+def _looked_at(drive: Drive, trace: Trace) -> Iterable[Stretch]:
+    """The times at which the question of the hazard looks at its literals: always, where it asks no other."""
+    asks = trace.hazard.asks
+    if isinstance(asks, Clearing):
+        return late(drive, trace, asks)
+    return at_rest(drive, trace, asks.mode) if isinstance(asks, Stuck) else [Stretch(None, None)]
 
 
 def _walked(drive: Drive, trace: Trace) -> Walk:

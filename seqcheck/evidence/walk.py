@@ -10,6 +10,7 @@ from seqcheck.evidence.possible import delays
 from seqcheck.evidence.references import references
 from seqcheck.evidence.refusal import Due, NotPermitted, described
 from seqcheck.evidence.sequence import Sequence
+from seqcheck.hazards import Length
 from seqcheck.quantities import shown
 from seqcheck.verdict import Act, Event, Trace
 
@@ -34,7 +35,7 @@ class Walk:
             switch: [(None, self.passed(switch))] for switch in sorted(self.judged)
         }
         self._memory = sum(time for one in delays(drive, trace.hazard).values() for time in (one.rise, one.fall))
-        self._memory += trace.hazard.asks.limit if trace.hazard.asks else 0
+        self._memory += trace.hazard.asks.limit if isinstance(trace.hazard.asks, Length) else 0
         self._memory += sum(guard.dead.lo for guard in self.interlocks.guards)
         self.gaps: dict[str, list[Gap]] = {switch: [] for switch in self.judged}
         self.known: list[tuple[int | None, tuple[Known, ...]]] = [(None, self.sequence.known)]

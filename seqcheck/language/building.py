@@ -311,6 +311,9 @@ class Builder(Transformer[Token, Any]):
     def apart(self, first: Token, second: Token, least: s.Operand) -> s.ApartLine:
         return s.ApartLine(self._word(first), self._word(second), least)
 
+    def tolerates(self, modes: s.Origin) -> s.ToleratesLine:
+        return s.ToleratesLine(modes)
+
     def waive(self, check: Token, name: Token, reason: Token) -> s.WaiveLine:
         return s.WaiveLine(s.Word(self._place(check), str(check)), self._word(name), self._quoted(reason))
 

@@ -3,7 +3,17 @@
 from fractions import Fraction
 from math import ceil, floor
 
-from seqcheck.drive import ApartRule, ClearsRule, Lasts, LastsRule, MarginRule, NeverRule, Rule, Waiver
+from seqcheck.drive import (
+    ApartRule,
+    ClearsRule,
+    Lasts,
+    LastsRule,
+    MarginRule,
+    NeverRule,
+    Rule,
+    ToleratesRule,
+    Waiver,
+)
 from seqcheck.language.motion import Motion
 from seqcheck.language.scope import Scope
 from seqcheck.language.syntax import (
@@ -14,6 +24,7 @@ from seqcheck.language.syntax import (
     MarginLine,
     NeverLine,
     Operand,
+    ToleratesLine,
     WaiveLine,
     Word,
 )
@@ -55,6 +66,8 @@ class Rules:
             return self._lasts(line, said)
         if isinstance(said, ApartLine):
             return self._apart(line, said)
+        if isinstance(said, ToleratesLine):
+            return self._tolerates(line, said)
         assert isinstance(said, WaiveLine)
         return self._waive(line, said)
 
@@ -71,8 +84,8 @@ class Rules:
             return None
         return NeverRule(line.place, tuple((word.text, on) for word, on in said.literals))
 
-    def _once(self, word: Word, seen: dict[str, Place]) -> bool:
-        fresh = self.notes.fresh(word, seen, "switch")
+    def _once(self, word: Word, seen: dict[str, Place], kind: str = "switch") -> bool:
+        fresh = self.notes.fresh(word, seen, kind)
         seen.setdefault(word.text, word.place)
         return fresh
 
@@ -103,6 +116,16 @@ class Rules:
         if not all(known) or least is None:
             return None
         return ApartRule(line.place, said.first.text, said.second.text, ceil(least))
+
+    def _tolerates(self, line: Line, said: ToleratesLine) -> ToleratesRule | None:
+        seen: dict[str, Place] = {}
+        known = [self._mode(word) and self._once(word, seen, "mode") for word in said.modes.modes]
+        if not all(known):
+            return None
+        modes = tuple(mode for mode in self.table.named if mode not in seen) if said.modes.any else tuple(seen)
+        if not modes and "modes" not in self.notes.broken and self.table.named:
+            self.notes.add(said.modes.place, "empty-origin", "no mode is left to be asked for", "name the modes")
+        return ToleratesRule(line.place, modes) if modes else None
 
     def _mode(self, word: Word) -> bool:
         """Whether a mode is known; `reset` only where something starts in it, leaves it or goes there."""

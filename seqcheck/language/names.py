@@ -57,7 +57,9 @@ def names_in(node: s.Node) -> Iterator[Named]:
             yield from _all((node for one in means for node in one.nodes), Kind.NODE)
         case s.StartLine() | s.MoveLine() | s.TripLine() | s.SetLine() | s.WaitLine():
             yield from _of_motion(node)
-        case s.MarginLine() | s.NeverLine() | s.ClearsLine() | s.LastsLine() | s.ApartLine() | s.WaiveLine():
+        case s.MarginLine() | s.NeverLine() | s.ClearsLine() | s.LastsLine() | s.ApartLine():
+            yield from _of_rules(node)
+        case s.ToleratesLine() | s.WaiveLine():
             yield from _of_rules(node)
         case _:
             yield from _of_singles(node)
@@ -183,5 +185,7 @@ def _of_rules(node: s.RuleLine) -> Iterator[Named]:
         case s.ApartLine(first, second, least):
             yield from _all((first, second), Kind.MODE)
             yield from _amounts(least)
+        case s.ToleratesLine(modes):
+            yield from _all(modes.modes, Kind.MODE)
         case s.WaiveLine(_, name, _):
             yield Named(name, Kind.WAIVED)

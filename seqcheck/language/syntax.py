@@ -284,6 +284,10 @@ class ApartLine(NamedTuple):
     least: Operand
 
 
+class ToleratesLine(NamedTuple):
+    modes: Origin
+
+
 class WaiveLine(NamedTuple):
     check: Word
     name: Word
@@ -294,7 +298,7 @@ Single = DriveLine | ClockLine | LetLine | UseLine | WritesLine | LoopLine | Hea
 StageLine = RailsLine | SourcesLine | CapacitorLine | LegLine | SwitchLine | DiodeLine | WindingLine
 SignalLine = PartLine | PathLine | InterlockLine | PinLine | CarrierLine
 StepLine = SetAllOffLine | SetLine | WaitLine
-RuleLine = MarginLine | NeverLine | ClearsLine | LastsLine | ApartLine | WaiveLine
+RuleLine = MarginLine | NeverLine | ClearsLine | LastsLine | ApartLine | ToleratesLine | WaiveLine
 Node = Single | StageLine | SignalLine | RowLine | StartLine | MoveLine | TripLine | StepLine | RuleLine
 
 

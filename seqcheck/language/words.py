@@ -11,7 +11,7 @@ RESERVED = STARTS | frozenset(
     (
         *("reset", "on", "off", "keep", "free", "any", "all", "but", "set", "wait", "start", "to", "from", "at"),
         *("when", "after", "earliest", "latest", "unbroken", "with", "within", "means", "and", "through"),
-        *("interlock", "never", "waive", "margin", "clears", "must", "current"),
+        *("interlock", "never", "waive", "margin", "clears", "tolerates", "must", "current"),
     )
 )
 """Words that cannot be names. All other words of the language mean something only where a name cannot stand."""
@@ -29,6 +29,7 @@ CHECKS = (
     "long-on",
     "short-pulse",
     "too-soon",
+    "single-fault",
     "unreachable",
     "no-way-back",
     "ambiguous",

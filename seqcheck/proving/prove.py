@@ -5,23 +5,25 @@ Everything is tried first with the firmware's upper bounds removed: what holds t
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from itertools import product
 from typing import TypeVar, cast
 
-from seqcheck.drive import Cell, Drive, Fixed, Follow, Interlock, Update
+from seqcheck.drive import Cell, Command, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting, delays
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
 from seqcheck.proving.memory import Count, Known, Memory, Question
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.resting import rests
 from seqcheck.proving.screen import Map, Places, least_after, screened
 from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
 from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
-from seqcheck.proving.tracing import gap_trace, short_trace, trace_of
+from seqcheck.proving.tracing import gap_trace, rest_trace, short_trace, trace_of
 from seqcheck.proving.views import View, view
 from seqcheck.verdict import Trace
 from seqcheck.zones import INFINITE
@@ -113,7 +115,7 @@ class Prover:
 
     def _too_short(self, looking: View, count: Count) -> Refuted:
         """The run in which what is too short is shortest."""
-        assert looking.hazard.asks is not None, "it asks for a length"
+        assert isinstance(looking.hazard.asks, Length), "it asks for a length"
         limit = looking.hazard.asks.limit
         firmware = self._firmware(looking, punctual=True)
         count.next_search()
@@ -211,6 +213,42 @@ class Prover:
             count.next_search()
         return spread(Projection(looking, firmware, exact).initial(), count, ceiling)
 
+    def at_rest(
+        self, hazard: Hazard, modes: frozenset[str], observer: Observer
+    ) -> dict[str, "Proven | Refuted | str"]:
+        """For each mode whether the hazard comes at rest in it, with interlocks; a text names the limit that left it
+        open.
+
+        A hazard without literals comes wherever it is asked for. The overlap of a run is one at rest, not the greatest.
+        Raises Infeasible.
+        """
+        looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
+        count, before = Count(observer), 0
+        try:
+            if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
+                return {mode: Proven("screen", 0, True) for mode in modes}
+        except LimitReached as limit:
+            return dict.fromkeys(modes, str(limit))
+        answers: dict[str, Proven | Refuted | str] = {}
+        for punctual, manner in product((False, True), _manners(looking)):
+            count.next_search()
+            projection = Projection(looking, self._firmware(looking, punctual), manner)
+            holding = frozenset(mode for mode in modes if _may_hold_in(looking, mode))
+            found = rests(projection.initial(), modes, holding, count)
+            sure = punctual and not manner.forget
+            if found.limit is not None:
+                answers |= {mode: found.limit for mode in modes if not sure or mode not in found.nodes}
+                modes = modes & found.nodes.keys() if sure else frozenset()
+            for mode in sorted(modes - found.nodes.keys()):
+                answers[mode] = Proven("zones", count.total - before, not punctual)
+                before = count.total  # zones that serve several modes are counted once
+            modes = modes & found.nodes.keys()
+            if sure:
+                answers |= {mode: _at_rest(projection, found.nodes[mode]) for mode in modes}
+            if not modes:
+                break
+        return answers
+
     def _screened(self, looking: View, here: Map, apart: Places) -> Data:
         """The proof of the screen as data; hazards that share a map share the list of its states."""
         if here not in self._stands:
@@ -280,6 +318,13 @@ class Prover:
         return self._maps[firmware]
 
 
+def _at_rest(projection: Projection, node: Node) -> Refuted:
+    endless = not node.location.bounds
+    trace = rest_trace(projection, node, endless)
+    overlap = None if endless else trace.end - trace.overlap_from
+    return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
+
+
 Answer = TypeVar("Answer")
 
 
@@ -318,6 +363,18 @@ def _may_hold(looking: View) -> bool:
         if not opposites and all(sides.get(cell, wanted) == wanted for cell, wanted in cells):
             return True
     return False
+
+
+def _may_hold_in(looking: View, mode: str) -> bool:
+    """Whether the row of a mode could command all literals at rest."""
+    drive = looking.drive
+    sides: dict[Cell, Command] = {Fixed.OFF: Command.OFF, Fixed.ON: Command.ON}
+    for one in looking.hazard.literals:
+        cell = drive.modes[mode].cells[drive.columns.index(one.switch)]
+        told = drive.pins[one.switch].resting if cell is Fixed.FREE else sides.get(cell, Command.UNKNOWN)
+        if told is (Command.OFF if one.on else Command.ON):
+            return False
+    return True
 
 
 def _mode(node: Node) -> str:

@@ -81,6 +81,24 @@ def short_trace(projection: Projection, node: Node) -> Trace:
     return Trace(projection.view.hazard, phases, happened, run.end, run.hot, run.end)
 
 
+def rest_trace(projection: Projection, node: Node, endless: bool) -> Trace:
+    """The run to a node, which then stays there as long as it can; the overlap is claimed from its coming on.
+
+    Raises Infeasible.
+    """
+    nodes = node.path()
+    come = len(nodes) - 1
+    hops = [one.hop for one in nodes]
+    path, times = _timed(projection, hops, come, False)
+    events = _all_events(projection, hops, times)
+    short = Run(tuple(times[: len(hops)]), events, come, times[come], times[path.end])
+    run = with_full_dwells(projection, hops, short)
+    happened = tuple(event for _, event in run.events)
+    phases = _phases(projection, hops[0], path, times)
+    until = None if endless else run.end
+    return Trace(projection.view.hazard, phases, happened, run.end, run.hot, until)
+
+
 def _all_events(projection: Projection, hops: list[Hop], times: list[int]) -> tuple[tuple[int, Event], ...]:
     timed = list(enumerate(zip(hops, times, strict=False)))[1:]
     return tuple((place, event) for place, (hop, time) in timed for event in _events(projection, hop, time))

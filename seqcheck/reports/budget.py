@@ -6,8 +6,8 @@ from math import floor
 from seqcheck.drive import Drive
 from seqcheck.hazards import Hazard
 from seqcheck.quantities import PICOSECONDS, shown
-from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, counted, line, paragraph, visible, wrapped
-from seqcheck.reports.wording import CAUTION, lasting, subject, switches
+from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, counted, line, listed, paragraph, visible, wrapped
+from seqcheck.reports.wording import CAUTION, happens, lasting, subject, switches
 from seqcheck.verdict import Budget, Margin
 
 _GAP = "  "
@@ -31,7 +31,7 @@ def _standing(budget: Budget) -> list[Line]:
     if budget.undecided:
         count = counted(len(budget.undecided), "hazard")
         return paragraph(f"{count} undecided, not proven: {budget.undecided[0].limit}.", 0, Tone.DOUBT)
-    hazards = {one.hazard for one in budget.margins}
+    hazards = {*(one.hazard for one in budget.margins), *budget.alone}
     if not hazards:
         return paragraph("No switches of this stage can short it.", 0, Tone.GOOD)
     return paragraph(f"{counted(len(hazards), 'hazard')}, each proven in no run.", 0, Tone.GOOD)
@@ -50,6 +50,36 @@ def _slack(margin: Margin) -> str:
     if margin.slack is None:
         return NEVER
     return f"{'' if margin.exact else 'at least '}{shown(margin.slack)}"
+
+
+# One line each
+
+
+def lines(budget: Budget) -> str:
+    """The form for other programs' error lists (see reports/lines): a note each margin, at the place that sets it, an
+    error each short that can happen, or is undecided."""
+    first = budget.drive.place
+    said = [f"{one.place or first}: note: {after(one)} [margin]" for one in budget.margins]
+    said += [f"{first}: error: {happens(*one)}: no dead time is left [no-margin]" for one in budget.unsafe]
+    said += [
+        f"{first}: error: undecided, not proven: {subject(one.hazard)}; the limit was reached: {one.limit} [undecided]"
+        for one in budget.undecided
+    ]
+    return "".join(f"{visible(one)}\n" for one in said)
+
+
+def after(margin: Margin) -> str:
+    """A margin as one sentence without full stop."""
+    others = listed([str(one) for one in margin.hazard.literals if one != margin.literal])
+    if margin.slack is None:
+        pair = len(margin.hazard.literals) == 2
+        return f"{others} never {'follows' if pair else 'follow'} {margin.literal}{'' if pair else ' together'}"
+    left = f"the margin after {margin.literal} until {others} is {_slack(margin)}"
+    rest = f"; {margin.limit}" if margin.limit else ""
+    return f"{left}; the parts need {shown(margin.needed)} between the commands{rest}"
+
+
+# The table
 
 
 def _rows(budget: Budget) -> Iterator[Line]:
@@ -85,8 +115,9 @@ def _padded(cells: Sequence[str], widths: Sequence[int]) -> list[str]:
 def _cells(margin: Margin, drive: Drive) -> tuple[str, ...]:
     others = [str(one) for one in margin.hazard.literals if one != margin.literal]
     place = f"{_line_of(margin, drive)}" if margin.place is not None else margin.limit
-    ticks = "" if margin.slack is None or drive.clock is None else _ticks(margin.slack, drive)
-    return str(margin.literal), " ".join(others), shown(margin.needed), _slack(margin), ticks, place
+    whole = None if margin.slack is None else ticks(margin.slack, drive)
+    told = "" if whole is None else str(whole)
+    return str(margin.literal), " ".join(others), shown(margin.needed), _slack(margin), told, place
 
 
 def _unsafe_cells(hazard: Hazard, overlap: int | None, greatest: bool) -> tuple[str, ...]:
@@ -104,11 +135,11 @@ def _line_of(margin: Margin, drive: Drive) -> str:
     return f"line {margin.place.line}: {what}" if what else f"line {margin.place.line}"
 
 
-def _ticks(slack: int, drive: Drive) -> str:
-    """Whole ticks of the clock at its fastest that fit, so that a wait may be shorter by as many."""
-    assert drive.clock is not None
-    second = int(PICOSECONDS["s"])
-    return str(floor(slack * drive.clock.frequency / second / (1 + drive.clock.tolerance)))
+def ticks(slack: int, drive: Drive) -> int | None:
+    """Whole ticks of the clock at its fastest that fit, so that a wait may be shorter by as many; None without one."""
+    if drive.clock is None:
+        return None
+    return floor(slack * drive.clock.frequency / int(PICOSECONDS["s"]) / (1 + drive.clock.tolerance))
 
 
 def _notes(budget: Budget) -> Iterator[str]:
@@ -119,6 +150,8 @@ def _notes(budget: Budget) -> Iterator[str]:
         yield f"'{NEVER}': in no run can the second conduct after the first."
     for one in budget.undecided:
         yield f"Undecided, not proven: {subject(one.hazard)}; the limit was reached: {one.limit}."
+    for hazard in budget.alone:
+        yield f"{subject(hazard)}: one switch alone, so that there is no margin to tell."
     held = [switches(one.hazard) for one in budget.margins if one.hazard in budget.held]
     for names in dict.fromkeys(held):
         yield f"{names} are kept apart by an interlock alone; the firmware would bring them together without it."

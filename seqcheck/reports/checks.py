@@ -63,6 +63,13 @@ ABOUT: dict[str, About] = {
         "From leaving the one mode to entering the other less time can pass than the rule asks for.",
         "Make the wait between them longer, or let them begin later.",
     ),
+    Check.SINGLE_FAULT.value: About(
+        "A single fault shorts",
+        "With one thing stuck, a switch or a pin, a short comes at rest in a mode for which the file says that it"
+        " tolerates single faults.",
+        "Turn off in this mode what conducts beside the stuck switch, and let it be through with its turn-off before"
+        " the mode is entered, or put a second switch in series.",
+    ),
     Check.UNREACHABLE.value: About(
         "A mode is never entered",
         "No sequence of moves and trips leads from the start to this mode.",

@@ -57,7 +57,7 @@ def _ruled(one: Turned) -> bool:
     """Whether it is what a rule of the file asks for, and no hazard by itself."""
     if any(isinstance(said, Unsafe) and said.rule is not None for said in (one.old, one.new)):
         return True
-    return not one.hazard.joins and not one.hazard.currents
+    return one.hazard.asks is not None or not (one.hazard.joins or one.hazard.currents)
 
 
 _TOLD = (Turn.POSSIBLE, Turn.UNDECIDED, Turn.STILL, Turn.PROVEN)

@@ -7,10 +7,10 @@ from seqcheck.faults import Brought, Faulted, Where
 from seqcheck.hazards import Hazard
 from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, counted, line, listed, wrapped
 from seqcheck.reports.wording import flowing
-from seqcheck.verdict import Outcome
+from seqcheck.verdict import Check, Outcome
 
-CHECK = "single-fault"
-"""What stands in place of a check's name: a fault is no finding."""
+CHECK = Check.SINGLE_FAULT.value
+"""What is said of a fault is no finding by itself, but has the name of the check that a rule makes of it."""
 _WIDEST = 24
 _NOTHING = "nothing"
 

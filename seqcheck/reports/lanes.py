@@ -7,7 +7,7 @@ from enum import Enum
 from seqcheck.drive import Command, Drive
 from seqcheck.hazards import Literal, reach
 from seqcheck.quantities import Interval
-from seqcheck.verdict import Span, Unsafe
+from seqcheck.verdict import Replayed, Span, Unsafe
 
 
 class Conduct(Enum):
@@ -95,11 +95,16 @@ def _surely(changes: tuple[Change, ...], there: Interval, back: Interval, litera
 
 def lanes(verdict: Unsafe, drive: Drive) -> tuple[Lane, ...]:
     """A lane for each literal of the hazard, in its order."""
+    return lanes_of(verdict.hazard.literals, verdict.replayed, drive)
+
+
+def lanes_of(literals: tuple[Literal, ...], replayed: Replayed, drive: Drive) -> tuple[Lane, ...]:
+    """A lane for each literal that a replay looked at."""
     found = []
-    for literal in verdict.hazard.literals:
-        changes = verdict.replayed.commands[literal.switch]
+    for literal in literals:
+        changes = replayed.commands[literal.switch]
         on, off = reach(drive.paths[literal.switch])
         there, back = (on, off) if literal.on else (off, on)
         sure = tuple(_surely(changes, there, back, literal))
-        found.append(Lane(literal, changes, verdict.replayed.possible.get(literal, ()), sure))
+        found.append(Lane(literal, changes, replayed.possible.get(literal, ()), sure))
     return tuple(found)

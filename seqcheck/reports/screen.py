@@ -3,6 +3,7 @@
 from collections.abc import Iterable, Sequence
 
 from seqcheck.drive import Library
+from seqcheck.hazards import Stuck
 from seqcheck.reports.counterexample import counterexample, sentence
 from seqcheck.reports.faults import table as fault_table
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed
@@ -112,14 +113,16 @@ def _proven(safe: Sequence[Safe]) -> list[Line]:
     """What was proven, by what method, and what of it does not lean on the firmware being in time."""
     if not safe:
         return []
-    shorts = sum(1 for one in safe if one.hazard.joins)
+    shorts = sum(1 for one in safe if one.hazard.joins and not one.hazard.asks)
     openings = sum(1 for one in safe if one.hazard.currents)
-    lengths = sum(1 for one in safe if one.hazard.asks)
-    others = len(safe) - shorts - openings - lengths
+    faulty = sum(1 for one in safe if isinstance(one.hazard.asks, Stuck))
+    lengths = sum(1 for one in safe if one.hazard.asks) - faulty
+    others = len(safe) - shorts - openings - lengths - faulty
     kinds = [counted(shorts, "shorting set")] if shorts else []
     kinds += [counted(openings, "opening set")] if openings else []
     kinds += [counted(others, "forbidden combination")] if others else []
     kinds += [counted(lengths, "forbidden length")] if lengths else []
+    kinds += [counted(faulty, "short") + " by a single fault"] if faulty else []
     found = [line(Piece("proven", Tone.GOOD), f"  {listed(kinds)}: possible in no run")]
     zoned = [one for one in safe if one.method != "screen"]
     ways = [f"{len(safe) - len(zoned)} by least times alone"] if len(safe) > len(zoned) else []

@@ -1,7 +1,7 @@
 """Sentences about a hazard and its verdict that every form says alike."""
 
-from seqcheck.drive import Above, Command, CurrentOut, Drive, Known, Mode
-from seqcheck.hazards import Clearing, Current, Following, Hazard, Lasting
+from seqcheck.drive import RESET, Above, Command, CurrentOut, Drive, Fixed, Known, Mode
+from seqcheck.hazards import Clearing, Current, Fault, Following, Hazard, Lasting, Length, Stuck, reach
 from seqcheck.quantities import shown
 from seqcheck.reports.pieces import listed
 from seqcheck.verdict import Check, Span, Unsafe
@@ -18,19 +18,38 @@ def switches(hazard: Hazard) -> str:
 
 def subject(hazard: Hazard) -> str:
     """What the hazard is, as a noun: `P to N through UH and UL`, `current out of X with Af and Bf off`, or the switches
-    alone where nothing is joined; for a rule about lengths what must not be: `UH on for more than 225 us`."""
+    alone where nothing is joined; for a rule about lengths what must not be: `UH on for more than 225 us`; for one
+    about single faults also the fault and the mode."""
+    if isinstance(hazard.asks, Stuck):
+        asks = hazard.asks
+        return f"{_ends(hazard.joins)} through {_through(hazard)} at rest in {asks.mode} with {stuck(asks)}"
     if hazard.asks is not None:
-        return _forbidden(hazard)
+        return _forbidden(hazard, hazard.asks)
     if hazard.currents:
         return f"{flowing(hazard.currents)} with {_named(hazard)} off"
     if not hazard.joins:
         return switches(hazard)
-    return f"{' to '.join(hazard.joins)} through {switches(hazard)}"
+    return f"{_ends(hazard.joins)} through {switches(hazard)}"
 
 
-def _forbidden(hazard: Hazard) -> str:
-    asks = hazard.asks
-    assert asks is not None, "it is about a length"
+def _ends(joins: tuple[str, ...]) -> str:
+    return " to ".join(joins)
+
+
+def stuck(asks: Stuck) -> str:
+    """What is stuck: `UH, or its pin, stuck on`, `UH stuck on` or `the pin of UH stuck off`."""
+    first: Fault = asks.faults[0]
+    name = f"the pin of {first.switch}" if first.pin else first.switch
+    return f"{name}{', or its pin,' if len(asks.faults) > 1 else ''} stuck {'on' if first.on else 'off'}"
+
+
+def _through(hazard: Hazard) -> str:
+    """All switches of a short, also the one that is stuck."""
+    own = [one.switch for one in hazard.asks.faults[:1] if not one.pin] if isinstance(hazard.asks, Stuck) else []
+    return listed([*own, *map(str, hazard.literals)])
+
+
+def _forbidden(hazard: Hazard, asks: Length) -> str:
     if isinstance(asks, Following):
         return f"{asks.entered} entered less than {shown(asks.limit)} after {asks.left} is left"
     if isinstance(asks, Clearing):
@@ -74,7 +93,7 @@ def stretch(verdict: Unsafe) -> str:
         return "excess" if verdict.hazard.asks.longer else "pulse"
     if isinstance(verdict.hazard.asks, Following):
         return "interval"
-    if verdict.hazard.asks is not None:
+    if isinstance(verdict.hazard.asks, Clearing):
         return "lateness"
     return "opening" if verdict.hazard.currents else "overlap"
 
@@ -93,6 +112,8 @@ def shown_for(verdict: Unsafe) -> Span:
 def stated(verdict: Unsafe) -> str:
     """One sentence without full stop: what can happen, for how long, and against which rule."""
     rule = f", against line {verdict.rule.line}" if verdict.rule is not None else ""
+    if isinstance(verdict.hazard.asks, Stuck):
+        return f"with {stuck(verdict.hazard.asks)}, {happens(verdict.hazard, verdict.overlap, verdict.greatest)}{rule}"
     if verdict.hazard.asks is not None:
         return f"{_length(verdict)}{rule}"
     if verdict.check is not Check.THIN_MARGIN or verdict.trace.prolonged is None:
@@ -108,7 +129,7 @@ def stated(verdict: Unsafe) -> str:
 def _length(verdict: Unsafe) -> str:
     """What lasts too long or too short a time, and how long."""
     asks, trace = verdict.hazard.asks, verdict.trace
-    assert asks is not None, "it is about a length"
+    assert isinstance(asks, Length), "it is about a length"
     if isinstance(asks, Lasting) and asks.longer:
         longest = "without end" if verdict.overlap is None else shown(asks.limit + verdict.overlap)
         bound = "" if verdict.overlap is None else "for up to " if verdict.greatest else "for at least "
@@ -142,7 +163,8 @@ def happens(hazard: Hazard, overlap: int | None, greatest: bool = True) -> str:
     if hazard.currents:
         return f"{flowing(hazard.currents)} has no way while {_off(hazard)}, {lasting(overlap, greatest)}"
     if hazard.joins:
-        return f"{_joined(hazard.joins)} through {switches(hazard)}, {lasting(overlap, greatest)}"
+        rest = f" at rest in {hazard.asks.mode}" if isinstance(hazard.asks, Stuck) else ""
+        return f"{_joined(hazard.joins)} through {_through(hazard)}{rest}, {lasting(overlap, greatest)}"
     each = [f"{one.switch} can {'conduct' if one.on else 'be off'}" for one in hazard.literals]
     return f"{listed(each)}, all at once, {lasting(overlap, greatest)}"
 
@@ -172,6 +194,9 @@ def where(verdict: Unsafe, drive: Drive) -> str:
     if verdict.hazard.currents:
         together = " together" if len(verdict.hazard.literals) > 1 else ""
         return f"row '{row.name}' of the table (line {row.place.line}) can leave {_named(verdict.hazard)} off{together}"
+    if isinstance(verdict.hazard.asks, Stuck):
+        names = switches(verdict.hazard)
+        return f"row '{row.name}' of the table (line {row.place.line}) commands {names}" if names else ""
     if verdict.hazard.asks is not None:
         return f"row '{row.name}' of the table (line {row.place.line}) leaves {_commanded(verdict.hazard)}"
     return f"row '{row.name}' of the table (line {row.place.line}) commands {switches(verdict.hazard)} together"
@@ -197,6 +222,8 @@ def cure(verdict: Unsafe, drive: Drive) -> str:
         shortage = verdict.cure.shortage
         missing = "" if shortage is None else f"{shown(shortage)} missing "
         return f"{verdict.cure.words} ({missing}at {verdict.cure.place})"
+    if isinstance(verdict.hazard.asks, Stuck):
+        return _cure_of_fault(verdict, drive, verdict.hazard.asks)
     if verdict.hazard.asks is not None:
         return _cure_of_length(verdict, drive)
     if verdict.hazard.currents:
@@ -230,6 +257,25 @@ def _cure_of_length(verdict: Unsafe, drive: Drive) -> str:
             return f"bound the stay in '{row.name}', or put {name} on a carrier there"
         return f"{name} must be turned off sooner, or for some time in between"
     return f"{_commanded(verdict.hazard)} must be commanded for {shown(verdict.overlap or 0)} longer"
+
+
+def _cure_of_fault(verdict: Unsafe, drive: Drive, asks: Stuck) -> str:
+    """What would keep the other switches from conducting in the mode; for their last turn-off the time it takes."""
+    others = verdict.hazard.literals
+    series = "put another switch in series"
+    if not others:
+        return f"no mode tolerates this; {series}"
+    if asks.mode == RESET:
+        return f"no wait cures this, for a reset waits for nothing; {series}"
+    row = dict(zip(drive.columns, drive.modes[asks.mode].cells, strict=True))
+    lingering = [one for one in others if row[one.switch] is Fixed.OFF]
+    if not lingering:
+        one_of = str(others[0]) if len(others) == 1 else f"one of {switches(verdict.hazard)}"
+        return f"no wait cures this; row '{asks.mode}' must leave {one_of} off, or {series}"
+    longest = min(reach(drive.paths[one.switch])[1].hi or 0 for one in lingering)
+    names = listed([str(one) for one in lingering], "or")
+    wait = f", and a wait of at least {shown(longest)} after it" if longest else ""
+    return f"what leads to {asks.mode} must end with the turn-off of {names}{wait}, which belongs to the move"
 
 
 def _cure_of_opening(verdict: Unsafe, drive: Drive) -> str:

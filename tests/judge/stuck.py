@@ -7,8 +7,8 @@ from judge.literal import Forbids, Search
 from judge.states import OFF, ON, Rest, State
 from judge.world import Pins, Waves, World
 from seqcheck.drive import Drive
-from seqcheck.faults import Fault, Where
-from seqcheck.hazards import Delays, Literal
+from seqcheck.faults import Where
+from seqcheck.hazards import Delays, Fault, Literal
 
 AT_ONCE = Delays(0, 0)
 
@@ -40,11 +40,18 @@ class StuckSwitch(World):
 
 
 def places(
-    drive: Drive, literals: tuple[Literal, ...], forbids: Forbids, fault: Fault, most_states: int
+    drive: Drive,
+    literals: tuple[Literal, ...],
+    forbids: Forbids,
+    fault: Fault,
+    most_states: int,
+    *,
+    bounded: bool = True,
 ) -> frozenset[Where] | None:
     """Where a hazard happens under a fault, by a search over whole picoseconds; None where it gave up.
 
-    A literal of the stuck switch is possible for ever or never; the raise of `difference` is for two that can change.
+    `bounded` False removes every upper bound that firmware keeps. A literal of the stuck switch is possible for ever or
+    never; the raise of `difference` is for two that can change.
     """
 
     class Faulty(StuckPin if fault.pin else StuckSwitch):  # type: ignore[misc]
@@ -53,7 +60,7 @@ def places(
     Faulty.fault = fault
     changing = literals if fault.pin else tuple(one for one in literals if one.switch != fault.switch)
     delays = delays_of(drive, changing)
-    world = Faulty(drive, literals, interlocks=True, bounded=True)
+    world = Faulty(drive, literals, interlocks=True, bounded=bounded)
     search = Search(world, [delays.get(one, AT_ONCE) for one in literals], forbids)
     found: set[Where] = set()
     seen = set(search.starts())

@@ -16,6 +16,7 @@ from seqcheck.drive import (
     Part,
     Pin,
     Rule,
+    ToleratesRule,
     Writes,
 )
 from seqcheck.hazards import reach
@@ -148,6 +149,8 @@ def rule(one: Rule) -> str:
             return f"{one.switch} {one.lasts.value} {shown(one.limit)}"
         case ApartRule():
             return f"{one.first} and {one.second} at least {shown(one.least)} apart"
+        case ToleratesRule():
+            return f"tolerates single faults in {', '.join(one.modes)}"
 
 
 def _and(names: Sequence[str]) -> str:

@@ -94,6 +94,7 @@ def parser() -> argparse.ArgumentParser:
     lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
     lint.add_argument("--jobs", metavar="N", help="let N processes share the work (1); the answer is the same")
+    lint.add_argument("--scheduler", metavar="ADDRESS", help="let the machines of a dask scheduler share the work")
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")

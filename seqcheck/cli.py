@@ -35,7 +35,7 @@ from seqcheck.opening import data_of as _data
 from seqcheck.opening import text_of as _text
 from seqcheck.source import printable
 from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
-from seqcheck.work.pieces import Call, Instead, Judged, Told, judged
+from seqcheck.work.pieces import Call, Hands, Instead, Judged, Told, judged
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
@@ -96,10 +96,12 @@ def _run(arguments: list[str]) -> int:
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
         files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
         _one_run(answering, files)
-        jobs = at_most(MOST_JOBS, "--jobs", count("--jobs", asked.jobs) or 1)
+        hands = Hands(at_most(MOST_JOBS, "--jobs", count("--jobs", asked.jobs) or 1), asked.scheduler)
+        if asked.jobs and asked.scheduler is not None:
+            wrong("--jobs is about processes of this machine, --scheduler about other machines; choose one of them")
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
         call = Call(only, limits, shelf is not None, asked.with_fault, asked.fresh)
-        answers, code = _lint(files, call, shelf, jobs)
+        answers, code = _lint(files, call, shelf, hands)
     except SystemExit as stop:
         return int(stop.code or 0)
     try:
@@ -166,11 +168,11 @@ class _Shelf:
         return deliver(written(drive, kept), self._path(file))
 
 
-def _lint(files: list[str], call: Call, shelf: _Shelf | None, jobs: int) -> tuple[list[Answer], int]:
+def _lint(files: list[str], call: Call, shelf: _Shelf | None, hands: Hands) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
     progress = _progress(len(files))
     try:
-        with contextlib.closing(_judged(files, call, jobs, progress)) as every:
+        with contextlib.closing(_judged(files, call, hands, progress)) as every:
             for file, one in zip(files, every, strict=True):
                 if progress:
                     progress.file_done()
@@ -192,7 +194,7 @@ def _progress(files: int) -> "Progress | None":
 
 
 def _judged(
-    files: list[str], call: Call, jobs: int, progress: "Progress | None"
+    files: list[str], call: Call, hands: Hands, progress: "Progress | None"
 ) -> Generator[Judged, None, None]:
     """What there is to say of each file, in their order."""
 
@@ -201,20 +203,17 @@ def _judged(
             progress.count(said.hazards, said.settled, said.zones)
 
     teller = tell if progress else None
-    if jobs == 1:
+    if hands == Hands():
         yield from (judged(file, call, teller) for file in files)
         return
-    from seqcheck.work.plan import by_many
-    from seqcheck.work.processes import Crew, NoProcess
+    from seqcheck.work.plan import NoHands, by_many, crew_of
 
-    crew = Crew(jobs)
     try:
-        yield from by_many(files, call, crew, teller)
-    except NoProcess as why:
-        complain(f"no process can be started ({why}); without --jobs none is needed")
-        raise SystemExit(FAULT) from why
-    finally:
-        crew.close()
+        with contextlib.closing(crew_of(hands)) as crew:
+            yield from by_many(files, call, crew, teller)
+    except NoHands as why:
+        complain(f"error: {why}")
+        raise SystemExit(why.code) from why
 
 
 def _one_file(asked: argparse.Namespace, limits: Limits) -> tuple[Answer, int]:

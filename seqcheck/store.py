@@ -93,7 +93,7 @@ class Store:
         knows = bool(looking.hazard.needs)
         asked = [question.kind, question.more, looking.hazard, looking.delays, looking.locks]
         seen = [looking.switches, looking.carriers, sorted(looking.held)]
-        parts = [_program(), self._ground(looking.drive, knows), _rendered([*asked, *seen]), _said_of(question)]
+        parts = [program(), self._ground(looking.drive, knows), _rendered([*asked, *seen]), _said_of(question)]
         return hashlib.sha256(json.dumps(parts).encode()).hexdigest()
 
     def _ground(self, drive: Drive, knows: bool) -> str:
@@ -150,7 +150,7 @@ def _names(kind: Any) -> tuple[str, ...]:
 
 
 @cache
-def _program() -> str:
+def program() -> str:
     """The digest of the text of the program and of the Python that runs it; raises OSError where it is not at hand."""
     house = Path(__file__).parent
     files = [Path(__file__), house / "evidence" / "certificate.py"]

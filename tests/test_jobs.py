@@ -197,7 +197,7 @@ def test_no_process_can_be_started(capsys: pytest.CaptureFixture[str], monkeypat
     out, err = capsys.readouterr()
     assert out == ""
     why = "Resource temporarily unavailable"
-    assert err == f"seqcheck: no process can be started ({why}); without --jobs none is needed\n"
+    assert err == f"seqcheck: error: no process can be started ({why}); without --jobs none is needed\n"
 
 
 @linux

@@ -262,7 +262,7 @@ def test_an_answer_is_void_when_the_program_is_changed(monkeypatch: pytest.Monke
     assert rooms - {"source", "messages"} <= set(PROGRAM)  # a place is in no answer
     drive = drive_of(FULL)
     before = key(drive, next(hazards(drive)))
-    monkeypatch.setattr(room, "_program", lambda: "another")
+    monkeypatch.setattr(room, "program", lambda: "another")
     assert key(drive, next(hazards(drive))) != before
 
 

@@ -40,6 +40,14 @@ class Call:
 
 
 @dataclass(frozen=True, slots=True)
+class Hands:
+    """Who is to do it: so many processes of this machine, or the machines of the scheduler at an address."""
+
+    jobs: int = 1
+    scheduler: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class Whole:
     """The file with this number, to be read and proven; `text` where it cannot be read everywhere."""
 
@@ -73,6 +81,14 @@ class Stuck:
 
 
 Piece = Whole | Share | Stuck
+
+
+class NoHands(Exception):  # noqa: N818 - it says what the system or the call is to blame for
+    """Nobody is there to do it: why, with a way out, and the exit code."""
+
+    def __init__(self, text: str, code: int) -> None:
+        super().__init__(text)
+        self.code = code
 
 
 # Answers

@@ -10,8 +10,10 @@ from seqcheck.verdict import Outcome, Unread
 from seqcheck.work.pieces import (
     Brought,
     Call,
+    Hands,
     Instead,
     Judged,
+    NoHands,
     Parts,
     Piece,
     Result,
@@ -29,19 +31,41 @@ if TYPE_CHECKING:
     from seqcheck.drive import Drive
     from seqcheck.faults import Faulted
 
+__all__ = ["NoHands", "by_many", "crew_of"]
+
 Teller = Callable[[Told], None]
 _BREATH = 0.1
 """Seconds after which a wait for the crew is interrupted for a word about how far it is."""
 
 
 class Crew(Protocol):
-    """Whoever does pieces."""
+    """Whoever does pieces. Without `machine` they are other machines, with their own clocks and files."""
+
+    machine: bool
 
     def give(self, piece: Piece, first: bool = False) -> None:
         """Have a piece done; `first` before all that waits."""
 
     def heard(self, seconds: float | None) -> Iterator[tuple[Piece, Told | Instead | Result]]:
         """What is said within that time; a piece is followed by one Result."""
+
+
+def crew_of(hands: Hands) -> "Closing":
+    """Those who are to do it; raises NoHands."""
+    if hands.scheduler is not None:
+        from seqcheck.work.cluster import Cluster
+
+        return Cluster(hands.scheduler)
+    from seqcheck.work.processes import Crew as Processes
+
+    return Processes(hands.jobs)
+
+
+class Closing(Crew, Protocol):
+    """A crew that is sent home in the end."""
+
+    def close(self) -> None:
+        """End all work at once."""
 
 
 @dataclass(slots=True)
@@ -77,11 +101,41 @@ class _Plan:
             while not self._ready(file):
                 for piece, said in self._crew.heard(_BREATH if self._tell else None):
                     self._heard(piece, said)
-                if self._tell:
-                    self._tell(Told(0, 0, 0))
+                self._counted(Told(0, 0, 0))
             yield self._all(file)
 
+    def _begin_elsewhere(self, number: int, file: _File) -> None:
+        """Read a file here, and give each of its hazards away."""
+        from pickle import HIGHEST_PROTOCOL, dumps
+
+        from seqcheck.checking import asked
+        from seqcheck.drive import Library
+        from seqcheck.language import read_any
+
+        try:
+            drive = read_any(text_of(file.name), file.name, text_of)
+            if isinstance(drive, Library):
+                file.judged = Judged(drive)
+                return
+            hazards = asked(drive)
+        except Exception as fault:
+            file.trouble = trouble_of(fault)
+            return
+        file.drive, file.hazards = dumps(drive, HIGHEST_PROTOCOL), len(hazards)
+        self._counted(Told(len(hazards), 0, 0))
+        for place, one in enumerate(hazards):
+            self._crew.give(Share(number, file.drive, ((place, one),), self._call))
+        if not hazards:
+            self._put_together(number, file)
+
+    def _counted(self, told: Told) -> None:
+        if self._tell:
+            self._tell(told)
+
     def _begin(self, number: int, file: _File) -> None:
+        if not self._crew.machine:
+            self._begin_elsewhere(number, file)
+            return
         text = None
         if file.name == STDIN:
             try:
@@ -95,8 +149,7 @@ class _Plan:
         file = self._files[piece.number]
         match said:
             case Told():
-                if self._tell:
-                    self._tell(said)
+                self._counted(said)
             case Instead():
                 file.drive, file.hazards = said.mine.drive, said.hazards
                 for one in reversed(said.rest):
@@ -104,6 +157,7 @@ class _Plan:
             case Judged():
                 self._outcome(piece.number, file, said)
             case Parts():
+                self._counted(Told(0, 0 if self._crew.machine else len(said.settled), 0))
                 file.settled.update(said.settled)
                 self._put_together(piece.number, file)
             case Brought():
@@ -153,7 +207,7 @@ class _Plan:
         drive, asked = judged.answer.drive, asked_anew(judged.answer)
         file.drive = file.drive or dumps(drive, HIGHEST_PROTOCOL)
         file.switches = tuple(switch.name for switch in drive.stage.switches)
-        end = self._call.limits.end()
+        end = self._call.limits.end() if self._crew.machine else None  # other machines have other clocks
         for switch in reversed(file.switches):
             self._crew.give(Stuck(number, file.drive, switch, asked, self._call, end), first=True)
 

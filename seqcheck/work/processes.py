@@ -16,17 +16,14 @@ from dataclasses import dataclass
 from multiprocessing.connection import Connection, wait
 from multiprocessing.process import BaseProcess
 
-from seqcheck.work.pieces import Hand, Instead, Piece, Result, Told, Trouble
+from seqcheck.exits import FAULT
+from seqcheck.work.pieces import Hand, Instead, NoHands, Piece, Result, Told, Trouble
 
 Message = Told | Instead | Result
 _DEATHS = 2
 """So many processes may die of one piece; then it is given up."""
 _UNTIDY = 100_000
 """Zones after which a process looks for memory that it can give back."""
-
-
-class NoProcess(Exception):  # noqa: N818 - it says what the system refuses
-    """No process can be started; the text says why."""
 
 
 @dataclass(slots=True, eq=False)
@@ -108,7 +105,8 @@ class Crew:
             if self._workers:
                 self._most = len(self._workers)
                 return None
-            raise NoProcess(refusal.strerror or str(refusal)) from refusal
+            why = refusal.strerror or str(refusal)
+            raise NoHands(f"no process can be started ({why}); without --jobs none is needed", FAULT) from refusal
         finally:
             its.close()
         self._workers.append(_Worker(process, mine))

@@ -5,7 +5,7 @@ import re
 import sys
 from collections.abc import Sequence
 from fractions import Fraction
-from typing import Never
+from typing import Any, Never
 
 from seqcheck import __version__
 from seqcheck.commands import draw
@@ -15,30 +15,68 @@ from seqcheck.quantities import PICOSECONDS
 from seqcheck.verdict import Check
 
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
+COMPARE_FORMS = ("screen", "lines")
+SHELLS = ("bash", "zsh", "fish")
 MOST_JOBS = 256
 """More processes than any one machine has use for here."""
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
-folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove."""
+folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove.
+
+example:
+  seqcheck lint drive.dseq
+  seqcheck lint drives --as sarif --out drives.sarif"""
 _AUDIT = """\
 Check the evidence that 'lint --evidence' wrote for FILE: that its proofs prove and its runs run, by code that shares
-nothing with the prover. Evidence that does not bear out what it says ends with exit code 4."""
+nothing with the prover. Evidence that does not bear out what it says ends with exit code 4.
+
+example:
+  seqcheck lint drive.dseq --evidence proofs
+  seqcheck audit drive.dseq proofs/drive.dseq.json"""
 _MARGINS = """\
 The dead-time budget of FILE: for every switch and those that may not conduct with it, what the parts ask for, what the
-file leaves at worst, and the move, trip or row that sets it; least first."""
+file leaves at worst, and the move, trip or row that sets it; least first.
+
+example:
+  seqcheck margins drive.dseq"""
+_SIZE = """\
+The range of NAME, a 'let' of FILE, in which the whole file is proven: all that 'lint' proves, with any value of the
+range; and what breaks one step outside it. If today's value fails, the nearest that was found to hold.
+
+example:
+  seqcheck size drive.dseq settle
+  seqcheck size drive.dseq settle --step 100ns"""
+_SIZED = """\
+exit codes: 0 today's value holds, and the ends of the range are decided (or it was looked for a thousand times as far);
+1 today's value does not hold; 2 the input or the call is wrong; 3 today's value or an end is undecided within the
+limits given; 4 the program itself is at fault."""
 _ROWS = """\
 Read the switching table of FILE back from the circuit: what every row does to every winding, whether its current has a
-way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'."""
+way, and which rows swap a leg. Exit code 1 if a row shorts a supply or does not do what it 'means'.
+
+example:
+  seqcheck rows drive.dseq"""
 _REPORT = """\
 Write one page about FILE for a design review: verdict, assumptions, table, mode graph, margins, every finding with its
-timing diagram, waivers, what is not covered. It stands alone. Example: seqcheck report drive.dseq --out page.html"""
+timing diagram, waivers, what is not covered. It stands alone.
+
+example:
+  seqcheck report drive.dseq --out page.html"""
 _SERVE = """\
 Serve an editor: speak the Language Server Protocol 3.17 on standard input and output. Mistakes of reading are said at
-once, findings after a proof; hover, definition and completion are answered. The exit code is the protocol's."""
+once, findings after a proof; hover, definition, completion and formatting are answered. The exit code is the
+protocol's. An editor starts it; the README says how to set some up.
+
+example, as the command in an editor's settings:
+  seqcheck serve --give-up-after '30 s'"""
 _COMPARE = """\
 What the change from OLD to NEW comes to, for a review: hazards, findings, margins, overlaps, what can be entered, and
-what is said differently. One of them may be '-', standard input: 'git show HEAD:x.dseq | seqcheck compare - x.dseq'.
-Files that it names with 'use' are looked for from the folder you are in, as they are now."""
+what is said differently. One of them may be '-', standard input. Files that it names with 'use' are looked for from the
+folder you are in, as they are now.
+
+example:
+  seqcheck compare old.dseq new.dseq
+  git show HEAD:drive.dseq | seqcheck compare - drive.dseq"""
 _COMPARED = """\
 exit codes: 0 nothing became worse; 1 a hazard is possible in NEW that was not shown to be in OLD, or a check is broken
 that was not, and no waiver lets it pass; 2 the input or the call is wrong, nothing was compared; 3 a hazard of NEW is
@@ -47,14 +85,35 @@ possible before and still is, is no change. A smaller margin or a longer overlap
 _TIDY = """\
 Line up the columns of each file, its spacing and its blank lines. Comments, names and meaning stay; a file with
 mistakes is left as it is (exit code 2). A folder means every *.dseq in it; '-' goes from standard input to standard
-output. Example: seqcheck tidy --check drives"""
+output.
+
+example:
+  seqcheck tidy drive.dseq
+  seqcheck tidy --check drives"""
 _TIDY_EXITS = """\
 exit codes: 0 all files are tidy now; 1 --check found one that is not; 2 the input or the call is wrong, or a file
 cannot be written; 4 the program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1,
 0."""
 _START = """\
 Print a first file for a drive of this KIND, proven as it stands: put in your own circuit, data-sheet values and moves.
-Without KIND, list the kinds. Example: seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
+Without KIND, list the kinds.
+
+example:
+  seqcheck start h-bridge > pump.dseq && seqcheck lint pump.dseq"""
+_COMPLETION = """\
+Print the script with which a shell completes calls of seqcheck: commands, options, their values, files. SHELL is bash,
+zsh or fish; the script's first lines say where it belongs.
+
+example, for the bash that you are in:
+  source <(seqcheck completion bash)"""
+_ABOUT = """\
+Prove that a drive sequence never shorts a leg of its power stage, or show the run that does.
+
+example:
+  seqcheck start h-bridge > pump.dseq
+  seqcheck lint pump.dseq
+
+'seqcheck COMMAND --help' says more of each."""
 _EXITS = """\
 exit codes: 0 everything asked is proven; 1 a hazard is possible, or there is another finding that is not waived; 2 the
 input or the call is wrong, nothing was judged; 3 undecided within the limits given, never to be taken for proven; 4 the
@@ -65,8 +124,33 @@ def complain(text: str) -> None:
     print(f"seqcheck: {text}", file=sys.stderr)
 
 
+class _Help(argparse.HelpFormatter):
+    """Help in paragraphs; lines that are indented, as those of examples, stay as they are."""
+
+    def _fill_text(self, text: str, width: int, indent: str) -> str:
+        return "\n\n".join(self._paragraph(one, width, indent) for one in text.split("\n\n"))
+
+    def _paragraph(self, text: str, width: int, indent: str) -> str:
+        if "\n  " in text:
+            return "\n".join(f"{indent}{row}" for row in text.splitlines())
+        return super()._fill_text(text, width, indent)
+
+    def add_argument(self, action: argparse.Action) -> None:
+        """Add an argument, but for one of which the usage line says all; the names of commands are indented once more
+        than argparse reckons with."""
+        if isinstance(action, argparse._SubParsersAction):
+            super().add_argument(action)
+            longest = max(map(len, action.choices))
+            self._action_max_length = max(self._action_max_length, longest + 2 * self._indent_increment)
+        elif action.option_strings or action.help is not None:
+            super().add_argument(action)
+
+
 class _Parser(argparse.ArgumentParser):
-    """Wrong calls in our own words, on one line."""
+    """Wrong calls in our own words, on one line; help as it is formatted here."""
+
+    def __init__(self, *, formatter_class: type[argparse.HelpFormatter] = _Help, **more: Any) -> None:
+        super().__init__(formatter_class=formatter_class, **more)
 
     def error(self, message: str) -> Never:
         complain(f"error: {message}; '{self.prog} --help' shows the call")
@@ -76,12 +160,13 @@ class _Parser(argparse.ArgumentParser):
 def parser() -> argparse.ArgumentParser:
     parser = _Parser(
         prog="seqcheck",
-        description="Prove that a drive sequence never shorts a leg of its power stage.",
+        description=_ABOUT,
         epilog=_EXITS,
         allow_abbrev=False,
     )
-    parser.add_argument("--version", action="version", version=f"seqcheck {__version__}")
-    commands = parser.add_subparsers(dest="command", metavar="COMMAND", required=True)
+    version = f"seqcheck {__version__}"
+    parser.add_argument("--version", action="version", version=version, help="print the version and exit")
+    commands = parser.add_subparsers(dest="command", metavar="COMMAND", title="commands", required=True)
     lint = commands.add_parser("lint", help="prove files", description=_LINT, epilog=_EXITS, allow_abbrev=False)
     lint.add_argument("paths", nargs="*", metavar="PATH", default=[])
     forms = f"{FORMS[0]} (the default), {one_or_other(FORMS[1:])}"
@@ -131,6 +216,17 @@ def parser() -> argparse.ArgumentParser:
     margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
     margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
     margins.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    size = commands.add_parser(
+        "size", help="how far a quantity may go", description=_SIZE, epilog=_SIZED, allow_abbrev=False
+    )
+    size.add_argument("file", metavar="FILE")
+    size.add_argument("name", metavar="NAME")
+    size.add_argument("--step", metavar="D", help="how finely to look (a tick of the clock, else 1 ps, Hz, ppm)")
+    size.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default), lines or json")
+    size.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    size.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    size.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    size.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
@@ -144,6 +240,10 @@ def parser() -> argparse.ArgumentParser:
     tidy.add_argument("--check", action="store_true", help="change nothing, say which files are not tidy (exit code 1)")
     start = commands.add_parser("start", help="print a first file", description=_START, allow_abbrev=False)
     start.add_argument("kind", nargs="?", metavar="KIND")
+    completion = commands.add_parser(
+        "completion", help="let a shell complete calls", description=_COMPLETION, allow_abbrev=False
+    )
+    completion.add_argument("shell", metavar="SHELL")
     return parser
 
 

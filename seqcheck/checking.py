@@ -89,7 +89,7 @@ def settle(prover: Prover, one: Asked, observer: Observer) -> Settled:
 
 def gathered(drive: Drive, file: str, only: frozenset[Check], settled: Sequence[Settled]) -> Outcome:
     """Everything about one drive of which each hazard is settled, in the order in which they are asked."""
-    findings: list[Finding] = [*graph_findings(drive), *_row_meanings(drive), *_without_path(drive)]
+    findings: list[Finding] = [*graph_findings(drive), *row_meanings(drive), *_without_path(drive)]
     findings += (finding for one in settled for finding in one.findings)
     verdicts = [verdict for one in settled for verdict in one.verdicts]
     findings += _punctual(drive, verdicts)
@@ -167,7 +167,7 @@ def _without_path(drive: Drive) -> Iterator[Finding]:
             yield Finding(Check.NO_PATH, switch.place, text, "give it a line in 'paths'", (switch.name,))
 
 
-def _row_meanings(drive: Drive) -> Iterator[Finding]:
+def row_meanings(drive: Drive) -> Iterator[Finding]:
     """Rows that do not do what their `means` says, with what they do instead."""
     saying = [mode for mode in drive.modes.values() if mode.means]
     if not saying:

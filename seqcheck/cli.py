@@ -6,12 +6,14 @@ import gc
 import os
 import shlex
 import sys
-from collections.abc import Generator, Iterator, Sequence
+from collections.abc import Iterator, Sequence
 from typing import TYPE_CHECKING
 
 from seqcheck.arguments import (
+    COMPARE_FORMS,
     FORMS,
     MOST_JOBS,
+    SHELLS,
     at_most,
     check_named,
     complain,
@@ -35,12 +37,12 @@ from seqcheck.opening import data_of as _data
 from seqcheck.opening import text_of as _text
 from seqcheck.source import printable
 from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
-from seqcheck.work.pieces import Call, Hands, Instead, Judged, Told, judged
+from seqcheck.work.lint import judged_by
+from seqcheck.work.pieces import Call, Hands, Judged, NoHands, judged
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
     from seqcheck.evidence.audit import Audited
-    from seqcheck.reports.progress import Progress
 
 
 def main(arguments: Sequence[str] | None = None) -> int:
@@ -83,8 +85,15 @@ def _run(arguments: list[str]) -> int:
             return _tidy(asked.files, asked.check)
         if asked.command == "start":
             return _start(asked.kind)
+        if asked.command == "completion":
+            from seqcheck.commands.completion import script
+
+            shell = one_of("SHELL", asked.shell, SHELLS)
+            return deliver(script(shell, parser(), FORMS, COMPARE_FORMS), None)
         if asked.command == "compare":
             return _compare(asked)
+        if asked.command == "size":
+            return _size(asked)
         limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
@@ -170,50 +179,15 @@ class _Shelf:
 
 def _lint(files: list[str], call: Call, shelf: _Shelf | None, hands: Hands) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
-    progress = _progress(len(files))
     try:
-        with contextlib.closing(_judged(files, call, hands, progress)) as every:
+        with contextlib.closing(judged_by(hands, files, call, sys.stderr)) as every:
             for file, one in zip(files, every, strict=True):
-                if progress:
-                    progress.file_done()
                 answers.append(one.answer)
                 code = _worse(code, _told(file, one, shelf))
-    finally:
-        if progress:
-            progress.clear()
-    return answers, code
-
-
-def _progress(files: int) -> "Progress | None":
-    """The line that tells how far it is; None where nobody watches."""
-    if not sys.stderr.isatty() or os.environ.get("TERM") == "dumb":
-        return None
-    from seqcheck.reports.progress import Progress
-
-    return Progress(sys.stderr, files)
-
-
-def _judged(
-    files: list[str], call: Call, hands: Hands, progress: "Progress | None"
-) -> Generator[Judged, None, None]:
-    """What there is to say of each file, in their order."""
-
-    def tell(said: Told | Instead) -> None:
-        if progress and isinstance(said, Told):
-            progress.count(said.hazards, said.settled, said.zones)
-
-    teller = tell if progress else None
-    if hands == Hands():
-        yield from (judged(file, call, teller) for file in files)
-        return
-    from seqcheck.work.plan import NoHands, by_many, crew_of
-
-    try:
-        with contextlib.closing(crew_of(hands)) as crew:
-            yield from by_many(files, call, crew, teller)
     except NoHands as why:
         complain(f"error: {why}")
         raise SystemExit(why.code) from why
+    return answers, code
 
 
 def _one_file(asked: argparse.Namespace, limits: Limits) -> tuple[Answer, int]:
@@ -345,7 +319,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
 
 def _compare(asked: argparse.Namespace) -> int:
     """Hold two files against each other; the exit code."""
-    form = one_of("--as", asked.form, ("screen", "lines"))
+    form = one_of("--as", asked.form, COMPARE_FORMS)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
     observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
     if asked.old == asked.new == STDIN:
@@ -381,6 +355,28 @@ def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None)
         complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
         return FAULT
     return _worse(code, deliver(text, out))
+
+
+def _size(asked: argparse.Namespace) -> int:
+    """Tell the range of a quantity; the exit code."""
+    from seqcheck.commands.size import FORMS as FORMS_OF_SIZES
+    from seqcheck.commands.size import Asked, WrongCall, run
+    from seqcheck.confirming import Fault
+
+    form = one_of("--as", asked.form, FORMS_OF_SIZES)
+    colour = one_of("--color", asked.color, ("auto", "always", "never"))
+    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    painted = wants_colour(colour, sys.stdout) and not asked.out
+    try:
+        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)
+    except Problems as problems:
+        return _mistaken(problems)
+    except WrongCall as why:
+        wrong(str(why))
+    except Fault as fault:
+        complain(f"{printable(asked.file)}: internal error, please report it with the file: {fault}")
+        return FAULT
+    return _worse(code, deliver(text, asked.out))
 
 
 def _tidy(paths: list[str], only_say: bool) -> int:

@@ -56,6 +56,7 @@ class Kind(Enum):
     """What a word does to a winding."""
 
     DRIVEN = "driven"
+    STAR = "driven in star"
     BRAKED = "braked"
     HELD = "held at one end"
     FREE = "free"
@@ -66,8 +67,9 @@ class Wound:
     """A winding of two ends in one word.
 
     DRIVEN: from `nodes[0]`, at `levels[0]`, to `nodes[1]`, or the other way where it is not `ordered` by what is known.
-    BRAKED: both ends at `levels[0]`, or without a level where they are joined by switches alone. HELD: `nodes[0]` at
-    `levels[0]`.
+    STAR: `nodes[0]` at `levels[0]`, the other end joined to those of the other windings of `group` (the ends of all,
+    its own too), whose held ends are not all at one level. BRAKED: both ends at `levels[0]`, or without a level where
+    they are joined by switches alone. HELD: `nodes[0]` at `levels[0]`.
     """
 
     ends: tuple[str, ...]
@@ -75,6 +77,7 @@ class Wound:
     nodes: tuple[str, ...] = ()
     levels: tuple[Level, ...] = ()
     ordered: bool = True
+    group: tuple[tuple[str, ...], ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

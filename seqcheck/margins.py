@@ -4,17 +4,17 @@ The margin is the greatest time by which each end of the literal's possibility c
 others. It is the least gap that any run leaves, so each is shown by the run that leaves it.
 """
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 
 from seqcheck.circuit import shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
 from seqcheck.drive import Drive, MarginRule
 from seqcheck.hazards import Hazard, delays
-from seqcheck.proving.prove import Proven, Prover
+from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
 from seqcheck.sizing import cure_of_margin
-from seqcheck.verdict import Budget, Check, Margin, Undecided, Unsafe
+from seqcheck.verdict import Budget, Check, Margin, Safe, Undecided, Unsafe, Verdict
 
 Observer = Callable[[int], None]
 
@@ -22,13 +22,15 @@ MOST_ZONES = 6_000
 """Zones for one margin; then it is said to be at least what was known."""
 
 
-def budget(drive: Drive, file: str, observer: Observer) -> Budget:
+def budget(drive: Drive, file: str, observer: Observer, known: Sequence[Verdict] = ()) -> Budget:
     """The margins of all safe shorts of a drive, least first, and what has none because it is not safe.
 
-    `observer` is told the number of zones of each search and may raise LimitReached. Raises Fault if a run does not
-    replay, Problems for a stage that is refused.
+    `observer` is told the number of zones of each search and may raise LimitReached. `known` are verdicts on the same
+    drive that were reached already; their shorts are not proven once more. Raises Fault if a run does not replay,
+    Problems for a stage that is refused.
     """
     prover = Prover(drive)
+    judged = {one.hazard: one for one in reversed(known)}  # the first of a hazard is about it, more are of its margins
     margins: list[Margin] = []
     unsafe: list[tuple[Hazard, int | None, bool]] = []
     undecided: list[Undecided] = []
@@ -36,12 +38,11 @@ def budget(drive: Drive, file: str, observer: Observer) -> Budget:
     punctual: list[Hazard] = []
     alone: list[Hazard] = []
     for hazard in shorting_sets(drive.stage):
-        try:
-            proof = prover.prove(hazard, True, observer)
-        except LimitReached as limit:
-            undecided.append(Undecided(hazard, str(limit), 0))
+        proof = judged[hazard] if hazard in judged else _proven(prover, hazard, observer)
+        if isinstance(proof, Undecided):
+            undecided.append(proof)
             continue
-        if not isinstance(proof, Proven):
+        if not isinstance(proof, Safe | Proven):
             unsafe.append((hazard, proof.overlap, proof.greatest))
             continue
         margins += (margin(prover, hazard, at, observer) for at in _places(hazard))
@@ -56,6 +57,13 @@ def budget(drive: Drive, file: str, observer: Observer) -> Budget:
 def _places(hazard: Hazard) -> range:
     """The literals that have a margin, by their places; none where one switch shorts by itself."""
     return range(len(hazard.literals) if len(hazard.literals) > 1 else 0)
+
+
+def _proven(prover: Prover, hazard: Hazard, observer: Observer) -> Proven | Refuted | Undecided:
+    try:
+        return prover.prove(hazard, True, observer)
+    except LimitReached as limit:
+        return Undecided(hazard, str(limit), 0)
 
 
 def _held(prover: Prover, hazard: Hazard, observer: Observer) -> bool:

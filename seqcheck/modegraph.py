@@ -88,6 +88,25 @@ def graph_findings(drive: Drive) -> tuple[Finding, ...]:
     return (*_unreachable(graph), *_without_way_back(graph), *_ambiguous(graph), *_stalled(graph))
 
 
+def alike_throughout(outer: Drive, inner: Drive) -> bool:
+    """Whether drives that differ in times alone surely all have the same findings about their graphs.
+
+    `outer` has of all of them the widest bounds of every time, `inner` the narrowest, which may run backwards. That the
+    span of a timed move does not run backwards is left to the reader, who knows both its ends.
+    """
+    wide, narrow = ModeGraph(outer).openings, ModeGraph(inner).openings
+    firmware = Firmware(inner, frozenset(), frozenset(), True)
+    bounds = [(one, bound) for one in narrow if (bound := firmware.window(one.move)[2]) is not None]
+    for one, tight in zip(wide, narrow, strict=True):
+        others = [bound for other, bound in bounds if other.mode == tight.mode and other is not tight]
+        if isinstance(tight.move.trigger, When) and tight.latest is not None:
+            others.append(tight.latest)
+        if one.possible and any(tight.soonest > bound for bound in others):
+            return False
+    pairs = [(at, other) for at, one in enumerate(wide) for other in range(at) if wide[other].mode == one.mode]
+    return all(_alike(narrow[other], narrow[at]) for at, other in pairs if _alike(wide[other], wide[at]))
+
+
 # Modes that no run enters
 
 

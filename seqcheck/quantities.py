@@ -52,6 +52,17 @@ def widened(lo: Fraction, hi: Fraction | None, tolerance: Fraction) -> Interval:
     return outwards(lo / (1 + tolerance), None if hi is None else hi / (1 - tolerance))
 
 
+def bits(value: Fraction) -> int:
+    """The length of the longest whole number in an exact one; of a number that ranges, in all that it is made of."""
+    own: int | None = getattr(value, "bits", None)
+    return max(value.numerator.bit_length(), value.denominator.bit_length()) if own is None else own
+
+
+def endless(value: Fraction) -> bool:
+    """Whether a number is one that ranges and has no greatest value (see ranging)."""
+    return bool(getattr(value, "endless", False))
+
+
 def shown(time: int) -> str:
     """A time in picoseconds for people, exact, in the largest unit that keeps it at or above one: `12.5 us`."""
     if time == 0:

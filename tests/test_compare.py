@@ -71,8 +71,8 @@ became possible
     missing at new.dseq:51:5).
 
 what the file says
-  move open -> close when reverse_cmd (line 49): step 2 wait 16 us => wait 10
-    us
+  move open -> close when reverse_cmd (line 49): step 2 wait 16 us => wait
+    10 us
   trip gust (line 61): step 2 wait 16 us => wait 10 us
 
 A proof is about the file, not about the board.
@@ -84,7 +84,7 @@ def test_margins_that_moved(tmp_path: Path, capsys: Capture) -> None:
     code, out = compared(tmp_path, capsys, VENT, changed(VENT, ("wait settle", "wait 12 us")))
     assert code == 0
     assert out.splitlines()[1] == "less left: no hazard became possible; 3 margins shrank by up to 3.960396 us."
-    assert "after UH can conduct no more: shrank by 3.960396\n    us, 5.231584 us => 1.271188 us" in out
+    assert "after UH can conduct no more: shrank by\n    3.960396 us, 5.231584 us => 1.271188 us" in out
     code, out = compared(tmp_path, capsys, changed(VENT, ("wait settle", "wait 12 us")), VENT)
     assert code == 0
     assert out.splitlines()[1] == "not worse: no hazard became possible; 3 margins grew by up to 3.960396 us."

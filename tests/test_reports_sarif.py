@@ -62,6 +62,7 @@ def test_what_code_hosts_need() -> None:
         assert rule["help"]["text"]
     for result in run["results"]:
         assert driver["rules"][result["ruleIndex"]]["id"] == result["ruleId"]
+        assert driver["rules"][result["ruleIndex"]]["defaultConfiguration"] == {"level": result["level"]}
         assert result["message"]["text"]
         assert result["partialFingerprints"]
         region = result["locations"][0]["physicalLocation"]["region"]

@@ -11,14 +11,17 @@ from seqcheck.drive import Above, Command, Fixed, Interlock
 from seqcheck.hazards import Hazard, Literal
 from seqcheck.quantities import Interval
 from seqcheck.reports import screen
-from seqcheck.reports.pieces import Tone, visible
-from seqcheck.verdict import Act, Check, Event, Outcome, Replayed, Span, Trace, Unsafe
+from seqcheck.reports.pieces import Tone, visible, wrapped
+from seqcheck.verdict import Act, Check, Event, Outcome, Replayed, Span, Trace, Undecided, Unsafe
 
 LONG_HIGH, LONG_LOW = "a_very_long_switch_name_for_the_upper_side_of_leg_U", "another_very_long_switch_name"
 REVERSAL = r"""bench.dseq  "Bench actuator, 24 V"
+UNSAFE: 1 counterexample, 1 hazard proven, 1 warning
 
 OVERLAP  bench.dseq:27:3
   P can be joined to N through UH and UL, for up to 5.1 us.
+  To cure it: make this wait at least 10.1 us (5.1 us missing at
+  bench.dseq:29:5).
 
   The run. t = 0 is where line 27 begins (on reverse_cmd: open -> close), 1.1 ms
   after the start.
@@ -57,9 +60,6 @@ OVERLAP  bench.dseq:27:3
   command: ~ on  _ off  ? either    conducts: = surely  : in doubt  . surely not
   From one instant to the next takes equal room, however long it lasts.
 
-  To cure it: make this wait at least 10.1 us (5.1 us missing at
-  bench.dseq:29:5).
-
 proven  1 shorting set: possible in no run
   Shown 1 by least times alone. However late the firmware is: all of them.
 
@@ -72,10 +72,12 @@ UNSAFE: bench.dseq: 1 counterexample, 1 hazard proven, 1 warning
 A proof is about the file, not about the board.
 """
 SHORTED = r"""bench.dseq  "Bench actuator, 24 V"
+UNSAFE: 1 counterexample, 1 finding, 1 hazard undecided
 
 SHORT  bench.dseq:22:3
   P can be joined to N through UH and UL, without end.
   Row 'brake' of the table (line 22) commands UH and UL together.
+  To cure it: no wait cures this; row 'brake' must leave one of UH and UL off.
 
   The run. t = 0 is where line 26 begins (at once: idle -> brake).
 
@@ -101,8 +103,6 @@ SHORT  bench.dseq:22:3
 
   command: ~ on  _ off  ? either    conducts: = surely  : in doubt  . surely not
   From one instant to the next takes equal room, however long it lasts.
-
-  To cure it: no wait cures this; row 'brake' must leave one of UH and UL off.
 
 UNDECIDED  P to N through VH and VL
   Neither proven nor disproven. Limit reached: 200000 zones. Zones stored:
@@ -398,3 +398,29 @@ def test_reset_and_carriers_are_told() -> None:
         assert words in said
     assert re.search(r" main rises +on .*\n +held writes act: UL on\n", said)
     assert "on reverse_cmd: open -> close" in said  # not from the mode before, which no such move leaves
+
+
+@pytest.mark.parametrize("verdict", [cases.OVERLAP, cases.NOT_DECIDED])
+def test_the_verdict_stands_before_what_goes_on_at_length(verdict: Unsafe | Undecided) -> None:
+    """In the second line, and at the end, where a terminal stops, once more with the file."""
+    lines = text(outcome(verdict)).splitlines()
+    last = next(line for line in reversed(lines) if "bench.dseq: " in line)
+    assert lines[1] == last.replace("bench.dseq: ", "", 1)
+    if isinstance(verdict, Unsafe):
+        said = "\n".join(lines)
+        assert said.index("To cure it") < said.index("The run.") < said.index("  overlap  ")
+
+
+def test_a_number_and_its_unit_stay_together() -> None:
+    for width in range(8, 60):
+        rows = wrapped("after 5 us to 40.25 ms at 20 kHz within 2 % or 3 s of a thousand", width)
+        assert " ".join(rows) == "after 5 us to 40.25 ms at 20 kHz within 2 % or 3 s of a thousand"
+        assert not any(row[-1].isdigit() for row in rows), rows
+
+
+def test_a_lane_is_as_bright_at_an_instant_as_beside_it() -> None:
+    """Only where the command changes does the picture say so."""
+    for found in screen.report([outcome(cases.OVERLAP)]):
+        words = "".join(piece.text for piece in found)
+        if "command   " in words and "_" in words:
+            assert all(piece.tone is Tone.FAINT for piece in found if set(piece.text) == {"_"})

@@ -12,6 +12,7 @@ HOUSE = Path(seqcheck.__file__).parent
 LOW_TO_HIGH = (
     "shipped",
     "exits",
+    "ranging",
     "quantities",
     "source",
     "messages",
@@ -24,6 +25,7 @@ LOW_TO_HIGH = (
     "circuit",
     "verdict",
     "changes",
+    "ranges",
     "writing",
     "firmware",
     "modegraph",
@@ -43,6 +45,7 @@ LOW_TO_HIGH = (
     "store",
     "work",
     "serving",
+    "completing",
     "commands",
     "arguments",
     "delivering",

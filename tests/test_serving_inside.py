@@ -278,6 +278,18 @@ def test_formatting_puts_the_tidy_text_in_place_of_all() -> None:
     assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["result"] is None
 
 
+def test_a_text_that_tidying_would_alter_is_left_alone(monkeypatch: pytest.MonkeyPatch) -> None:
+    """The formatter's own law is broken on purpose: it is an answer, in words, and no edit."""
+    monkeypatch.setattr("seqcheck.language.tidy._written", lambda lines: [SAFE.replace("5 ps", "4 ps")])
+    wire = Wire()
+    wire.open(FLUSH)
+    said = "tidied, the text would say something else, so it stays as it is"
+    assert wire.ask("textDocument/formatting", {"textDocument": {"uri": URI}})["error"] == {
+        "code": -32803,
+        "message": f"internal error, please report it with the file: {said}",
+    }
+
+
 def test_the_formatter_of_this_version_is_offered() -> None:
     wire = Wire()
     wire.open(FLUSH)

@@ -68,7 +68,7 @@ class _Judge:
 
     def _drives(self, word: Word) -> bool:
         levels = {level for level in self._lone(word) if level is not None}
-        return len(levels) > 1 or any(one.kind is Kind.DRIVEN for one in word.windings)
+        return len(levels) > 1 or any(one.kind in (Kind.DRIVEN, Kind.STAR) for one in word.windings)
 
     def _lone(self, word: Word) -> list[Level | None]:
         """The levels of the ends of windings whose other end the file does not name, or leaves to other windings."""

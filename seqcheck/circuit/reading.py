@@ -82,11 +82,12 @@ class RowReader:
         nodes = tuple(self._node(edges, order, end, flowing) for end in self._ends)
         plates = tuple(self._node(edges, order, name, flowing) for name in self._plates)
         by_name = {node.name: node for node in nodes}
-        windings = tuple(
+        wound = [
             self._wound(winding, by_name, edges, order, flowing[winding])
             for winding in stage.windings
             if len(winding.ends) == 2 and all(end in by_name for end in winding.ends)
-        )
+        ]
+        windings = tuple(self._in_star(one, wound, edges) for one in wound)
         shorts = tuple(
             one for one in self.sets if {lit.switch for lit in one.literals} <= on and not contradicted(one, known)
         )
@@ -125,6 +126,23 @@ class RowReader:
             if node.held and node.name not in self._stiff:
                 return Wound(ends, Kind.HELD, (node.name,), (node.held,))
         return Wound(ends, Kind.FREE)
+
+    def _in_star(self, one: Wound, wound: list[Wound], edges: list[Link]) -> Wound:
+        """A winding held at one end, as driven by way of others whose free ends are joined to its own, if it is."""
+        if one.kind is not Kind.HELD:
+            return one
+        group = [
+            other
+            for other in wound
+            if other.kind is Kind.HELD and (other is one or self._together(edges, _loose_end(one), _loose_end(other)))
+        ]
+        if len({other.levels for other in group}) == 1:
+            return one
+        return replace(one, kind=Kind.STAR, group=tuple(other.ends for other in group))
+
+    def _together(self, edges: list[Link], first: str, second: str) -> bool:
+        """Whether two nodes are joined both ways by switches and diodes alone."""
+        return joined(edges, self._stiff, first, second) and joined(edges, self._stiff, second, first)
 
     def _stuck(self, winding: Winding, current: Current, on: frozenset[str]) -> bool:
         """Whether a current that some word lets flow has no way in this one, not through other windings either."""
@@ -174,6 +192,11 @@ def _between(ends: tuple[str, ...], first: Node, second: Node, order: Order) -> 
     if order.above(other, one):
         first, second, one, other = second, first, other, one
     return Wound(ends, Kind.DRIVEN, (first.name, second.name), (one, other), order.above(one, other))
+
+
+def _loose_end(one: Wound) -> str:
+    """The end of a winding held at one end that is not held."""
+    return next(end for end in one.ends if end != one.nodes[0])
 
 
 def _possible(drive: Drive, winding: Winding, known: tuple[Known, ...]) -> tuple[Current, ...]:

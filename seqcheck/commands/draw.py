@@ -11,7 +11,11 @@ FORMS = ("svg", "mermaid")
 ABOUT = """\
 Draw FILE: the graph of its modes, coloured by what each does to the winding, with the path of the worst counterexample
 marked; or with --trace a counterexample as a timing diagram. The picture is SVG; it says so where there is no
-counterexample. The exit code is that of 'lint'."""
+counterexample. The exit code is that of 'lint'.
+
+example:
+  seqcheck draw drive.dseq --out modes.svg
+  seqcheck draw drive.dseq --trace overlap --out overlap.svg"""
 RUNLESS = tuple(
     check.value
     for check in (

@@ -26,6 +26,6 @@ def page(outcome: Outcome, command: str, observer: Callable[[int], None]) -> str
 
 def _budget(outcome: Outcome, observer: Callable[[int], None]) -> tuple[Budget | None, str]:
     try:
-        return budget(outcome.drive, outcome.file, observer), ""
+        return budget(outcome.drive, outcome.file, observer, outcome.verdicts), ""
     except LimitReached as limit:
         return None, f"Not told: a limit was reached, {limit}."

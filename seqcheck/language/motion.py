@@ -176,7 +176,7 @@ class Motion:
             text = f"'latest' {shown(ceil(latest))} lies before 'earliest' {shown(ceil(earliest))}"
             self.notes.add(said.latest.place, "backwards-range", text, "make 'latest' the greater one")
             return None
-        bounds = widened(earliest, latest, self.scope.tolerance)
+        bounds = widened(earliest, self.scope.bound(latest), self.scope.tolerance)
         return When(said.event.text, bounds.lo, bounds.hi)
 
     # Steps

@@ -1,6 +1,7 @@
 """From the text of a file to the checked drive or library: every mistake at once, or one of them."""
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
+from fractions import Fraction
 
 from seqcheck.drive import RESET, Drive, Fixed, How, Library, Mode, Writes
 from seqcheck.language.flow import check_flow
@@ -23,7 +24,11 @@ from seqcheck.source import Place
 
 def read(text: str, file: str, fetch: Callable[[str], str]) -> Drive:
     """As `read_any`, where a drive is needed: a file that only serves `use` raises Problems."""
-    found = read_any(text, file, fetch)
+    return needed(read_any(text, file, fetch))
+
+
+def needed(found: Drive | Library) -> Drive:
+    """What was read, where a drive is needed; a library raises Problems."""
     if isinstance(found, Library):
         way_out = "name a file that uses it, or add the sections 'stage', 'modes' and 'moves'"
         problem = Problem(found.place, "no-drive", "this file only serves 'use', it describes no drive", way_out)
@@ -43,10 +48,13 @@ def read_any(text: str, file: str, fetch: Callable[[str], str]) -> Drive | Libra
 class Draft:
     """All that could be read of a file, mistakes or not; `notes.found` has the mistakes of all files read.
 
-    `serves` tells a library from a drive. What a mistake left out is missing from the rest.
+    `serves` tells a library from a drive. What a mistake left out is missing from the rest. `given` are values in place
+    of what is said of a `let`.
     """
 
-    def __init__(self, book: Book, notes: Notes, fetch: Callable[[str], str]) -> None:
+    def __init__(
+        self, book: Book, notes: Notes, fetch: Callable[[str], str], given: Mapping[str, Fraction] | None = None
+    ) -> None:
         self.book = book
         self.notes = notes
         self.serves = _only_serves(book, notes)
@@ -54,7 +62,7 @@ class Draft:
             _check_sections(book, notes)
         elif "clock" not in book.heads:
             notes.broken.add("clock")  # its ticks are those of a file that is not at hand
-        self.scope = Scope(book, notes)
+        self.scope = Scope(book, notes, given=given)
         self.names = Uses(fetch, notes.found).names(self.scope)
         self.stage = StageReader(Notes() if self.serves else notes)  # a library has none and needs none
         head = book.heads.get("stage")

@@ -1,5 +1,6 @@
 """The names and quantities of one file: `let`, the clock's ticks, ranges, widening."""
 
+from collections.abc import Mapping
 from fractions import Fraction
 from math import ceil, floor
 from typing import NamedTuple
@@ -10,7 +11,7 @@ from seqcheck.language.notes import Notes
 from seqcheck.language.syntax import ClockLine, LetLine, Line, Operand, Range, Term, Word
 from seqcheck.language.values import MOST_DIGITS, Amount, Unit, evaluated, in_unit
 from seqcheck.messages import nearest
-from seqcheck.quantities import Interval, outwards, shown, widened
+from seqcheck.quantities import Interval, endless, outwards, shown, widened
 from seqcheck.source import Place
 
 _WAYS_OUT = {
@@ -31,12 +32,18 @@ class Let(NamedTuple):
 
 
 class Scope:
-    """The quantities of one file. `outer` is the scope of the file that uses this one, for a clock of its own."""
+    """The quantities of one file. `outer` is the scope of the file that uses this one, for a clock of its own.
 
-    def __init__(self, book: Book, notes: Notes, outer: "Scope | None" = None) -> None:
+    `given` are values in place of what the file, or one that it uses, says of a `let`.
+    """
+
+    def __init__(
+        self, book: Book, notes: Notes, outer: "Scope | None" = None, given: Mapping[str, Fraction] | None = None
+    ) -> None:
         self.book = book
         self.notes = notes
         self.outer = outer
+        self.given: Mapping[str, Fraction] = given or (outer.given if outer else {})
         self.lets: dict[str, Let] = {}
         self.later = {one.node.name.text: one.place.line for one in book.singles if isinstance(one.node, LetLine)}
         self._clock: Clock | None = None
@@ -63,7 +70,8 @@ class Scope:
         self._clock = Clock(line.place, frequency, Fraction(0), None)  # its own ticks may say how late it is
         tolerance = self.tolerance_of(said.within) if said.within else Fraction(0)
         late = self.at_least_zero(said.late, Unit.DURATION) if said.late else None
-        return Clock(line.place, frequency, tolerance or Fraction(0), None if late is None else ceil(late))
+        exact = Fraction(0) if tolerance is None else tolerance
+        return Clock(line.place, frequency, exact, None if late is None else ceil(late))
 
     @property
     def tolerance(self) -> Fraction:
@@ -106,6 +114,8 @@ class Scope:
         if not self.notes.not_reset(said.name, "let") or not self.notes.fresh(said.name, taken, "quantity"):
             return
         amount = evaluated(said.formula, self.amount, self.notes)
+        if amount is not None and said.name.text in self.given:
+            amount = Amount(self.given[said.name.text], amount.unit)
         self.lets[said.name.text] = Let(said.name.place, line.place.line, amount)
 
     def amount(self, operand: Operand) -> Amount | None:
@@ -206,7 +216,11 @@ class Scope:
     def firmware(self, said: Range) -> Interval | None:
         """A duration that firmware times, widened by the clock's tolerance."""
         span = self.span(said)
-        return None if span is None else widened(*span, self.tolerance)
+        return None if span is None else widened(span[0], self.bound(span[1]), self.tolerance)
+
+    def bound(self, hi: Fraction | None) -> Fraction | None:
+        """An upper bound that firmware keeps: none where it is one that ranges without end."""
+        return None if hi is None or endless(hi) else hi
 
     def hardware(self, said: Range, what: str) -> Interval | None:
         """A duration of hardware: an upper bound, and no widening."""

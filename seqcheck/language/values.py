@@ -7,7 +7,7 @@ from typing import NamedTuple
 
 from seqcheck.language.notes import Notes
 from seqcheck.language.syntax import Formula, Operand, Sign
-from seqcheck.quantities import HERTZ, PICOSECONDS, RATIOS
+from seqcheck.quantities import HERTZ, PICOSECONDS, RATIOS, bits
 
 MOST_DIGITS = 60
 MOST_BITS = 4096
@@ -78,7 +78,7 @@ def evaluated(formula: Formula, amount: Callable[[Operand], Amount | None], note
         result = _combined(stack, item, notes) if isinstance(item, Sign) else amount(item)
         if result is None:
             return None
-        if max(result.value.numerator.bit_length(), result.value.denominator.bit_length()) > MOST_BITS:
+        if bits(result.value) > MOST_BITS:
             notes.add(item.place, "number-too-long", "the exact result grows beyond all use", "round the numbers")
             return None
         stack.append(result)

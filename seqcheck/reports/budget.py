@@ -43,10 +43,11 @@ def _least(budget: Budget) -> list[Line]:
         return paragraph("What can follow another never does.", 0) if budget.margins else []
     least = bounded[0]
     where = f", at {least.place}" if least.place is not None else ""
-    return paragraph(f"The least margin is {_slack(least)}{where}.", 0, Tone.STRONG)
+    return paragraph(f"The least margin is {left(least)}{where}.", 0, Tone.STRONG)
 
 
-def _slack(margin: Margin) -> str:
+def left(margin: Margin) -> str:
+    """A margin as a time; a lower bound says so."""
     if margin.slack is None:
         return NEVER
     return f"{'' if margin.exact else 'at least '}{shown(margin.slack)}"
@@ -74,9 +75,9 @@ def after(margin: Margin) -> str:
     if margin.slack is None:
         pair = len(margin.hazard.literals) == 2
         return f"{others} never {'follows' if pair else 'follow'} {margin.literal}{'' if pair else ' together'}"
-    left = f"the margin after {margin.literal} until {others} is {_slack(margin)}"
+    rests = f"the margin after {margin.literal} until {others} is {left(margin)}"
     rest = f"; {margin.limit}" if margin.limit else ""
-    return f"{left}; the parts need {shown(margin.needed)} between the commands{rest}"
+    return f"{rests}; the parts need {shown(margin.needed)} between the commands{rest}"
 
 
 # The table
@@ -114,10 +115,10 @@ def _padded(cells: Sequence[str], widths: Sequence[int]) -> list[str]:
 
 def _cells(margin: Margin, drive: Drive) -> tuple[str, ...]:
     others = [str(one) for one in margin.hazard.literals if one != margin.literal]
-    place = f"{_line_of(margin, drive)}" if margin.place is not None else margin.limit
+    place = f"{set_by(margin, drive)}" if margin.place is not None else margin.limit
     whole = None if margin.slack is None else ticks(margin.slack, drive)
     told = "" if whole is None else str(whole)
-    return str(margin.literal), " ".join(others), shown(margin.needed), _slack(margin), told, place
+    return str(margin.literal), " ".join(others), shown(margin.needed), left(margin), told, place
 
 
 def _unsafe_cells(hazard: Hazard, overlap: int | None, greatest: bool) -> tuple[str, ...]:
@@ -125,7 +126,7 @@ def _unsafe_cells(hazard: Hazard, overlap: int | None, greatest: bool) -> tuple[
     return first, " ".join(others), "", "none", "", f"they overlap {lasting(overlap, greatest)}"
 
 
-def _line_of(margin: Margin, drive: Drive) -> str:
+def set_by(margin: Margin, drive: Drive) -> str:
     """The line of the move, trip or row, and what it is."""
     assert margin.place is not None
     moves = {one.place: f"{', '.join(one.sources)} -> {one.target}" for one in drive.moves}

@@ -9,7 +9,7 @@ from seqcheck.drive import Drive
 from seqcheck.hazards import Hazard
 from seqcheck.quantities import shown
 from seqcheck.reports.acts import told
-from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed, paragraph, visible
+from seqcheck.reports.pieces import WIDTH, Line, Piece, Tone, counted, line, listed, paragraph, visible
 from seqcheck.reports.wording import CAUTION, cure, lasting, stated, stretch, subject
 from seqcheck.source import Place
 from seqcheck.verdict import WARNINGS, Act, Check, Finding, Safe, Trace, Undecided, Unsafe, Verdict
@@ -19,11 +19,14 @@ _MOST_RUNS = 6
 
 
 def report(found: Comparison) -> list[Line]:
-    """The whole answer as styled lines; the first three say what matters."""
-    title = f'  "{found.new.drive.title}"'
+    """The whole answer as styled lines; the first ones say what matters."""
+    title = f'"{found.new.drive.title}"'
     old, new = ("standard input" if one.file == "-" else one.file for one in (found.old, found.new))
-    lines = [line(Piece(f"{old} => {new}", Tone.STRONG), title)]
+    head = line(Piece(f"{old} => {new}", Tone.STRONG), f"  {title}")
+    wide = sum(len(piece.text) for piece in head) > WIDTH
+    lines = [head[:1] if wide else head]
     lines += paragraph(standing(found), 0, Tone.BAD if found.worse else Tone.DOUBT if found.undecided else Tone.GOOD)
+    lines += paragraph(title, 0) if wide else []
     lines += paragraph(said(found), 0)
     for title, block in _blocks(found):
         if block:

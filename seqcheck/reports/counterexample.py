@@ -1,4 +1,4 @@
-"""One counterexample on the screen: what is joined, the run, its picture, and what would cure it."""
+"""One counterexample on the screen: what is joined, what would cure it, the run, and its picture."""
 
 from seqcheck.drive import Drive
 from seqcheck.quantities import shown
@@ -18,6 +18,7 @@ def counterexample(verdict: Unsafe, drive: Drive) -> list[Line]:
     found = [line(Piece(verdict.check.value.upper(), Tone.BAD), f"  {verdict.place}")]
     found += sentence(stated(verdict), Tone.STRONG)
     found += sentence(_capital(where(verdict, drive))) + sentence(_capital(condition(verdict.hazard)))
+    found += sentence(f"To cure it: {cure(verdict, drive)}", Tone.STRONG)
     found += [
         (),
         *_count_from(run, verdict),
@@ -26,8 +27,7 @@ def counterexample(verdict: Unsafe, drive: Drive) -> list[Line]:
         *_letters(run),
         (),
     ]
-    found += [*rows(run), (), *picture(run), ()]
-    return [*found, *sentence(f"To cure it: {cure(verdict, drive)}", Tone.STRONG)]
+    return [*found, *rows(run), (), *picture(run)]
 
 
 def sentence(text: str, tone: Tone = Tone.PLAIN, indent: int = INDENT) -> list[Line]:

@@ -32,13 +32,16 @@ def word_does(word: Word) -> str:
         name_them = len(word.windings) + sum(node.name not in paired for node in word.nodes) > 1
         by_name = {node.name: node for node in word.nodes}
         for one in word.windings:
+            if one.kind is Kind.STAR:
+                parts.append(_star([other for other in word.windings if other.group == one.group]))
+                continue
             own = [node for end in one.ends if (node := by_name[end]).level is None and not node.loose]
             ways = [_node(node) for node in own if node.out or node.into] if one.kind is Kind.FREE else []
             parts.append((f"{' '.join(one.ends)} " if name_them else "") + ", ".join([_winding(one), *ways]))
         parts += [_node(node) for node in word.nodes if node.name not in paired]
     if word.stuck:
         parts.append(f"no way for {flowing(word.stuck)}")
-    return ", ".join(parts) or "nothing to a winding"
+    return ", ".join(dict.fromkeys(parts)) or "nothing to a winding"
 
 
 def _while(said: str) -> str:
@@ -55,6 +58,12 @@ def _winding(one: Wound) -> str:
     if one.kind is Kind.HELD:
         return f"one end held, {one.nodes[0]} at {one.levels[0]}"
     return "free"
+
+
+def _star(group: list[Wound]) -> str:
+    """Windings that are driven by way of each other, their free ends joined."""
+    names, levels = [" ".join(one.ends) for one in group], [f"{one.nodes[0]} at {one.levels[0]}" for one in group]
+    return f"{listed(names)} driven in {'star' if len(group) > 2 else 'series'}, {', '.join(levels)}"
 
 
 def _node(node: Node) -> str:

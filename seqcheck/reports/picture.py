@@ -114,7 +114,8 @@ def _command_of(place: int) -> Drawer:
     def drawer(before: Instant, now: Instant) -> tuple[Piece, Piece]:
         old, new = before.states[place], now.states[place]
         tone = Tone.FAINT if new.command is Command.OFF else Tone.STRONG
-        return Piece(_edge(old, new), Tone.STRONG), Piece(_LEVELS[new.command], tone)
+        at = _edge(old, new)
+        return Piece(at, tone if at == _LEVELS[new.command] else Tone.STRONG), Piece(_LEVELS[new.command], tone)
 
     return drawer
 

@@ -1,10 +1,13 @@
 """Styled text without a terminal: what a form of a report hands on, and the small words that all forms share."""
 
+import re
 import textwrap
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from enum import Enum
 from unicodedata import category
+
+from seqcheck.quantities import PICOSECONDS
 
 WIDTH = 80  # columns that a report keeps to where it can
 
@@ -47,9 +50,14 @@ def paragraph(text: str, indent: int, tone: Tone = Tone.PLAIN) -> list[Line]:
     return [line(" " * indent, Piece(row, tone)) for row in wrapped(visible(text), WIDTH - indent)]
 
 
+_AMOUNT = re.compile(rf"(?<=\d) (?=(?:{'|'.join(PICOSECONDS)}|[kMG]?Hz|ticks?|zones?|ppm)\b|%)")
+
+
 def wrapped(text: str, width: int) -> list[str]:
-    """The words of a text in rows of at most `width`, longer only where one word is."""
-    return textwrap.wrap(text, max(1, width), break_long_words=False, break_on_hyphens=False)
+    """The words of a text in rows of at most `width`, longer only where one word is; a number keeps its unit."""
+    joined = _AMOUNT.sub("\0", text)  # which no text that is shown holds, and no row is broken at
+    rows = textwrap.wrap(joined, max(1, width), break_long_words=False, break_on_hyphens=False)
+    return [row.replace("\0", " ") for row in rows]
 
 
 def merged(cells: Iterable[Piece]) -> Line:

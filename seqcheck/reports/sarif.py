@@ -25,9 +25,10 @@ from seqcheck.reports.standing import sorted_out
 from seqcheck.reports.steps import steps, told_at
 from seqcheck.reports.wording import subject
 from seqcheck.source import Place
-from seqcheck.verdict import Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
+from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 
 SCHEMA = "https://docs.oasis-open.org/sarif/sarif/v2.1.0/errata01/os/schemas/sarif-schema-2.1.0.json"
+_WARNINGS = frozenset(check.value for check in WARNINGS)
 _TOP = "%SRCROOT%"
 _IMPORTANCE = {Tone.STRONG: "essential", Tone.BAD: "essential", Tone.FAINT: "unimportant"}
 Fields = dict[str, object]
@@ -124,6 +125,7 @@ def _rule(name: str) -> Fields:
         "shortDescription": {"text": f"{about.name}."},
         "fullDescription": {"text": about.says},
         "help": {"text": f"{about.says} {about.help}"},
+        "defaultConfiguration": {"level": "warning" if name in _WARNINGS else "error"},
     }
 
 

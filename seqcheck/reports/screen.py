@@ -65,7 +65,7 @@ def coloured(lines: Iterable[Line]) -> str:
 
 def _file(outcome: Outcome) -> list[Line]:
     parts = sorted_out(outcome)
-    blocks = [[line(Piece(outcome.file, Tone.STRONG), f'  "{outcome.drive.title}"')]]
+    blocks = [[line(Piece(outcome.file, Tone.STRONG), f'  "{outcome.drive.title}"'), *_verdict(parts)]]
     blocks += (counterexample(one, outcome.drive) for one in parts.unsafe)
     blocks += (_undecided(one) for one in parts.undecided)
     blocks += (_finding(one, Piece(one.check.value, Tone.BAD)) for one in parts.findings)
@@ -135,8 +135,21 @@ def _proven(safe: Sequence[Safe]) -> list[Line]:
 # The last words
 
 
+def _verdict(parts: Sorted) -> list[Line]:
+    """The verdict before all that goes on at length, if there is; what is proven is said in two lines anyway."""
+    if parts.standing in (Standing.PROVEN, Standing.NOTHING):
+        return []
+    return [line(Piece(parts.standing.value, _TONES[parts.standing]), f": {_counts(parts)}")]
+
+
 def _closing(file: str, parts: Sorted) -> list[Line]:
     standing = parts.standing
+    but = " but for what is waived" if parts.waived and standing is Standing.PROVEN else ""
+    return [line(Piece(f"{standing.value}{but}", _TONES[standing]), f": {file}: {_counts(parts)}")]
+
+
+def _counts(parts: Sorted) -> str:
+    """How much was found of each kind."""
     counts = [
         (len(parts.unsafe), "counterexample", ""),
         (len(parts.findings), "finding", ""),
@@ -146,9 +159,7 @@ def _closing(file: str, parts: Sorted) -> list[Line]:
         (len(parts.waived), "finding", " waived"),
     ]
     said = [f"{counted(number, name)}{rest}" for number, name, rest in counts if number]
-    text = ", ".join(said) or "no hazard was asked for, and nothing else was found"
-    but = " but for what is waived" if parts.waived and standing is Standing.PROVEN else ""
-    return [line(Piece(f"{standing.value}{but}", _TONES[standing]), f": {file}: {text}")]
+    return ", ".join(said) or "no hazard was asked for, and nothing else was found"
 
 
 def _all(answers: Sequence[Outcome | Library]) -> Line:

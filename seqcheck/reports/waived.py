@@ -1,7 +1,7 @@
 """Which waiver of the file, if any, lets a finding pass."""
 
 from seqcheck.drive import Drive, Waiver, When
-from seqcheck.hazards import Clearing, Following, Stuck
+from seqcheck.hazards import Clearing, Following, Hazard, Stuck
 from seqcheck.verdict import WARNINGS, Finding, Unsafe
 
 
@@ -21,19 +21,23 @@ def lets_pass(waiver: Waiver, drive: Drive, found: Unsafe | Finding) -> bool:
 
 
 def names_of(drive: Drive, verdict: Unsafe) -> frozenset[str]:
-    """The names that an unsafe hazard is about: its switches, the legs they make up, and the mode, event or trip at
-    its place."""
-    asks = verdict.hazard.asks
-    concerned = frozenset(one.switch for one in verdict.hazard.literals)
-    concerned |= {one.switch for one in asks.faults} if isinstance(asks, Stuck) else set()
-    followed = {asks.left, asks.entered} if isinstance(asks, Following) else set()
-    trips_asked = {asks.trip} if isinstance(asks, Clearing) else set()
-    followed |= {asks.mode} if isinstance(asks, Stuck) else set()
-    modes = followed | {mode.name for mode in drive.modes.values() if mode.place == verdict.place}
-    trips = trips_asked | {trip.name for trip in drive.trips if trip.place == verdict.place}
+    """The names that an unsafe hazard is about: its own, and the mode, event or trip at its place."""
+    modes = {mode.name for mode in drive.modes.values() if mode.place == verdict.place}
+    trips = {trip.name for trip in drive.trips if trip.place == verdict.place}
     moves = (move for move in drive.moves if move.place == verdict.place)
     events = {move.trigger.event for move in moves if isinstance(move.trigger, When)}
-    return _legs(drive, concerned).union(concerned, modes, trips, events)
+    return own_names(drive, verdict.hazard).union(modes, trips, events)
+
+
+def own_names(drive: Drive, hazard: Hazard) -> frozenset[str]:
+    """The names of a hazard, wherever it happens: its switches, the legs they make up, what its rule names."""
+    concerned = frozenset(one.switch for one in hazard.literals)
+    asks = hazard.asks
+    followed = {asks.left, asks.entered} if isinstance(asks, Following) else set()
+    concerned |= {one.switch for one in asks.faults} if isinstance(asks, Stuck) else set()
+    modes = {asks.mode} if isinstance(asks, Stuck) else set()
+    trips = {asks.trip} if isinstance(asks, Clearing) else set()
+    return _legs(drive, concerned).union(concerned, followed, modes, trips)
 
 
 def _legs(drive: Drive, switches: frozenset[str]) -> frozenset[str]:

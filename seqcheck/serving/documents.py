@@ -14,6 +14,7 @@ from seqcheck.language.reading import Draft, drafted, settled
 from seqcheck.messages import Problem, Problems
 from seqcheck.serving.positions import Lines
 from seqcheck.source import Place
+from seqcheck.verdict import Budget
 
 
 @dataclass(frozen=True, slots=True)
@@ -40,6 +41,7 @@ class Document:
         self.text = text
         self.lines = Lines(text)
         self.study: Study | None = None
+        self.margins: Budget | str | None = None  # of this text; or why there are none; None while none are known
 
 
 class Desk:

@@ -13,10 +13,11 @@ from seqcheck.language.reading import Draft
 from seqcheck.language.values import Amount, Unit
 from seqcheck.language.words import SECTIONS
 from seqcheck.messages import Problems
-from seqcheck.reports import hovers
+from seqcheck.reports import hovers, nearest
 from seqcheck.serving.documents import Study
 from seqcheck.serving.positions import Lines
 from seqcheck.source import Place
+from seqcheck.verdict import Budget
 
 _FIRST = re.compile(r"[ \t]*([a-z]+)")
 _WORD = re.compile(r"[A-Za-z0-9_-]*$")
@@ -35,19 +36,41 @@ def named_at(study: Study, line: int, column: int) -> Named | None:
 # What it means
 
 
-def meaning(study: Study, line: int, column: int) -> tuple[str, Place | None]:
+def meaning(study: Study, line: int, column: int, margins: Budget | str | None = None) -> tuple[str, Place | None]:
     """What stands at a place, in plain text, with the name's own place; empty where there is nothing to say.
 
-    Where no name stands it is the move, trip or wait of the line.
+    Where no name stands it is the move, trip or wait of the line. `margins` are those of the text, or why there are
+    none, if they were measured.
     """
     named = named_at(study, line, column)
     if named is None:
-        return _of_line(study.draft, line), None
+        said = _of_line(study.draft, line)
+        return "\n".join([said, *_set_by(line, margins)]) if said else "", None
     kinds: Iterable[Kind] = (named.kind,)
     if named.kind is Kind.WAIVED:
         kinds = [kind for kind in _OF_WAIVED if named.word.text in known_names(study.draft, kind)]
     texts = [text for kind in kinds if (text := _MEANINGS[kind](study, named.word.text))]
-    return "\n\n".join(texts), named.word.place
+    left = _left(study, named, margins) if texts else []
+    return "\n".join(["\n\n".join(texts), *left]), named.word.place
+
+
+def _left(study: Study, named: Named, margins: Budget | str | None) -> list[str]:
+    """The margins that a name has to do with: those of a switch, or those that the row of a mode or a trip sets."""
+    name = named.word.text
+    if named.kind is Kind.SWITCH and isinstance(study.found, Drive):
+        if isinstance(margins, Budget):
+            return nearest.of_switch(name, margins)
+        return [nearest.PENDING if margins is None else f"margins: not measured, {margins}"]
+    if named.kind is Kind.MODE:
+        row = study.draft.table.modes.get(name)
+        return _set_by(row.place.line, margins) if row is not None else []
+    trips = study.draft.motion.trips if named.kind is Kind.TRIP else ()
+    return [line for one in trips if one.name == name for line in _set_by(one.place.line, margins)]
+
+
+def _set_by(line: int, margins: Budget | str | None) -> list[str]:
+    """The margins that a row, move or trip sets."""
+    return nearest.of_line(line, margins) if isinstance(margins, Budget) else []
 
 
 def _keeping(draft: Draft) -> hovers.Keeping:

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from threading import Condition, Thread
 
 from seqcheck.drive import Drive
-from seqcheck.verdict import Answer, Failed, Unread
+from seqcheck.verdict import Answer, Budget, Failed, Outcome, Unread
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,24 +24,39 @@ class Limits:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Task:
-    """A text to prove: what stands for it, the name of its file, its drive, and when to begin."""
+    """A text to prove: what stands for it, the name of its file, its drive, and when to begin.
+
+    With `proven`, what its proof came to, it is the margins that are still asked for.
+    """
 
     key: str
     file: str
     drive: Drive
     due: float = field(default=0.0)
+    proven: Outcome | None = None
 
 
 class _Old(Exception):  # noqa: N818 - no error: nobody asks for this proof any more
     """The text was edited or closed."""
 
 
-class Proofs:
-    """Proves texts one after another. `tell` is called in the thread with each answer that is still asked for."""
+class _PutOff(Exception):  # noqa: N818 - no error: a proof goes before margins
+    """Another text waits for its proof."""
 
-    def __init__(self, limits: Limits, tell: Callable[[Task, Answer], None]) -> None:
+
+class Proofs:
+    """Proves texts one after another, and measures the margins of one when no other waits for a proof.
+
+    `tell` is called in the thread with each answer that is still asked for, `measured` with the margins, or with the
+    reason why there are none.
+    """
+
+    def __init__(
+        self, limits: Limits, tell: Callable[[Task, Answer], None], measured: Callable[[Task, Budget | str], None]
+    ) -> None:
         self._limits = limits
         self._tell = tell
+        self._measured = measured
         self._wanted: dict[str, Task] = {}
         self._changed = Condition()
         self._thread: Thread | None = None
@@ -67,25 +82,36 @@ class Proofs:
     def _work(self) -> None:
         while True:
             task = self._next()
-            try:
-                answer = self._answer(task)
-            except _Old:
-                continue
-            with contextlib.suppress(OSError):  # nobody listens any more, and the reading end will see that too
-                self._tell(task, answer)
-            with self._changed:
-                if self.asked(task):
-                    del self._wanted[task.key]
+            with contextlib.suppress(_Old, _PutOff):
+                self._done(task, self._one(task))
+
+    def _one(self, task: Task) -> Outcome | None:
+        """Prove a text or measure its margins, and tell; what is proven now, and has margins to be measured."""
+        if task.proven is not None:
+            self._measured(task, self._margins(task, task.proven))
+            return None
+        answer = self._answer(task)
+        with contextlib.suppress(OSError):  # nobody listens any more, and the reading end will see that too
+            self._tell(task, answer)
+        return answer if isinstance(answer, Outcome) else None
+
+    def _done(self, task: Task, proven: Outcome | None) -> None:
+        """Ask no more for a task that is over, but for the margins of what is proven now."""
+        with self._changed:
+            if self.asked(task):
+                del self._wanted[task.key]
+                if proven is not None:
+                    self._wanted[task.key] = Task(task.key, task.file, task.drive, task.due, proven)
 
     def _next(self) -> Task:
-        """The task that is due first, when it is due."""
+        """The task that is due first, proofs before margins, when it is due."""
         with self._changed:
             while True:
-                first = min(self._wanted.values(), key=lambda one: one.due, default=None)
-                left = None if first is None else first.due - time.monotonic()
-                if first is not None and left is not None and left <= 0:
-                    return first
-                self._changed.wait(left)
+                now = time.monotonic()
+                due = [one for one in self._wanted.values() if one.due <= now]
+                if due:
+                    return min(due, key=lambda one: (one.proven is not None, one.due))
+                self._changed.wait(min((one.due - now for one in self._wanted.values()), default=None))
 
     def _answer(self, task: Task) -> Answer:
         """Everything about one text; a fault of the program is an answer too."""
@@ -104,6 +130,17 @@ class Proofs:
         except Exception as fault:
             return Failed(task.file, f"{type(fault).__name__}: {fault}")
 
+    def _margins(self, task: Task, proven: Outcome) -> Budget | str:
+        """The margins of a text, or why there are none."""
+        from seqcheck.margins import budget
+
+        try:
+            return budget(task.drive, task.file, self._observer(task), proven.verdicts)
+        except (_Old, _PutOff):
+            raise
+        except Exception as fault:
+            return f"{type(fault).__name__}: {fault}"
+
     def _observer(self, task: Task) -> Callable[[int], None]:
         from seqcheck.proving.search import LimitReached
 
@@ -112,6 +149,8 @@ class Proofs:
         def observe(zones: int) -> None:
             if not self.asked(task):
                 raise _Old
+            if task.proven is not None and any(one.proven is None for one in list(self._wanted.values())):
+                raise _PutOff
             if zones > self._limits.zones:
                 raise LimitReached(f"{self._limits.zones} zones in the editor")
             if time.monotonic() > end:

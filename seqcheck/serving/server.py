@@ -9,13 +9,14 @@ from typing import Any
 from seqcheck import __version__
 from seqcheck.drive import Drive, Library
 from seqcheck.language.names import Kind
+from seqcheck.language.tidy import Altered
 from seqcheck.messages import Problems
 from seqcheck.serving import meanings
 from seqcheck.serving.diagnostics import Diagnostic, Teller, waiting
 from seqcheck.serving.documents import Desk, Document, Study, path_of
 from seqcheck.serving.proofs import Limits, Proofs, Task
 from seqcheck.serving.wire import Broken, Reader, Writer
-from seqcheck.verdict import Answer, Failed, Unread
+from seqcheck.verdict import Answer, Budget, Failed, Unread
 
 PARSE_ERROR, INVALID_REQUEST, METHOD_NOT_FOUND, INVALID_PARAMS, INTERNAL_ERROR = -32700, -32600, -32601, -32602, -32603
 NOT_INITIALIZED, REQUEST_FAILED = -32002, -32803
@@ -25,6 +26,7 @@ FORMATTER = "seqcheck.language.tidy"
 """Where `tidy(text, file, fetch)` is, which lines a text up and raises Problems where it cannot. Formatting is offered
 only where that exists."""
 
+ALTERED = "tidied, the text would say something else, so it stays as it is"
 Formatter = Callable[[str, str, Callable[[str], str]], str]
 
 _ITEM = {  # CompletionItemKind
@@ -57,7 +59,7 @@ class Server:
         self._reader = reader
         self._writer = writer
         self._desk = Desk()
-        self._proofs = Proofs(limits, self._proven)
+        self._proofs = Proofs(limits, self._proven, self._measured)
         self._teller = Teller(self._desk, related=False)
         self._lock = RLock()  # of what is published: an answer of the thread must not come after a newer text's
         self._watches = False
@@ -233,6 +235,7 @@ class Server:
         """Read a text and say at once what is wrong with it; prove it later, if it is a drive without mistakes."""
         with self._lock:
             self._proofs.forget(document.uri)
+            document.margins = None
         document.study = self._desk.read(document)
         found, problems = document.study.found, document.study.problems
         with self._lock:
@@ -256,6 +259,13 @@ class Server:
                 said = self._teller.said(document, Failed(document.file, _fault(fault)))
             self._publish(document, said)
 
+    def _measured(self, task: Task, found: Budget | str) -> None:
+        """Keep the margins of a text for whoever asks what stands in it, in the thread that measured them."""
+        with self._lock:
+            document = self._desk.open.get(task.key)
+            if document is not None and self._proofs.asked(task):
+                document.margins = found
+
     def _publish(self, document: Document, found: list[Diagnostic]) -> None:
         version = {} if document.version is None else {"version": document.version}
         params = {"uri": document.uri, **version, "diagnostics": found}
@@ -278,7 +288,7 @@ class Server:
 
     def _hover(self, params: Any) -> Any:
         document, study, line, column = self._at(params)
-        text, place = meanings.meaning(study, line, column)
+        text, place = meanings.meaning(study, line, column, document.margins)
         if not text:
             return None
         hover = {"contents": {"kind": "plaintext", "value": text}}
@@ -317,6 +327,8 @@ class Server:
             tidy = mark + formatter(document.text.removeprefix(mark), document.file, fetch)
         except Problems as problems:
             raise Refusal(REQUEST_FAILED, problems.found[0].line()) from None
+        except Altered:
+            raise Refusal(REQUEST_FAILED, f"internal error, please report it with the file: {ALTERED}") from None
         if tidy == document.text:
             return []
         return [{"range": document.lines.whole(), "newText": tidy}]

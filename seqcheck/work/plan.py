@@ -13,7 +13,6 @@ from seqcheck.work.pieces import (
     Hands,
     Instead,
     Judged,
-    NoHands,
     Parts,
     Piece,
     Result,
@@ -30,8 +29,6 @@ if TYPE_CHECKING:
     from seqcheck.checking import Settled
     from seqcheck.drive import Drive
     from seqcheck.faults import Faulted
-
-__all__ = ["NoHands", "by_many", "crew_of"]
 
 Teller = Callable[[Told], None]
 _BREATH = 0.1

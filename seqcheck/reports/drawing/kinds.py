@@ -50,7 +50,7 @@ def _does(word: Word) -> Does:
     paired = {end for one in word.windings for end in one.ends}
     lone = [node.level for node in word.nodes if node.name not in paired]
     levels = {level for level in lone if level is not None}
-    if Kind.DRIVEN in kinds or len(levels) > 1:
+    if kinds & {Kind.DRIVEN, Kind.STAR} or len(levels) > 1:
         return Does.DRIVE
     if Kind.BRAKED in kinds or (len(lone) > 1 and len(levels) == 1 and None not in lone):
         return Does.BRAKE
@@ -59,7 +59,7 @@ def _does(word: Word) -> Does:
 
 def _words(word: Word) -> str:
     does = _does(word)
-    driven = [one for one in word.windings if one.kind is Kind.DRIVEN]
+    driven = [one for one in word.windings if one.kind in (Kind.DRIVEN, Kind.STAR)]
     if does is Does.DRIVE and len(driven) == 1 and driven[0].ordered:
         return f"drive {driven[0].nodes[0]} to {driven[0].nodes[1]}"
     if does is Does.DRIVE and word.vector is not None and word.vector.degrees is not None:

@@ -1,0 +1,1 @@
+"""Shell completion: what may stand in a call, read off the parser, and a script of it for each shell."""

@@ -1,6 +1,7 @@
 """The command line as it is read: commands, options, their help, and what their values must be."""
 
 import argparse
+import io
 import re
 import sys
 from collections.abc import Sequence
@@ -121,7 +122,15 @@ program itself is at fault. Where several files differ the worst counts, in the 
 
 
 def complain(text: str) -> None:
-    print(f"seqcheck: {text}", file=sys.stderr)
+    tell(f"seqcheck: {text}")
+
+
+def tell(line: str) -> None:
+    """Put a line on standard error; where that cannot be written the exit code must do."""
+    try:
+        print(line, file=sys.stderr)
+    except (OSError, ValueError):
+        sys.stderr = io.StringIO()  # or what is stuck in it would spoil the exit code at the end
 
 
 class _Help(argparse.HelpFormatter):

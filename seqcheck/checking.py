@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 from seqcheck.circuit import opening_sets, shorting_sets
 from seqcheck.confirming import Fault, confirmed, named, place_of
 from seqcheck.drive import Drive, Interlock, MarginRule, ToleratesRule
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Hazard, Nearing
 from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
@@ -21,9 +21,8 @@ from seqcheck.source import Place
 from seqcheck.verdict import Check, Finding, Outcome, Safe, Trace, Undecided, Unsafe, Verdict
 
 Observer = Callable[[int], None]
-Proof = Data | Trace | None
-"""The proof that a hazard is safe as data, the run that shows it, or None where neither is at hand."""
-Kept = tuple[Hazard, Proof]
+Kept = tuple[Hazard, Data | Trace | None]
+"""A hazard with the proof that it is safe as data, the run that shows it, or None where neither is at hand."""
 Asked = tuple[Hazard | None, Place | None]
 """What must never be possible, and the rule that asks for it (None: it is built in). Without a hazard: all that single
 faults may not bring."""
@@ -33,12 +32,12 @@ faults may not bring."""
 class Settled:
     """All that is said about one hazard: its verdict first, then those about its margins, and warnings.
 
-    `proof` is for evidence, if that is asked for.
+    `kept` is for evidence, where the prover keeps proofs.
     """
 
     verdicts: tuple[Verdict, ...]
     findings: tuple[Finding, ...]
-    proof: Proof
+    kept: tuple[Kept, ...] = ()
 
 
 def check(
@@ -53,9 +52,8 @@ def check(
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. `kept` takes up the proof of every hazard, but for rules about lengths, for
-    evidence of them. A `memory` may know answers. Raises Problems for a stage that cannot be proven, Fault if a trace
-    does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. A
+    `memory` may know answers. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
     """
     prover = Prover(drive, kept is not None, memory)
     settled = [settle(prover, one, observer) for one in asked(drive)]
@@ -76,15 +74,17 @@ def settle(prover: Prover, one: Asked, observer: Observer) -> Settled:
     """One hazard, which needs no other; raises Fault."""
     hazard, rule = one
     if hazard is None:
-        return Settled(tuple(_tolerated(prover, observer)), (), None)
+        return Settled(tuple(_tolerated(prover, observer)), ())
     verdict, proof = _with_proof(prover, hazard, observer, rule)
-    if isinstance(verdict, Unsafe):
-        return Settled((verdict,), (), verdict.trace)
-    if not isinstance(verdict, Safe) or not hazard.joins:
-        return Settled((verdict,), (), proof)
-    findings = tuple(_held_by_interlock(prover, hazard, observer))
-    least = _margin_rules(prover.drive)
-    return Settled((verdict, *(one for rule in least for one in thin(prover, rule, hazard, observer))), findings, proof)
+    verdicts: list[Verdict] = [verdict]
+    kept: list[Kept] = [(hazard, verdict.trace if isinstance(verdict, Unsafe) else proof)]
+    findings: tuple[Finding, ...] = ()
+    if isinstance(verdict, Safe) and hazard.joins:
+        findings = tuple(_held_by_interlock(prover, hazard, observer))
+        for least in margin_rules(prover.drive):
+            verdicts += (broken := list(thin(prover, least, hazard, observer)))
+            kept += _kept_margins(prover, hazard, least, broken)
+    return Settled(tuple(verdicts), findings, tuple(kept) if prover.keep else ())
 
 
 def gathered(drive: Drive, file: str, only: frozenset[Check], settled: Sequence[Settled]) -> Outcome:
@@ -98,9 +98,8 @@ def gathered(drive: Drive, file: str, only: frozenset[Check], settled: Sequence[
 
 
 def evidence_of(settled: Sequence[Settled]) -> list[Kept]:
-    """What evidence says of each hazard; it is not about lengths and faults."""
-    asked_for = [(one.verdicts[0].hazard, one.proof) for one in settled if one.verdicts]
-    return [(hazard, proof) for hazard, proof in asked_for if hazard.asks is None]
+    """What evidence says of each hazard and rule."""
+    return [kept for one in settled for kept in one.kept]
 
 
 def _tolerated(prover: Prover, observer: Observer) -> Iterator[Verdict]:
@@ -111,7 +110,8 @@ def _tolerated(prover: Prover, observer: Observer) -> Iterator[Verdict]:
     yield from tolerated(prover, shorting_sets(prover.drive.stage), rules, observer)
 
 
-def _margin_rules(drive: Drive) -> list[MarginRule]:
+def margin_rules(drive: Drive) -> list[MarginRule]:
+    """The rules of a drive about margins."""
     return [rule for rule in drive.rules if isinstance(rule, MarginRule)]
 
 
@@ -120,6 +120,16 @@ def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
         return outcome
     findings = tuple(one for one in outcome.findings if one.check in only)
     return replace(outcome, findings=findings)
+
+
+def _kept_margins(
+    prover: Prover, hazard: Hazard, rule: MarginRule, broken: list[Unsafe | Undecided]
+) -> Iterator[Kept]:
+    """What a rule about margins asks of a short, with its proofs and runs."""
+    runs = {one.after: one.trace for one in broken if isinstance(one, Unsafe)}
+    for after in range(len(hazard.literals)) if rule.least and len(hazard.literals) > 1 else ():
+        asked = replace(hazard, asks=Nearing(after, rule.least))
+        yield asked, runs.get(after) or prover.margins.get(asked)
 
 
 def _with_proof(

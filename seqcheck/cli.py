@@ -1,4 +1,4 @@
-"""Arguments, opening files and exit codes: the only room that touches the world."""
+"""The commands and their exit codes."""
 
 import argparse
 import contextlib
@@ -6,7 +6,7 @@ import gc
 import os
 import shlex
 import sys
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from seqcheck.arguments import (
@@ -22,19 +22,18 @@ from seqcheck.arguments import (
     one_or_other,
     parser,
     seconds,
+    tell,
     wrong,
 )
 from seqcheck.commands import draw
-from seqcheck.delivering import Answering, answer_text, deliver, wants_colour
-from seqcheck.drive import Drive, Library, NeverRule
+from seqcheck.delivering import Answering, answer_text, deliver, let_go, ready_streams, spare, wants_colour
+from seqcheck.drive import Drive, Library, NeverRule, ToleratesRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
 from seqcheck.limits import Limits
 from seqcheck.limits import observer as _observer
 from seqcheck.messages import Problems
-from seqcheck.opening import STDIN
-from seqcheck.opening import data_of as _data
-from seqcheck.opening import text_of as _text
+from seqcheck.opening import STDIN, data_of, files_of, reason_of, text_of, used_text
 from seqcheck.source import printable
 from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
 from seqcheck.work.lint import judged_by
@@ -48,9 +47,7 @@ if TYPE_CHECKING:
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the command line; the exit code. No input makes it raise."""
     gc.disable()  # a short-lived process: collecting would cost more than it frees
-    for stream in (sys.stdout, sys.stderr):
-        if hasattr(stream, "reconfigure"):
-            stream.reconfigure(errors="backslashreplace")
+    ready_streams()
     try:
         code = _run(list(sys.argv[1:] if arguments is None else arguments))
         sys.stdout.flush()
@@ -60,6 +57,10 @@ def main(arguments: Sequence[str] | None = None) -> int:
     except KeyboardInterrupt:
         complain("stopped by the keyboard; nothing is proven")
         return UNDECIDED
+    except OSError as refusal:  # of a stream or a folder; files have their own words
+        complain(f"error: {reason_of(refusal)}")
+        let_go()
+        return WRONG
     except Exception as fault:
         complain(f"internal error, please report it: {type(fault).__name__}: {fault}")
         return FAULT
@@ -69,6 +70,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
 def _run(arguments: list[str]) -> int:
     try:
         asked = parser().parse_args(arguments)
+        spare(getattr(asked, "out", None), _inputs(asked))
         if asked.command == "audit":
             return _audit(asked.file, asked.evidence)
         if asked.command == "serve":
@@ -103,7 +105,7 @@ def _run(arguments: list[str]) -> int:
             wrong(f"--with-fault goes with '--as screen', 'lines' or 'json'; '{form}' has no place for what it tells")
         only = frozenset(check_named(name) for name in asked.only)
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
-        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(_files(asked.paths or ["."])))
+        files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(files_of(asked.paths or ["."])))
         _one_run(answering, files)
         hands = Hands(at_most(MOST_JOBS, "--jobs", count("--jobs", asked.jobs) or 1), asked.scheduler)
         if asked.jobs and asked.scheduler is not None:
@@ -120,23 +122,18 @@ def _run(arguments: list[str]) -> int:
     return code if text is None else _worse(code, deliver(text, asked.out))
 
 
+def _inputs(asked: argparse.Namespace) -> list[str]:
+    """The files that a call names to be read."""
+    given = vars(asked)
+    return [*given.get("paths", ()), *(given[name] for name in ("file", "old", "new") if name in given)]
+
+
 def _one_run(answering: Answering, files: list[str]) -> None:
     """Refuse what a dump of one run cannot do."""
     if answering.run is not None and answering.form != "vcd":
         wrong("--run says which run '--as vcd' dumps; it needs that form")
     if answering.form == "vcd" and len(files) > 1:
         wrong(f"--as vcd dumps one run of one file, but here are {len(files)} files; name one of them")
-
-
-def _files(paths: list[str]) -> Iterator[str]:
-    for path in paths:
-        if path == STDIN or not os.path.isdir(path):
-            yield path
-            continue
-        found = sorted(name for name in os.listdir(path) if name.endswith(".dseq"))
-        if not found:
-            wrong(f"there is no *.dseq file in the folder '{printable(path)}'; name a file or another folder")
-        yield from (name if path == "." else os.path.join(path, name) for name in found)
 
 
 def _changed(paths: list[str]) -> list[str]:
@@ -163,8 +160,7 @@ class _Shelf:
         try:
             os.makedirs(folder, exist_ok=True)
         except (OSError, ValueError) as refusal:
-            why = getattr(refusal, "strerror", None) or refusal
-            wrong(f"--evidence: there can be no folder '{printable(folder)}': {why}")
+            wrong(f"--evidence: there can be no folder '{printable(folder)}': {reason_of(refusal)}")
 
     def _path(self, file: str) -> str:
         name = "standard-input" if file == STDIN else os.path.basename(file)
@@ -211,7 +207,7 @@ def _told(file: str, one: Judged, shelf: _Shelf | None) -> int:
 
 def _mistaken(problems: Problems) -> int:
     for problem in problems.found:
-        print(problem.line(), file=sys.stderr)
+        tell(problem.line())
     return WRONG
 
 
@@ -223,8 +219,8 @@ def _audit(file: str, evidence: str) -> int:
     from seqcheck.language import read
 
     try:
-        drive = read(_text(file), file, _text)
-        found = audit(drive, read_evidence(_text(evidence)))
+        drive = read(text_of(file), file, used_text)
+        found = audit(drive, read_evidence(text_of(evidence)))
     except Problems as problems:
         return _mistaken(problems)
     except NoEvidence as why:
@@ -233,23 +229,24 @@ def _audit(file: str, evidence: str) -> int:
     except NotProven as why:
         complain(f"{printable(evidence)} does not prove what it says of {printable(file)}: {why}")
         return FAULT
-    print(f"{printable(file)}: {_borne_out(found)}{_not_about(drive)}")
+    print(f"{printable(file)}: {_borne_out(found, drive)}{_not_about(drive)}")
     if found.unsafe:
         return FOUND
     return UNDECIDED if found.undecided else PROVEN
 
 
-def _borne_out(found: "Audited") -> str:
+def _borne_out(found: "Audited", drive: Drive) -> str:
+    asked = "hazards" if all(isinstance(rule, NeverRule) for rule in drive.rules) else "hazards, lengths and margins"
     late = f" ({found.however_late} of them however late the firmware is)" if found.however_late else ""
-    parts = [f"{found.safe} {'hazard' if found.safe == 1 else 'hazards'} safe{late}"] if found.safe else []
+    parts = [f"{found.safe} {'hazard' if found.safe == 1 else asked} safe{late}"] if found.safe else []
     parts += [f"{found.unsafe} unsafe, with their runs"] if found.unsafe else []
     parts += [f"{found.undecided} without evidence"] if found.undecided else []
     return f"evidence checked: {'; '.join(parts) or 'there is no hazard'}"
 
 
 def _not_about(drive: Drive) -> str:
-    """What evidence says nothing of: rules about margins and lengths, which only a new proof can bear out."""
-    lines = [str(rule.place.line) for rule in drive.rules if not isinstance(rule, NeverRule)]
+    """What evidence says nothing of: rules about single faults, which only a new proof can bear out."""
+    lines = [str(rule.place.line) for rule in drive.rules if isinstance(rule, ToleratesRule)]
     if not lines:
         return ""
     return f"; it says nothing of the {'rule in line' if len(lines) == 1 else 'rules in lines'} {', '.join(lines)}"
@@ -262,7 +259,7 @@ def _rows(file: str, colour: str, out: str | None) -> int:
     from seqcheck.reports import screen, table
 
     try:
-        found = read_back(read(_text(file), file, _text), file)
+        found = read_back(read(text_of(file), file, used_text), file)
     except Problems as problems:
         return _mistaken(problems)
     report = table.report(found)
@@ -329,7 +326,7 @@ def _compare(asked: argparse.Namespace) -> int:
 
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
-        text, code = run((asked.old, asked.new), _text, observer, form, painted)
+        text, code = run((asked.old, asked.new), (text_of, used_text), observer, form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
@@ -348,7 +345,7 @@ def _margins(file: str, limits: Limits, form: str, colour: str, out: str | None)
     one_of("--as", form, FORMS_OF_MARGINS)
     painted = wants_colour(colour, sys.stdout) and not out
     try:
-        text, code = run(read(_text(file), file, _text), file, _observer(limits), form, painted)
+        text, code = run(read(text_of(file), file, used_text), file, _observer(limits), form, painted)
     except Problems as problems:
         return _mistaken(problems)
     except Fault as fault:
@@ -368,7 +365,7 @@ def _size(asked: argparse.Namespace) -> int:
     observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
-        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), _text, observer)
+        text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), (text_of, used_text), observer)
     except Problems as problems:
         return _mistaken(problems)
     except WrongCall as why:
@@ -390,7 +387,7 @@ def _tidy(paths: list[str], only_say: bool) -> int:
             sys.stdout.reconfigure(encoding="utf-8", newline="")  # what came in goes out, whatever the terminal speaks
         return deliver(text, None)
 
-    return run(list(dict.fromkeys(_files(paths))), only_say, World(_data, _text, write, _mistaken, complain))
+    return run(list(dict.fromkeys(files_of(paths))), only_say, World(data_of, used_text, write, _mistaken, complain))
 
 
 def _start(kind: str | None) -> int:

@@ -2,16 +2,19 @@
 
 import contextlib
 import errno
+import io
 import os
 import stat
 import sys
+from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import TYPE_CHECKING, TextIO
+from typing import TYPE_CHECKING, Never, TextIO
 
 from seqcheck.arguments import complain, wrong
 from seqcheck.drive import Library
 from seqcheck.exits import PROVEN, WRONG
+from seqcheck.opening import SUFFIX, reason_of
 from seqcheck.source import printable
 from seqcheck.verdict import Answer, Outcome
 
@@ -20,6 +23,30 @@ if TYPE_CHECKING:
 
 _WHATEVER_COMES = ("annotations", "json", "sarif")
 """The forms that also say which files could not be judged."""
+
+
+class _Closed(io.TextIOBase):
+    """A standard stream that was closed before the program began: to use it is refused, where Python has None."""
+
+    def __init__(self, name: str) -> None:
+        self._name = name
+
+    def write(self, text: str, /) -> Never:
+        raise OSError(errno.EBADF, f"{self._name} is closed")
+
+    @property
+    def buffer(self) -> Never:
+        self.write("")
+
+
+def ready_streams() -> None:
+    """Make the standard streams fit for any text; what was closed refuses, standard error swallows."""
+    sys.stdin = sys.stdin or _Closed("standard input")
+    sys.stdout = sys.stdout or _Closed("standard output")
+    sys.stderr = sys.stderr or io.StringIO()
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="backslashreplace")
 
 
 def wants_colour(asked: str, stream: TextIO) -> bool:
@@ -33,6 +60,24 @@ def wants_colour(asked: str, stream: TextIO) -> bool:
     return stream.isatty() and os.environ.get("TERM") != "dumb"
 
 
+def let_go() -> None:
+    """Have done with standard output after it refused, or what is stuck in it would spoil the exit code at the end."""
+    sys.stdout = _Closed("standard output")
+
+
+def spare(out: str | None, inputs: Iterable[str]) -> None:
+    """Refuse an answer that would take the place of a file that the call reads, or of any drive-sequence file."""
+    if out is not None and (out.endswith(SUFFIX) or any(_one_file(out, one) for one in inputs)):
+        wrong(f"--out: '{printable(out)}' is a drive-sequence file; the answer must go elsewhere")
+
+
+def _one_file(one: str, other: str) -> bool:
+    try:
+        return os.path.isfile(one) and os.path.samefile(one, other)
+    except (OSError, ValueError):
+        return False
+
+
 def deliver(text: str, out: str | None) -> int:
     try:
         if out is None:
@@ -43,8 +88,10 @@ def deliver(text: str, out: str | None) -> int:
     except BrokenPipeError:
         raise
     except (OSError, ValueError) as refusal:
+        if out is None:
+            let_go()
         name = "the answer" if out is None else f"'{printable(out)}'"
-        complain(f"error: cannot write {name}: {getattr(refusal, 'strerror', None) or refusal}")
+        complain(f"error: cannot write {name}: {reason_of(refusal)}")
         return WRONG
     return PROVEN
 

@@ -62,6 +62,17 @@ class Clearing:
     limit: int
 
 
+@dataclass(frozen=True, slots=True)
+class Nearing:
+    """That all other literals can be possible less than `limit` ps after the one at place `after` could last.
+
+    A rule about margins asks so for evidence, of a short that is safe; the prover measures margins in another way.
+    """
+
+    after: int
+    limit: int
+
+
 Length = Lasting | Following | Clearing
 """What a rule of the file forbids, where it is about lengths of time."""
 
@@ -87,7 +98,7 @@ class Stuck:
     faults: tuple[Fault, ...]
 
 
-Question = Length | Stuck
+Question = Length | Nearing | Stuck
 """What a rule of the file forbids that is more than to be possible together."""
 
 

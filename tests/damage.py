@@ -3,6 +3,7 @@
 import json
 from collections.abc import Callable
 from copy import deepcopy
+from dataclasses import replace
 from random import Random
 from typing import Any
 
@@ -11,7 +12,7 @@ from proofs import at_most
 from seqcheck.drive import Drive, Update
 from seqcheck.evidence.certificate import written
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Hazard, delays
+from seqcheck.hazards import Clearing, Hazard, Nearing, delays
 from seqcheck.proving.certify import cover
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Manner, Projection
@@ -39,7 +40,8 @@ def late_firmware(looking: View) -> Firmware:
     """The firmware of a view, without its upper bounds."""
     carriers = looking.drive.carriers
     waiting = frozenset(name for name in looking.carriers if carriers[name].update is not Update.AT_ONCE)
-    return Firmware(looking.drive, waiting, looking.held if waiting else frozenset(), punctual=False)
+    early = looking.hazard.asks.trip if isinstance(looking.hazard.asks, Clearing) else None
+    return Firmware(looking.drive, waiting, looking.held if waiting else frozenset(), punctual=False, early=early)
 
 
 # Damages
@@ -57,6 +59,16 @@ def bound_tightened(rng: Random, _: Data, claim: Data) -> str:
         return ""
     rng.choice(bounds)[2] -= 1
     return "a bound tightened"
+
+
+def bound_raised(rng: Random, _: Data, claim: Data) -> str:
+    """A bound of a zone made greater by 1 ps."""
+    entry = _entry(rng, claim)
+    bounds = [bound for zone in entry["zones"] for bound in zone] if entry else []
+    if not bounds:
+        return ""
+    rng.choice(bounds)[2] += 1
+    return "a bound raised"
 
 
 def zone_dropped(rng: Random, _: Data, claim: Data) -> str:
@@ -77,14 +89,34 @@ def entry_dropped(rng: Random, _: Data, claim: Data) -> str:
     return "an entry dropped"
 
 
-def _points(claim: Data) -> list[list[Any]]:
-    points: list[list[Any]] = claim.get("potentials", {}).get("points", [])
+def state_changed(rng: Random, _: Data, claim: Data) -> str:
+    """What is said of a literal, or of what is watched, changed to another state."""
+    entry = _entry(rng, claim)
+    if not entry or not entry["state"]["literals"]:
+        return ""
+    words = entry["state"]["literals"]
+    place = rng.randrange(len(words))
+    words[place] = rng.choice([one for one in STATES if one != words[place]])
+    return "a state changed"
+
+
+STATES = (
+    *("out", "entering", "in", "leaving", "blip", "idle", "young", "long", "struck"),
+    *("arrived", "late", "never", "ended"),
+)
+
+
+def _points(data: Data, claim: Data) -> list[list[Any]]:
+    """The points of the potentials that a claim rests on."""
+    if "potentials" not in claim:
+        return []
+    points: list[list[Any]] = data["potentials"][claim["potentials"]]["points"]
     return points
 
 
-def potential_raised(rng: Random, _: Data, claim: Data) -> str:
+def potential_raised(rng: Random, data: Data, claim: Data) -> str:
     """A least time made longer by 1 ps."""
-    places = [(times, cell) for point in _points(claim) for times in point[3:] for cell in times]
+    places = [(times, cell) for point in _points(data, claim) for times in point[3:] for cell in times]
     if not places:
         return ""
     times, cell = rng.choice(places)
@@ -92,9 +124,9 @@ def potential_raised(rng: Random, _: Data, claim: Data) -> str:
     return "a potential raised"
 
 
-def potential_dropped(rng: Random, _: Data, claim: Data) -> str:
+def potential_dropped(rng: Random, data: Data, claim: Data) -> str:
     """A least time left out, which says that the command never went away so."""
-    places = [(times, cell) for point in _points(claim) for times in point[3:] for cell in times]
+    places = [(times, cell) for point in _points(data, claim) for times in point[3:] for cell in times]
     if not places:
         return ""
     times, cell = rng.choice(places)
@@ -102,18 +134,18 @@ def potential_dropped(rng: Random, _: Data, claim: Data) -> str:
     return "a potential dropped"
 
 
-def point_dropped(rng: Random, _: Data, claim: Data) -> str:
+def point_dropped(rng: Random, data: Data, claim: Data) -> str:
     """A point left out."""
-    points = _points(claim)
+    points = _points(data, claim)
     if not points:
         return ""
     del points[rng.randrange(len(points))]
     return "a point dropped"
 
 
-def command_changed(rng: Random, _: Data, claim: Data) -> str:
+def command_changed(rng: Random, data: Data, claim: Data) -> str:
     """A command of a point changed to another."""
-    points = _points(claim)
+    points = _points(data, claim)
     if not points:
         return ""
     point, place = rng.choice(points), rng.choice((1, 2))
@@ -125,7 +157,7 @@ def stand_changed(rng: Random, data: Data, claim: Data) -> str:
     """A cell of a stand changed to another."""
     if "potentials" not in claim:
         return ""
-    stand = rng.choice(data["stands"][claim["potentials"]["stands"]])
+    stand = rng.choice(data["stands"][data["potentials"][claim["potentials"]]["stands"]])
     row = stand[rng.choice(("written", "effective"))]
     place = rng.randrange(len(row))
     row[place] = rng.choice([one for one in ("off", "on", "free") if one != row[place]])
@@ -151,9 +183,25 @@ def overlap_moved(rng: Random, _: Data, claim: Data) -> str:
     return "an overlap moved"
 
 
+def later_changed(rng: Random, _: Data, claim: Data) -> str:
+    """A run that breaks a rule about margins says that a literal lasts longer, or less long, by 1 ps."""
+    if "later" not in claim.get("run", {}):
+        return ""
+    claim["run"]["later"] += rng.choice((-1, 1))
+    return "a literal longer"
+
+
+def question_changed(rng: Random, _: Data, claim: Data) -> str:
+    """The limit of a rule changed by 1 ps."""
+    if "asks" not in claim:
+        return ""
+    claim["asks"][-1] += rng.choice((-1, 1))
+    return "a question changed"
+
+
 DAMAGES: tuple[Damage, ...] = (
-    bound_tightened, zone_dropped, entry_dropped, potential_raised, potential_dropped, point_dropped, command_changed,
-    stand_changed, event_moved, overlap_moved,
+    bound_tightened, bound_raised, zone_dropped, entry_dropped, state_changed, potential_raised, potential_dropped,
+    point_dropped, command_changed, stand_changed, event_moved, overlap_moved, later_changed, question_changed,
 )  # fmt: skip
 
 
@@ -171,15 +219,22 @@ def damaged(rng: Random, data: Data, number: int) -> tuple[Data, str]:
 
 def forged_cover(drive: Drive, hazard: Hazard, zones: int) -> Data:
     """All that can be reached as if it were a cover, but for what shows the hazard; LimitReached where it is much."""
+    asks = hazard.asks
+    manner = Manner(forget=False, cut=False, measure=False)
+    if isinstance(asks, Nearing):
+        hazard, manner = replace(hazard, asks=None), replace(manner, gap=asks.after, cap=asks.limit)
     looking = looked_at(drive, hazard)
-    projection = Projection(looking, late_firmware(looking), Manner(forget=False, cut=False, measure=False))
+    projection = Projection(looking, late_firmware(looking), manner)
     for _ in nodes(projection.initial(), at_most(zones)):
         pass
     data = cover(projection, however_late=True)
     entries: list[Data] = data["entries"]  # type: ignore[assignment]
     for entry in entries:
-        if all(word in ("in", "leaving") for word in entry["state"]["literals"]):
-            entry["state"]["literals"][0] = "out"
+        words = entry["state"]["literals"]
+        if isinstance(asks, Nearing):
+            words[-1] = "never"
+        elif all(word in ("in", "leaving", "late", "struck") for word in words):
+            words[-1] = "out" if words[-1] in ("in", "leaving") else "idle"
     return data
 
 

@@ -2,11 +2,11 @@
 
     SEQCHECK_SEEDS=0-20000 pytest -m campaign tests/test_campaign_evidence.py -n auto
 
-Of what is accepted though damaged the judge must say the same: safe, and however late the firmware is where that is
-claimed; or not safe where a run is shown. A hazard that is not safe by the prover's word is also claimed safe with
-forged proofs, damaged too: none may ever be accepted. Each chunk prints its numbers (`-rP` shows them).
-`SEQCHECK_ZONES` and `SEQCHECK_STATES` say where prover and judge give up, `SEQCHECK_DAMAGES` how many places of a
-hazard's evidence are damaged, one at a time. A fixed slice runs without the marker.
+Each drive has a rule of every kind, whose evidence is damaged too. Of what is accepted though damaged the judges must
+say the same: safe, and however late the firmware is where that is claimed; or not safe where a run is shown. What is
+not safe by the prover's word is also claimed safe with forged proofs, damaged too: none may ever be accepted. Each
+chunk prints its numbers (`-rP` shows them). `SEQCHECK_ZONES` and `SEQCHECK_STATES` say where prover and judge give up,
+`SEQCHECK_DAMAGES` how many places of each claim are damaged, one at a time. A fixed slice runs without the marker.
 """
 
 import json
@@ -14,6 +14,8 @@ import os
 from collections import Counter
 from collections.abc import Iterator
 from contextlib import suppress
+from dataclasses import replace
+from functools import lru_cache
 from itertools import combinations
 from random import Random
 from time import perf_counter
@@ -21,23 +23,28 @@ from typing import Any
 
 import pytest
 from damage import Data, damaged, forged_cover, forged_potentials, whole
+from judge.delays import delays_of
 from judge.draws import draw
+from judge.least import NEVER, least_gap
+from judge.ruled import ruled
+from judge.shorts import asked
 from proofs import SAFE, UNDECIDED, Asking, at_most
 from reading import drive_of
 from test_campaign_judged import chunks, named
+from test_judged_rules import rule_broken
 
 from seqcheck.checking import Kept, check
 from seqcheck.drive import Drive
 from seqcheck.evidence.audit import NotProven, audit
 from seqcheck.evidence.certificate import NoEvidence, read
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Hazard, Nearing
 from seqcheck.proving.search import LimitReached
 from seqcheck.verdict import Trace
 
 ZONES = int(os.environ.get("SEQCHECK_ZONES", "1500"))
 STATES = int(os.environ.get("SEQCHECK_STATES", "10000"))
 DAMAGES = int(os.environ.get("SEQCHECK_DAMAGES", "4"))
-SLICE = (1, 4, 17, 23, 42, 60, 79, 102, 129, 158, 181, 202)
+SLICE = (1, 4, 13, 23, 45, 60, 74, 79, 102, 158)
 
 Attempt = tuple[Drive, Hazard, Data, Data, str]
 """A drive, a hazard of it, the claim about that, the whole evidence, and what was done to it."""
@@ -54,11 +61,12 @@ def test_damaged_evidence(seed: int) -> None:
 
 def test_the_slice_has_every_damage() -> None:
     """Dropping a seed must not drop a way of damaging evidence."""
-    done = {what for seed in SLICE for *_, what in attempts(seed)}
+    done = {what for seed in SLICE for *_, what in attempts_of(seed)}
     assert done == {
-        "a bound tightened", "a zone dropped", "an entry dropped", "a potential raised", "a potential dropped",
-        "a point dropped", "a command changed", "a stand changed", "an event moved", "an overlap moved",
-        "a forged cover", "forged potentials",
+        "a bound tightened", "a bound raised", "a zone dropped", "an entry dropped", "a state changed",
+        "a potential raised", "a potential dropped", "a point dropped", "a command changed", "a stand changed",
+        "an event moved", "an overlap moved", "a literal longer", "a question changed", "a forged cover",
+        "forged potentials",
     }  # fmt: skip
 
 
@@ -76,16 +84,23 @@ def test_damaged_evidence_of_drawn_drives(seeds: range) -> None:
 
 def disputes(seed: int, ends: Counter[str]) -> Iterator[str]:
     """What is accepted of a drawn drive's damaged evidence and is no proof; every end is counted."""
-    for drive, hazard, claim, data, what in attempts(seed):
+    for drive, hazard, claim, data, what in attempts_of(seed):
         end = ended(drive, hazard, claim, data)
         ends[f"{what}: {end}"] += 1
         if end not in (REFUSED, STILL, UNJUDGED):
             yield f"{' '.join(one.switch for one in hazard.literals)}, {what}: {end}"
 
 
+@lru_cache(maxsize=len(SLICE))
+def attempts_of(seed: int) -> list[Attempt]:
+    """All attempts on one drive."""
+    return list(attempts(seed))
+
+
 def attempts(seed: int) -> Iterator[Attempt]:
     """The evidence of a drawn drive with one claim damaged or forged, one at a time, and how."""
-    rng, drive = Random(seed), drive_of(draw(seed))
+    rng = Random(seed)
+    drive = drive_of(f"{ruled(draw(seed), seed)}  margin at least {rng.choice((1, 2, 3, 6, 15))} ps\n")
     kept: list[Kept] = []
     check(drive, "t.dseq", frozenset(), at_most(ZONES), kept)
     data = whole(drive, kept)
@@ -114,8 +129,10 @@ def forged(rng: Random, drive: Drive, hazard: Hazard) -> Iterator[tuple[Data, st
     """A cover without what shows the hazard, and potentials that are raised by some."""
     with suppress(LimitReached):
         yield forged_cover(drive, hazard, ZONES // 4), "a forged cover"
+    if not isinstance(hazard.asks, Nearing | None):
+        return
     for places in combinations(range(len(hazard.literals)), 2):
-        potentials = forged_potentials(drive, hazard, places, rng.choice((0, 1, 5, 50)))
+        potentials = forged_potentials(drive, replace(hazard, asks=None), places, rng.choice((0, 1, 5, 50)))
         if potentials is not None:
             yield potentials, "forged potentials"
 
@@ -127,9 +144,25 @@ def ended(drive: Drive, hazard: Hazard, claim: Data, data: Data) -> str:
     except (NotProven, NoEvidence):
         return REFUSED
     late = "potentials" in claim or claim.get("cover", {}).get("however late", False)
-    right = Asking(drive, hazard, True, STATES).judged(bounded=not late)
-    if right == UNDECIDED:
+    safe = judged_safe(drive, hazard, late)
+    if safe is None:
         return UNJUDGED
-    if (right == SAFE) == (claim["verdict"] == "safe"):
+    if safe is (claim["verdict"] == "safe"):
         return STILL
-    return f"accepted as {claim['verdict']}, but the judge says {right}"
+    return f"accepted as {claim['verdict']}, but the judge says {'safe' if safe else 'unsafe'}"
+
+
+def judged_safe(drive: Drive, hazard: Hazard, late: bool) -> bool | None:
+    """Whether a hazard happens in no run, by the judge of what it asks; None if that gave up."""
+    asks = hazard.asks
+    if asks is None:
+        right = Asking(drive, hazard, True, STATES).judged(bounded=not late)
+        return None if right == UNDECIDED else right == SAFE
+    if isinstance(asks, Nearing):
+        (literals, forbids) = next(one for one in asked(drive) if set(one[0]) == set(hazard.literals))
+        after = literals.index(hazard.literals[asks.after])
+        delays = delays_of(drive, literals)
+        gap = least_gap(drive, literals, delays, after, facts_forbid=forbids, most_states=STATES, bounded=not late)
+        return gap if gap is None else gap == NEVER or (isinstance(gap, int) and gap >= asks.limit)
+    broken = rule_broken(drive, hazard, 0, STATES, bounded=not late)
+    return None if broken is None else not broken

@@ -72,7 +72,8 @@ def values() -> list[tuple[list[str], str, list[str]]]:
     """Every word that is offered: what stands before it in a call that ends with it or goes on to files not there."""
     found = []
     for command in known_call().commands:
-        files = ["none.dseq" for place in command.places if place.files]
+        standing = [place for place in command.places if place.files or place.name == "NAME"]
+        files = ["none.dseq" if place.files else "name" for place in standing]
         for option in command.options:
             words = option.value.words if option.value else ()
             found += [([command.name, option.flag], word, files) for word in words]

@@ -49,7 +49,7 @@ def compared(text: str, zones: int, states: int) -> Iterator[Compared]:
         except LimitReached:
             yield Compared(kind, None)
             continue
-        right = _broken(drive, hazard, 0, states)
+        right = rule_broken(drive, hazard, 0, states)
         if right is None:
             yield Compared(kind, None)
         elif right is isinstance(proof, Proven):
@@ -85,13 +85,14 @@ def _watch(drive: Drive, hazard: Hazard, more: int, *, bounded: bool) -> tuple[o
     return world, Short(world, hazard.literals[0].on, asks.limit + more)
 
 
-def _broken(drive: Drive, hazard: Hazard, more: int, states: int, *, bounded: bool = True) -> bool | None:
+def rule_broken(drive: Drive, hazard: Hazard, more: int, states: int, *, bounded: bool = True) -> bool | None:
+    """Whether some run breaks a rule whose limit is `more` than it says; None where that takes too many states."""
     world, watch = _watch(drive, hazard, more, bounded=bounded)
     return broken(world, watch, states)  # type: ignore[arg-type]
 
 
 def _lateness(drive: Drive, hazard: Hazard, proof: Proven, states: int) -> str:
-    late = _broken(drive, hazard, 0, states, bounded=False)
+    late = rule_broken(drive, hazard, 0, states, bounded=False)
     if late is None or late is not proof.however_late:
         return ""
     return f"{kind_of(hazard)}, however late: the prover says {proof.however_late}, the judge {not late}"
@@ -113,10 +114,10 @@ def _figure(drive: Drive, hazard: Hazard, proof: Proven | Refuted, states: int) 
         kept, just = False, 25
     else:
         kept, just = True, proof.overlap - 1
-    if _broken(drive, hazard, just if longer else -just, states) is False:
+    if rule_broken(drive, hazard, just if longer else -just, states) is False:
         return f"{kind_of(hazard)}: the prover tells {proof.overlap}, the judge finds less"
     kept = kept and (longer or just + 1 < hazard.asks.limit)
-    if kept and _broken(drive, hazard, just + 1 if longer else -just - 1, states):
+    if kept and rule_broken(drive, hazard, just + 1 if longer else -just - 1, states):
         return f"{kind_of(hazard)}: the prover tells {proof.overlap}, the judge finds more"
     return ""
 

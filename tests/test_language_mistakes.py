@@ -27,6 +27,30 @@ SYNTAX: list[Case] = [
         "43:11: the character U+00A0 (NO-BREAK SPACE) has no meaning here; take it out [syntax]",
     ),
     ('motor"', "motor", "1:7: this text has no closing quote; close it with '\"' on the same line [syntax]"),
+    ('motor"', 'motor" "x"', "1:54: a text does not fit here; expected the end of the line [syntax]"),
+    (
+        "16 us",
+        ".5 us",
+        "4:14: the character '.' has no meaning here; write a number with digits on both sides of the point, "
+        "such as 0.5 [syntax]",
+    ),
+    (
+        "idle  -> open",
+        "idle  \u2192 open",
+        "39:9: the character U+2192 (RIGHTWARDS ARROW) has no meaning here; write '->' [syntax]",
+    ),
+    (
+        '"Greenhouse',
+        "\u201cGreenhouse",
+        "1:7: the character U+201C (LEFT DOUBLE QUOTATION MARK) has no meaning here; put a text in straight double quotes "
+        "[syntax]",
+    ),
+    (
+        "stage\n",
+        "\ufeffstage\n",
+        "8:1: the character U+FEFF (ZERO WIDTH NO-BREAK SPACE) has no meaning here; take it out [syntax]",
+    ),
+    ("stage\n", "\x0cstage\n", "8:1: the character U+000C has no meaning here; take it out [syntax]"),
     ("paths\n", "foo\npaths\n", "18:4: the line ends too soon; expected 'on' [syntax]"),
     ("16 us", "16 uss", "4:17: 'uss' is no unit; did you mean 'us'? [unknown-unit]"),
     ("16 us", "16 km", "4:17: 'km' is no unit; units are ps ns us ms s ticks, Hz kHz MHz GHz, % ppm [unknown-unit]"),
@@ -41,6 +65,37 @@ SYNTAX: list[Case] = [
         "'pins', 'carriers', 'modes', 'moves', 'trips', 'rules' [no-section]",
     ),
 ]
+
+CIRCLE = """
+drive "t"
+writes together
+stage
+  sources a b c
+  switch A from a to X one way
+  switch B from X to b one way
+  switch C from X to c one way
+modes A B C
+  i off off off {}
+  m on on off
+moves
+  start i
+  i -> m when e {}
+"""
+
+
+@pytest.mark.parametrize("said", ["a above b, b above c, c above a", "b above c, a above b with c above a"])
+def test_sources_that_would_stand_above_themselves(said: str) -> None:
+    """Under such facts no short would be asked for."""
+    (row,) = mistakes_of(CIRCLE.format(f"with {said}", ""))
+    assert (
+        row
+        == "t.dseq:10:"
+        + f"{row.split(':')[2]}: error: this contradicts what is said before it; take one out [contradiction]"
+    )
+    (move,) = mistakes_of(CIRCLE.format("", f"with {said}"))
+    assert "t.dseq:14:" in move
+    assert mistakes_of(CIRCLE.format("with a above b, b above c, a above c", "")) == []
+
 
 RESERVED: list[Case] = [
     (
@@ -368,6 +423,11 @@ TABLE: list[Case] = [
     ),
     (
         "off    off\n  open",
+        "off    off with current out of U, current out of V\n  open",
+        "31:59: this contradicts what is said before it; take one out [contradiction]",
+    ),
+    (
+        "off    off\n  open",
         "off    off means level U\n  open",
         "31:48: unknown stiff node 'U'; known are 'N', 'P' [unknown-name]",
     ),
@@ -690,6 +750,16 @@ def test_writes_are_needed_after_what_a_row_keeps() -> None:
     assert mistakes_of(row_drive("A B", rows, moves, "")) == []
     found = mistakes_of(row_drive("A B", rows, moves + "\nc -> a when home", ""))
     assert [one.split(" error:")[0] for one in found] == ["t.dseq:18:1:"]
+
+
+def test_writes_are_needed_where_a_break_input_cancels_held_writes() -> None:
+    """A is written off but still follows the carrier; cancelled, its write is to be made again, with that of B."""
+    rows, moves = "a off off\nb k off\nc off on", "start a\na -> b when x\nb -> a when y\nc -> a when z"
+    more = "carriers\n  k 10 kHz duty 50 % {}\ntrips\n  t from a -> c at once\n    set B on\n    set B off\n"
+    assert mistakes_of(row_drive("A B", rows, moves, "", more.format(""))) == []
+    (found,) = mistakes_of(row_drive("A B", rows, moves, "", more.format("updates at rise")))
+    assert "'t' cancels held writes, so that more may change in one step, but no line 'writes' says how" in found
+    assert found.endswith("add a line 'writes', such as 'writes together' [missing-writes]")
 
 
 def test_writes_are_needed_in_the_wait_of_a_cut_move() -> None:

@@ -239,6 +239,27 @@ def test_a_used_file_takes_ticks_of_its_own_clock_or_of_the_drives() -> None:
     assert drive.moves[0].steps[0].time == Interval(2_500_000, 2_500_000)  # type: ignore[union-attr]
 
 
+@pytest.mark.parametrize("uses", ['use "lib.dseq"\nuse "fast.dseq"', 'use "fast.dseq"\nuse "lib.dseq"'])
+def test_ticks_that_come_by_files_of_two_clocks(uses: str) -> None:
+    """The order of the lines must not choose between a pause of 2.5 us and one of 5 us."""
+    fetch = files(lib=PARTS.replace("5 us", "5 ticks"), fast='drive "f"\nclock 2 MHz\nuse "lib.dseq"\n')
+    said = "quantity 'settle' comes by two files whose clocks differ, and is given in ticks"
+    way_out = "give the file that defines it a line 'clock' of its own"
+    assert mistakes(main(f"clock 1 MHz\n{uses}"), fetch) == [f"t.dseq:4:5: error: {said}; {way_out} [two-clocks]"]
+
+
+def test_ticks_that_come_by_files_of_one_rate() -> None:
+    fetch = files(lib=PARTS.replace("5 us", "5 ticks"), same='drive "s"\nclock 1 MHz\nuse "lib.dseq"\n')
+    drive = used(main('clock 1 MHz\nuse "lib.dseq"\nuse "same.dseq"'), fetch)
+    assert drive.moves[0].steps[0].time == Interval(5_000_000, 5_000_000)  # type: ignore[union-attr]
+
+
+def test_parts_in_ticks_that_come_by_files_of_two_clocks() -> None:
+    fetch = files(lib=PARTS.replace("1 ns to 2 ns", "1 ticks"), fast='drive "f"\nclock 2 MHz\nuse "lib.dseq"\n')
+    (found,) = mistakes(main('clock 1 MHz\nuse "lib.dseq"\nuse "fast.dseq"'), fetch)
+    assert "part 'fet' comes by two files whose clocks differ" in found
+
+
 def test_carriers_of_a_used_file_keep_to_the_drives_clock() -> None:
     drive = used(main('clock 1 MHz within 25 %\nuse "parts.dseq"'), files(parts=PARTS))
     assert drive.carriers["pwm"].period == Interval(80_000_000, 133_333_334)

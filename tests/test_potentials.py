@@ -89,7 +89,7 @@ def accepts(drive: Drive, data: Data) -> bool:
 
 def points_of(data: Data) -> list[list[object]]:
     """The points of the first claim."""
-    points: list[list[object]] = data["claims"][0]["potentials"]["points"]
+    points: list[list[object]] = data["potentials"][0]["points"]
     return points
 
 
@@ -289,10 +289,10 @@ def _other(value: object) -> object:
 def test_the_pair_cannot_be_another() -> None:
     drive = drive_of(SERIES)
     data = evidence_of(drive)
-    assert data["claims"][0]["potentials"]["pair"] == [0, 1]
+    assert data["potentials"][0]["pair"] == [0, 1]
     for pair in ([1, 0], [0, 2], [1, 2], [0, 0], [0, 3], [-1, 0], [0], [0, 1, 2], "01", None, [0, True]):
         copy = deepcopy(data)
-        copy["claims"][0]["potentials"]["pair"] = pair
+        copy["potentials"][0]["pair"] = pair
         assert not accepts(drive, copy), pair
 
 
@@ -305,7 +305,7 @@ def test_the_pair_cannot_be_another() -> None:
 def test_what_is_malformed_is_refused(name: str, value: object) -> None:
     drive = drive_of(STEPS)
     data = evidence_of(drive)
-    data["claims"][0]["potentials"][name] = value
+    data["potentials"][0][name] = value
     assert not accepts(drive, data)
 
 

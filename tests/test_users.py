@@ -56,6 +56,12 @@ def test_a_file_that_was_taken_away_concerns_its_users() -> None:
     assert concerned(["alone.dseq"]) == ["alone.dseq", "drives/user.dseq", "parts/house.dseq"]
 
 
+def test_line_ends_of_any_system() -> None:
+    """A carriage return alone ends a line for whoever reads the file, so that it does here."""
+    Path("drives/user.dseq").write_bytes(USER.replace("\n", "\r").encode())
+    assert concerned(["parts/house.dseq"]) == ["parts/house.dseq", "drives/user.dseq"]
+
+
 def test_a_circle_of_use_ends() -> None:
     Path("parts/more.txt").write_text('use "house.dseq"')
     Path("a.dseq").write_text('use "b.dseq"')

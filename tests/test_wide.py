@@ -11,7 +11,7 @@ from seqcheck.drive import Drive
 from seqcheck.evidence.audit import Audited, audit
 from seqcheck.evidence.certificate import Fields, NoEvidence, read, written
 from seqcheck.evidence.cover.reading import entries
-from seqcheck.evidence.cover.scope import scope
+from seqcheck.evidence.cover.scope import followed, scope
 from seqcheck.firmware import Firmware, State
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving import keys
@@ -118,7 +118,7 @@ def test_evidence_may_name_a_held_group_for_every_switch() -> None:
         data["entries"][0]["clocks"] = [f"held {group}"]
         data["entries"][0]["zones"] = []
         if fits:
-            assert entries(Fields(data, "a cover"), scope(drive, hazard, False))
+            assert entries(Fields(data, "a cover"), scope(drive, hazard, False, followed(drive)))
         else:
             with pytest.raises(NoEvidence):
-                entries(Fields(data, "a cover"), scope(drive, hazard, False))
+                entries(Fields(data, "a cover"), scope(drive, hazard, False, followed(drive)))

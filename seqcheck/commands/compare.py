@@ -20,17 +20,22 @@ from seqcheck.reports.waived import reason
 from seqcheck.verdict import Check, Outcome, Safe, Unsafe, Verdict
 
 Observer = Callable[[int], None]
+Fetch = Callable[[str], str]
 
 
 def run(
-    files: tuple[str, str], fetch: Callable[[str], str], observer: Observer, form: str, painted: bool
+    files: tuple[str, str], texts: tuple[Fetch, Fetch], observer: Observer, form: str, painted: bool
 ) -> tuple[str, int]:
-    """The answer as a text and the exit code; `fetch` gives the text of a file. Raises Problems with those of both."""
+    """The answer as a text and the exit code; `texts` gives that of a file named in the call, and of one in a `use`.
+
+    Raises Problems with those of both files.
+    """
+    text_of, fetch = texts
     drives: list[Drive] = []
     mistakes: list[Problem] = []
     for file in files:
         try:
-            drives.append(read(fetch(file), file, fetch))
+            drives.append(read(text_of(file), file, fetch))
         except Problems as problems:
             mistakes += problems.found
     if mistakes:

@@ -34,6 +34,9 @@ _FINEST = {Unit.DURATION: Fraction(1), Unit.FREQUENCY: Fraction(1), Unit.RATIO: 
 _STEP = re.compile(r"([0-9]+(?:\.[0-9]+)?) *([A-Za-zµμ%]*)")
 
 
+Fetch = Callable[[str], str]
+
+
 class WrongCall(Exception):  # noqa: N818
     """A name or a step that means nothing for this file, in words."""
 
@@ -52,12 +55,13 @@ class Asked:
     painted: bool
 
 
-def run(asked: Asked, fetch: Callable[[str], str], observer: Observer) -> tuple[str, int]:
-    """The answer as a text and the exit code; `fetch` gives the text of a file.
+def run(asked: Asked, texts: tuple[Fetch, Fetch], observer: Observer) -> tuple[str, int]:
+    """The answer as a text and the exit code; `texts` gives that of a file named in the call, and of one in a `use`.
 
     Raises Problems for a file that is no drive without a mistake, WrongCall, and Fault if the program is at fault.
     """
-    found = size(fetch(asked.file), asked, fetch, observer)
+    text_of, fetch = texts
+    found = size(text_of(asked.file), asked, fetch, observer)
     if asked.form == "json":
         text = wording.document(found)
     elif asked.form == "lines":

@@ -5,7 +5,7 @@ import re
 from collections.abc import Iterable, Iterator
 
 SUFFIX = ".dseq"
-_USE = re.compile(rb'^[ \t]*use[ \t]*"([^"\r\n]*)"', re.MULTILINE)
+_USE = re.compile(rb'(?:^|(?<=[\r\n]))[ \t]*use[ \t]*"([^"\r\n]*)"')
 
 
 def concerned(changed: Iterable[str], top: str = ".") -> list[str]:

@@ -1,20 +1,22 @@
 """The audit of a file's evidence: every claim is checked again from the drive, by code that proved none of them."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
-from seqcheck.drive import Drive, NeverRule
+from seqcheck.drive import Drive
 from seqcheck.evidence.certificate import Claim, Cover, Evidence, NoEvidence, Potentials
 from seqcheck.evidence.cover.apart import Ground, require_apart
 from seqcheck.evidence.cover.behaviour import Behaviour
 from seqcheck.evidence.cover.check import NotCovered, check
 from seqcheck.evidence.cover.openings import first_unclaimed, opens
+from seqcheck.evidence.cover.questions import first_unclaimed as unasked
+from seqcheck.evidence.cover.questions import is_of_a_rule, margins
 from seqcheck.evidence.cover.reading import entries, points, stand
-from seqcheck.evidence.cover.scope import Scope, scope
+from seqcheck.evidence.cover.scope import Scope, followed, scope
 from seqcheck.evidence.cover.shorts import TooLarge, first_uncovered, shorts
 from seqcheck.evidence.cover.stand import Firmware, Stand
 from seqcheck.evidence.digest import digest
 from seqcheck.evidence.replay import NotPermitted, replay
-from seqcheck.hazards import Hazard
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Nearing
 from seqcheck.verdict import Trace
 
 
@@ -33,9 +35,9 @@ class Audited:
 
 
 def audit(drive: Drive, evidence: Evidence) -> Audited:
-    """Check all claims and that they are about all shorts and open windings of the stage, and all `never` rules.
+    """Check all claims, and that they are about all shorts and open windings of the stage and all rules of the file.
 
-    Margins, the mode graph and what rows mean are no part of evidence.
+    Single faults, the mode graph and what rows mean are no part of evidence.
 
     Raises NoEvidence where the evidence is of another drive or malformed, NotProven where it does not prove what it
     says.
@@ -58,12 +60,18 @@ def _require_all_hazards(drive: Drive, evidence: Evidence) -> None:
     hazards = tuple(claim.hazard for claim in evidence.claims)
     for hazard in hazards:
         names = [one.switch for one in hazard.literals]
-        if not names or len(set(names)) < len(names) or not set(names) <= set(drive.columns):
+        nameless = not names and not isinstance(hazard.asks, Following)
+        if nameless or len(set(names)) < len(names) or not set(names) <= set(drive.columns):
             raise NoEvidence("it names switches that the file has not, or none")
-    built_in = tuple(one for one in hazards if not _is_of_a_rule(drive, one))
+    near = tuple(one for one in hazards if isinstance(one.asks, Nearing))
+    built_in = tuple(one for one in hazards if one not in near and not is_of_a_rule(drive, one))
+    if any(one.asks is not None for one in built_in):
+        raise NoEvidence("it is about a rule that the file has not")
     if any(one.on == bool(hazard.currents) for hazard in built_in for one in hazard.literals):
         raise NoEvidence("it is about a hazard that is no short, no open winding and in no rule")
-    _require_all_rules(drive, hazards)
+    if (rule := unasked(drive, hazards)) is not None:
+        raise NotProven(f"Nothing is said of the rule in line {rule.place.line}.")
+    _require_all_margins(drive, evidence, set(near))
     try:
         _require_all_shorts(drive, tuple(one for one in built_in if not one.currents))
         _require_all_openings(drive, tuple(one for one in built_in if one.currents))
@@ -71,22 +79,16 @@ def _require_all_hazards(drive: Drive, evidence: Evidence) -> None:
         raise NotProven("The stage has too many ways for current to be walked one by one.") from why
 
 
-def _is_of_a_rule(drive: Drive, hazard: Hazard) -> bool:
-    """Whether a `never` rule of the drive is about just these literals, and the hazard about nothing else."""
-    if hazard.joins or hazard.needs or hazard.currents:
-        return False
-    return {(one.switch, one.on) for one in hazard.literals} in [set(rule.literals) for rule in _nevers(drive)]
-
-
-def _nevers(drive: Drive) -> list[NeverRule]:
-    return [rule for rule in drive.rules if isinstance(rule, NeverRule)]
-
-
-def _require_all_rules(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
-    claimed = [{(one.switch, one.on) for one in hazard.literals} for hazard in hazards if _is_of_a_rule(drive, hazard)]
-    for rule in _nevers(drive):
-        if set(rule.literals) not in claimed:
-            raise NotProven(f"Nothing is said of the rule in line {rule.place.line}.")
+def _require_all_margins(drive: Drive, evidence: Evidence, near: set[Hazard]) -> None:
+    """Every rule about margins must be claimed of every short that is claimed safe, and of nothing else."""
+    safe = [claim.hazard for claim in evidence.claims if isinstance(claim.proof, Cover | Potentials)]
+    shorts_of = [one for one in safe if one.asks is None and not one.currents and not is_of_a_rule(drive, one)]
+    required = {asked: rule for hazard in shorts_of for rule, asked in margins(drive, hazard)}
+    for asked, rule in required.items():
+        if asked not in near:
+            raise NotProven(f"Nothing is said of {_named(asked)}, as line {rule.place.line} asks.")
+    if not near <= required.keys():
+        raise NoEvidence("it is about a margin that no rule asks for")
 
 
 def _require_all_shorts(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
@@ -111,24 +113,26 @@ def _require_all_openings(drive: Drive, hazards: tuple[Hazard, ...]) -> None:
 
 
 class _Auditor:
-    """The claims of one file's evidence, one by one; firmware is worked out once for those that share it."""
+    """The claims of one file's evidence, one by one; what is worked out once for those that share it is kept."""
 
     def __init__(self, drive: Drive, evidence: Evidence) -> None:
         self._drive = drive
         self._evidence = evidence
+        self._used = followed(drive)
         self._lists: dict[int, list[Stand]] = {}
         self._firmwares: dict[tuple[object, ...], Firmware] = {}
         self._grounds: dict[tuple[int, Firmware], Ground] = {}
+        self._shown: dict[tuple[int, Hazard], dict[int, float]] = {}
 
     def holds_however_late(self, claim: Claim) -> bool:
         """Whether a claim holds however late the firmware is; NotProven if it does not hold at all."""
         proof = claim.proof
         try:
             if isinstance(proof, Trace):
-                replay(self._drive, proof)
+                self._require_run(claim.hazard, proof)
             elif isinstance(proof, Cover):
                 late = proof.data.flag("however late")
-                looking = scope(self._drive, claim.hazard, in_time=not late)
+                looking = scope(self._drive, claim.hazard, not late, self._used)
                 check(Behaviour(looking, self._firmware(looking)), entries(proof.data, looking))
                 return late
             elif isinstance(proof, Potentials):
@@ -137,18 +141,40 @@ class _Auditor:
         except NotPermitted as why:
             raise NotProven(f"The run that shows {_named(claim.hazard)} does not replay. {why}") from why
         except NotCovered as why:
-            raise NotProven(f"That {_named(claim.hazard)} never meet is not proven. {why}") from why
+            raise NotProven(f"It is not proven that this never happens: {_named(claim.hazard)}. {why}") from why
         return False
 
+    def _require_run(self, hazard: Hazard, trace: Trace) -> None:
+        """A run shows a hazard by its words; one that breaks a rule about margins needs no more than that."""
+        asks, later = hazard.asks, trace.prolonged
+        if isinstance(asks, Nearing) and (later is None or not 0 < later[1] <= asks.limit):
+            raise NotPermitted("It is not of a margin that is too small.")
+        replay(self._drive, trace)
+
     def _require_apart(self, hazard: Hazard, proof: Potentials) -> None:
-        looking = scope(self._drive, hazard, in_time=False)
+        """Potentials of a short prove its margins too."""
+        plain = replace(hazard, asks=None)
+        if (proof.number, plain) not in self._shown:
+            self._shown[proof.number, plain] = self._apart(plain, proof.number)
+        shown = self._shown[proof.number, plain]
+        asks = hazard.asks
+        if isinstance(asks, Nearing):
+            if shown.get(asks.after, asks.limit) < asks.limit:  # if neither is it, the others never meet at all
+                raise NotCovered(f"Only {shown[asks.after]} ps are shown.")
+        elif asks is not None:
+            raise NotCovered("No length is proven by potentials.")
+
+    def _apart(self, hazard: Hazard, number: int) -> dict[int, float]:
+        """What the potentials of that number show of a hazard: the margins after two of its literals, by place."""
+        data, stands = self._evidence.potentials[number]
+        looking = scope(self._drive, hazard, False, self._used)
         firmware = self._firmware(looking)
-        if proof.stands not in self._lists:
-            self._lists[proof.stands] = [stand(one) for one in self._evidence.stands[proof.stands]]
-        if (proof.stands, firmware) not in self._grounds:
-            self._grounds[proof.stands, firmware] = Ground(firmware, self._lists[proof.stands])
-        pair, said = points(proof.data, len(hazard.literals))
-        require_apart(looking, self._grounds[proof.stands, firmware], pair, said)
+        if stands not in self._lists:
+            self._lists[stands] = [stand(one) for one in self._evidence.stands[stands]]
+        if (stands, firmware) not in self._grounds:
+            self._grounds[stands, firmware] = Ground(firmware, self._lists[stands])
+        pair, said = points(data, len(hazard.literals))
+        return dict(zip(pair, require_apart(looking, self._grounds[stands, firmware], pair, said), strict=True))
 
     def _firmware(self, looking: Scope) -> Firmware:
         key = looking.firmware()
@@ -158,4 +184,16 @@ class _Auditor:
 
 
 def _named(hazard: Hazard) -> str:
-    return " and ".join(map(str, hazard.literals))
+    """What must not happen, in words."""
+    together = " and ".join(map(str, hazard.literals))
+    match hazard.asks:
+        case Lasting(longer=longer):
+            (literal,) = hazard.literals
+            return f"{literal.switch} {'on' if literal.on else 'off'} for too {'long' if longer else 'short'}"
+        case Following(left=left, entered=entered):
+            return f"{entered} too soon after {left}"
+        case Clearing(trip=trip):
+            return f"{together} too late after {trip}"
+        case Nearing(after=after):
+            return f"{together} too soon after {hazard.literals[after]}"
+    return f"{together} together"

@@ -5,14 +5,15 @@ The text is the same for the same verdicts. Reading trusts nothing; what is not 
 
 import json
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import TypeVar
 
 from seqcheck.drive import Above, Cell, CurrentInto, CurrentOut, Drive, Fixed, Follow, Known, cell_text, fact_words
 from seqcheck.evidence.digest import digest
-from seqcheck.hazards import Current, Hazard, Literal
+from seqcheck.hazards import Clearing, Current, Following, Hazard, Lasting, Literal, Nearing, Question
 from seqcheck.verdict import Act, Cycles, Event, Phase, Trace
 
-FORMAT = "seqcheck evidence 2"
+FORMAT = "seqcheck evidence 3"
 MOST_TIME = 1 << 61
 """No bound of an honest certificate is above this, in ps."""
 
@@ -30,16 +31,18 @@ class Cover:
 
 @dataclass(frozen=True, slots=True)
 class Potentials:
-    """That a hazard is safe, by least times between the commands of two of its switches (as data); `stands` numbers the
-    lists of Evidence."""
+    """That a hazard is safe, by least times between the commands of two of its switches: the number of the potentials
+    in Evidence."""
 
-    data: "Fields"
-    stands: int
+    number: int
 
 
 @dataclass(frozen=True, slots=True)
 class Claim:
-    """What is said of one hazard: a proof where it is safe, a trace where not, None where undecided."""
+    """What is said of one hazard: a proof where it is safe, a trace where not, None where undecided.
+
+    A rule about margins is a hazard for each short and each of its literals, which asks (see Nearing).
+    """
 
     hazard: Hazard
     proof: Cover | Potentials | Trace | None
@@ -47,10 +50,12 @@ class Claim:
 
 @dataclass(frozen=True, slots=True)
 class Evidence:
-    """The claims about the drive whose meaning has this digest, and the lists of stands that potentials speak of."""
+    """The claims about the drive whose meaning has this digest, the potentials that they rest on, each with the number
+    of the list of stands that it speaks of, and these lists."""
 
     digest: str
     stands: "tuple[tuple[Fields, ...], ...]"
+    potentials: "tuple[tuple[Fields, int], ...]"
     claims: tuple[Claim, ...]
 
 
@@ -90,6 +95,13 @@ class Fields:
         if type(value) is int and -MOST_TIME <= value <= MOST_TIME:  # no bool
             return value
         raise self.wrong(name)
+
+    def place(self, name: str, count: int) -> int:
+        """The number of one of so many things."""
+        value = self.number(name)
+        if not 0 <= value < count:
+            raise self.wrong(name)
+        return value
 
     def objects(self, name: str) -> "list[Fields]":
         """A list of objects."""
@@ -135,13 +147,19 @@ class Fields:
 
 def written(drive: Drive, claims: Iterable[tuple[Hazard, dict[str, object] | Trace | None]]) -> str:
     """The text of the evidence: a proof as the prover hands it out, a trace, or None for an undecided hazard."""
-    lists: list[object] = []
-    claimed = [_claim(hazard, proof, lists) for hazard, proof in claims]
-    data = {"format": FORMAT, "digest": digest(drive), "stands": lists, "claims": claimed}
+    stands: list[object] = []
+    potentials: list[dict[str, object]] = []
+    claimed = [_claim(hazard, proof, potentials) for hazard, proof in claims]
+    numbered = [{**one, "stands": _number(one["stands"], stands)} for one in potentials]
+    data = {
+        "format": FORMAT, "digest": digest(drive), "stands": stands, "potentials": numbered, "claims": claimed,
+    }  # fmt: skip
     return json.dumps(data, ensure_ascii=False, separators=(",", ":")) + "\n"
 
 
-def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None, lists: list[object]) -> dict[str, object]:
+def _claim(
+    hazard: Hazard, proof: dict[str, object] | Trace | None, potentials: list[dict[str, object]]
+) -> dict[str, object]:
     said: dict[str, object] = {
         "literals": [[one.switch, one.on] for one in hazard.literals],
         "joins": list(hazard.joins),
@@ -149,22 +167,40 @@ def _claim(hazard: Hazard, proof: dict[str, object] | Trace | None, lists: list[
     }
     if hazard.currents:
         said["opens"] = [[one.out_of, one.into] for one in hazard.currents]
+    if hazard.asks is not None:
+        said["asks"] = _asks(hazard.asks)
     if proof is None:
         return {**said, "verdict": "undecided"}
     if isinstance(proof, Trace):
         return {**said, "verdict": "unsafe", "run": run_data(proof)}
     if "stands" not in proof:
         return {**said, "verdict": "safe", "cover": proof}
-    return {**said, "verdict": "safe", "potentials": {**proof, "stands": _number(proof["stands"], lists)}}
+    return {**said, "verdict": "safe", "potentials": _number(proof, potentials)}
 
 
-def _number(stands: object, lists: list[object]) -> int:
-    """The number of a list of stands, which is written once for all claims that share it, whoever proved them."""
-    known = next((number for number, one in enumerate(lists) if one is stands or one == stands), None)
+def _asks(asks: Question) -> list[object]:
+    match asks:
+        case Lasting():
+            return ["longer" if asks.longer else "shorter", asks.limit]
+        case Following():
+            return ["follows", asks.left, asks.entered, asks.limit]
+        case Clearing():
+            return ["clears", asks.trip, asks.limit]
+        case Nearing():
+            return ["nears", asks.after, asks.limit]
+    raise ValueError(f"evidence is not about {asks}")
+
+
+T = TypeVar("T")
+
+
+def _number(one: T, numbered: list[T]) -> int:
+    """The number of what is written once for all that share it, whoever proved them."""
+    known = next((number for number, other in enumerate(numbered) if other is one or other == one), None)
     if known is not None:
         return known
-    lists.append(stands)
-    return len(lists) - 1
+    numbered.append(one)
+    return len(numbered) - 1
 
 
 def run_data(trace: Trace) -> dict[str, object]:
@@ -176,6 +212,7 @@ def run_data(trace: Trace) -> dict[str, object]:
         "events": [_event(one) for one in trace.events],
         "end": trace.end,
         "overlap": [trace.overlap_from, trace.overlap_to],
+        **({} if trace.prolonged is None else {"later": trace.prolonged[1]}),
     }
 
 
@@ -210,15 +247,18 @@ def read(text: str) -> Evidence:
         tuple(whole.inside(stand, f"stands {number}") for stand in whole.listed(one, "stands"))
         for number, one in enumerate(whole.rows("stands"))
     )
-    return Evidence(whole.text("digest"), lists, tuple(_claimed(one, len(lists)) for one in whole.objects("claims")))
+    potentials = tuple((one, one.place("stands", len(lists))) for one in whole.objects("potentials"))
+    claims = tuple(_claimed(one, len(potentials)) for one in whole.objects("claims"))
+    return Evidence(whole.text("digest"), lists, potentials, claims)
 
 
-def _claimed(claim: Fields, lists: int) -> Claim:
+def _claimed(claim: Fields, potentials: int) -> Claim:
     hazard = Hazard(
         tuple(_literal(claim, one) for one in claim.rows("literals")),
         claim.texts("joins"),
         tuple(_needs(claim, one) for one in claim.rows("needs")),
         tuple(_current(claim, one) for one in claim.rows("opens")) if "opens" in claim.data else (),
+        _asked(claim) if "asks" in claim.data else None,
     )
     verdict = claim.text("verdict")
     if verdict == "undecided":
@@ -229,11 +269,20 @@ def _claimed(claim: Fields, lists: int) -> Claim:
         raise claim.wrong("verdict")
     if "cover" in claim.data:
         return Claim(hazard, Cover(claim.field("cover")))
-    potentials = claim.field("potentials")
-    stands = potentials.number("stands")
-    if not 0 <= stands < lists:
-        raise potentials.wrong("stands")
-    return Claim(hazard, Potentials(potentials, stands))
+    return Claim(hazard, Potentials(claim.place("potentials", potentials)))
+
+
+def _asked(claim: Fields) -> Question:
+    match claim.rows("asks"):
+        case ["longer" | "shorter" as word, int(limit)]:
+            return Lasting(word == "longer", claim.whole(limit, "asks"))
+        case ["follows", str(left), str(entered), int(limit)]:
+            return Following(left, entered, claim.whole(limit, "asks"))
+        case ["clears", str(trip), int(limit)]:
+            return Clearing(trip, claim.whole(limit, "asks"))
+        case ["nears", int(after), int(limit)]:
+            return Nearing(claim.whole(after, "asks"), claim.whole(limit, "asks"))
+    raise claim.wrong("asks")
 
 
 def _literal(claim: Fields, value: object) -> Literal:
@@ -272,6 +321,12 @@ def run_of(hazard: Hazard, run: Fields) -> Trace:
         Phase(one.text("carrier"), one.flag("high"), one.number("age"), one.flag("output"))
         for one in run.objects("phases")
     )
+    later = None
+    if isinstance(hazard.asks, Nearing):
+        if not 0 <= hazard.asks.after < len(hazard.literals):
+            raise run.wrong("later")
+        later = (hazard.literals[hazard.asks.after], run.number("later"))
+        hazard = replace(hazard, asks=None)
     return Trace(
         hazard,
         phases,
@@ -279,6 +334,7 @@ def run_of(hazard: Hazard, run: Fields) -> Trace:
         run.number("end"),
         run.whole(start, "overlap"),
         None if end is None else run.whole(end, "overlap"),
+        prolonged=later,
     )
 
 

@@ -1,12 +1,13 @@
 """A digest of what a drive means: places, comments and the title may change, nothing else."""
 
 import hashlib
-import json
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import fields, is_dataclass
 from enum import Enum
 from fractions import Fraction
 from functools import cache
+from json.encoder import encode_basestring_ascii as quoted
+from operator import attrgetter
 from typing import Any
 
 from seqcheck.drive import Drive
@@ -17,30 +18,44 @@ _UNSAID = {"place", "title"}
 
 def digest(drive: Drive) -> str:
     """The SHA-256 of a canonical rendering of the drive, as hexadecimal digits."""
-    return hashlib.sha256(json.dumps(_rendered(drive), ensure_ascii=True).encode()).hexdigest()
+    return hashlib.sha256(_rendered(drive).encode("ascii")).hexdigest()
 
 
-def _rendered(value: object) -> object:
-    if value is None or isinstance(value, (str, int)):
-        return value
-    if isinstance(value, Enum):
-        return [type(value).__name__, value.name]
-    if isinstance(value, tuple):
-        return [_rendered(part) for part in value]
+def _rendered(value: object) -> str:
     kind: Any = type(value)
-    names = _said(kind)
-    if names is not None:
-        return [kind.__name__, *([name, _rendered(getattr(value, name))] for name in names)]
-    if isinstance(value, frozenset):
-        return sorted(map(str, value))
-    if isinstance(value, Fraction):
-        return str(value)
-    assert isinstance(value, Mapping), type(value)
-    return [[_rendered(key), _rendered(part)] for key, part in value.items()]
+    return _way(kind)(value)
 
 
 @cache
-def _said(kind: Any) -> tuple[str, ...] | None:
-    """The fields of a dataclass that are part of its meaning; None for any other type."""
+def _way(kind: Any) -> Callable[[Any], str]:
+    """How values of a type are rendered: as text that is the same for equal values only."""
     assert kind is not Place
-    return tuple(one.name for one in fields(kind) if one.name not in _UNSAID) if is_dataclass(kind) else None
+    if kind is str:
+        return quoted
+    if kind in (int, bool, type(None)):
+        return str
+    if issubclass(kind, Enum):
+        return lambda value: f"{kind.__name__}.{value.name}"
+    if issubclass(kind, tuple):
+        return lambda value: f"[{','.join(map(_rendered, value))}]"
+    if is_dataclass(kind):
+        return _fields(kind)
+    if issubclass(kind, frozenset):
+        return lambda value: f"<{','.join(sorted(map(_rendered, value)))}>"
+    if kind is Fraction:
+        return lambda value: f"{value.numerator}/{value.denominator}"
+    assert issubclass(kind, Mapping), kind
+    return lambda value: f"{{{','.join(f'{_rendered(key)}:{_rendered(part)}' for key, part in value.items())}}}"
+
+
+def _fields(kind: Any) -> Callable[[Any], str]:
+    """The fields of a dataclass that are part of its meaning, with its name and theirs."""
+    names = [one.name for one in fields(kind) if one.name not in _UNSAID]
+    head = f"{kind.__name__}{' '.join(names)}"
+    if not names:
+        return lambda _: f"({head})"
+    if len(names) == 1:
+        (name,) = names
+        return lambda value: f"({head}:{_rendered(getattr(value, name))})"
+    parts = attrgetter(*names)
+    return lambda value: f"({head}:{','.join(map(_rendered, parts(value)))})"

@@ -100,6 +100,8 @@ def delays(drive: Drive, hazard: Hazard) -> dict[Literal, Delays]:
     found = {literal: _alone(drive.paths.get(literal.switch, ()), literal.on) for literal in hazard.literals}
     if len(found) != 2 or not all(literal.on for literal in found):
         return found
+    if all(part.difference is None for literal in found for part in drive.paths.get(literal.switch, ())):
+        return found  # nothing is raised then
     one, other = found
     return {one: _raised(drive, found, one, other), other: _raised(drive, found, other, one)}
 

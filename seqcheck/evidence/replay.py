@@ -27,7 +27,7 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
     is asked for; where the hazard asks about a length, that which is claimed to be too long or too short.
     """
     walk = _walked(drive, trace)
-    if isinstance(trace.hazard.asks, Lasting | Following) and long_enough(trace.hazard) is None:
+    if _too_short(trace.hazard):
         require_too_short(drive, trace, dict(walk.commands))
         return _replayed(drive, trace, walk)
     found = _asked_delays(drive, trace.hazard)
@@ -43,6 +43,11 @@ def replay(drive: Drive, trace: Trace) -> Replayed:
     if claimed.end is None:
         _require_endless(drive, walk, found)
     return _replayed(drive, trace, walk)
+
+
+def _too_short(hazard: Hazard) -> bool:
+    """Whether it is asked for something that lasts too short a time."""
+    return isinstance(hazard.asks, Lasting | Following) and long_enough(hazard) is None
 
 
 def _replayed(drive: Drive, trace: Trace, walk: Walk) -> Replayed:
@@ -63,9 +68,11 @@ def from_its_beginning(drive: Drive, trace: Trace) -> Trace:
     """The trace with its overlap claimed from its true beginning.
 
     For a run to a mode that holds the hazard, or round in a circle: it was looked for by where it leads, so that its
-    claim may begin too late.
+    claim may begin too late. What is too short is claimed from its beginning as it is.
     Raises NotPermitted as replay does.
     """
+    if _too_short(trace.hazard):
+        return trace
     walk = _walked(drive, trace)
     times = _asked_delays(drive, trace.hazard)
     spans = {literal: _possible(walk, literal, times[literal], trace) for literal in times}

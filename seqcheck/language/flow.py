@@ -10,12 +10,14 @@ from seqcheck.drive import (
     Cell,
     Drive,
     Fixed,
+    Follow,
     How,
     Mode,
     Move,
     SetStep,
     Step,
     Trip,
+    Update,
     WaitStep,
 )
 from seqcheck.language.notes import Notes
@@ -109,16 +111,32 @@ class _Search:
 
 
 def _check_writes(drive: Drive, notes: Notes) -> None:
+    if len(drive.columns) < 2:
+        return
     search = _Search(drive)
-    found = search.found() if len(drive.columns) > 1 else None
+    found = search.found()
     way_out = "add a line 'writes', such as 'writes together'"
-    if found:
+    cancels = next((trip for trip in drive.trips if trip.at_once and trip.target != RESET), None)
+    if not found and cancels and _holds(drive):
+        text = (
+            f"'{cancels.name}' cancels held writes, so that more may change in one step, but no line 'writes' says how"
+        )
+        notes.add(cancels.place, "missing-writes", text, way_out)
+    elif found:
         run, changed = found
         text = f"'{changed[0]}' and '{changed[1]}' change in one step here, but no line 'writes' says how"
         notes.add(run.place, "missing-writes", text, way_out)
     elif search.queue:
         text = "whether a step changes two switches is not settled, since the rows keep too many"
         notes.add(drive.place, "missing-writes", text, way_out)
+
+
+def _holds(drive: Drive) -> bool:
+    """Whether a write may be held: what it was told is then not what a break input finds."""
+    runs: list[Move | Trip] = [*drive.moves, *drive.trips]
+    cells = (cell for run in runs for item in _items(drive, run) if item for cell in item.values())
+    named = {cell.carrier for cell in cells if isinstance(cell, Follow)}
+    return any(drive.carriers[name].update is not Update.AT_ONCE for name in named)
 
 
 # Can a circle of moves take no time

@@ -5,7 +5,7 @@ from difflib import get_close_matches
 from functools import lru_cache
 
 from seqcheck.language.grammar import STATEMENT, parsed
-from seqcheck.language.mistakes import reserved
+from seqcheck.language.mistakes import reserved, stray
 from seqcheck.language.notes import Notes
 from seqcheck.language.syntax import Line, MoveLine, Node, StartLine, TripLine
 from seqcheck.language.words import LINE_FORMS, SECTIONS, STARTS
@@ -210,11 +210,16 @@ class _Reader:
         return True
 
     def _outside(self, word: str, place: Place, text: str) -> None:
-        """A line before any section that begins with no word of its own."""
+        """A line before any section that begins with no word of its own, perhaps for a character that nobody sees."""
         self.notes.broken.update(SECTIONS)
         if self._misspelt(word, place, text) or self.lost:
             return
         self.lost = True
+        first = text[place.column - 1]
+        if not (first.isascii() and first.isprintable()):
+            here = Place(place.file, place.line, place.column, place.line, place.column + 1)
+            self.notes.found.append(stray(text, here))
+            return
         way_out = "put it under the section that it belongs to: " + ", ".join(f"'{one}'" for one in SECTIONS)
         self.notes.add(place, "no-section", "this line belongs to no section", way_out)
 

@@ -17,6 +17,12 @@ _NAMES = {"NAME": "a name", "NUMBER": "a number", "STRING": "a text in quotes", 
 _NUMBER_BEFORE = re.compile(r"[0-9][ \t]*$")
 _WORD = re.compile(r"[^\W\d]\w*|\w+|.")
 _MOST = 10
+_INSTEAD = (
+    (".", "write a number with digits on both sides of the point, such as 0.5"),
+    ("\u2192\u21d2\u27f6\u279c", "write '->'"),
+    ("'\u2018\u2019\u201c\u201d\u201e\u00ab\u00bb", "put a text in straight double quotes"),
+)
+"""Characters that people write for others, and what to write."""
 
 
 def explained(error: UnexpectedInput, text: str, file: str, line: int, terminals: Mapping[str, str]) -> Problem:
@@ -30,9 +36,15 @@ def explained(error: UnexpectedInput, text: str, file: str, line: int, terminals
     word = found.group() if found else ""
     place = Place(file, line, column, line, column + len(word))
     if isinstance(error, UnexpectedCharacters) and word != '"':
-        place = Place(file, line, column, line, column + 1)
-        return Problem(place, "syntax", f"{_shown(word[:1])} has no meaning here", "take it out")
+        return stray(text, Place(file, line, column, line, column + 1))
     return _misfit(error, text, word, place, terminals)
+
+
+def stray(text: str, place: Place) -> Problem:
+    """The mistake of a character that no word of the language has; `text` is its line."""
+    character = text[place.column - 1 : place.column]
+    way_out = next((way for characters, way in _INSTEAD if character and character in characters), "take it out")
+    return Problem(place, "syntax", f"{_shown(character)} has no meaning here", way_out)
 
 
 def reserved(place: Place, word: str) -> Problem:
@@ -43,6 +55,8 @@ def reserved(place: Place, word: str) -> Problem:
 
 def _misfit(error: UnexpectedInput, text: str, word: str, place: Place, terminals: Mapping[str, str]) -> Problem:
     accepted = _accepted(error)
+    if word == '"' and '"' in text[place.column :]:
+        return Problem(place, "syntax", "a text does not fit here", _wanted(error, terminals))
     if word == '"':
         return Problem(place, "syntax", "this text has no closing quote", "close it with '\"' on the same line")
     if "NAME" in accepted and word in RESERVED:

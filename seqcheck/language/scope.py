@@ -85,10 +85,15 @@ class Scope:
         clock = self.clock()
         return max(1, floor(_SECOND / clock.frequency / (1 + clock.tolerance))) if clock else 1
 
-    def _ticks(self, term: Term) -> Amount | None:
+    def ticking(self) -> "Scope | None":
+        """The scope whose clock gives the ticks of this one: the nearest that has a line for it; None without any."""
         scope: Scope | None = self
         while scope is not None and "clock" not in scope.book.heads:
             scope = scope.outer
+        return scope
+
+    def _ticks(self, term: Term) -> Amount | None:
+        scope = self.ticking()
         clock = scope.clock() if scope else None
         if clock is not None:
             return Amount(Fraction(term.number) * _SECOND / clock.frequency, Unit.DURATION)

@@ -1,5 +1,8 @@
 """Checking the switching table: columns, rows, cells, what is known and what a row is for."""
 
+from collections import Counter
+from collections.abc import Iterable
+
 from seqcheck.drive import (
     RESET,
     Above,
@@ -12,6 +15,7 @@ from seqcheck.drive import (
     Means,
     Mode,
     Purpose,
+    Winding,
 )
 from seqcheck.language.lines import Book
 from seqcheck.language.notes import Notes
@@ -111,7 +115,7 @@ class Table:
             fact = self._above(said) if said.form == "above" else self._current(said)
             if fact is None:
                 continue
-            if _opposite(fact) in known:
+            if _circle(fact, known) or not _rivals(fact, self.stage.windings).isdisjoint(known):
                 self.notes.add(said.place, "contradiction", "this contradicts what is said before it", "take one out")
             elif fact not in known:
                 known.append(fact)
@@ -162,10 +166,30 @@ class Table:
         return word.text == RESET or self.notes.known(word, self.named, "mode", "modes")
 
 
-def _opposite(fact: Known) -> Known:
+def _circle(fact: Known, known: list[Known]) -> bool:
+    """Whether a source would stand above itself by this fact and others."""
+    if not isinstance(fact, Above):
+        return False
+    below = [fact.lower]
+    for node in below:
+        below += (one.lower for one in known if isinstance(one, Above) and one.upper == node and one.lower not in below)
+    return fact.upper in below
+
+
+def _rivals(fact: Known, windings: Iterable[Winding]) -> set[Known]:
+    """What cannot hold together with a fact about a current.
+
+    That is the other direction, and, where a winding alone ends at both its nodes, the like fact of its other node.
+    """
     if isinstance(fact, Above):
-        return Above(fact.lower, fact.upper)
-    return CurrentInto(fact.node) if isinstance(fact, CurrentOut) else CurrentOut(fact.node)
+        return set()
+    like, other = (CurrentOut, CurrentInto) if isinstance(fact, CurrentOut) else (CurrentInto, CurrentOut)
+    found: set[Known] = {other(fact.node)}
+    count = Counter(end for one in windings for end in one.ends)
+    for winding in windings:
+        if fact.node in winding.ends and all(count[end] == 1 for end in winding.ends):
+            found |= {like(end) for end in winding.ends if end != fact.node}
+    return found
 
 
 def _cells(count: int) -> str:

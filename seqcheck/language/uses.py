@@ -4,7 +4,7 @@ import os.path
 from collections.abc import Callable, Mapping
 
 from seqcheck.drive import Carrier, Part
-from seqcheck.language.lines import book_of
+from seqcheck.language.lines import Book, book_of
 from seqcheck.language.notes import Notes
 from seqcheck.language.scope import Let, Scope
 from seqcheck.language.signals import read_carrier, read_part
@@ -29,13 +29,14 @@ class Names:
 
 
 class Uses:
-    """Reads used files, each once."""
+    """Reads used files, each once; what one says in ticks of another's clock, once for each such clock."""
 
     def __init__(self, fetch: Callable[[str], str], found: list[Problem]) -> None:
         self.fetch = fetch
         self.found = found
         self.chain: list[str] = []
-        self.done: dict[str, Names | None] = {}
+        self.books: dict[str, tuple[Book, Notes] | None] = {}
+        self.done: dict[tuple[str, Scope | None], Names] = {}
 
     def names(self, scope: Scope) -> Names:
         """All names of a file whose lines are read."""
@@ -54,18 +55,16 @@ class Uses:
         return names
 
     def _bring(self, names: Names, line: Line, said: Word) -> None:
-        path = os.path.normpath(os.path.join(os.path.dirname(names.scope.book.file), said.text))
-        if path not in self.done:
-            self.done[path] = self._read(names.scope, path, said)
-        other = self.done[path]
+        other = self._other(names.scope, said)
         if other is None:
             names.scope.notes.broken |= _BROUGHT
             return
         names.scope.notes.broken |= other.scope.notes.broken & _BROUGHT
         _merge(names, other, line, said)
 
-    def _read(self, scope: Scope, path: str, said: Word) -> Names | None:
+    def _other(self, scope: Scope, said: Word) -> Names | None:
         """The names of another file; None where it cannot be read."""
+        path = os.path.normpath(os.path.join(os.path.dirname(scope.book.file), said.text))
         if path in self.chain:
             circle = " -> ".join([*self.chain[self.chain.index(path) :], path])
             scope.notes.add(said.place, "circle-of-use", f"a circle of 'use': {circle}", "take one of them out")
@@ -74,17 +73,29 @@ class Uses:
             text = f"more than {DEEPEST} files use each other in a row"
             scope.notes.add(said.place, "circle-of-use", text, "look for a circle that goes by changing names")
             return None
+        if path not in self.books:
+            self.books[path] = self._opened(scope, path, said)
+        opened = self.books[path]
+        if opened is None:
+            return None
+        book, notes = opened
+        key = path, None if "clock" in book.heads else scope.ticking()
+        if key not in self.done:
+            self.done[key] = self.names(Scope(book, notes, scope))
+        return self.done[key]
+
+    def _opened(self, scope: Scope, path: str, said: Word) -> tuple[Book, Notes] | None:
         fetched = self._fetched(scope, path, said)
         if fetched is None:
             return None
         notes = Notes(self.found)
-        return self.names(Scope(book_of(fetched, path, notes), notes, scope))
+        return book_of(fetched, path, notes), notes
 
     def _fetched(self, scope: Scope, path: str, said: Word) -> str | None:
         try:
             return self.fetch(path)
-        except OSError as error:
-            why = error.strerror or "it cannot be opened"
+        except (OSError, ValueError) as error:  # ValueError: a name that the system cannot spell
+            why = getattr(error, "strerror", None) or "it cannot be opened"
             scope.notes.add(said.place, "unreadable-file", f"cannot read '{path}': {why}", "correct the path")
         except Problems as problems:
             self.found.extend(problems.found)
@@ -116,14 +127,19 @@ def _own_carrier(names: Names, line: Line) -> None:
 def _merge(names: Names, other: Names, line: Line, said: Word) -> None:
     """Take over what another file names; the same thing may come by several ways."""
     scope = names.scope
-    places = {name: let.place for name, let in scope.lets.items()}
+    lets = {name: let.place for name, let in scope.lets.items()}
     for name, let in other.scope.lets.items():
-        if _new(scope.notes, name, let.place, places, "quantity", said):
+        if _new(scope.notes, name, let.place, lets, "quantity", said):
             scope.lets[name] = Let(let.place, line.place.line, let.amount)
+        elif lets[name] == let.place:
+            _same(scope.notes, scope.lets[name].amount, let.amount, f"quantity '{name}'", said)
     for what, seen in other.seen.items():
+        own, theirs = (names.parts, other.parts) if what == "part" else (names.carriers, other.carriers)
         for name, place in seen.items():
             if _new(scope.notes, name, place, names.seen[what], what, said):
                 names.seen[what][name] = place
+            elif names.seen[what][name] == place:
+                _same(scope.notes, own.get(name), theirs.get(name), f"{what} '{name}'", said)
     names.parts = {**other.parts, **names.parts}
     names.carriers = {**other.carriers, **names.carriers}
 
@@ -132,3 +148,10 @@ def _new(notes: Notes, name: str, place: Place, taken: Mapping[str, Place], what
     if name in taken and taken[name] != place:
         notes.twice(said, taken[name], f"{what} '{name}'")
     return name not in taken
+
+
+def _same(notes: Notes, one: object, other: object, thing: str, said: Word) -> None:
+    """Note a thing that is another by each of two ways; one that could not be read (None) was noted before."""
+    if one is not None and other is not None and one != other:
+        text = f"{thing} comes by two files whose clocks differ, and is given in ticks"
+        notes.add(said.place, "two-clocks", text, "give the file that defines it a line 'clock' of its own")

@@ -10,10 +10,13 @@ from seqcheck.proving.keys import (
     CODES,
     DRIVEN,
     FALL,
+    GAP,
     HOLD,
+    LATELY,
     LOCK,
     PIN,
     RISE,
+    SINCE,
     SPAN,
     Key,
     X,
@@ -28,7 +31,11 @@ Data = dict[str, object]
 
 _CARRIERS = ("high dead", "high", "low dead", "low", "anywhere")
 _LOCKS = ("blocked", "waiting", "clear")
-_LITERALS = ("out", "entering", "in", "leaving", "blip")
+_LITERALS = (
+    *("out", "entering", "in", "leaving", "blip"),
+    *("idle", "young", "long", "struck", "arrived", "late"),
+)
+_NAMES = {X: "x", Y: "y", GAP: "gap", SINCE: "since"}
 COMMANDS = {CODES[one]: one.value for one in Command}
 _CLOCKS = {CARRIER: "carrier", HOLD: "held", PIN: "pin", LOCK: "guard", RISE: "in", FALL: "out"}
 
@@ -62,8 +69,8 @@ def _entry(projection: Projection, location: Location) -> Data:
 
 
 def _clock(name: int) -> str:
-    if name in (X, Y):
-        return "x" if name == X else "y"
+    if name in _NAMES:
+        return _NAMES[name]
     return f"{_CLOCKS[name - name % SPAN]} {name % SPAN}"
 
 
@@ -83,8 +90,15 @@ def _state(projection: Projection, key: Key) -> Data:
         "carriers": [_CARRIERS[one] for one in key.carriers],
         "pins": [_pin(one) for one in key.pins],
         "guards": [_LOCKS[one] for one in key.locks],
-        "literals": [_LITERALS[one] for one in key.literals],
+        "literals": [*(_LITERALS[one] for one in key.literals), *_ended(projection, key)],
     }
+
+
+def _ended(projection: Projection, key: Key) -> list[str]:
+    """Whether the literal after which a gap is looked for was possible less than that ago."""
+    if projection.manner.gap is None:
+        return []
+    return ["ended" if key.ended == LATELY else "never"]
 
 
 def stand(firmware: Firmware, state: State) -> Data:

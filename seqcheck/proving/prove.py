@@ -11,7 +11,7 @@ from typing import TypeVar, cast
 from seqcheck.drive import Cell, Command, Drive, Fixed, Follow, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
-from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length, delays
+from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length, Nearing, Stuck, delays
 from seqcheck.proving.certify import Data, cover
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
@@ -86,6 +86,9 @@ class Prover:
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool, str | None], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
         self._stands: dict[Map, list[Data]] = {}
+        self._screenings: dict[Hazard, Data] = {}
+        self.margins: dict[Hazard, Data] = {}
+        """The kept proofs of margins, by the hazard that asks for one (see Nearing)."""
 
     def prove(self, hazard: Hazard, interlocks: bool, observer: Observer) -> Proven | Refuted:
         """Prove or refute one hazard, with the drive's interlocks or as if it had none.
@@ -93,7 +96,7 @@ class Prover:
         What the observer raises passes through.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
-        keep = self.keep and interlocks and hazard.asks is None
+        keep = self.keep and interlocks and not isinstance(hazard.asks, Stuck)
         if hazard.asks is None:
             here = self._map(self._firmware(looking, punctual=False), observer)
             if (apart := screened(looking, here)) is not None:
@@ -166,9 +169,11 @@ class Prover:
             floor = self._floor(looking, watched, count)
         except LimitReached as limit:
             return Gap(0, None, str(limit))
-        if floor is None:
-            return Gap(None, None)
-        if below is not None and floor >= below:
+        asked = replace(looking.hazard, asks=Nearing(watched, below)) if self.keep and below else None
+        if floor is None or (below is not None and floor >= below):
+            if asked is not None:
+                here = self._map(self._firmware(looking, punctual=False), count)
+                self.margins[asked] = self._screened(looking, here, (0, 1))
             return Gap(floor, None)
         firmware = self._firmware(looking, punctual=True)
 
@@ -179,6 +184,8 @@ class Prover:
         least = least_gap(look, watched, bool(looking.carriers), Asked(floor, below), count)
         if least.node is not None:
             return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
+        if asked is not None and not least.limit:
+            self.margins[asked] = cover(least.projection, however_late=False)
         return Gap(least.time if least.within or least.limit else None, None, least.limit)
 
     def _floor(self, looking: View, watched: int, count: Count) -> int | None:
@@ -250,10 +257,17 @@ class Prover:
         return answers
 
     def _screened(self, looking: View, here: Map, apart: Places) -> Data:
-        """The proof of the screen as data; hazards that share a map share the list of its states."""
+        """The proof of the screen as data; hazards that share a map share the list of its states.
+
+        Margins of a hazard share its proof: there the screen has settled it with the same two literals.
+        """
         if here not in self._stands:
             self._stands[here] = stands(here)
-        return {**potentials(looking, here, apart), "stands": self._stands[here]}
+        known = self._screenings.get(looking.hazard)
+        if known is None or known["pair"] != list(apart):
+            known = {**potentials(looking, here, apart), "stands": self._stands[here]}
+            self._screenings[looking.hazard] = known
+        return known
 
     def _refute(self, looking: View, interlocks: bool, count: Count) -> Refuted:
         try:

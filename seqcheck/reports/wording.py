@@ -23,7 +23,7 @@ def subject(hazard: Hazard) -> str:
     if isinstance(hazard.asks, Stuck):
         asks = hazard.asks
         return f"{_ends(hazard.joins)} through {_through(hazard)} at rest in {asks.mode} with {stuck(asks)}"
-    if hazard.asks is not None:
+    if isinstance(hazard.asks, Length):
         return _forbidden(hazard, hazard.asks)
     if hazard.currents:
         return f"{flowing(hazard.currents)} with {_named(hazard)} off"
@@ -54,6 +54,7 @@ def _forbidden(hazard: Hazard, asks: Length) -> str:
         return f"{asks.entered} entered less than {shown(asks.limit)} after {asks.left} is left"
     if isinstance(asks, Clearing):
         return f"{hazard.literals[0]} able to conduct more than {shown(asks.limit)} after {asks.trip} arrives"
+    assert isinstance(asks, Lasting)
     return f"{_commanded(hazard)} for {'more' if asks.longer else 'less'} than {shown(asks.limit)}"
 
 

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 
 from seqcheck.limits import NO_LIMITS, Limits, Observer, observer
 from seqcheck.messages import Problem, Problems
-from seqcheck.opening import text_of
+from seqcheck.opening import text_of, used_text
 from seqcheck.verdict import Answer, Check, Failed, Outcome, Unread
 
 if TYPE_CHECKING:
@@ -218,7 +218,7 @@ class Hand:
         from seqcheck.proving.prove import Prover
 
         text = text_of(piece.file) if piece.text is None else piece.text
-        drive = read_any(text, piece.file, text_of)
+        drive = read_any(text, piece.file, used_text)
         if isinstance(drive, Library):
             return Judged(drive)
         prover, end = Prover(drive, piece.call.keep, self._memory(piece.call)), piece.call.limits.end()

@@ -5,7 +5,7 @@ from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Protocol
 
 from seqcheck.messages import Problems
-from seqcheck.opening import STDIN, text_of
+from seqcheck.opening import STDIN, text_of, used_text
 from seqcheck.verdict import Outcome, Unread
 from seqcheck.work.pieces import (
     Brought,
@@ -110,7 +110,7 @@ class _Plan:
         from seqcheck.language import read_any
 
         try:
-            drive = read_any(text_of(file.name), file.name, text_of)
+            drive = read_any(text_of(file.name), file.name, used_text)
             if isinstance(drive, Library):
                 file.judged = Judged(drive)
                 return

@@ -19,10 +19,14 @@ def least_gap(
     *,
     facts_forbid: Forbids = never,
     most_states: int = 100_000,
+    bounded: bool = True,
 ) -> int | str | None:
     """The least time (ps) from the end of a stretch in which the literal at place `after` is possible to a moment from
-    which all others are, and the hazard is asked for; NEVER where that does not come, None where it gave up."""
-    world = World(drive, literals, interlocks=True, bounded=True)
+    which all others are, and the hazard is asked for; NEVER where that does not come, None where it gave up.
+
+    With `bounded` False firmware may be late by any time.
+    """
+    world = World(drive, literals, interlocks=True, bounded=bounded)
     search = Search(world, [delays[literal] for literal in literals], facts_forbid)
     nodes = reached(search, most_states)
     if nodes is None:

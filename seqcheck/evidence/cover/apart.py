@@ -8,6 +8,7 @@ commanded; UNKNOWN where x may have begun before. Then x itself adds to it. Pote
 effect when the command went away, since an output's complement comes no sooner than the dead time after it.
 """
 
+from functools import cache
 from typing import NamedTuple
 
 from seqcheck.drive import Command
@@ -25,16 +26,17 @@ Point = tuple[int, Pair]
 """The number of a stand, and the commands of both switches in it."""
 Times = dict[str, int]
 """Potentials by the cell that the command went away from."""
-Said = dict[Point, tuple[Times, Times]]
-"""What is claimed of each point, for each of both switches. A cell that is not named: the command went away from none
-such."""
+Both = tuple[Times, Times]
+"""What is claimed of each of both switches. A cell that is not named: the command went away from none such."""
+Said = dict[int, dict[Pair, Both]]
+"""What is claimed of each point, by its stand and its commands."""
 
 
-class Arc(NamedTuple):
-    """What leads to another stand: firmware, once x is at least `least`, after which x is 0; None: held writes act."""
+class Arcs(NamedTuple):
+    """What leads to other stands: firmware, once x is at least `least`, after which x is 0; None: held writes act."""
 
     least: int | None
-    target: int
+    targets: tuple[int, ...]
 
 
 class Next(NamedTuple):
@@ -54,24 +56,29 @@ class Ground:
         self._numbers = {stand: number for number, stand in enumerate(stands)}
         self.start = self._number(self._firmware.start())
         self.rows: dict[int, tuple[str, ...]] = {}
-        self.arcs: dict[int, tuple[Arc, ...]] = {}
+        self.arcs: dict[int, tuple[Arcs, ...]] = {}
         waiting = [self.start]
         while waiting:
             number = waiting.pop()
             if number not in self.arcs:
                 self.rows[number] = stands[number].cells.effective
                 self.arcs[number] = self._leading(stands[number])
-                waiting += [arc.target for arc in self.arcs[number]]
+                for arcs in self.arcs[number]:
+                    waiting += arcs.targets
 
-    def _leading(self, stand: Stand) -> tuple[Arc, ...]:
+    def _leading(self, stand: Stand) -> tuple[Arcs, ...]:
         soonest: dict[int, int] = {}
         for edge in self._firmware.edges(stand):
             target = self._number(edge.target)
             soonest[target] = min(edge.lo, soonest.get(target, edge.lo))
+        found: dict[int | None, list[int]] = {}
+        for target, least in soonest.items():
+            found.setdefault(least, []).append(target)
         writes, cells = self._firmware.writes, stand.cells
-        acted = [stand._replace(cells=writes.acted(cells, carrier)) for carrier in writes.waiting_for(cells)]
-        silent = dict.fromkeys(map(self._number, acted))
-        return *(Arc(least, target) for target, least in soonest.items()), *(Arc(None, target) for target in silent)
+        if cells.written != cells.effective:
+            acted = [stand._replace(cells=writes.acted(cells, carrier)) for carrier in writes.waiting_for(cells)]
+            found[None] = list(dict.fromkeys(map(self._number, acted)))
+        return tuple(Arcs(least, tuple(targets)) for least, targets in found.items())
 
     def _number(self, stand: Stand) -> int:
         number = self._numbers.get(placed(stand))
@@ -81,9 +88,13 @@ class Ground:
         return number
 
 
-def require_apart(scope: Scope, ground: Ground, places: tuple[int, int], said: Said) -> None:
-    """Raise NotCovered unless what is said proves that the two literals are possible together in no run."""
-    _Apart(scope, ground, places, said).require()
+def require_apart(scope: Scope, ground: Ground, places: tuple[int, int], said: Said) -> tuple[float, float]:
+    """Raise NotCovered unless what is said proves that the two literals are possible together in no run.
+
+    The answer is how much more than that is shown, after the first literal and after the second (ps): the possibility
+    of the one, ended so much later, still meets the other's for no time.
+    """
+    return _Apart(scope, ground, places, said).required()
 
 
 class _Apart:
@@ -92,6 +103,7 @@ class _Apart:
         self._ground = ground
         self._said = said
         self._delays = tuple(scope.delays[place] for place in places)
+        self._on = [scope.hazard.literals[place].on for place in places]
         self._names = tuple(scope.hazard.literals[place].switch for place in places)
         self._columns = tuple(drive.columns.index(name) for name in self._names)
         pins = [drive.pins.get(name) for name in self._names]
@@ -102,15 +114,19 @@ class _Apart:
         for name, carrier in drive.carriers.items():
             self._complement |= {name: f"~{name}", f"~{name}": name}
             self._dead |= {name: carrier.dead.lo, f"~{name}": carrier.dead.lo}
-        self._nexts: dict[tuple[Pair, Pair], list[Next]] = {}
-        self._least = [NO_BOUND, NO_BOUND]
+        self._nexts: dict[Pair, dict[Pair, list[Next]]] = {}
+        first, second = self._columns
+        self._cells: dict[int, Pair] = {number: (row[first], row[second]) for number, row in ground.rows.items()}
+        self._least: list[float] = [NO_BOUND, NO_BOUND]
         self._waiting: list[Point] = []
-        self._seen: set[Point] = set()
+        self._reached: Said = {number: {} for number in ground.rows}
 
-    def require(self) -> None:
+    def required(self) -> tuple[float, float]:
         """Go through all points that can be reached, then hold the least times against what must pass."""
-        for pair, _ in self._after(self._rests, self._cells(self._ground.start)):
-            self._reach((self._ground.start, pair))
+        if not all(self._on):
+            raise NotCovered("Only switches that are wanted on are held apart by least times.")
+        for pair, _ in self._after(self._rests, self._cells[self._ground.start]):
+            self._reach(self._ground.start, pair)
         while self._waiting:
             self._leave(self._waiting.pop())
         one, other = self._delays
@@ -123,40 +139,50 @@ class _Apart:
                 )
         if sum(self._least) <= max(one.fall, other.fall):
             raise NotCovered("One switch may outlast a whole pulse of the other.")
+        return self._least[0] - needs[0], self._least[1] - needs[1]
 
-    def _reach(self, point: Point) -> tuple[Times, Times]:
+    def _reach(self, number: int, pair: Pair) -> Both:
         """What is said of a point that can be reached."""
-        if point not in self._seen:
-            self._seen.add(point)
-            self._waiting.append(point)
-            if _commanded(point[1][0]) and _commanded(point[1][1]):
+        claimed = self._reached[number].get(pair)
+        if claimed is None:
+            if _commanded(pair[0]) and _commanded(pair[1]):
                 raise NotCovered(f"{' and '.join(self._names)} may be commanded on at once.")
-            if point not in self._said:
+            claimed = self._said.get(number, {}).get(pair)
+            if claimed is None:
                 raise NotCovered("A point that can be reached is not spoken of.")
-        return self._said[point]
+            self._reached[number][pair] = claimed
+            self._waiting.append((number, pair))
+        return claimed
 
     def _leave(self, point: Point) -> None:
         """Everything that can come next at a point."""
         number, pair = point
-        for least, target in (Arc(None, number), *self._ground.arcs[number]):
-            cells = self._cells(target)
+        alone = () if pair == self._cells[number] else (Arcs(None, (number,)),)  # constant cells change by writes alone
+        for least, targets in (*alone, *self._ground.arcs[number]):
             since = self._since(point, least, 0), self._since(point, least, 1)
-            for after, off in self._after(pair, cells):
-                claimed = self._reach((target, after))
-                for leaving, comes in off:
-                    for cell, time in since[leaving].items():
-                        if time < claimed[leaving].get(cell, NO_BOUND):
-                            raise NotCovered(f"{self._names[leaving]} may have been on sooner before than is said.")
-                        if comes:
-                            self._comes(leaving, max(time, self._floor(cell, cells[1 - leaving])))
+            for target in targets:
+                cells = self._cells[target]
+                for after, off in self._after(pair, cells):
+                    claimed = self._reach(target, after)
+                    for leaving, comes in off:
+                        if since[leaving]:
+                            self._hold(leaving, since[leaving], claimed[leaving], cells[1 - leaving] if comes else None)
+
+    def _hold(self, leaving: int, since: Times, claimed: Times, coming: str | None) -> None:
+        """What is said of one switch must not be more than what is so; `coming` is the other's cell if that comes."""
+        for cell, time in since.items():
+            if time < claimed.get(cell, NO_BOUND):
+                raise NotCovered(f"{self._names[leaving]} may have been on sooner before than is said.")
+            if coming is not None:
+                self._comes(leaving, max(time, self._floor(cell, coming)))
 
     def _since(self, point: Point, least: int | None, leaving: int) -> Times:
         """The potentials of one switch after an event, if it is not commanded then."""
         if _commanded(point[1][leaving]):
-            cell = self._cells(point[0])[leaving]
+            cell = self._cells[point[0]][leaving]
             return {cell if self._dead.get(cell) else "": UNKNOWN if least is None else 0}
-        times = self._said[point][leaving]
-        if least is None or not times:
+        times = self._reached[point[0]][point[1]][leaving]
+        if least is None:
             return times
         return {cell: 0 if time < 0 else time + least for cell, time in times.items()}
 
@@ -168,17 +194,14 @@ class _Apart:
         """An output that was on is followed by its complement no sooner than a dead time after."""
         return self._dead[left] if self._complement.get(left) == joined else 0
 
-    def _cells(self, number: int) -> Pair:
-        row = self._ground.rows[number]
-        return row[self._columns[0]], row[self._columns[1]]
-
     def _after(self, before: Pair, cells: Pair) -> list[Next]:
         """What both may be commanded under `cells`, once they were `before`."""
-        known = self._nexts.get((before, cells))
+        mine = self._nexts.setdefault(before, {})
+        known = mine.get(cells)
         if known is None:
             one, other = (self._may_be(place, before[place], cells[place]) for place in (0, 1))
             pairs = [(a, b) for a in one for b in other if self._agree(cells, (a, b))]
-            known = self._nexts[before, cells] = [Next(after, _off(before, after)) for after in pairs]
+            known = mine[cells] = [Next(after, _off(before, after)) for after in pairs]
         return known
 
     def _may_be(self, place: int, before: str, cell: str) -> set[str]:
@@ -198,6 +221,7 @@ def _commanded(command: str) -> bool:
     return command != "off"
 
 
+@cache
 def _off(before: Pair, after: Pair) -> tuple[tuple[int, bool], ...]:
     return tuple(
         (place, _commanded(after[1 - place]) and not _commanded(before[1 - place]))

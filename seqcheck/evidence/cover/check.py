@@ -12,8 +12,8 @@ from typing import NamedTuple
 
 from seqcheck.evidence.cover.behaviour import Behaviour, Change
 from seqcheck.evidence.cover.matrix import UNKNOWN, Rows, cut, later, moved, table, tight, within
+from seqcheck.evidence.cover.watch import STRUCK
 from seqcheck.evidence.cover.wires import ANYWHERE, Point
-from seqcheck.quantities import Interval
 
 
 class NotCovered(Exception):  # noqa: N818 - it says what a certificate is, not that the program failed
@@ -42,7 +42,7 @@ NOWHERE = -1
 class _Goal(NamedTuple):
     """An entry in which an event may end: where its clocks come from, their least ages, and their limits there.
 
-    `place` is its number; NOWHERE where no entry has the point, so that the event must be impossible.
+    `place` is its number; NOWHERE where no entry has the point, or none may, so that the event must be impossible.
     """
 
     place: int
@@ -54,11 +54,13 @@ class _Goal(NamedTuple):
 
 @dataclass(slots=True)
 class _Hop:
-    """An event out of an entry (None: out of nothing): what it needs, and for each way in which it may end the entries
-    of which one must hold it, worked out once it is found to be possible."""
+    """An event out of an entry (None: out of nothing), whose clocks have these numbers: the bounds that it needs, and
+    for each way in which it may end the entries of which one must hold it, worked out once it is found to be possible.
+    """
 
-    needs: tuple[tuple[int, Interval], ...]
+    needs: list[tuple[int, int, int]]
     source: Entry | None
+    numbers: dict[str, int]
     change: Change
     ways: tuple[tuple[_Goal, ...], ...] | None = None
 
@@ -74,7 +76,7 @@ class _Cover:
         self._entries = entries
         self._tables = [[table(len(one.clocks) + 1, zone) for zone in one.zones] for one in entries]
         self._places: dict[Point, list[int]] = {}
-        self._known_limits: dict[Point, dict[str, int]] = {}
+        self._limits: list[tuple[tuple[int, int], ...] | None] = [None] * len(entries)
         self._needed = {NOWHERE}
         self._waiting: list[int] = []
         for place, entry in enumerate(entries):
@@ -85,15 +87,14 @@ class _Cover:
 
         So every point that is looked at is one that the checker has come to by itself.
         """
-        beginning = Change((), self._behaviour.start(), frozenset({"x"}), ())
-        self._require_led(self._hop(None, beginning), [[0]], "The start is not covered")
+        self._require_led(_Hop([], None, {}, self._behaviour.start()), [[0]], "The start is not covered")
         while self._waiting:
             place = self._waiting.pop()
-            self._check_entry(self._entries[place], self._tables[place])
+            self._check_entry(self._entries[place], self._tables[place], self._limits_of(place))
 
-    def _check_entry(self, entry: Entry, tables: list[Rows]) -> None:
-        limits = self._own_limits(entry.point, entry.clocks)
+    def _check_entry(self, entry: Entry, tables: list[Rows], limits: tuple[tuple[int, int], ...]) -> None:
         hazardous = self._behaviour.hazardous(entry.point)
+        numbers = {clock: place for place, clock in enumerate(entry.clocks, 1)}
         hops: list[_Hop] | None = None
         for rows in tables:
             zone = _limited(tight(rows), limits)
@@ -102,50 +103,44 @@ class _Cover:
             if hazardous and all(-zone[0][clock] < most for clock, most in limits):
                 raise NotCovered(f"The hazard happens: {_named(entry.point)}.")
             if hops is None:
-                hops = [self._hop(entry, one) for one in self._behaviour.changes(entry.point)]
+                changes = self._behaviour.changes(entry.point)
+                hops = [_Hop(_needs(one, numbers), entry, numbers, one) for one in changes]
             for hop in hops:
                 self._require_led(hop, zone, "An event leads out of the cover")
 
-    def _own_limits(self, point: Point, clocks: tuple[str, ...]) -> tuple[tuple[int, int], ...]:
-        limits = self._limits(point)
-        return tuple((place, limits[clock]) for place, clock in enumerate(clocks, 1) if clock in limits)
-
-    def _limits(self, point: Point) -> dict[str, int]:
-        known = self._known_limits.get(point)
+    def _limits_of(self, place: int) -> tuple[tuple[int, int], ...]:
+        """The limits of an entry, on those clocks that it names."""
+        known = self._limits[place]
         if known is None:
-            known = self._known_limits[point] = self._behaviour.limits(point)
+            entry = self._entries[place]
+            limits = self._behaviour.limits(entry.point)
+            known = tuple((number, limits[clock]) for number, clock in enumerate(entry.clocks, 1) if clock in limits)
+            self._limits[place] = known
         return known
 
     def _require_led(self, hop: _Hop, zone: Rows, what: str) -> None:
-        left: Rows | None = zone
-        for clock, span in hop.needs:
-            if left is not None and span.lo > 0:
-                left = cut(left, 0, clock, -span.lo)
-            if left is not None and span.hi is not None:
-                left = cut(left, clock, 0, span.hi)
-        if left is None:
-            return
+        left = zone
+        for upper, lower, most in hop.needs:
+            if left[upper][lower] > most:
+                less = cut(left, upper, lower, most)
+                if less is None:
+                    return
+                left = less
         if hop.ways is None:
-            hop.ways = self._ways(hop.source, hop.change)
+            hop.ways = self._ways(hop)
         for goals in hop.ways:
-            led = next((goal for goal in goals if _led(left, goal)), None)
-            if led is None:
+            for goal in goals:
+                if _led(left, goal):
+                    break
+            else:
                 come = f"from {_named(hop.source.point)} " if hop.source else ""
                 raise NotCovered(f"{what}: {come}to {_named(hop.change.target)}.")
-            if led.place not in self._needed:
-                self._needed.add(led.place)
-                self._waiting.append(led.place)
+            if goal.place not in self._needed:
+                self._needed.add(goal.place)
+                self._waiting.append(goal.place)
 
-    def _hop(self, source: Entry | None, change: Change) -> _Hop:
-        at = {clock: place for place, clock in enumerate(source.clocks if source else (), 1)}
-        needs = tuple(
-            (at[clock], span) for clock, span in change.needs if clock in at and (span.lo > 0 or span.hi is not None)
-        )
-        return _Hop(needs, source, change)
-
-    def _ways(self, source: Entry | None, change: Change) -> tuple[tuple[_Goal, ...], ...]:
-        at = {clock: place for place, clock in enumerate(source.clocks if source else (), 1)}
-        return tuple(self._goals(source, at, change, target) for target in self._ends(change.target))
+    def _ways(self, hop: _Hop) -> tuple[tuple[_Goal, ...], ...]:
+        return tuple(self._goals(hop, target) for target in self._ends(hop.change.target))
 
     def _ends(self, point: Point) -> Iterator[Point]:
         """The point, if some entry holds it; else the points that it is once its carriers are somewhere."""
@@ -166,46 +161,50 @@ class _Cover:
         ]
         return (point._replace(carriers=carriers) for carriers in product(*choices))
 
-    def _goals(self, source: Entry | None, at: dict[str, int], change: Change, target: Point) -> tuple[_Goal, ...]:
-        places = [place for one in self._coarser(target) for place in self._places.get(one, ())]
+    def _goals(self, hop: _Hop, target: Point) -> tuple[_Goal, ...]:
+        places: list[int] = []
+        if STRUCK not in target.literals:
+            places = [place for one in self._coarser(target) for place in self._places.get(one, ())]
         if places:
-            return tuple(self._goal(source, at, change, place, self._entries[place]) for place in places)
-        nothing = Entry(target, tuple(self._limits(target)), ())
-        return (self._goal(source, at, change, NOWHERE, nothing),)
+            return tuple(self._goal(hop, self._entries[one], one, self._limits_of(one)) for one in places)
+        limits = self._behaviour.limits(target)
+        nothing = Entry(target, tuple(limits), ())
+        return (self._goal(hop, nothing, NOWHERE, tuple(enumerate(limits.values(), 1))),)
 
-    def _goal(
-        self,
-        source: Entry | None,
-        at: dict[str, int],
-        change: Change,
-        place: int,
-        entry: Entry,
-    ) -> _Goal:
+    def _goal(self, hop: _Hop, entry: Entry, place: int, limits: tuple[tuple[int, int], ...]) -> _Goal:
+        change, source = hop.change, hop.source
         renamed = dict(change.renamed)
         origins, floors = [], []
         for number, clock in enumerate(entry.clocks, 1):
-            joined = self._joined(source, entry.point, clock)
+            joined = self._joined(source, entry.point, clock) if clock.startswith("carrier ") else None
             if clock in change.started:
                 origins.append(0)
-            elif joined is not None:
+            elif joined is not None or clock in change.older:
                 origins.append(UNKNOWN)
-                floors.append((number, joined))
+                floors.append((number, 1 if joined is None else joined))
             else:
-                origins.append(at.get(renamed.get(clock, clock), UNKNOWN))
+                origins.append(hop.numbers.get(renamed.get(clock, clock), UNKNOWN))
         tables = [] if place == NOWHERE else self._tables[place]
-        limits = self._own_limits(entry.point, entry.clocks)
         return _Goal(place, tuple(origins), tuple(floors), limits, tables)
 
     def _joined(self, source: Entry | None, target: Point, clock: str) -> int | None:
-        """The least age of a carrier that was anywhere and is somewhere now; None for any other clock."""
-        if not clock.startswith("carrier "):
-            return None
+        """The least age of a carrier that was anywhere and is somewhere now; None for any other carrier."""
         number = int(clock.removeprefix("carrier "))
         if target.carriers[number] == ANYWHERE:
             raise NotCovered(f"A carrier that is left anywhere has an age: {_named(target)}.")
         if source is not None and source.point.carriers[number] != ANYWHERE:
             return None
         return dict(self._behaviour.phases(number))[target.carriers[number]]
+
+
+def _needs(change: Change, numbers: dict[str, int]) -> list[tuple[int, int, int]]:
+    """The bounds (upper, lower, most) on named clocks within which an event comes."""
+    bounds = []
+    for clock, span in change.needs:
+        if clock in numbers:
+            bounds += [(0, numbers[clock], -span.lo)] if span.lo > 0 else []
+            bounds += [(numbers[clock], 0, span.hi)] if span.hi is not None else []
+    return bounds
 
 
 def _led(zone: Rows, goal: _Goal) -> bool:
@@ -215,7 +214,9 @@ def _led(zone: Rows, goal: _Goal) -> bool:
         if come is not None and least > 0:
             come = cut(come, 0, clock, -least)
     ended = None if come is None else later(come, goal.limits)
-    return ended is None or any(within(ended, one) for one in goal.tables)
+    if ended is None:
+        return True
+    return any(within(ended, one) for one in goal.tables)
 
 
 def _limited(zone: Rows | None, limits: tuple[tuple[int, int], ...]) -> Rows | None:

@@ -1,13 +1,14 @@
 """Covers and potentials out of a certificate's data; what is not as it should be is refused."""
 
 from seqcheck.evidence.certificate import Fields
-from seqcheck.evidence.cover.apart import Point as Bare
 from seqcheck.evidence.cover.apart import Said
 from seqcheck.evidence.cover.check import Bounds, Entry
 from seqcheck.evidence.cover.scope import Scope
 from seqcheck.evidence.cover.stand import Group, Stand
+from seqcheck.evidence.cover.watch import GAP, SINCE
 from seqcheck.evidence.cover.wires import Point
 from seqcheck.evidence.cover.writes import Cells, Held
+from seqcheck.hazards import Nearing
 
 
 def entries(cover: Fields, scope: Scope) -> list[Entry]:
@@ -35,7 +36,7 @@ def _names(scope: Scope) -> set[str]:
         "out": len(scope.delays),
         "held": len(scope.drive.columns),
     }
-    return {"x", "y", *(f"{word} {place}" for word, count in counted.items() for place in range(count))}
+    return {"x", "y", SINCE, GAP, *(f"{word} {place}" for word, count in counted.items() for place in range(count))}
 
 
 def _zone(entry: Fields, value: object, clocks: int) -> Bounds:
@@ -57,7 +58,8 @@ def _point(state: Fields, scope: Scope) -> Point:
         state.texts("guards"),
         state.texts("literals"),
     )
-    wanted = (len(scope.carriers), len(scope.switches), len(scope.guards), len(scope.delays))
+    watched = len(scope.delays) + isinstance(scope.hazard.asks, Nearing)
+    wanted = (len(scope.carriers), len(scope.switches), len(scope.guards), watched)
     if tuple(map(len, point[1:])) != wanted:
         raise state.wrong("carriers, pins, guards or literals")
     return point
@@ -96,15 +98,14 @@ def points(potentials: Fields, literals: int) -> tuple[tuple[int, int], Said]:
     first, second = potentials.listed(potentials.of("pair"), "pair", 2)
     if type(first) is not int or type(second) is not int or not 0 <= first < second < literals:
         raise potentials.wrong("pair")
-    return (first, second), dict(_said(potentials, one) for one in potentials.rows("points"))
-
-
-def _said(potentials: Fields, value: object) -> tuple[Bare, tuple[dict[str, int], dict[str, int]]]:
-    number, one, other, since, since_other = potentials.listed(value, "points", 5)
-    if not isinstance(one, str) or not isinstance(other, str):
-        raise potentials.wrong("points")
-    both = _times(potentials, since), _times(potentials, since_other)
-    return (potentials.whole(number, "points"), (one, other)), both
+    said: Said = {}
+    for point in potentials.rows("points"):
+        number, one, other, since, since_other = potentials.listed(point, "points", 5)
+        if not isinstance(one, str) or not isinstance(other, str):
+            raise potentials.wrong("points")
+        both = _times(potentials, since), _times(potentials, since_other)
+        said.setdefault(potentials.whole(number, "points"), {})[one, other] = both
+    return (first, second), said
 
 
 def _times(potentials: Fields, value: object) -> dict[str, int]:

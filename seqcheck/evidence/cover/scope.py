@@ -7,9 +7,9 @@ a period after the oldest write held for it, whosever that is.
 
 from dataclasses import dataclass
 
-from seqcheck.drive import RESET, Drive, Follow, SetStep, Update
+from seqcheck.drive import RESET, Drive, Follow, Move, SetStep, Trip, Update
 from seqcheck.evidence.possible import delays
-from seqcheck.hazards import Delays, Hazard
+from seqcheck.hazards import Clearing, Delays, Following, Hazard, Lasting
 from seqcheck.quantities import Interval
 
 
@@ -43,11 +43,36 @@ class Scope:
 
     def firmware(self) -> tuple[object, ...]:
         """What the firmware of the scope depends on, beside the drive: scopes that agree in it can share one."""
-        return self.in_time, self.carriers if self.waiting else (), self.waiting, self.held if self.waiting else ()
+        held = (self.carriers, self.waiting, self.held) if self.waiting else ()
+        return self.in_time, self.watched, held
+
+    @property
+    def watched(self) -> str | None:
+        """The trip of which it is asked how long ago it arrived."""
+        return self.hazard.asks.trip if isinstance(self.hazard.asks, Clearing) else None
 
 
-def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
-    """What is looked at for `hazard`."""
+Followed = dict[str, set[str]]
+"""By switch: the carriers that some row or step puts it on."""
+
+
+def followed(drive: Drive) -> Followed:
+    """What the switches of a drive follow."""
+    found: Followed = {switch: set() for switch in drive.columns}
+    for mode in drive.modes.values():
+        for switch, cell in zip(drive.columns, mode.cells, strict=True):
+            if isinstance(cell, Follow):
+                found[switch].add(cell.carrier)
+    lines: tuple[Move | Trip, ...] = (*drive.moves, *drive.trips)
+    for step in (step for line in lines for step in line.steps):
+        for switch, one in step.writes if isinstance(step, SetStep) else ():
+            if isinstance(one, Follow):
+                found[switch].add(one.carrier)
+    return found
+
+
+def scope(drive: Drive, hazard: Hazard, in_time: bool, used: Followed) -> Scope:
+    """What is looked at for `hazard`; `used` is what the switches of the drive follow."""
     own = [literal.switch for literal in hazard.literals]
     guards = tuple(
         Guard(guarded, partner, lock.dead)
@@ -56,18 +81,17 @@ def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
         if guarded in own
     )
     switches = tuple(dict.fromkeys([*own, *(guard.partner for guard in guards)]))
-    carriers = _followed(drive, switches)
+    carriers = _looked_at(drive, switches, used)
     cancelling = any(trip.at_once and trip.target != RESET for trip in drive.trips)
     if cancelling:
         carriers |= {name for name, carrier in drive.carriers.items() if carrier.update is not Update.AT_ONCE}
     waiting = frozenset(name for name in carriers if drive.carriers[name].update is not Update.AT_ONCE)
     everyone = cancelling or any(drive.carriers[name].update is Update.WITHIN_PERIOD for name in waiting)
-    found = delays(drive, hazard)
     return Scope(
         drive,
         hazard,
         in_time,
-        tuple(found[literal] for literal in hazard.literals),
+        _delays(drive, hazard),
         switches,
         guards,
         tuple(name for name in drive.carriers if name in carriers),
@@ -76,27 +100,25 @@ def scope(drive: Drive, hazard: Hazard, in_time: bool) -> Scope:
     )
 
 
-def _followed(drive: Drive, switches: tuple[str, ...]) -> set[str]:
+def _delays(drive: Drive, hazard: Hazard) -> tuple[Delays, ...]:
+    """Of each literal; and of what is watched the age at which it is told no more, as `in`: see `watch`."""
+    asks = hazard.asks
+    if isinstance(asks, Lasting):
+        return (Delays(asks.limit if asks.longer else asks.limit - 1, 0),)
+    if isinstance(asks, Following):
+        return (Delays(asks.limit - 1, 0),)
+    found = delays(drive, hazard)
+    own = tuple(found[literal] for literal in hazard.literals)
+    return (*own, Delays(asks.limit, 0)) if isinstance(asks, Clearing) else own
+
+
+def _looked_at(drive: Drive, switches: tuple[str, ...], used: Followed) -> set[str]:
     """The carriers that the switches may follow; for one that acts within a period, also all that the switches on it
     may follow, since the oldest write held for it sets the time for all."""
-    used = {switch: _cells_of(drive, switch) for switch in drive.columns}
-    found: set[str] = set()
-    for switch in switches:
-        found |= used[switch]
+    found: set[str] = set().union(*(used[switch] for switch in switches))
     grown = True
     while grown:
         timed = {name for name in found if drive.carriers[name].update is Update.WITHIN_PERIOD}
         wider = found.union(*(names for names in used.values() if names & timed))
         grown, found = wider != found, wider
     return found
-
-
-def _cells_of(drive: Drive, switch: str) -> set[str]:
-    """The carriers that some row or step puts the switch on."""
-    place = drive.columns.index(switch)
-    cells = [mode.cells[place] for mode in drive.modes.values()]
-    runs = [line.steps for line in drive.moves] + [line.steps for line in drive.trips]
-    for steps in runs:
-        for step in steps:
-            cells += [cell for name, cell in step.writes if name == switch] if isinstance(step, SetStep) else []
-    return {cell.carrier for cell in cells if isinstance(cell, Follow)}

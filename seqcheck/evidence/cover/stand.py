@@ -52,26 +52,31 @@ class Stand(NamedTuple):
 
 
 class Edge(NamedTuple):
-    """An event of the firmware: possible while x is in [lo, hi] (and y at most `y_hi`); `y_anew` starts y."""
+    """An event of the firmware: possible while x is in [lo, hi] (and y at most `y_hi`); `y_anew` starts y, and x is
+    started but where it is kept. With `arrives` the trip that is watched arrives in it."""
 
     lo: int
     hi: int | None
     y_hi: int | None
     y_anew: bool
     target: Stand
+    keeps_x: bool = False
+    arrives: bool = False
 
 
 def placed(stand: Stand) -> Stand:
     """A stand after an event, its held groups counted anew."""
+    if not stand.cells.held:
+        return stand
     held = tuple(one._replace(place=place) for place, one in enumerate(stand.cells.held))
-    return stand._replace(cells=stand.cells._replace(held=held)) if held else stand
+    return stand._replace(cells=stand.cells._replace(held=held))
 
 
 class Firmware:
     """What firmware and break inputs can do in a drive.
 
-    Of a scope it looks at what holds writes and whether firmware is in time; scopes that differ in nothing else can
-    share it: see `Scope.firmware`.
+    Of a scope it looks at what holds writes, whether firmware is in time and which trip is watched; scopes that differ
+    in nothing else can share it: see `Scope.firmware`.
     """
 
     def __init__(self, scope: Scope) -> None:
@@ -80,10 +85,19 @@ class Firmware:
         self.writes = Writes(scope)
         self._lines: tuple[Move | Trip, ...] = (*scope.drive.moves, *scope.drive.trips)
         self._first_trip = len(scope.drive.moves)
+        watched = [number for number, trip in enumerate(scope.drive.trips) if trip.name == scope.watched]
+        self._watched = watched[0] if watched else NOBODY
         self._rows = {name: self.writes.row(mode.cells) for name, mode in scope.drive.modes.items()}
         self._late = (scope.drive.clock.late or 0) if scope.drive.clock else 0
+        self._windows = [self._window(move) for move in scope.drive.moves]
+        self._gap = self._gap_of()
+        self._from: dict[str, list[int]] = {mode: [] for mode in scope.drive.modes}
+        for number, move in enumerate(scope.drive.moves):
+            for mode in move.sources:
+                self._from.setdefault(mode, []).append(number)
         self._items = tuple(map(self._items_of, self._lines))
         self._known: dict[Stand, tuple[Edge, ...]] = {}
+        self._own: dict[Stand, list[Edge]] = {}
         self._grouped: dict[tuple[Group, tuple[str, ...]], tuple[Group, ...]] = {}
         self._cells: dict[str, Cell] = {}
         self._begins: dict[tuple[str, int, Cells], tuple[Stand, ...]] = {}
@@ -116,7 +130,7 @@ class Firmware:
             case AtOnce():
                 return INSTANT
 
-    def _gap(self) -> Interval:
+    def _gap_of(self) -> Interval:
         writes = self._drive.writes
         return INSTANT if writes is None or writes.how is How.TOGETHER else self._kept(writes.gap)
 
@@ -124,7 +138,12 @@ class Firmware:
         """The latest x of a stand."""
         if stand.line != REST:
             return stand.latest
-        timed = [self._window(move).hi for move in self._from(stand.mode) if not isinstance(move.trigger, When)]
+        moves = self._drive.moves
+        timed = [
+            self._windows[number].hi
+            for number in self._from.get(stand.mode, ())
+            if not isinstance(moves[number].trigger, When)
+        ]
         return min((hi for hi in timed if hi is not None), default=None)
 
     def y_limit(self, stand: Stand) -> int | None:
@@ -135,9 +154,6 @@ class Firmware:
         within = self._drive.trips[number].within
         return 0 if within is None else self._kept(Interval(0, within)).hi
 
-    def _from(self, mode: str) -> list[Move]:
-        return [move for move in self._drive.moves if mode in move.sources]
-
     # What comes next
 
     def edges(self, stand: Stand) -> tuple[Edge, ...]:
@@ -147,35 +163,52 @@ class Firmware:
         taken, if it may arrive there; else just before the last event that leaves a place in which it may. Any other
         run is brought to that by moving arrivals later and leaving out those of trips that are never taken: nothing
         else is forbidden or made due by that, and the time to take the trip begins later.
+
+        The trip that is watched arrives whenever it may, and stays in hand until it is taken or dropped.
         """
-        if stand not in self._known:
-            self._known[stand] = tuple(self._edges(stand))
-        return self._known[stand]
+        known = self._known.get(stand)
+        if known is None:
+            known = self._known[stand] = tuple(self._edges(stand))
+        return known
 
     def _edges(self, stand: Stand) -> Iterator[Edge]:
-        own = [*self._onward(stand), *self._broken(stand)]
+        own = self._own_of(stand if stand.hand == NOBODY else stand._replace(hand=NOBODY))
+        takes = self._takes(stand)
         if stand.hand == NOBODY:
             yield from own
             for number in self._firmware_trips():
                 if not self._hears(number, stand):
                     continue
-                if self._takes(stand):
+                if takes:
                     yield from self._taken(stand, number, None)
-                if not self._takes(stand) or self._drive.trips[number].within is not None:
+                if takes and self._drive.trips[number].within is None:
+                    continue
+                if number == self._watched:
+                    yield Edge(0, None, None, True, stand._replace(hand=number), keeps_x=True, arrives=True)
+                else:
                     yield from self._carried(stand, number, own, y_anew=True)
             return
-        if self._takes(stand):
+        if takes:
             yield from self._taken(stand, stand.hand, self._patience(stand.hand))
-        yield from self._carried(stand, stand.hand, own, y_anew=not self._takes(stand))
+        yield from self._carried(stand, stand.hand, own, y_anew=not takes)
+
+    def _own_of(self, stand: Stand) -> list[Edge]:
+        """What can come next without a firmware trip; stands with one in hand differ in nothing else."""
+        known = self._own.get(stand)
+        if known is None:
+            known = self._own[stand] = [*self._onward(stand), *self._broken(stand)]
+        return known
 
     def _carried(self, stand: Stand, number: int, own: list[Edge], *, y_anew: bool) -> Iterator[Edge]:
         """Events that leave a trip in hand; where it may still arrive afterwards, it does so only then."""
         goal = self._drive.trips[number].target
         for edge in own:
             there = edge.target
-            dropped = there.line == REST and there.mode in (RESET, goal)
-            if not dropped and not self._hears(number, there):
-                yield edge._replace(y_anew=y_anew, target=there._replace(hand=number))
+            if there.line == REST and there.mode in (RESET, goal):
+                if number == self._watched:
+                    yield edge
+            elif number == self._watched or not self._hears(number, there):
+                yield Edge(edge.lo, edge.hi, edge.y_hi, y_anew, Stand(*there[:6], number, there.cells))
 
     def _firmware_trips(self) -> Iterator[int]:
         return (number for number, trip in enumerate(self._drive.trips) if not trip.at_once)
@@ -198,18 +231,19 @@ class Firmware:
 
     def _onward(self, stand: Stand) -> Iterator[Edge]:
         if stand.line == REST:
-            for number, move in enumerate(self._drive.moves):
-                if stand.mode in move.sources:
-                    window = self._window(move)
-                    for target in self._begun(stand.mode, number, stand.cells):
-                        yield Edge(window.lo, window.hi, None, False, target)
+            for number in self._from.get(stand.mode, ()):
+                window = self._windows[number]
+                for target in self._begun(stand.mode, number, stand.cells):
+                    yield Edge(window.lo, window.hi, None, False, target)
             return
         targets = self._written(stand) if stand.left else (self._entered(stand),)
-        yield from (Edge(stand.soonest, stand.latest, None, False, target) for target in targets)
+        for target in targets:
+            yield Edge(stand.soonest, stand.latest, None, False, target)
 
     def _taken(self, stand: Stand, number: int, y_hi: int | None) -> Iterator[Edge]:
+        arrives = number == self._watched and stand.hand == NOBODY
         for target in self._begun(stand.mode, self._first_trip + number, stand.cells):
-            yield Edge(0, None, y_hi, False, target)
+            yield Edge(0, None, y_hi, False, target, arrives=arrives)
 
     def _broken(self, stand: Stand) -> Iterator[Edge]:
         for number, trip in enumerate(self._drive.trips):
@@ -217,7 +251,7 @@ class Firmware:
                 key = (stand.mode, number, stand.cells.effective)
                 if key not in self._broken_in:
                     self._broken_in[key] = self._break_in(*key)
-                yield Edge(0, None, None, False, self._broken_in[key])
+                yield Edge(0, None, None, False, self._broken_in[key], arrives=number == self._watched)
 
     def _break_in(self, mode: str, number: int, effective: tuple[str, ...]) -> Stand:
         if self._drive.trips[number].target == RESET:
@@ -260,7 +294,7 @@ class Firmware:
 
     def _after(self, run: Stand) -> Stand:
         """What the run is just after a write."""
-        gap = self._gap()
+        gap = self._gap
         if run.left:
             return run._replace(soonest=gap.lo, latest=gap.hi)
         ahead, groups, wait = self._advanced(run.mode, run.line, run.item + 1, run.cells)

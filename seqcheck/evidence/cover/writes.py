@@ -4,7 +4,7 @@ A held group is the writes of one instant that wait for a carrier which acts wit
 event is worked out, a group carries the place that it had before it, NEW if it was written in it.
 """
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from typing import NamedTuple
 
 from seqcheck.drive import Cell, Update, cell_text
@@ -36,6 +36,7 @@ class Writes:
     def __init__(self, scope: Scope) -> None:
         self._scope = scope
         self._columns = scope.drive.columns
+        self._places = {switch: place for place, switch in enumerate(scope.drive.columns)}
         self._carrier: dict[str, str] = {}
         for name in scope.drive.carriers:
             self._carrier |= {name: name, f"~{name}": name}
@@ -58,23 +59,24 @@ class Writes:
                 return carrier
         return None
 
-    def write(self, cells: Cells, writes: Iterable[Write]) -> Cells:
-        """The cells after the writes of one instant."""
+    def write(self, cells: Cells, writes: Sequence[Write]) -> Cells:
+        """The cells after the writes of one instant, given in column order."""
         written, effective = list(cells.written), list(cells.effective)
-        mine = dict(writes)
-        held = [one._replace(switches=tuple(name for name in one.switches if name not in mine)) for one in cells.held]
         new: dict[str, list[str]] = {}
-        for place, switch in enumerate(self._columns):
-            if switch not in mine:
+        for switch, cell in writes:
+            place = self._places[switch]
+            written[place] = cell
+            if cell == effective[place]:
                 continue
-            written[place] = mine[switch]
-            if mine[switch] == effective[place]:
-                continue
-            carrier = self.waits_for(switch, effective[place], mine[switch])
+            carrier = self.waits_for(switch, effective[place], cell)
             if carrier is None:
-                effective[place] = mine[switch]
+                effective[place] = cell
             elif self._scope.drive.carriers[carrier].update is Update.WITHIN_PERIOD:
                 new.setdefault(carrier, []).append(switch)
+        if not cells.held and not new:
+            return Cells(tuple(written), tuple(effective), ())
+        mine = {switch for switch, _ in writes}
+        held = [one._replace(switches=tuple(name for name in one.switches if name not in mine)) for one in cells.held]
         fresh = [Held(carrier, tuple(new[carrier]), NEW) for carrier in self._scope.carriers if carrier in new]
         return Cells(tuple(written), tuple(effective), tuple(one for one in [*held, *fresh] if one.switches))
 

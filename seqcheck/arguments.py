@@ -11,7 +11,9 @@ from typing import Any, Never
 from seqcheck import __version__
 from seqcheck.commands import draw
 from seqcheck.exits import WRONG
+from seqcheck.limits import Limits
 from seqcheck.messages import nearest
+from seqcheck.proving.reductions import Reduction
 from seqcheck.quantities import PICOSECONDS
 from seqcheck.verdict import Check
 
@@ -189,6 +191,7 @@ def parser() -> argparse.ArgumentParser:
     lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
     lint.add_argument("--jobs", metavar="N", help="let N processes share the work (1); the answer is the same")
     lint.add_argument("--scheduler", metavar="ADDRESS", help="let the machines of a dask scheduler share the work")
+    lint.add_argument("--without", metavar="REDUCTION", action="append", default=[], help=argparse.SUPPRESS)
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
     rows.add_argument("file", metavar="FILE")
@@ -278,6 +281,19 @@ def check_named(name: str) -> Check:
     if name in known:
         return known[name]
     wrong(f"--only {name}: there is no such check; {nearest(name, known)}")
+
+
+def limits_of(asked: argparse.Namespace) -> Limits:
+    zones = count("--most-zones", asked.most_zones)
+    return Limits(zones, seconds(asked.give_up_after), _left_out(getattr(asked, "without", [])))
+
+
+def _left_out(names: list[str]) -> frozenset[Reduction]:
+    known = {one.value: one for one in Reduction}
+    for name in names:
+        if name not in known:
+            wrong(f"--without {name}: there is no such reduction; {nearest(name, known)}")
+    return frozenset(known[name] for name in names)
 
 
 def one_or_other(names: Sequence[str]) -> str:

@@ -12,6 +12,7 @@ from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
 from seqcheck.proving.memory import Memory
 from seqcheck.proving.prove import Proven, Prover, Refuted
+from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
 from seqcheck.reports.waived import lets_pass
@@ -46,16 +47,18 @@ def check(
     only: frozenset[Check],
     observer: Observer,
     kept: list[Kept] | None = None,
+    without: frozenset[Reduction] = frozenset(),
     memory: Memory | None = None,
 ) -> Outcome:
     """Everything about one drive.
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
-    proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. A
-    `memory` may know answers. Raises Problems for a stage that cannot be proven, Fault if a trace does not replay.
+    proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. `without`
+    leaves out some of what makes proofs short, a `memory` may know answers. Raises Problems for a stage that cannot be
+    proven, Fault if a trace does not replay.
     """
-    prover = Prover(drive, kept is not None, memory)
+    prover = Prover(drive, kept is not None, without, memory)
     settled = [settle(prover, one, observer) for one in asked(drive)]
     if kept is not None:
         kept += evidence_of(settled)

@@ -18,10 +18,10 @@ from seqcheck.arguments import (
     check_named,
     complain,
     count,
+    limits_of,
     one_of,
     one_or_other,
     parser,
-    seconds,
     tell,
     wrong,
 )
@@ -76,7 +76,8 @@ def _run(arguments: list[str]) -> int:
         if asked.command == "serve":
             from seqcheck.serving.command import serve
 
-            return serve(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+            limits = limits_of(asked)
+            return serve(limits.zones, limits.seconds)
         if asked.command == "rows":
             return _rows(asked.file, one_of("--color", asked.color, ("auto", "always", "never")), asked.out)
         if asked.command == "draw":
@@ -96,7 +97,7 @@ def _run(arguments: list[str]) -> int:
             return _compare(asked)
         if asked.command == "size":
             return _size(asked)
-        limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+        limits = limits_of(asked)
         colour = one_of("--color", asked.color, ("auto", "always", "never"))
         if asked.command == "margins":
             return _margins(asked.file, limits, asked.form, colour, asked.out)
@@ -277,7 +278,7 @@ def _draw(asked: argparse.Namespace) -> int:
         one_of("--trace", asked.trace, draw.TRACED)
     if asked.trace is not None and (asked.modes or form == "mermaid"):
         wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
-    limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+    limits = limits_of(asked)
     wanted = draw.Wanted(asked.trace, count("--run", asked.run), form)
     outcome, code = _one_file(asked, limits)
     if isinstance(outcome, Library):
@@ -298,7 +299,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
     from seqcheck.commands.review import page
     from seqcheck.confirming import Fault
 
-    limits = Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after))
+    limits = limits_of(asked)
     outcome, code = _one_file(asked, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
@@ -318,7 +319,7 @@ def _compare(asked: argparse.Namespace) -> int:
     """Hold two files against each other; the exit code."""
     form = one_of("--as", asked.form, COMPARE_FORMS)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
-    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    observer = _observer(limits_of(asked))
     if asked.old == asked.new == STDIN:
         wrong("only one of two files can come from standard input; name the other")
     from seqcheck.commands.compare import run
@@ -362,7 +363,7 @@ def _size(asked: argparse.Namespace) -> int:
 
     form = one_of("--as", asked.form, FORMS_OF_SIZES)
     colour = one_of("--color", asked.color, ("auto", "always", "never"))
-    observer = _observer(Limits(count("--most-zones", asked.most_zones), seconds(asked.give_up_after)))
+    observer = _observer(limits_of(asked))
     painted = wants_colour(colour, sys.stdout) and not asked.out
     try:
         text, code = run(Asked(asked.file, asked.name, asked.step, form, painted), (text_of, used_text), observer)

@@ -11,6 +11,7 @@ later one too, since both may be taken until `within` after it and an earlier on
 it matters how long ago a trip arrived, that one may arrive early too.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -125,6 +126,10 @@ class Firmware:
         self._ports = [drive.pins[name].port if name in drive.pins else None for name in drive.columns]
         self._early = next((number for number, trip in enumerate(drive.trips) if trip.name == early), -1)
         self._known: dict[State, tuple[Edge, ...]] = {}
+        self._moves: dict[str, list[tuple[int, Move]]] = {}
+        for number, move in enumerate(drive.moves):
+            for mode in dict.fromkeys(move.sources):
+                self._moves.setdefault(mode, []).append((number, move))
 
     # What a state is
 
@@ -137,12 +142,16 @@ class Firmware:
         """The bound on `x` in a state."""
         if state.run >= 0:
             return state.latest
-        spans = [self.window(move)[2] for move in self._leaving(state.mode)]
+        spans = [self.window(move)[2] for _, move in self.leaving(state.mode)]
         return min((hi for hi in spans if hi is not None), default=None)
 
     def hand_deadline(self, state: State) -> int | None:
         """The bound on `y` in a state: None with no trip in hand, or where it cannot be taken."""
         return self._within(state.hand) if state.hand >= 0 and self._interruptible(state) else None
+
+    def hand_is_timed(self, state: State) -> bool:
+        """Whether it matters how long the trip in hand has been there while the stay lasts."""
+        return state.hand >= 0 and (self._early >= 0 or self.hand_deadline(state) is not None)
 
     def facts(self, state: State) -> tuple[Known, ...]:
         """What is known in a state."""
@@ -151,6 +160,10 @@ class Firmware:
     def updated(self, state: State, carrier: int) -> State:
         """The state after the writes held for one carrier have acted."""
         return state._replace(put=self.writing.update(state.put, carrier))
+
+    def leaving(self, mode: str) -> Sequence[tuple[int, Move]]:
+        """The moves out of a mode, each with its place in the file."""
+        return self._moves.get(mode, ())
 
     def window(self, move: Move) -> tuple[int, int | None, int | None]:
         """When a move may begin, in ps after entry: (soonest, latest, the bound that it puts on the stay)."""
@@ -186,10 +199,9 @@ class Firmware:
 
     def _moving(self, state: State) -> list[Edge]:
         found = []
-        for number, move in enumerate(self.drive.moves):
-            if state.mode in move.sources:
-                lo, hi, _ = self.window(move)
-                found += [Edge(lo, hi, None, False, True, step) for step in self._begin(state, number)]
+        for number, move in self.leaving(state.mode):
+            lo, hi, _ = self.window(move)
+            found += [Edge(lo, hi, None, False, True, step) for step in self._begin(state, number)]
         return found
 
     def _running(self, state: State) -> list[Edge]:
@@ -205,9 +217,6 @@ class Firmware:
 
     def _edge(self, state: State, step: Step) -> Edge:
         return Edge(state.soonest, state.latest, None, False, False, step)
-
-    def _leaving(self, mode: str) -> list[Move]:
-        return [move for move in self.drive.moves if mode in move.sources]
 
     # Runs
 

@@ -4,15 +4,18 @@ import time
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from seqcheck.proving.reductions import Reduction
+
 Observer = Callable[[int], None]
 
 
 @dataclass(frozen=True, slots=True)
 class Limits:
-    """When to give a proof up: after so many zones, or so many seconds for one file."""
+    """When to give a proof up: after so many zones, or so many seconds for one file. `without`: reductions left out."""
 
     zones: int | None
     seconds: float | None
+    without: frozenset[Reduction] = frozenset()
 
     def end(self) -> float | None:
         """When the time of a file that begins now is over, by the monotonic clock of this machine."""

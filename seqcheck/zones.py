@@ -43,6 +43,8 @@ def limited(zone: Zone, size: int, upper: int, lower: int, bound: int) -> Zone |
         if first >= INFINITE:
             continue
         first += bound
+        if first >= zone[start + lower]:
+            continue  # no bound of this row follows more closely than the one that it has
         for end in range(size):
             if tail[end] < INFINITE and first + tail[end] < zone[start + end]:
                 zone[start + end] = first + tail[end]
@@ -106,25 +108,42 @@ def extrapolated(zone: Zone, size: int, lower: Sequence[int], upper: Sequence[in
     unused; INFINITE keeps a clock exact. What can be reached stays the same, as no guard compares two clocks.
     """
     first_row = zone[:size]
-    changed = False
-    far = [-first_row[clock] > lower[clock] for clock in range(size)]
-    high = [-first_row[clock] > upper[clock] for clock in range(size)]
+    far = [-least > most for least, most in zip(first_row, lower, strict=True)]
+    high = [-least > most for least, most in zip(first_row, upper, strict=True)]
     high[0] = False
+    widened: list[tuple[int, list[int]]] = []
     for clock in range(1, size):
         start = clock * size
         loose = far[clock]
         limit = lower[clock]
+        gone = []
         for end in range(size):
-            if end == clock:
-                continue
             value = zone[start + end]
-            if value < INFINITE and (loose or value > limit or high[end]):
-                zone[start + end] = INFINITE
-                changed = True
+            if value < INFINITE and (loose or value > limit or high[end]) and end != clock:
+                gone.append(end)
+        if gone:
+            widened.append((start, gone))
         if high[clock]:
             zone[clock] = -upper[clock] - 1  # nothing else is tied to it now, so that this alone needs no closing
-    if changed:
-        result = closed(zone, size)
-        assert result is not None, "widening never empties a zone"
-        return result
+    for start, gone in widened:
+        for end in gone:
+            zone[start + end] = INFINITE
+    if widened:
+        _close(zone, size, widened)
     return zone
+
+
+def _close(zone: Zone, size: int, widened: Sequence[tuple[int, list[int]]]) -> None:
+    """The canonical form again, where only these entries (the start of a row, and places in it) have become wider.
+
+    No other can follow from them, since none is as small as before; so only they are worked out, as `closed` does.
+    """
+    for mid in range(size):
+        row = zone[mid * size : mid * size + size]
+        for start, gone in widened:
+            first = zone[start + mid]
+            if first >= INFINITE:
+                continue
+            for end in gone:
+                if row[end] < INFINITE and first + row[end] < zone[start + end]:
+                    zone[start + end] = first + row[end]

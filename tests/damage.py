@@ -14,8 +14,9 @@ from seqcheck.evidence.certificate import written
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Clearing, Hazard, Nearing, delays
 from seqcheck.proving.certify import cover
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.potentials import potentials, stands
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.screen import Map, Pairing, Places
 from seqcheck.proving.search import nodes
 from seqcheck.proving.views import View, view

@@ -25,7 +25,8 @@ from seqcheck.evidence.cover import shorts as walked
 from seqcheck.evidence.cover.shorts import first_uncovered, shorts
 from seqcheck.hazards import Hazard, Literal, delays
 from seqcheck.proving.certify import cover
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.clocks import Manner
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.prove import Prover
 from seqcheck.proving.search import first_hazard, nodes, ticks
 from seqcheck.proving.views import view

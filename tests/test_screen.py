@@ -9,7 +9,8 @@ from seqcheck.circuit import shorting_sets
 from seqcheck.drive import Drive, Update
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Hazard, Literal, delays
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.clocks import Manner
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.prove import LimitReached
 from seqcheck.proving.screen import Map, least_after, screened
 from seqcheck.proving.search import first_hazard

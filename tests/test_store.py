@@ -102,7 +102,7 @@ class Heard(Store):
 
 
 def outcome(drive: Drive, store: Store | None) -> Outcome:
-    return check(drive, FILE, frozenset(), at_most(400), None, store)
+    return check(drive, FILE, frozenset(), at_most(400), memory=store)
 
 
 def entries(folder: Path) -> list[Path]:
@@ -335,7 +335,7 @@ def test_an_edited_file_is_judged_as_if_nothing_was_kept(text: str) -> None:
             tried += 1
             limit = at_most(300)
             alone = check(drive, FILE, frozenset(), limit)
-            assert check(drive, FILE, frozenset(), limit, None, store) == alone, edited
+            assert check(drive, FILE, frozenset(), limit, memory=store) == alone, edited
     assert tried > 10
     assert store.knew or text != UNSAFE
 
@@ -348,7 +348,7 @@ def test_edited_drawn_files_are_judged_as_if_nothing_was_kept(seed: int) -> None
         drive = readable(edited)
         if drive is not None:
             alone = check(drive, FILE, frozenset(), at_most(300))
-            assert check(drive, FILE, frozenset(), at_most(300), None, store) == alone, edited
+            assert check(drive, FILE, frozenset(), at_most(300), memory=store) == alone, edited
 
 
 @pytest.mark.parametrize("zones", [1, 5, 30, 100])
@@ -356,9 +356,9 @@ def test_a_limit_ends_what_is_known_as_it_ends_a_search(zones: int) -> None:
     drive, store = drive_of(UNSAFE), Heard()
     outcome(drive, store)
     alone = check(drive, FILE, frozenset(), at_most(zones))
-    assert check(drive, FILE, frozenset(), at_most(zones), None, store) == alone
+    assert check(drive, FILE, frozenset(), at_most(zones), memory=store) == alone
     other = Heard()
-    check(drive, FILE, frozenset(), at_most(zones), None, other)
+    check(drive, FILE, frozenset(), at_most(zones), memory=other)
     assert outcome(drive, other) == outcome(drive, None)  # nothing that a limit has touched was kept
 
 

@@ -12,8 +12,9 @@ from seqcheck.circuit import shorting_sets
 from seqcheck.drive import Drive
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Delays, delays
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.cutting import Cutting
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.prove import Prover
 from seqcheck.proving.references import Reference
 from seqcheck.proving.screen import Map, screened

@@ -16,8 +16,9 @@ from seqcheck.firmware import Firmware, State
 from seqcheck.hazards import Hazard, delays
 from seqcheck.proving import keys
 from seqcheck.proving.certify import Data, cover
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.keys import Key
-from seqcheck.proving.projection import Manner, Projection, _holds
+from seqcheck.proving.projection import Projection, _holds
 from seqcheck.proving.search import first_hazard
 from seqcheck.proving.views import view
 from seqcheck.writing import Holds

@@ -82,7 +82,7 @@ def _command(name: str, about: str, parser: argparse.ArgumentParser, known: Mapp
 
 def _options(command: str, parser: argparse.ArgumentParser, known: Mapping[str, tuple[str, ...]]) -> Iterator[Option]:
     for action in parser._actions:
-        if action.option_strings:
+        if action.option_strings and action.help is not argparse.SUPPRESS:
             value = None if action.nargs == 0 else _offer(command, action, known)
             again = isinstance(action.default, list)  # what is said again is added to a list
             yield Option(action.option_strings[-1], " ".join((action.help or "").split()), value, again)

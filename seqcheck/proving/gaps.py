@@ -5,12 +5,13 @@ by anything more it does. A gap is looked for below a cap; where there is none b
 raised. What is found with carriers' phases forgotten is a lower bound only, but that nothing ever follows holds.
 """
 
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
 
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.conduction import POSSIBLE
 from seqcheck.proving.keys import GAP, LATELY, Key
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.projection import Projection
 from seqcheck.proving.search import LimitReached, Node, nodes, ticks
 
 Observer = Callable[[int], None]
@@ -42,17 +43,17 @@ class Asked:
     below: int | None
 
 
-def least_gap(look: Look, watched: int, carriers: bool, asked: Asked, observer: Observer) -> Least:
+def least_gap(look: Look, watched: int, manners: Sequence[Manner], asked: Asked, observer: Observer) -> Least:
     """The least gap after the literal at place `watched`.
 
-    `look` makes a projection, `carriers` tells whether phases can be forgotten. Where the observer raises LimitReached
-    the answer is a lower bound.
+    `look` makes a projection, `manners` are those in which to look, the exact one last. Where the observer raises
+    LimitReached the answer is a lower bound.
     """
     known = max(asked.floor, 0)
     cap = known + 1 if asked.below is None else asked.below
     while True:
-        for forget in (True, False) if carriers else (False,):
-            projection = look(Manner(forget, True, False, watched, cap))
+        for manner in manners:
+            projection = look(replace(manner, gap=watched, cap=cap))
             try:
                 best, later = _below_cap(projection, known, observer)
             except LimitReached as limit:
@@ -65,7 +66,7 @@ def least_gap(look: Look, watched: int, carriers: bool, asked: Asked, observer: 
                 known = cap
                 break
             known = gap_in(projection, best)
-            if not forget:
+            if not manner.forget:
                 return Least(known, best, projection)
         cap *= _WIDER
 

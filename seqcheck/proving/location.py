@@ -64,3 +64,7 @@ class Location:
         if self.hops is None:
             self.hops = self.expand(self)
         return self.hops
+
+
+Among = Callable[[Location], bool]
+"""Whether a search enters a location; where it leaves some out it shows what is, never that nothing is."""

@@ -3,16 +3,15 @@
 Other switches are left with the time that their writes take. Locations are worked out when the search reaches them.
 """
 
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Collection, Iterator
 from itertools import product
+from typing import NamedTuple
 
-from seqcheck.circuit import contradicted
 from seqcheck.drive import Update
 from seqcheck.firmware import Edge, Firmware, State
 from seqcheck.hazards import Clearing, Following
-from seqcheck.proving.conduction import HIT, POSSIBLE, ages, timeouts
-from seqcheck.proving.cutting import Cutting
+from seqcheck.proving.clocks import Clocks, Layout, Manner
+from seqcheck.proving.conduction import HIT, POSSIBLE, timeouts
 from seqcheck.proving.keys import (
     CAPPED,
     CARRIER,
@@ -27,63 +26,65 @@ from seqcheck.proving.keys import (
     NEVER_HELD,
     NOT_ENDED,
     OVER,
-    PAUSE,
     PIN,
     RISE,
     SILENT,
     SINCE,
     SPAN,
     WAITING,
-    Clock,
     Happening,
     Key,
     X,
     Y,
-    Z,
 )
 from seqcheck.proving.lengths import followed, watched
-from seqcheck.proving.location import Bound, Hop, Location
+from seqcheck.proving.location import Among, Bound, Hop, Location
 from seqcheck.proving.references import FORGOTTEN, Reference
 from seqcheck.proving.views import View
 from seqcheck.proving.wiring import Wiring
-from seqcheck.quantities import Interval
 from seqcheck.verdict import Act
-from seqcheck.zones import FRESH, INFINITE
+from seqcheck.zones import FRESH
 
+_Renaming = tuple[
+    Layout | None,
+    Layout,
+    frozenset[int],
+    tuple[tuple[int, int], ...],
+    tuple[tuple[int, int], ...],
+    tuple[int, ...],
+    tuple[tuple[int, int], ...],
+]
+"""What a hop's clocks depend on: those before it (None: it is a start) and after it, those that it starts anew, its
+bounds, the carriers after it, and where the clocks of held groups come from."""
 
-@dataclass(frozen=True, slots=True)
-class Manner:
-    """How to look: `forget` the phase of carriers nobody follows; `cut` long dwells; `measure` the overlap.
-
-    Or, with `gap`, measure how long after the possibility of the literal at that place all others are possible and
-    the hazard is asked for; gaps of `cap` ps and more are one.
-    """
-
-    forget: bool
-    cut: bool
-    measure: bool
-    gap: int | None = None
-    cap: int = 0
+_ANEW = {
+    (x, y): frozenset([X] * x + [Y] * y)
+    for x in (False, True)
+    for y in (False, True)
+}
+"""The firmware's clocks that an edge starts anew."""
 
 
 class Projection:
     """The locations and hops of one hazard."""
 
-    def __init__(self, view: View, firmware: Firmware, manner: Manner) -> None:
+    def __init__(self, view: View, firmware: Firmware, manner: Manner, wiring: Wiring | None = None) -> None:
+        """`wiring` is that of another projection of the same view and firmware, to share what it has worked out."""
         drive = view.drive
+        wiring = wiring or Wiring(view, firmware)
         assert max(len(drive.columns), len(drive.carriers), len(view.locks)) < SPAN - 1, "each clock has its name"
         self.view = view
         self.firmware = firmware
         self.manner = manner
-        self._wiring = Wiring(view, firmware)
+        self._wiring = wiring
         self._references = tuple(Reference(drive.carriers[name]) for name in view.carriers)
         self._spans = tuple(drive.carriers[name].update is Update.WITHIN_PERIOD for name in view.carriers)
         self._rises = tuple(drive.carriers[name].update is Update.AT_RISE for name in view.carriers)
-        # where interlocked switches follow different carriers, no cycle is like the one before
-        repeats = not view.locks or len(view.carriers) <= 1
-        self._cutting = Cutting(view, self._references) if manner.cut and repeats else None
+        self._clocks = Clocks(wiring, manner, self._references)
         self._locations: dict[Key, Location] = {}
-        self._clocks: dict[Key, tuple[Clock, ...]] = {}
+        self._layouts: dict[Key, Layout] = {}
+        self._renamings: dict[_Renaming, _Renamed] = {}
+        self._needs: dict[State, set[int]] = {}
 
     # Where it starts
 
@@ -104,7 +105,10 @@ class Projection:
         if not everything and not self.manner.forget:
             yield carriers
             return
-        needed = set(range(len(carriers))) if everything else self._wiring.needs(state)
+        if not carriers:
+            yield carriers
+            return
+        needed = set(range(len(carriers))) if everything else self._needed(state)
         choices: list[list[int]] = []
         for place, reference in enumerate(carriers):
             if place not in needed:
@@ -114,6 +118,12 @@ class Projection:
             else:
                 choices.append([reference])
         yield from product(*choices)
+
+    def _needed(self, state: State) -> set[int]:
+        known = self._needs.get(state)
+        if known is None:
+            known = self._needs[state] = self._wiring.needs(state)
+        return known
 
     def _hop(
         self,
@@ -127,8 +137,8 @@ class Projection:
         written: int = 0,
         ended: int | None = None,
     ) -> Hop:
-        if self.manner.measure and old is not None and event is not OVER:
-            key = key._replace(paused=self._pauses(old, key))
+        if self.manner.measure and old is not None and event is not OVER and self._pauses(old, key) != key.paused:
+            key = key._replace(paused=not key.paused)
         watched = self.manner.gap
         if watched is not None and old is not None and ended is None:
             key = key._replace(ended=old.ended)
@@ -137,15 +147,32 @@ class Projection:
         elif ended is not None:
             key = key._replace(ended=ended)
         target = self._location(key)
-        names = {} if old is None else {clock.name: place for place, clock in enumerate(self._clocks[old], 1)}
-        renaming = _holds(old, key, written)
+        before = None if old is None else self._layouts[old]
+        holds = tuple(_holds(old, key, written).items()) if key.state.put[2] else ()
+        asked: _Renaming = (before, self._layouts[key], resets, least, most, key.carriers, holds)
+        known = self._renamings.get(asked)
+        if known is None:
+            known = self._renamings[asked] = self._renamed(*asked)
+        return Hop(known.least, known.most, known.sources, known.after, target, cost, event)
+
+    def _renamed(
+        self,
+        old: Layout | None,
+        new: Layout,
+        resets: frozenset[int],
+        least: tuple[tuple[int, int], ...],
+        most: tuple[tuple[int, int], ...],
+        carriers: tuple[int, ...],
+        holds: tuple[tuple[int, int], ...],
+    ) -> "_Renamed":
+        names, held = {} if old is None else old.places, dict(holds)
         sources, after = [], []
-        for place, clock in enumerate(self._clocks[key], 1):
-            name = renaming.get(clock.name, clock.name)
+        for clock, place in new.places.items():
+            name = held.get(clock, clock)
             if CARRIER <= name < HOLD and name not in names:
                 sources.append(FRESH)
                 reference = self._references[name - CARRIER]
-                floor = dict(reference.starts())[key.carriers[name - CARRIER]]
+                floor = dict(reference.starts())[carriers[name - CARRIER]]
                 if floor:
                     after.append(Bound(place, floor))
             elif name == SINCE and old is None:  # it has been possible for ever
@@ -153,14 +180,11 @@ class Projection:
                 after.append(Bound(place, 1))
             else:
                 sources.append(0 if name in resets else names.get(name, 0))
-        return Hop(
+        return _Renamed(
             tuple(Bound(names[name], value) for name, value in least if value > 0),
             tuple(Bound(names[name], value) for name, value in most),
             tuple(sources),
             tuple(after),
-            target,
-            cost,
-            event,
         )
 
     # Locations
@@ -169,103 +193,55 @@ class Projection:
         known = self._locations.get(key)
         if known is not None:
             return known
-        clocks = tuple(self._clocks_of(key))
-        hot = self._hot(key)
-        self._clocks[key] = clocks
-        bounds = tuple(Bound(place, clock.bound) for place, clock in enumerate(clocks, 1) if clock.bound < INFINITE)
-        measure = next((place for place, clock in enumerate(clocks, 1) if clock.name == Z), 0)
-        lower, upper = (0, *(clock.lower for clock in clocks)), (0, *(clock.upper for clock in clocks))
-        location = Location(
-            key, len(clocks) + 1, bounds, lower, upper, hot, hot and self._wiring.held(key), measure, self._expand
-        )
+        hot = self._clocks.hot(key)
+        layout = self._layouts[key] = self._clocks.layout(key, hot)
+        held = hot and self._wiring.held(key)
+        bounds, lower, upper, measure = layout.bounds, layout.lower, layout.upper, layout.measure
+        location = Location(key, len(lower), bounds, lower, upper, hot, held, measure, self._expand)
         location.struck = HIT in key.literals
         self._locations[key] = location
         return location
 
     def _pauses(self, old: Key, key: Key) -> bool:
         """Whether an overlap may go on after this: it does if no time passes until the hazard is asked for again."""
-        possible = all(POSSIBLE[literal] for literal in key.literals)
-        return possible and not self._hot(key) and (old.paused or self._hot(old))
+        for literal in key.literals:
+            if not POSSIBLE[literal]:
+                return False
+        return not self._clocks.hot(key) and (old.paused or self._clocks.hot(old))
 
-    def _hot(self, key: Key) -> bool:
-        """Whether all literals are possible and asked for; for a gap, all others after the one that is watched."""
-        possible = [POSSIBLE[literal] for literal in key.literals]
-        if self.manner.gap is not None:
-            possible[self.manner.gap] = key.ended != NOT_ENDED and not possible[self.manner.gap]
-        if not all(possible):
-            return False
-        return not contradicted(self.view.hazard, self.firmware.facts(key.state))
+    # For searches of a part
 
-    def _clocks_of(self, key: Key) -> Iterator[Clock]:
-        hot = self._hot(key)
-        yield from self._firmware_clocks(key, hot)
-        for place, reference in enumerate(key.carriers):
-            if reference != FORGOTTEN and self._references[place].moving:
-                lower, upper = self._references[place].constants(reference)
-                yield Clock(CARRIER + place, lower, upper, self._references[place].bound(reference))
-        for place, (number, _) in enumerate(key.state.put[2]):
-            longest = self._period(number)
-            first = all(other != number for other, _ in key.state.put[2][:place])
-            yield Clock(HOLD + place, 0, longest, longest if first else INFINITE)
-        for place, state in enumerate(key.pins):
-            pin = self._wiring.pins[place]
-            if state > 0 and state & 1 and pin is not None:
-                yield _timer(PIN + place, pin.after)
-        for place, state in enumerate(key.locks):
-            if state == WAITING:
-                yield _timer(LOCK + place, self.view.locks[place].dead)
-        for place, state in enumerate(key.literals):
-            rise, fall = ages(state)
-            times = self.view.delays[place]
-            if rise:
-                yield Clock(RISE + place, times.rise, times.rise, times.rise)
-            if fall:
-                yield Clock(FALL + place, times.fall, times.fall, times.fall)
-        if self.manner.measure and (hot or key.paused):
-            yield Clock(Z, INFINITE, INFINITE, INFINITE)
-        if key.paused:
-            yield Clock(PAUSE, 0, 0, 0)
-        if key.ended == LATELY:
-            yield Clock(GAP, self.manner.cap, self.manner.cap, self.manner.cap)
-        if self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
-            forgets = key.ended == LATELY  # once it has been possible for some time, what ended before is over
-            yield Clock(SINCE, 1, int(forgets), 1 if forgets else INFINITE)
+    def image(self, key: Key) -> Key:
+        """A key as it looks without the phases of carriers that nobody follows, and without firmware's upper bounds."""
+        needed = self._needed(key.state)
+        carriers = tuple(one if place in needed else FORGOTTEN for place, one in enumerate(key.carriers))
+        return key._replace(state=key.state._replace(latest=None), carriers=carriers)
 
-    def _firmware_clocks(self, key: Key, hot: bool) -> Iterator[Clock]:
-        edges, deadline = self._timing(key, hot)
-        lower = max((edge.lo for edge in edges), default=0)
-        highs = [edge.hi for edge in edges if edge.hi is not None]
-        if self._cutting is not None and deadline is None and not highs and self._bounded(key.state):
-            highs.append(self._cutting.length)  # where an overlap begins in this stay, the bounds come back
-        if deadline is not None or highs or lower:
-            upper = max([*highs, deadline or 0])
-            yield Clock(X, lower, upper, INFINITE if deadline is None else deadline)
-        hand = self.firmware.hand_deadline(key.state)
-        if hand is not None:
-            yield Clock(Y, 0, hand, hand)
+    def along(self, images: Collection[Key]) -> Among:
+        """What enters only locations that look like these."""
+        known: dict[Location, bool] = {}
 
-    def _bounded(self, state: State) -> bool:
-        """Whether the file gives the stay, or an edge out of it, an upper bound."""
-        some = any(edge.hi is not None for edge in self.firmware.edges(state))
-        return some or self.firmware.deadline(state) is not None
+        def among(location: Location) -> bool:
+            if location not in known:
+                key = location.key
+                assert isinstance(key, Key)
+                known[location] = self.image(key) in images
+            return known[location]
 
-    def _period(self, number: int) -> int:
-        period = self._references[self._wiring.place[number]].carrier.period.hi
-        assert period is not None, "a frequency is finite"
-        return period
+        return among
 
-    def _timing(self, key: Key, hot: bool) -> tuple[tuple[Edge, ...], int | None]:
-        """The firmware's edges and deadline, long stays cut short where that changes nothing.
+    def anew(self) -> "Projection":
+        """Itself, ready for another search: what was stored is forgotten, but not what the drive can do."""
+        for location in self._locations.values():
+            location.passed = []
+        return self
 
-        Where all literals are possible a stay keeps its times: an overlap that comes from before the stay has settled
-        must last as long as the stay, and one that ends with it does not outlast it. So it is where a gap is measured,
-        and where a trip may arrive early, after which the stay goes on.
-        """
-        edges, deadline = self.firmware.edges(key.state), self.firmware.deadline(key.state)
-        measured = hot or key.ended == LATELY or any(not edge.resets_x for edge in edges)
-        if self._cutting is None or key.state.hand >= 0 or measured:
-            return edges, deadline
-        return self._cutting.cut(edges, deadline)
+    def release(self) -> None:
+        """Let go of all locations, which hold each other."""
+        for location in self._locations.values():
+            location.passed, location.hops = [], None
+        self._locations.clear()
+        self._layouts.clear()
 
     # For traces and certificates
 
@@ -275,7 +251,7 @@ class Projection:
 
     def clock_name(self, key: Key, place: int) -> int:
         """The identity of a location's clock."""
-        return self._clocks[key][place - 1].name
+        return tuple(self._layouts[key].places)[place - 1]
 
     def eased(self, hop: Hop, location: Location) -> Hop:
         """A hop of the firmware out of a location that asks for no longer a stay than a cut one."""
@@ -285,7 +261,7 @@ class Projection:
         if happening.edge is None:
             return hop
         step = happening.edge.step
-        cut = min((one.lo for one in self._timing(key, False)[0] if one.step == step), default=happening.edge.lo)
+        cut = min((one.lo for one in self._clocks.timing(key, False)[0] if one.step == step), default=happening.edge.lo)
         least = tuple(
             Bound(clock, min(value, cut) if self.clock_name(key, clock) == X else value) for clock, value in hop.least
         )
@@ -294,7 +270,7 @@ class Projection:
     @property
     def settled(self) -> int:
         """A stay that may be cut and has lasted for so long may have lasted for any time."""
-        return self._cutting.length + 1 if self._cutting is not None else 0
+        return self._clocks.settled
 
     def full_dwell(self, edge: Edge, location: Location) -> int:
         """How long a stay the file asks for before an edge that the search may have let come sooner."""
@@ -309,25 +285,28 @@ class Projection:
         assert isinstance(key, Key)
         if location.struck:
             return ()
-        return (
-            *self._pause_over(key),
-            *self._gap_capped(key),
-            *self._conducting(key),
-            *self._firmware_hops(key),
-            *self._carrier_hops(key),
-            *self._update_hops(key),
-            *self._pin_hops(key),
-            *self._lock_hops(key),
-        )
+        return tuple(self._hops(key))
+
+    def _hops(self, key: Key) -> Iterator[Hop]:
+        if key.paused:
+            yield from self._pause_over(key)
+        if key.ended == LATELY:
+            yield from self._gap_capped(key)
+        yield from self._conducting(key)
+        yield from self._firmware_hops(key)
+        if key.carriers:
+            yield from self._carrier_hops(key)
+        if key.state.put[2]:
+            yield from self._update_hops(key)
+        yield from self._pin_hops(key)
+        yield from self._lock_hops(key)
 
     def _pause_over(self, key: Key) -> Iterator[Hop]:
-        if key.paused:
-            yield self._hop(key, key._replace(paused=False), frozenset(), (), (), 0, OVER)
+        yield self._hop(key, key._replace(paused=False), frozenset(), (), (), 0, OVER)
 
     def _gap_capped(self, key: Key) -> Iterator[Hop]:
-        if key.ended == LATELY:
-            yield self._hop(key, key, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED, ended=LONG_AGO)
-        if key.ended == LATELY and self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
+        yield self._hop(key, key, frozenset(), ((GAP, self.manner.cap),), (), 0, CAPPED, ended=LONG_AGO)
+        if self.manner.gap is not None and POSSIBLE[key.literals[self.manner.gap]]:
             yield self._hop(key, key, frozenset(), ((SINCE, 1),), (), 0, CAPPED, ended=NOT_ENDED)
 
     def _conducting(self, key: Key) -> Iterator[Hop]:
@@ -335,7 +314,8 @@ class Projection:
             times = self.view.delays[place]
             for by_rise, after in timeouts(state):
                 name, least = (RISE + place, times.rise) if by_rise else (FALL + place, times.fall)
-                new = key._replace(literals=(*key.literals[:place], after, *key.literals[place + 1 :]))
+                literals = (*key.literals[:place], after, *key.literals[place + 1 :])
+                new = Key(key.state, key.carriers, key.pins, key.locks, literals, key.paused, key.ended)
                 if place == self.manner.gap and POSSIBLE[state] and not POSSIBLE[after]:
                     yield from self._end_of_watched(key, new, (name, least))
                 else:
@@ -347,16 +327,20 @@ class Projection:
         yield self._hop(key, new, frozenset(), (least,), ((SINCE, 0),), 0, SILENT)
 
     def _firmware_hops(self, key: Key) -> Iterator[Hop]:
-        for edge in self._timing(key, self._hot(key))[0]:
+        asking = self.view.hazard.asks is not None
+        for edge in self._clocks.timing(key, self._clocks.hot(key))[0]:
             target = edge.step.target
-            written = sum({1 << switch for deed in edge.step.deeds for switch, _ in deed.writes})
+            written = 0
+            if target.put[2]:  # else it is never asked for
+                written = sum({1 << switch for deed in edge.step.deeds for switch, _ in deed.writes})
             most = ((X, edge.hi),) if edge.hi is not None else ()
             if edge.y_hi is not None:
                 most = (*most, (Y, edge.y_hi))
-            starts_anew = {name for name, anew in ((X, edge.resets_x), (Y, edge.resets_y)) if anew}
+            starts_anew = _ANEW[edge.resets_x, edge.resets_y]
             for carriers in self._phases(target, key.carriers):
                 new, resets = self._wiring.settle(key, target, carriers, key.pins, key.locks)
-                new, resets = self._told(key, new, edge, resets)
+                if asking:
+                    new, resets = self._told(key, new, edge, resets)
                 yield self._hop(
                     key,
                     new,
@@ -425,9 +409,13 @@ class Projection:
             yield self._hop(key, new, resets, ((LOCK + place, lock.dead.lo),), (), 0, happening)
 
 
-def _timer(name: int, span: Interval) -> Clock:
-    assert span.hi is not None, "the language asks for an upper bound of hardware times"
-    return Clock(name, span.lo, span.hi, span.hi)
+class _Renamed(NamedTuple):
+    """The clocks of a hop (see Hop)."""
+
+    least: tuple[Bound, ...]
+    most: tuple[Bound, ...]
+    sources: tuple[int, ...]
+    after: tuple[Bound, ...]
 
 
 def _holds(old: Key | None, key: Key, written: int) -> dict[int, int]:

@@ -1,6 +1,7 @@
 """The proof of one hazard: the screen, then zones with phases forgotten, then exact zones.
 
 Everything is tried first with the firmware's upper bounds removed: what holds then holds however late the firmware is.
+A run that is found where it proves nothing is followed at once where it would.
 """
 
 from collections.abc import Callable
@@ -8,19 +9,22 @@ from dataclasses import dataclass, replace
 from itertools import product
 from typing import TypeVar, cast
 
-from seqcheck.drive import Cell, Command, Drive, Fixed, Follow, Interlock, Update
+from seqcheck.drive import Drive, Interlock, Update
 from seqcheck.faults import Spread
 from seqcheck.firmware import Firmware
 from seqcheck.hazards import Clearing, Following, Hazard, Lasting, Length, Nearing, Stuck, delays
 from seqcheck.proving.certify import Data, cover
+from seqcheck.proving.clocks import Manner
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
+from seqcheck.proving.looks import Looks, along, longest, may_hold, may_hold_in
 from seqcheck.proving.memory import Count, Known, Memory, Question
 from seqcheck.proving.potentials import potentials, stands
-from seqcheck.proving.projection import Manner, Projection
+from seqcheck.proving.projection import Projection
+from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.resting import rests
 from seqcheck.proving.screen import Map, Places, least_after, screened
-from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held, longest_overlap
+from seqcheck.proving.search import LimitReached, Node, first_hazard, first_held
 from seqcheck.proving.shortest import shortest
 from seqcheck.proving.spread import spread
 from seqcheck.proving.tracing import gap_trace, rest_trace, short_trace, trace_of
@@ -75,14 +79,22 @@ class Gap:
 class Prover:
     """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
-    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate. A `memory`
-    may know answers that take long; it is not asked then, since an answer has no proof with it.
+    With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate. Some of what
+    makes proofs short can be left out (`without`); no answer changes by that. A `memory` may know answers that take
+    long; it is not asked then, since an answer has no proof with it and was found with everything.
     """
 
-    def __init__(self, drive: Drive, keep: bool = False, memory: Memory | None = None) -> None:
+    def __init__(
+        self,
+        drive: Drive,
+        keep: bool = False,
+        without: frozenset[Reduction] = frozenset(),
+        memory: Memory | None = None,
+    ) -> None:
         self.drive = drive
         self.keep = keep
-        self.memory = None if keep else memory
+        self.without = without
+        self.memory = None if keep or without else memory
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool, str | None], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
         self._stands: dict[Map, list[Data]] = {}
@@ -97,37 +109,48 @@ class Prover:
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
         keep = self.keep and interlocks and not isinstance(hazard.asks, Stuck)
-        if hazard.asks is None:
+        if hazard.asks is None and Reduction.SCREEN not in self.without:
             here = self._map(self._firmware(looking, punctual=False), observer)
             if (apart := screened(looking, here)) is not None:
                 return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
-        count = Count(observer, self.memory, Question("prove", looking, (interlocks,)))
-        return _remembered(count, lambda: self._explored(looking, interlocks, count, keep))
+        looks, count = self._looks(looking), Count(observer, self.memory, Question("prove", looking, (interlocks,)))
+        try:
+            return _remembered(count, lambda: self._searched(looks, keep, interlocks, count))
+        finally:
+            looks.release()
 
-    def _explored(self, looking: View, interlocks: bool, count: Count, keep: bool) -> Proven | Refuted:
-        """By zones."""
+    def _searched(self, looks: Looks, keep: bool, interlocks: bool, count: Count) -> Proven | Refuted:
+        """What zones say.
+
+        A run that was found with phases forgotten, or with firmware that may be late, is looked for at once where it
+        would count: if it is found there, nothing else needs to be searched.
+        """
+        looking = looks.view
         for punctual in (False, True):
-            for manner in _manners(looking):
-                projection = self._searched(looking, punctual, manner, count)
-                if projection is not None:
+            for manner in looks.manners():
+                projection = looks.projection(punctual, manner)
+                count.next_search()
+                node = first_hazard(projection.initial(), count)
+                if node is None:
                     kept = cover(projection, not punctual) if keep else None
                     return Proven("zones", count.total, not punctual, kept)
-        if _must_last(looking.hazard):
-            return self._too_short(looking, count)
-        return self._refute(looking, interlocks, count)
+                if _must_last(looking.hazard):
+                    continue
+                found = node if punctual and manner == looks.manners()[-1] else along(looks, projection, node, count)
+                if found is not None:
+                    return self._refute(looks, interlocks, found, count)
+        return self._too_short(looks, count)
 
-    def _too_short(self, looking: View, count: Count) -> Refuted:
+    def _too_short(self, looks: Looks, count: Count) -> Refuted:
         """The run in which what is too short is shortest."""
-        assert isinstance(looking.hazard.asks, Length), "it asks for a length"
-        limit = looking.hazard.asks.limit
-        firmware = self._firmware(looking, punctual=True)
+        assert isinstance(looks.view.hazard.asks, Length), "it asks for a length"
+        limit = looks.view.hazard.asks.limit
         count.next_search()
-        projection = Projection(looking, firmware, _manners(looking)[-1])
+        projection = looks.projection(True, looks.manners()[-1])
         try:
             found = shortest(projection, count)
         except LimitReached:  # the search for any such run ended before
-            projection = Projection(looking, firmware, _manners(looking)[-1])
-            found = shortest(projection, lambda _: None, any_will_do=True)
+            found = shortest(projection.anew(), lambda _: None, any_will_do=True)
         assert found is not None, "it was found before"
         return Refuted(short_trace(projection, found.node), None, limit - found.time, count.total, found.least)
 
@@ -138,21 +161,20 @@ class Prover:
         """
         drive = self.drive if locks is None else replace(self.drive, interlocks=locks)
         looking = view(drive, hazard, delays(hazard, drive.paths), interlocks=True)
-        if hazard.asks is None:
+        if hazard.asks is None and Reduction.SCREEN not in self.without:
             here = self._map(self._firmware(looking, punctual=False), observer)
             if screened(looking, here) is not None:
                 return True
-        count = Count(observer, self.memory, Question("holds", looking))
-        return _remembered(
-            count,
-            lambda: any(self._searched(looking, True, manner, count) is not None for manner in _manners(looking)),
-        )
+        looks, count = self._looks(looking), Count(observer, self.memory, Question("holds", looking))
+        searches = (looks.projection(True, manner) for manner in looks.manners())
+        try:
+            return _remembered(count, lambda: any(first_hazard(one.initial(), count) is None for one in searches))
+        finally:
+            looks.release()
 
-    def _searched(self, looking: View, punctual: bool, manner: Manner, count: Count) -> Projection | None:
-        """The projection with all that its search stored, if no run in it brings the hazard."""
-        count.next_search()
-        projection = Projection(looking, self._firmware(looking, punctual), manner)
-        return projection if first_hazard(projection.initial(), count) is None else None
+    def _looks(self, looking: View) -> Looks:
+        late, in_time = (self._firmware(looking, punctual) for punctual in (False, True))
+        return Looks(looking, late, in_time, self.without)
 
     def gap(self, hazard: Hazard, watched: int, observer: Observer, below: int | None = None) -> Gap:
         """The least gap of a safe hazard after the literal at place `watched`: its margin in that direction.
@@ -175,21 +197,26 @@ class Prover:
                 here = self._map(self._firmware(looking, punctual=False), count)
                 self.margins[asked] = self._screened(looking, here, (0, 1))
             return Gap(floor, None)
-        firmware = self._firmware(looking, punctual=True)
+        looks = self._looks(looking)
 
         def look(manner: Manner) -> Projection:
             count.next_search()
-            return Projection(looking, firmware, manner)
+            return looks.projection(True, manner)
 
-        least = least_gap(look, watched, bool(looking.carriers), Asked(floor, below), count)
-        if least.node is not None:
-            return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
-        if asked is not None and not least.limit:
-            self.margins[asked] = cover(least.projection, however_late=False)
-        return Gap(least.time if least.within or least.limit else None, None, least.limit)
+        try:
+            least = least_gap(look, watched, looks.manners(), Asked(floor, below), count)
+            if least.node is not None:
+                return Gap(least.time, gap_trace(least.projection, least.node, watched, least.time))
+            if asked is not None and not least.limit:
+                self.margins[asked] = cover(least.projection, however_late=False)
+            return Gap(least.time if least.within or least.limit else None, None, least.limit)
+        finally:
+            looks.release()
 
     def _floor(self, looking: View, watched: int, count: Count) -> int | None:
         """A lower bound of a gap from least times alone; None where nothing ever follows."""
+        if Reduction.SCREEN in self.without:
+            return 0
         if len(looking.hazard.literals) != 2 or looking.locks or not all(one.on for one in looking.hazard.literals):
             return 0
         bound = least_after(looking, self._map(self._firmware(looking, punctual=False), count), watched)
@@ -206,19 +233,23 @@ class Prover:
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
         count = Count(observer)
         try:
-            if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
+            screens = Reduction.SCREEN not in self.without
+            if screens and screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
                 return Spread(frozenset(), frozenset())
         except LimitReached as limit:
             return Spread(frozenset(), frozenset(), str(limit))
-        *rough, exact = _manners(looking)
-        firmware = self._firmware(looking, punctual=True)
+        looks = self._looks(looking)
+        *rough, exact = looks.manners()
         ceiling = None
-        for manner in rough:
-            ceiling = spread(Projection(looking, firmware, manner).initial(), count, None)
-            if ceiling.limit is not None or not ceiling.places:
-                return Spread(frozenset(), frozenset(), ceiling.limit)
-            count.next_search()
-        return spread(Projection(looking, firmware, exact).initial(), count, ceiling)
+        try:
+            for manner in rough:
+                ceiling = spread(looks.projection(True, manner).initial(), count, None)
+                if ceiling.limit is not None or not ceiling.places:
+                    return Spread(frozenset(), frozenset(), ceiling.limit)
+                count.next_search()
+            return spread(looks.projection(True, exact).initial(), count, ceiling)
+        finally:
+            looks.release()
 
     def at_rest(
         self, hazard: Hazard, modes: frozenset[str], observer: Observer
@@ -230,17 +261,26 @@ class Prover:
         Raises Infeasible.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
-        count, before = Count(observer), 0
+        count = Count(observer)
         try:
-            if screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
+            screens = Reduction.SCREEN not in self.without
+            if screens and screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
                 return {mode: Proven("screen", 0, True) for mode in modes}
         except LimitReached as limit:
             return dict.fromkeys(modes, str(limit))
+        looks = self._looks(looking)
+        try:
+            return self._rests(looks, modes, count)
+        finally:
+            looks.release()
+
+    def _rests(self, looks: Looks, modes: frozenset[str], count: Count) -> dict[str, "Proven | Refuted | str"]:
         answers: dict[str, Proven | Refuted | str] = {}
-        for punctual, manner in product((False, True), _manners(looking)):
+        before = 0
+        for punctual, manner in product((False, True), looks.manners()):
             count.next_search()
-            projection = Projection(looking, self._firmware(looking, punctual), manner)
-            holding = frozenset(mode for mode in modes if _may_hold_in(looking, mode))
+            projection = looks.projection(punctual, manner)
+            holding = frozenset(mode for mode in modes if may_hold_in(looks.view, mode))
             found = rests(projection.initial(), modes, holding, count)
             sure = punctual and not manner.forget
             if found.limit is not None:
@@ -269,47 +309,42 @@ class Prover:
             self._screenings[looking.hazard] = known
         return known
 
-    def _refute(self, looking: View, interlocks: bool, count: Count) -> Refuted:
+    def _refute(self, looks: Looks, interlocks: bool, first: Node, count: Count) -> Refuted:
+        """The longest overlap of a hazard that happens; `first` is a run that brings it."""
         try:
-            return self._measured(looking, interlocks, count)
+            return self._measured(looks, interlocks, count)
         except LimitReached:
-            return self._first(looking, interlocks)
+            return self._first(looks, interlocks, first)
 
-    def _measured(self, looking: View, interlocks: bool, count: Count) -> Refuted:
+    def _measured(self, looks: Looks, interlocks: bool, count: Count) -> Refuted:
         """The run with the longest overlap, or to a mode that holds the hazard."""
-        firmware = self._firmware(looking, punctual=True)
-        ceiling: int | None = None
-        *rough, exact = (Projection(looking, firmware, manner) for manner in _manners(looking, measure=True))
-        for projection in rough:
-            count.next_search()
-            bound = longest_overlap(projection.initial(), count, None)
-            ceiling = bound.time if bound and bound.greatest else None
-        count.next_search()
-        found = longest_overlap(exact.initial(), count, ceiling)
-        assert found is not None, "a first hazard was found before"
-        longest = trace_of(exact, found.node, found.time is None, interlocks)
+        exact = looks.projection(True, looks.manners(measure=True)[-1])
+        found = longest(looks, count)
+        whole = trace_of(exact, found.node, found.time is None, interlocks)
         if found.held is not None:
-            return Refuted(longest, _mode(found.held), found.time, count.total, found.greatest)
-        if not _may_hold(looking):
-            return Refuted(longest, None, found.time, count.total, found.greatest)
-        trace, mode = self._held(looking, interlocks, count)
-        return Refuted(trace or longest, mode, found.time, count.total, found.greatest)
+            return Refuted(whole, _mode(found.held), found.time, count.total, found.greatest)
+        if not may_hold(looks.view):
+            return Refuted(whole, None, found.time, count.total, found.greatest)
+        trace, mode = self._held(looks, interlocks, count)
+        return Refuted(trace or whole, mode, found.time, count.total, found.greatest)
 
-    def _first(self, looking: View, interlocks: bool) -> Refuted:
-        """The first run found: a limit was reached before a longer one was. The search is one that ended before."""
-        projection = Projection(looking, self._firmware(looking, punctual=True), _manners(looking)[-1])
-        node = first_hazard(projection.initial(), lambda count: None)
-        assert node is not None, "it was found before"
+    def _first(self, looks: Looks, interlocks: bool, node: Node) -> Refuted:
+        """The first run found: a limit was reached before a longer one was."""
+        projection = looks.projection(True, looks.manners()[-1])
         endless = not node.location.bounds
         trace = trace_of(projection, node, endless, interlocks)
         overlap = None if endless else trace.end - trace.overlap_from
         return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
-    def _held(self, looking: View, interlocks: bool, count: Count) -> tuple[Trace | None, str | None]:
+    def _held(self, looks: Looks, interlocks: bool, count: Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
+        *rough, exact = looks.manners()
+        for manner in rough:
+            count.next_search()
+            if first_held(looks.projection(True, manner).initial(), count) is None:
+                return None, None
         count.next_search()
-        manner = _manners(looking)[-1]
-        projection = Projection(looking, self._firmware(looking, punctual=True), manner)
+        projection = looks.projection(True, exact)
         node = first_held(projection.initial(), count)
         if node is None:
             return None, None
@@ -332,13 +367,6 @@ class Prover:
         return self._maps[firmware]
 
 
-def _at_rest(projection: Projection, node: Node) -> Refuted:
-    endless = not node.location.bounds
-    trace = rest_trace(projection, node, endless)
-    overlap = None if endless else trace.end - trace.overlap_from
-    return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
-
-
 Answer = TypeVar("Answer")
 
 
@@ -352,43 +380,17 @@ def _remembered(count: Count, found: Callable[[], Answer]) -> Answer:
     return answer
 
 
-def _manners(looking: View, measure: bool = False) -> tuple[Manner, ...]:
-    exact = Manner(forget=False, cut=True, measure=measure)
-    return (Manner(forget=True, cut=True, measure=measure), exact) if looking.carriers else (exact,)
+def _at_rest(projection: Projection, node: Node) -> Refuted:
+    endless = not node.location.bounds
+    trace = rest_trace(projection, node, endless)
+    overlap = None if endless else trace.end - trace.overlap_from
+    return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
 
 def _must_last(hazard: Hazard) -> bool:
     """Whether the question is about a length that is too short."""
     asks = hazard.asks
     return isinstance(asks, Following) or (isinstance(asks, Lasting) and not asks.longer)
-
-
-def _may_hold(looking: View) -> bool:
-    """Whether some row could command all literals at once."""
-    if isinstance(looking.hazard.asks, Clearing):
-        return False
-    drive = looking.drive
-    columns = [drive.columns.index(one.switch) for one in looking.hazard.literals]
-    sides: dict[Cell, bool] = {Fixed.OFF: False, Fixed.ON: True}
-    for mode in drive.modes.values():
-        cells = [(mode.cells[column], one.on) for column, one in zip(columns, looking.hazard.literals, strict=True)]
-        on = {cell for cell, wanted_on in cells if wanted_on}
-        opposites = any(isinstance(cell, Follow) and replace(cell, inverted=not cell.inverted) in on for cell in on)
-        if not opposites and all(sides.get(cell, wanted) == wanted for cell, wanted in cells):
-            return True
-    return False
-
-
-def _may_hold_in(looking: View, mode: str) -> bool:
-    """Whether the row of a mode could command all literals at rest."""
-    drive = looking.drive
-    sides: dict[Cell, Command] = {Fixed.OFF: Command.OFF, Fixed.ON: Command.ON}
-    for one in looking.hazard.literals:
-        cell = drive.modes[mode].cells[drive.columns.index(one.switch)]
-        told = drive.pins[one.switch].resting if cell is Fixed.FREE else sides.get(cell, Command.UNKNOWN)
-        if told is (Command.OFF if one.on else Command.ON):
-            return False
-    return True
 
 
 def _mode(node: Node) -> str:

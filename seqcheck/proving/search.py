@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 
 from seqcheck.proving.circles import goes_on, idle
-from seqcheck.proving.location import Bound, Hop, Location
+from seqcheck.proving.location import Among, Bound, Hop, Location
 from seqcheck.zones import INFINITE, Zone, delayed, extrapolated, includes, limited, renamed
 
 Observer = Callable[[int], None]
@@ -74,10 +74,10 @@ def ticks(location: Location, zone: Zone) -> bool:
     return location.struck or all(-zone[clock] < bound for clock, bound in location.bounds)
 
 
-def nodes(initial: Iterable[Hop], observer: Observer) -> Iterator[Node]:
+def nodes(initial: Iterable[Hop], observer: Observer, among: Among | None = None) -> Iterator[Node]:
     """All stored zones, fewest moves first; on every step each zone before is stored or included in a stored one."""
     count = 0
-    waiting: list[tuple[Node | None, Hop]] = [(None, hop) for hop in initial]
+    waiting: list[tuple[Node | None, Hop]] = [(None, hop) for hop in initial if among is None or among(hop.target)]
     while waiting:
         level: list[Node] = []
         following: list[tuple[Node | None, Hop]] = []
@@ -90,6 +90,8 @@ def nodes(initial: Iterable[Hop], observer: Observer) -> Iterator[Node]:
                 yield new
         for node in level:  # grows while it is walked through
             for hop in node.location.out() if node.alive else ():
+                if among is not None and not among(hop.target):
+                    continue
                 if hop.cost:
                     following.append((node, hop))
                     continue
@@ -129,9 +131,9 @@ def _stored(parent: Node | None, hop: Hop) -> Node | None:
     return node
 
 
-def first_hazard(initial: Iterable[Hop], observer: Observer) -> Node | None:
+def first_hazard(initial: Iterable[Hop], observer: Observer, among: Among | None = None) -> Node | None:
     """The first stored zone in which all literals are possible for a positive time; None if there is none."""
-    for node in nodes(initial, observer):
+    for node in nodes(initial, observer, among):
         if node.location.hot and ticks(node.location, node.zone):
             return node
     return None
@@ -164,7 +166,9 @@ class Longest:
         return None
 
 
-def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | None) -> Longest | None:
+def longest_overlap(
+    initial: Iterable[Hop], observer: Observer, ceiling: int | None, among: Among | None = None
+) -> Longest | None:
     """The longest overlap of all runs; None if there is none.
 
     `ceiling` is a bound known beforehand (None: none): the search ends where it is reached. It would come to an end
@@ -174,7 +178,7 @@ def longest_overlap(initial: Iterable[Hop], observer: Observer, ceiling: int | N
     best: Node | None = None
     most, complete = 0, True
     try:
-        for count, node in enumerate(nodes(initial, observer)):
+        for count, node in enumerate(nodes(initial, observer, among)):
             time = _measured(node)
             if time > most:
                 best, most = node, time

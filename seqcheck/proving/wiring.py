@@ -1,5 +1,7 @@
 """From the firmware's cells to the commands that reach the paths, and on to the literals' automata."""
 
+from typing import NamedTuple
+
 from seqcheck.firmware import Firmware, State
 from seqcheck.hazards import Clearing, Following, Lasting
 from seqcheck.proving.conduction import ENTERING, IDLE, IN, OUT, Turn, turned
@@ -24,6 +26,23 @@ from seqcheck.proving.views import Lock, View
 from seqcheck.writing import FREE, ON, carrier_of, inverted
 
 
+class _Event(NamedTuple):
+    """All that pins, interlocks and literals can tell of an event: the cells in effect before and after it, carriers,
+    pins, interlocks and literals before it, and carriers, pins and interlocks as it makes them."""
+
+    before: tuple[int, ...]
+    after: tuple[int, ...]
+    old: tuple[tuple[int, ...], ...]
+    new: tuple[tuple[int, ...], ...]
+
+
+class _Settled(NamedTuple):
+    """Pins, interlocks and literals after an event, and the clocks that it starts anew."""
+
+    wires: tuple[tuple[int, ...], tuple[int, ...], tuple[int, ...]]
+    resets: frozenset[int]
+
+
 class Wiring:
     """What one hazard's switches are commanded, and what that makes of its literals."""
 
@@ -35,6 +54,7 @@ class Wiring:
         self.place = {number: place for place, number in enumerate(self.numbers)}
         self.pins = tuple(drive.pins.get(name) for name in view.switches)
         self._columns = tuple(drive.columns.index(name) for name in view.switches)
+        self._settled_before: dict[_Event, _Settled] = {}
         self._literals = tuple((view.switches.index(one.switch), one.on) for one in view.hazard.literals)
 
     def initial(self, state: State, carriers: tuple[int, ...]) -> Key:
@@ -104,6 +124,21 @@ class Wiring:
         self, old: Key, state: State, carriers: tuple[int, ...], pins: tuple[int, ...], locks: tuple[int, ...]
     ) -> tuple[Key, frozenset[int]]:
         """The key after an event, and the clocks that it starts anew."""
+        before, after = old.state.put[1], state.put[1]
+        event = _Event(
+            tuple([before[column] for column in self._columns]),
+            tuple([after[column] for column in self._columns]),
+            (old.carriers, old.pins, old.locks, old.literals),
+            (carriers, pins, locks),
+        )
+        known = self._settled_before.get(event)
+        if known is None:
+            known = self._settled_before[event] = self._settling(old, state, carriers, pins, locks)
+        return Key(state, carriers, *known.wires), known.resets
+
+    def _settling(
+        self, old: Key, state: State, carriers: tuple[int, ...], pins: tuple[int, ...], locks: tuple[int, ...]
+    ) -> "_Settled":
         resets: list[int] = []
         before = self._raw(old.state, old.carriers, old.pins)
         pins = tuple(self._released(place, state, pins[place], before[place], resets) for place in range(len(pins)))
@@ -116,7 +151,7 @@ class Wiring:
             turn = self._turned(place, old.literals[place], wanted, raw, locks)
             literals[place] = turn.state
             resets += [RISE + place] * turn.resets_rise + [FALL + place] * turn.resets_fall
-        return Key(state, carriers, pins, locks, tuple(literals)), frozenset(resets)
+        return _Settled((pins, locks, tuple(literals)), frozenset(resets))
 
     def _released(self, place: int, state: State, pin: int, before: int, resets: list[int]) -> int:
         if state.put[1][self._columns[place]] != FREE:

@@ -221,7 +221,8 @@ class Hand:
         drive = read_any(text, piece.file, used_text)
         if isinstance(drive, Library):
             return Judged(drive)
-        prover, end = Prover(drive, piece.call.keep, self._memory(piece.call)), piece.call.limits.end()
+        limits, memory = piece.call.limits, self._memory(piece.call)
+        prover, end = Prover(drive, piece.call.keep, limits.without, memory), limits.end()
         hazards = list(enumerate(asked(drive)))
         count = len(hazards)
         self._count(Told(count, 0, 0))
@@ -278,7 +279,8 @@ class Hand:
 
         key = piece.drive, isinstance(piece, Share) and piece.call.keep
         if self._last is None or self._last[0] != key:
-            self._last = key, Prover(loads(piece.drive), key[1], self._memory(piece.call))
+            drive, call = loads(piece.drive), piece.call
+            self._last = key, Prover(drive, key[1], call.limits.without, self._memory(call))
         return self._last[1]
 
     def _memory(self, call: Call) -> "Memory | None":

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any, Never
 
 from seqcheck import __version__
 from seqcheck.exits import WRONG
-from seqcheck.records import dataclass
+from seqcheck.limits import Limits
 
 if TYPE_CHECKING:
     from seqcheck.proving.reductions import Reduction
@@ -18,6 +18,8 @@ if TYPE_CHECKING:
 FORMS = ("screen", "lines", "annotations", "json", "sarif", "vcd")
 COMPARE_FORMS = ("screen", "lines")
 SHELLS = ("bash", "zsh", "fish")
+MOST_JOBS = 256
+"""More processes than any one machine has use for here."""
 _LINT = """\
 Prove each drive-sequence file, or print the run that shorts a leg. A folder means every *.dseq in it, no PATH the
 folder you are in, '-' standard input. A file that only serves 'use' is read and checked; it has nothing to prove.
@@ -127,15 +129,6 @@ input or the call is wrong, nothing was judged; 3 undecided within the limits gi
 program itself is at fault. Where several files differ the worst counts, in the order 4, 2, 1, 3, 0."""
 
 
-@dataclass(frozen=True, slots=True)
-class Limits:
-    """When to give a proof up: after so many zones, or so many seconds for one file. `without`: reductions left out."""
-
-    zones: int | None
-    seconds: float | None
-    without: "frozenset[Reduction]" = frozenset()
-
-
 def complain(text: str) -> None:
     tell(f"seqcheck: {text}")
 
@@ -202,6 +195,8 @@ def parser() -> argparse.ArgumentParser:
     lint.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
     lint.add_argument("--changed", action="store_true", help="PATHs are what a change touches: add all that 'use' them")
     lint.add_argument("--with-fault", action="store_true", help="also tell what any one thing that is stuck brings")
+    lint.add_argument("--jobs", metavar="N", help="let N processes share the work (1); the answer is the same")
+    lint.add_argument("--scheduler", metavar="ADDRESS", help="let the machines of a dask scheduler share the work")
     lint.add_argument("--without", metavar="REDUCTION", action="append", default=[], help=argparse.SUPPRESS)
     lint.add_argument("--evidence", metavar="DIR", help="write FILE.json for each file into this folder, for audit")
     rows = commands.add_parser("rows", help="read the table back", description=_ROWS, epilog=_EXITS, allow_abbrev=False)
@@ -277,6 +272,7 @@ def parser() -> argparse.ArgumentParser:
 def _limited(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
     parser.add_argument("--give-up-after", metavar="DURATION", help="give a file up after this time, such as '30 s'")
+    parser.add_argument("--fresh", action="store_true", help="prove all anew, use no answer kept from an earlier run")
 
 
 def wrong(text: str) -> Never:
@@ -332,9 +328,16 @@ def count(option: str, text: str | None) -> int | None:
     return int(text)
 
 
+def at_most(most: int, option: str, number: int) -> int:
+    if number > most:
+        wrong(f"{option} cannot be above {most}")
+    return number
+
+
 def seconds(text: str | None) -> float | None:
     if text is None:
         return None
+
     from fractions import Fraction
 
     from seqcheck.quantities import PICOSECONDS

@@ -9,11 +9,12 @@ from seqcheck.hazards import Hazard, Nearing
 from seqcheck.margins import thin
 from seqcheck.modegraph import graph_findings
 from seqcheck.proving.certify import Data
+from seqcheck.proving.memory import Memory
 from seqcheck.proving.prove import Proven, Prover, Refuted
 from seqcheck.proving.reductions import Reduction
 from seqcheck.proving.search import LimitReached
 from seqcheck.proving.tracing import Infeasible
-from seqcheck.records import replace
+from seqcheck.records import dataclass, replace
 from seqcheck.reports.waived import lets_pass
 from seqcheck.rules import asked_by, check_of_rule, never_so
 from seqcheck.sizing import cure
@@ -23,6 +24,21 @@ from seqcheck.verdict import Check, Finding, Outcome, Safe, Trace, Undecided, Un
 Observer = Callable[[int], None]
 Kept = tuple[Hazard, Data | Trace | None]
 """A hazard with the proof that it is safe as data, the run that shows it, or None where neither is at hand."""
+Asked = tuple[Hazard | None, Place | None]
+"""What must never be possible, and the rule that asks for it (None: it is built in). Without a hazard: all that single
+faults may not bring."""
+
+
+@dataclass(frozen=True, slots=True)
+class Settled:
+    """All that is said about one hazard: its verdict first, then those about its margins, and warnings.
+
+    `kept` is for evidence, where the prover keeps proofs.
+    """
+
+    verdicts: tuple[Verdict, ...]
+    findings: tuple[Finding, ...]
+    kept: tuple[Kept, ...] = ()
 
 
 def check(
@@ -32,48 +48,69 @@ def check(
     observer: Observer,
     kept: list[Kept] | None = None,
     without: frozenset[Reduction] = frozenset(),
+    memory: Memory | None = None,
 ) -> Outcome:
     """Everything about one drive.
 
     `only` limits the findings and warnings to these checks, empty means all; a hazard is always said, since a gate
     that asks for one kind must not pass the other. `observer` is told the number of zones stored for a
     proof and may raise LimitReached. `kept` takes up the proof or run of every hazard and rule, for evidence. `without`
-    leaves out some of what makes proofs short. Raises Problems for a stage that cannot be proven, Fault if a trace does
-    not replay.
+    leaves out some of what makes proofs short, a `memory` may know answers. Raises Problems for a stage that cannot be
+    proven, Fault if a trace does not replay.
     """
-    prover = Prover(drive, kept is not None, without)
-    verdicts: list[Verdict] = []
+    prover = Prover(drive, kept is not None, without, memory)
+    settled = [settle(prover, one, observer) for one in asked(drive)]
+    if kept is not None:
+        kept += evidence_of(settled)
+    return gathered(drive, file, only, settled)
+
+
+def asked(drive: Drive) -> tuple[Asked, ...]:
+    """Everything that must never be possible at once; raises Problems for a stage that cannot be proven."""
+    built_in = [(hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage))]
+    ruled = [(hazard, rule.place) for rule in drive.rules for hazard in asked_by(rule)]
+    faulty = any(isinstance(rule, ToleratesRule) for rule in drive.rules)
+    return (*built_in, *ruled, *([(None, None)] if faulty else []))
+
+
+def settle(prover: Prover, one: Asked, observer: Observer) -> Settled:
+    """One hazard, which needs no other; raises Fault."""
+    hazard, rule = one
+    if hazard is None:
+        return Settled(tuple(_tolerated(prover, observer)), ())
+    verdict, proof = _with_proof(prover, hazard, observer, rule)
+    verdicts: list[Verdict] = [verdict]
+    kept: list[Kept] = [(hazard, verdict.trace if isinstance(verdict, Unsafe) else proof)]
+    findings: tuple[Finding, ...] = ()
+    if isinstance(verdict, Safe) and hazard.joins:
+        findings = tuple(_held_by_interlock(prover, hazard, observer))
+        for least in margin_rules(prover.drive):
+            verdicts += (broken := list(thin(prover, least, hazard, observer)))
+            kept += _kept_margins(prover, hazard, least, broken)
+    return Settled(tuple(verdicts), findings, tuple(kept) if prover.keep else ())
+
+
+def gathered(drive: Drive, file: str, only: frozenset[Check], settled: Sequence[Settled]) -> Outcome:
+    """Everything about one drive of which each hazard is settled, in the order in which they are asked."""
     findings: list[Finding] = [*graph_findings(drive), *row_meanings(drive), *_without_path(drive)]
-    for hazard, rule in asked(drive):
-        verdict = _judged(prover, hazard, observer, kept, rule)
-        verdicts.append(verdict)
-        if isinstance(verdict, Safe) and hazard.joins:
-            findings += _held_by_interlock(prover, hazard, observer)
-            for least in margin_rules(drive):
-                verdicts += (broken := list(thin(prover, least, hazard, observer)))
-                if kept is not None:
-                    kept += _kept_margins(prover, hazard, least, broken)
-    verdicts += _tolerated(prover, observer)
+    findings += (finding for one in settled for finding in one.findings)
+    verdicts = [verdict for one in settled for verdict in one.verdicts]
     findings += _punctual(drive, verdicts)
     findings += _idle_waivers(drive, verdicts, findings)
     return _limited(Outcome(file, drive, tuple(verdicts), tuple(findings)), only)
 
 
-def asked(drive: Drive) -> Iterator[tuple[Hazard, Place | None]]:
-    """Everything that must never be possible at once, and the rule that asks for it (None: it is built in)."""
-    yield from ((hazard, None) for hazard in (*shorting_sets(drive.stage), *opening_sets(drive.stage)))
-    for rule in drive.rules:
-        for hazard in asked_by(rule):
-            yield hazard, rule.place
+def evidence_of(settled: Sequence[Settled]) -> list[Kept]:
+    """What evidence says of each hazard and rule."""
+    return [kept for one in settled for kept in one.kept]
 
 
 def _tolerated(prover: Prover, observer: Observer) -> Iterator[Verdict]:
     """What single faults bring in the modes that must tolerate them."""
-    rules = [rule for rule in prover.drive.rules if isinstance(rule, ToleratesRule)]
-    if rules:
-        from seqcheck.tolerating import tolerated
+    from seqcheck.tolerating import tolerated
 
-        yield from tolerated(prover, shorting_sets(prover.drive.stage), rules, observer)
+    rules = [rule for rule in prover.drive.rules if isinstance(rule, ToleratesRule)]
+    yield from tolerated(prover, shorting_sets(prover.drive.stage), rules, observer)
 
 
 def margin_rules(drive: Drive) -> list[MarginRule]:
@@ -86,15 +123,6 @@ def _limited(outcome: Outcome, only: frozenset[Check]) -> Outcome:
         return outcome
     findings = tuple(one for one in outcome.findings if one.check in only)
     return replace(outcome, findings=findings)
-
-
-def _judged(
-    prover: Prover, hazard: Hazard, observer: Observer, kept: list[Kept] | None, rule: Place | None
-) -> Verdict:
-    verdict, proof = _with_proof(prover, hazard, observer, rule)
-    if kept is not None:
-        kept.append((hazard, verdict.trace if isinstance(verdict, Unsafe) else proof))
-    return verdict
 
 
 def _kept_margins(
@@ -126,13 +154,14 @@ def _with_proof(
         raise Fault(f"a path to {named(hazard)} has no times") from fault
     if isinstance(proof, Proven):
         return Safe(hazard, proof.method, proof.zones, proof.however_late), proof.data
-    return _unsafe(prover.drive, hazard, proof, observer, rule), None
+    return _unsafe(prover, hazard, proof, observer, rule), None
 
 
-def _unsafe(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
+def _unsafe(prover: Prover, hazard: Hazard, proof: Refuted, observer: Observer, rule: Place | None) -> Unsafe:
+    drive = prover.drive
     whole = proof.held is not None or not proof.greatest or proof.overlap is None
     trace, replayed = confirmed(drive, proof.trace, whole=whole)
-    remedy = None if proof.held else cure(drive, hazard, proof, observer)
+    remedy = None if proof.held else cure(drive, hazard, proof, observer, prover.memory)
     place = place_of(drive, proof.trace, replayed) if proof.held is None else drive.modes[proof.held].place
     check = _check_of(hazard, proof.held) if rule is None else check_of_rule(hazard)
     return Unsafe(hazard, check, place, trace, replayed, proof.overlap, remedy, proof.greatest, proof.held, rule)

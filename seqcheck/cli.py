@@ -1,19 +1,20 @@
 """The commands and their exit codes."""
 
 import argparse
+import contextlib
 import gc
 import os
 import shlex
 import sys
-import time
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from typing import TYPE_CHECKING
 
 from seqcheck.arguments import (
     COMPARE_FORMS,
     FORMS,
+    MOST_JOBS,
     SHELLS,
-    Limits,
+    at_most,
     check_named,
     complain,
     count,
@@ -28,11 +29,15 @@ from seqcheck.delivering import Answering, answer_text, deliver, spare, wants_co
 from seqcheck.drive import Drive, Library, NeverRule, ToleratesRule
 from seqcheck.exits import FAULT, FOUND, PROVEN, UNDECIDED, WRONG
 from seqcheck.exits import worse as _worse
+from seqcheck.limits import Limits
+from seqcheck.limits import observer as _observer
 from seqcheck.messages import Problems
 from seqcheck.opening import STDIN, data_of, files_of, reason_of, text_of, used_text
 from seqcheck.source import printable
 from seqcheck.streams import let_go, ready_streams
-from seqcheck.verdict import WARNINGS, Answer, Check, Failed, Finding, Outcome, Undecided, Unread, Unsafe
+from seqcheck.verdict import WARNINGS, Answer, Failed, Finding, Outcome, Undecided, Unread, Unsafe
+from seqcheck.work.lint import judged_by
+from seqcheck.work.pieces import Call, Hands, Judged, NoHands, judged
 
 if TYPE_CHECKING:
     from seqcheck.checking import Kept
@@ -103,10 +108,14 @@ def _run(arguments: list[str]) -> int:
         answering = Answering(form, wants_colour(colour, sys.stdout) and not asked.out, count("--run", asked.run))
         files = _changed(asked.paths) if asked.changed else list(dict.fromkeys(files_of(asked.paths or ["."])))
         _one_run(answering, files)
+        hands = Hands(at_most(MOST_JOBS, "--jobs", count("--jobs", asked.jobs) or 1), asked.scheduler)
+        if asked.jobs and asked.scheduler is not None:
+            wrong("--jobs is about processes of this machine, --scheduler about other machines; choose one of them")
         shelf = None if asked.evidence is None else _Shelf(asked.evidence, files)
+        call = Call(only, limits, shelf is not None, asked.with_fault, asked.fresh)
+        answers, code = _lint(files, call, shelf, hands)
     except SystemExit as stop:
         return int(stop.code or 0)
-    answers, code = _lint(files, only, limits, shelf, asked.with_fault)
     try:
         text = answer_text(answers, answering)
     except SystemExit as stop:
@@ -165,49 +174,36 @@ class _Shelf:
         return deliver(written(drive, kept), self._path(file))
 
 
-def _lint(
-    files: list[str], only: frozenset[Check], limits: Limits, shelf: _Shelf | None, with_fault: bool
-) -> tuple[list[Answer], int]:
+def _lint(files: list[str], call: Call, shelf: _Shelf | None, hands: Hands) -> tuple[list[Answer], int]:
     answers, code = [], PROVEN
-    for file in files:
-        answer, own = _one_file(file, only, limits, shelf)
-        code = _worse(code, own)
-        if with_fault and isinstance(answer, Outcome):
-            answer = _with_faults(answer, limits)
-        answers.append(answer)
+    try:
+        with contextlib.closing(judged_by(hands, files, call, sys.stderr)) as every:
+            for file, one in zip(files, every, strict=True):
+                answers.append(one.answer)
+                code = _worse(code, _told(file, one, shelf))
+    except NoHands as why:
+        complain(f"error: {why}")
+        raise SystemExit(why.code) from why
     return answers, code
 
 
-def _one_file(
-    file: str, only: frozenset[Check], limits: Limits, shelf: _Shelf | None
-) -> tuple[Answer, int]:
-    from seqcheck.language import read_any
-
-    try:
-        drive = read_any(text_of(file), file, used_text)
-    except Problems as problems:
-        return Unread(file, problems.found), _mistaken(problems)
-    if isinstance(drive, Library):
-        return drive, PROVEN
-    from seqcheck.checking import check
-    from seqcheck.confirming import Fault
-
-    kept: list[Kept] | None = None if shelf is None else []
-    try:
-        outcome = check(drive, file, only, _observer(limits), kept, limits.without)
-    except Problems as problems:
-        return Unread(file, problems.found), _mistaken(problems)
-    except Fault as fault:
-        complain(f"{printable(file)}: internal error, please report it with the file: {fault}")
-        return Failed(file, str(fault)), FAULT
-    stored = PROVEN if shelf is None or kept is None else shelf.put(file, drive, kept)
-    return outcome, _worse(stored, _exit_of(outcome))
+def _one_file(asked: argparse.Namespace, limits: Limits) -> tuple[Answer, int]:
+    one = judged(asked.file, Call(limits=limits, fresh=asked.fresh), None)
+    return one.answer, _told(asked.file, one, None)
 
 
-def _with_faults(outcome: Outcome, limits: Limits) -> Outcome:
-    from seqcheck.failing import with_faults
-
-    return with_faults(outcome, _observer(limits))
+def _told(file: str, one: Judged, shelf: _Shelf | None) -> int:
+    """Say what there is to complain of in a file, put its evidence away; its exit code."""
+    match one.answer:
+        case Unread(_, found):
+            return _mistaken(Problems(found))
+        case Failed():
+            complain(f"{printable(file)}: {one.complaint}")
+            return FAULT
+        case Outcome() as outcome:
+            stored = PROVEN if shelf is None else shelf.put(file, outcome.drive, list(one.kept))
+            return _worse(stored, _exit_of(outcome))
+    return PROVEN
 
 
 def _mistaken(problems: Problems) -> int:
@@ -286,7 +282,7 @@ def _draw(asked: argparse.Namespace) -> int:
         wrong(f"--trace draws a timing diagram; it does not go with {'--modes' if asked.modes else '--as mermaid'}")
     limits = limits_of(asked)
     wanted = draw.Wanted(asked.trace, count("--run", asked.run), form)
-    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    outcome, code = _one_file(asked, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; it has no modes")
     if not isinstance(outcome, Outcome):
@@ -306,7 +302,7 @@ def _report(asked: argparse.Namespace, call: str) -> int:
     from seqcheck.confirming import Fault
 
     limits = limits_of(asked)
-    outcome, code = _one_file(asked.file, frozenset(), limits, None)
+    outcome, code = _one_file(asked, limits)
     if isinstance(outcome, Library):
         wrong(f"{printable(asked.file)} only serves 'use'; there is nothing to review")
     if not isinstance(outcome, Outcome):
@@ -405,20 +401,6 @@ def _start(kind: str | None) -> int:
         return deliver(listing() if kind is None else first_file(kind), None)
     except KeyError as unknown:
         wrong(unknown.args[0])
-
-
-def _observer(limits: Limits) -> Callable[[int], None]:
-    from seqcheck.proving.search import LimitReached
-
-    end = None if limits.seconds is None else time.monotonic() + limits.seconds
-
-    def observe(zones: int) -> None:
-        if limits.zones is not None and zones > limits.zones:
-            raise LimitReached(f"{limits.zones} zones (--most-zones)")
-        if end is not None and zones % 64 == 0 and time.monotonic() > end:
-            raise LimitReached(f"{limits.seconds:g} s (--give-up-after)")
-
-    return observe
 
 
 def _exit_of(outcome: Outcome) -> int:

@@ -25,10 +25,14 @@ MOST_ZONES = 6_000
 
 def with_faults(outcome: Outcome, observer: Observer) -> Outcome:
     """The outcome of a file with what single faults bring about; verdicts and findings stay as they are."""
+    return replace(outcome, faults=single_faults(outcome.drive, *asked_anew(outcome), observer))
+
+
+def asked_anew(outcome: Outcome) -> tuple[tuple[Hazard, ...], frozenset[Hazard]]:
+    """The hazards that are asked anew under each fault, and those that happen without one."""
     hazards = tuple(dict.fromkeys(one.hazard for one in outcome.verdicts if one.hazard.asks is None))
     unsafe = [one for one in outcome.verdicts if isinstance(one, Unsafe) and one.check is not Check.THIN_MARGIN]
-    anyway = frozenset(one.hazard for one in unsafe)
-    return replace(outcome, faults=single_faults(outcome.drive, hazards, anyway, observer))
+    return hazards, frozenset(one.hazard for one in unsafe)
 
 
 def single_faults(
@@ -40,18 +44,27 @@ def single_faults(
     LimitReached, which is then said of that hazard alone.
     """
     prover = Prover(drive)
-    found = []
+    found: list[Faulted] = []
     for switch in drive.stage.switches:
-        for on in (True, False):
-            own, wired = Fault(switch.name, on, pin=False), Fault(switch.name, on, pin=True)
-            alike = (own,) if concerned(drive, switch.name) else (own, wired)
-            brings = _brought(prover, left_of(own, affected(drive, own, hazards)), anyway, observer)
-            found.append(Faulted(alike, tuple(brings)))
-            if wired not in alike:
-                asked = [(one, one) for one in affected(drive, wired, hazards)]
-                brings = _brought(Prover(with_pin_stuck(drive, switch.name, on)), asked, anyway, observer)
-                found.append(Faulted((wired,), tuple(brings)))
+        found += faults_of(prover, switch.name, hazards, anyway, observer)
     return tuple(found)
+
+
+def faults_of(
+    prover: Prover, switch: str, hazards: Sequence[Hazard], anyway: frozenset[Hazard], observer: Observer
+) -> list[Faulted]:
+    """What one switch brings about that is stuck, and its pin, as single_faults tells it."""
+    drive, found = prover.drive, []
+    for on in (True, False):
+        own, wired = Fault(switch, on, pin=False), Fault(switch, on, pin=True)
+        alike = (own,) if concerned(drive, switch) else (own, wired)
+        brings = _brought(prover, left_of(own, affected(drive, own, hazards)), anyway, observer)
+        found.append(Faulted(alike, tuple(brings)))
+        if wired not in alike:
+            asked = [(one, one) for one in affected(drive, wired, hazards)]
+            brings = _brought(Prover(with_pin_stuck(drive, switch, on)), asked, anyway, observer)
+            found.append(Faulted((wired,), tuple(brings)))
+    return found
 
 
 def left_of(fault: Fault, hazards: Sequence[Hazard]) -> list[tuple[Hazard, Hazard]]:

@@ -107,7 +107,7 @@ def thin(prover: Prover, rule: MarginRule, hazard: Hazard, observer: Observer) -
             yield Undecided(hazard, found.limit, 0)
         elif found.trace is not None and found.replayed is not None and found.place is not None:
             short = rule.least - (found.slack or 0)
-            remedy = cure_of_margin(prover.drive, found.trace, at, rule.least, short, observer)
+            remedy = cure_of_margin(prover.drive, found.trace, at, rule.least, short, observer, prover.memory)
             yield Unsafe(
                 hazard,
                 Check.THIN_MARGIN,

@@ -8,6 +8,7 @@ from typing import TypeVar
 
 from seqcheck.drive import RESET, Carrier, Drive, Fixed, Move, SetStep, Step, Trip, WaitStep, When
 from seqcheck.hazards import Clearing, Hazard, Lasting, delays
+from seqcheck.proving.memory import Memory
 from seqcheck.proving.prove import Prover, Refuted
 from seqcheck.proving.search import LimitReached
 from seqcheck.quantities import Interval, shown, widened
@@ -54,7 +55,9 @@ class _Proposal:
     words: str
 
 
-def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cure | None:
+def cure(
+    drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer, memory: Memory | None = None
+) -> Cure | None:
     """The first time of the file that, made longer by what is missing, brings a proof; None if none does.
 
     Missing is the overlap, or where it has no end the longest that one switch of the hazard can lag behind another. No
@@ -63,23 +66,30 @@ def cure(drive: Drive, hazard: Hazard, proof: Refuted, observer: Observer) -> Cu
     if isinstance(hazard.asks, Clearing) or (isinstance(hazard.asks, Lasting) and hazard.asks.longer):
         return None
     missing = _lag(drive, hazard) if proof.overlap is None else proof.overlap
-    found = _first(drive, proof.trace, missing, observer, lambda prover, count: prover.holds(hazard, count))
+    found = _first(drive, proof.trace, missing, observer, memory, lambda prover, count: prover.holds(hazard, count))
     return None if found is None else Cure(found.place, proof.overlap, found.words)
 
 
-def cure_of_margin(drive: Drive, trace: Trace, after: int, least: int, short: int, observer: Observer) -> Cure | None:
+def cure_of_margin(
+    drive: Drive, trace: Trace, after: int, least: int, short: int, observer: Observer, memory: Memory | None = None
+) -> Cure | None:
     """The first time of the file that, made longer by what is missing, keeps the margin shown too thin by a trace."""
 
     def kept(prover: Prover, count: Observer) -> bool:
         gap = prover.gap(trace.hazard, after, count, least)
         return prover.holds(trace.hazard, count) and (gap.time is None or gap.time >= least) and not gap.limit
 
-    found = _first(drive, trace, short, observer, kept)
+    found = _first(drive, trace, short, observer, memory, kept)
     return None if found is None else Cure(found.place, short, found.words)
 
 
 def _first(
-    drive: Drive, trace: Trace, missing: int, observer: Observer, holds: Callable[[Prover, Observer], bool]
+    drive: Drive,
+    trace: Trace,
+    missing: int,
+    observer: Observer,
+    memory: Memory | None,
+    holds: Callable[[Prover, Observer], bool],
 ) -> _Proposal | None:
     """The first proposal that holds.
 
@@ -89,7 +99,7 @@ def _first(
     spending = _Budget(observer, _MOST_ZONES)
     for proposal in _proposals(drive, trace, missing):
         try:
-            good = holds(Prover(proposal.drive), spending)
+            good = holds(Prover(proposal.drive, memory=memory), spending)
         except LimitReached:
             return None
         spending.next_proposal()

@@ -119,7 +119,7 @@ def test_fault(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[st
 def test_internal_error(monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]) -> None:
     """Anything unforeseen is exit 4 and one line, no traceback."""
     put(x=SAFE)
-    monkeypatch.setattr(checking, "Prover", _refuses)
+    monkeypatch.setattr(checking, "shorting_sets", _refuses)
     assert lint("x.dseq") == 4
     assert re.fullmatch(r"seqcheck: internal error.*made up.*\n", capsys.readouterr().err)
 

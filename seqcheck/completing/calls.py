@@ -8,7 +8,7 @@ DRIVES, EVIDENCE, ANY_FILE, FOLDERS = "*.dseq", "*.json", "*", "/"
 """The files that a value can be: patterns that folders always go with, or folders alone."""
 
 _FILES = {"PATH": DRIVES, "FILE": DRIVES, "OLD": DRIVES, "NEW": DRIVES, "EVIDENCE": EVIDENCE, "DIR": FOLDERS}
-FREE = frozenset({"N", "DURATION", "D", "NAME"})
+FREE = frozenset({"ADDRESS", "N", "DURATION", "D", "NAME"})
 """What stands for values that nobody can guess; nothing is offered for them."""
 
 

@@ -172,7 +172,7 @@ def _claim(
     if proof is None:
         return {**said, "verdict": "undecided"}
     if isinstance(proof, Trace):
-        return {**said, "verdict": "unsafe", "run": _run(proof)}
+        return {**said, "verdict": "unsafe", "run": run_data(proof)}
     if "stands" not in proof:
         return {**said, "verdict": "safe", "cover": proof}
     return {**said, "verdict": "safe", "potentials": _number(proof, potentials)}
@@ -195,15 +195,16 @@ T = TypeVar("T")
 
 
 def _number(one: T, numbered: list[T]) -> int:
-    """The number of what is written once for all that share it."""
-    known = next((number for number, other in enumerate(numbered) if other is one), None)
+    """The number of what is written once for all that share it, whoever proved them."""
+    known = next((number for number, other in enumerate(numbered) if other is one or other == one), None)
     if known is not None:
         return known
     numbered.append(one)
     return len(numbered) - 1
 
 
-def _run(trace: Trace) -> dict[str, object]:
+def run_data(trace: Trace) -> dict[str, object]:
+    """A run as data, without the places of the file and without what it shows."""
     return {
         "phases": [
             {"carrier": one.carrier, "high": one.high, "age": one.age, "output": one.output} for one in trace.phases
@@ -263,7 +264,7 @@ def _claimed(claim: Fields, potentials: int) -> Claim:
     if verdict == "undecided":
         return Claim(hazard, None)
     if verdict == "unsafe":
-        return Claim(hazard, _trace(hazard, claim.field("run")))
+        return Claim(hazard, run_of(hazard, claim.field("run")))
     if verdict != "safe":
         raise claim.wrong("verdict")
     if "cover" in claim.data:
@@ -313,7 +314,8 @@ def _current(claim: Fields, value: object) -> Current:
     return Current(out_of, into)  # type: ignore[arg-type]
 
 
-def _trace(hazard: Hazard, run: Fields) -> Trace:
+def run_of(hazard: Hazard, run: Fields) -> Trace:
+    """The run that data speak of; NoEvidence if they are none."""
     start, end = run.listed(run.of("overlap"), "overlap", 2)
     phases = tuple(
         Phase(one.text("carrier"), one.flag("high"), one.number("age"), one.flag("output"))

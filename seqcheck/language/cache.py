@@ -26,9 +26,9 @@ def key_of(*parts: str) -> str:
 def recalled(key: str) -> Any | None:
     """What was kept under a key, or None."""
     with contextlib.suppress(Exception):
-        file = _folder() / key
+        file = private_folder() / key
         with file.open("rb") as stream:
-            if _private(os.fstat(stream.fileno())):
+            if private(os.fstat(stream.fileno())):
                 check, data = stream.read(_CHECK), stream.read()
                 return marshal.loads(data) if check == source_hash(data) else None
     return None
@@ -37,7 +37,7 @@ def recalled(key: str) -> Any | None:
 def kept(key: str, thing: Any) -> None:
     """Keep plain data under a key, whole or not at all."""
     with contextlib.suppress(Exception):
-        folder = _folder()
+        folder = private_folder()
         draft = folder / f"{key}.{os.getpid()}"
         try:
             with draft.open("xb") as stream:
@@ -50,24 +50,25 @@ def kept(key: str, thing: Any) -> None:
         _forget_old(folder)
 
 
-def _folder() -> Path:
+def private_folder() -> Path:
     """The cache folder, made if need be; raises OSError where it is not private."""
     base = os.environ.get("XDG_CACHE_HOME") or ""
     root = Path(base) if os.path.isabs(base) else Path.home() / ".cache"
     folder = root / "seqcheck"
     folder.mkdir(mode=0o700, parents=True, exist_ok=True)
-    if not _private(folder.lstat()):
+    if not private(folder.lstat()):
         raise PermissionError(folder)
     return folder
 
 
-def _private(status: os.stat_result) -> bool:
+def private(status: os.stat_result) -> bool:
     """Whether a file or folder, not a link, belongs to this user and others cannot write to it."""
     own = not hasattr(os, "getuid") or status.st_uid == os.getuid()
     return own and not stat.S_ISLNK(status.st_mode) and not status.st_mode & 0o022
 
 
 def _forget_old(folder: Path) -> None:
-    files = sorted(folder.iterdir(), key=lambda file: file.stat().st_mtime, reverse=True)
+    own = (file for file in folder.iterdir() if file.is_file())  # the folders in it are others'
+    files = sorted(own, key=lambda file: file.stat().st_mtime, reverse=True)
     for file in files[_KEPT:]:
         file.unlink()

@@ -6,6 +6,7 @@ A run that is found where it proves nothing is followed at once where it would.
 
 from collections.abc import Callable
 from itertools import product
+from typing import TypeVar, cast
 
 from seqcheck.drive import Drive, Interlock, Update
 from seqcheck.faults import Spread
@@ -16,6 +17,7 @@ from seqcheck.proving.clocks import Manner
 from seqcheck.proving.gaps import Asked, least_gap
 from seqcheck.proving.keys import Key
 from seqcheck.proving.looks import Looks, along, longest, may_hold, may_hold_in
+from seqcheck.proving.memory import Count, Known, Memory, Question
 from seqcheck.proving.potentials import potentials, stands
 from seqcheck.proving.projection import Projection
 from seqcheck.proving.reductions import Reduction
@@ -74,37 +76,25 @@ class Gap:
     limit: str = ""
 
 
-@dataclass(slots=True)
-class _Count:
-    """Zones over all searches of one proof."""
-
-    observer: Observer
-    before: int = 0
-    last: int = 0
-
-    def __call__(self, count: int) -> None:
-        self.last = count
-        self.observer(self.before + count)
-
-    def next_search(self) -> None:
-        self.before, self.last = self.before + self.last, 0
-
-    @property
-    def total(self) -> int:
-        return self.before + self.last
-
-
 class Prover:
     """Proofs about one drive. Firmware automata and their maps are shared between the hazards that can share them.
 
     With `keep` the proofs that hazards are safe (interlocks included) are kept as data, for a certificate. Some of what
-    makes proofs short can be left out (`without`); no answer changes by that.
+    makes proofs short can be left out (`without`); no answer changes by that. A `memory` may know answers that take
+    long; it is not asked then, since an answer has no proof with it and was found with everything.
     """
 
-    def __init__(self, drive: Drive, keep: bool = False, without: frozenset[Reduction] = frozenset()) -> None:
+    def __init__(
+        self,
+        drive: Drive,
+        keep: bool = False,
+        without: frozenset[Reduction] = frozenset(),
+        memory: Memory | None = None,
+    ) -> None:
         self.drive = drive
         self.keep = keep
         self.without = without
+        self.memory = None if keep or without else memory
         self._firmwares: dict[tuple[frozenset[str], frozenset[str], bool, str | None], Firmware] = {}
         self._maps: dict[Firmware, Map] = {}
         self._stands: dict[Map, list[Data]] = {}
@@ -118,18 +108,18 @@ class Prover:
         What the observer raises passes through.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks)
-        count, keep = _Count(observer), self.keep and interlocks and not isinstance(hazard.asks, Stuck)
+        keep = self.keep and interlocks and not isinstance(hazard.asks, Stuck)
         if hazard.asks is None and Reduction.SCREEN not in self.without:
-            here = self._map(self._firmware(looking, punctual=False), count)
+            here = self._map(self._firmware(looking, punctual=False), observer)
             if (apart := screened(looking, here)) is not None:
                 return Proven("screen", 0, True, self._screened(looking, here, apart) if keep else None)
-        looks = self._looks(looking)
+        looks, count = self._looks(looking), Count(observer, self.memory, Question("prove", looking, (interlocks,)))
         try:
-            return self._searched(looks, keep, interlocks, count)
+            return _remembered(count, lambda: self._searched(looks, keep, interlocks, count))
         finally:
             looks.release()
 
-    def _searched(self, looks: Looks, keep: bool, interlocks: bool, count: _Count) -> Proven | Refuted:
+    def _searched(self, looks: Looks, keep: bool, interlocks: bool, count: Count) -> Proven | Refuted:
         """What zones say.
 
         A run that was found with phases forgotten, or with firmware that may be late, is looked for at once where it
@@ -151,7 +141,7 @@ class Prover:
                     return self._refute(looks, interlocks, found, count)
         return self._too_short(looks, count)
 
-    def _too_short(self, looks: Looks, count: _Count) -> Refuted:
+    def _too_short(self, looks: Looks, count: Count) -> Refuted:
         """The run in which what is too short is shortest."""
         assert isinstance(looks.view.hazard.asks, Length), "it asks for a length"
         limit = looks.view.hazard.asks.limit
@@ -171,16 +161,14 @@ class Prover:
         """
         drive = self.drive if locks is None else replace(self.drive, interlocks=locks)
         looking = view(drive, hazard, delays(hazard, drive.paths), interlocks=True)
-        count = _Count(observer)
         if hazard.asks is None and Reduction.SCREEN not in self.without:
-            here = self._map(self._firmware(looking, punctual=False), count)
+            here = self._map(self._firmware(looking, punctual=False), observer)
             if screened(looking, here) is not None:
                 return True
-        looks = self._looks(looking)
+        looks, count = self._looks(looking), Count(observer, self.memory, Question("holds", looking))
+        searches = (looks.projection(True, manner) for manner in looks.manners())
         try:
-            return any(
-                first_hazard(looks.projection(True, manner).initial(), count) is None for manner in looks.manners()
-            )
+            return _remembered(count, lambda: any(first_hazard(one.initial(), count) is None for one in searches))
         finally:
             looks.release()
 
@@ -195,12 +183,15 @@ class Prover:
         looked for. Where the observer raises LimitReached the answer is a lower bound. Raises Infeasible.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
-        count = _Count(observer)
+        count = Count(observer, self.memory, Question("gap", looking, (watched, below)))
+        return _remembered(count, lambda: self._gap(looking, watched, count, below))
+
+    def _gap(self, looking: View, watched: int, count: Count, below: int | None) -> Gap:
         try:
             floor = self._floor(looking, watched, count)
         except LimitReached as limit:
             return Gap(0, None, str(limit))
-        asked = replace(hazard, asks=Nearing(watched, below)) if self.keep and below else None
+        asked = replace(looking.hazard, asks=Nearing(watched, below)) if self.keep and below else None
         if floor is None or (below is not None and floor >= below):
             if asked is not None:
                 here = self._map(self._firmware(looking, punctual=False), count)
@@ -222,7 +213,7 @@ class Prover:
         finally:
             looks.release()
 
-    def _floor(self, looking: View, watched: int, count: _Count) -> int | None:
+    def _floor(self, looking: View, watched: int, count: Count) -> int | None:
         """A lower bound of a gap from least times alone; None where nothing ever follows."""
         if Reduction.SCREEN in self.without:
             return 0
@@ -240,7 +231,7 @@ class Prover:
         is named.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
-        count = _Count(observer)
+        count = Count(observer)
         try:
             screens = Reduction.SCREEN not in self.without
             if screens and screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
@@ -270,7 +261,7 @@ class Prover:
         Raises Infeasible.
         """
         looking = view(self.drive, hazard, delays(hazard, self.drive.paths), interlocks=True)
-        count = _Count(observer)
+        count = Count(observer)
         try:
             screens = Reduction.SCREEN not in self.without
             if screens and screened(looking, self._map(self._firmware(looking, punctual=False), count)) is not None:
@@ -283,7 +274,7 @@ class Prover:
         finally:
             looks.release()
 
-    def _rests(self, looks: Looks, modes: frozenset[str], count: _Count) -> dict[str, "Proven | Refuted | str"]:
+    def _rests(self, looks: Looks, modes: frozenset[str], count: Count) -> dict[str, "Proven | Refuted | str"]:
         answers: dict[str, Proven | Refuted | str] = {}
         before = 0
         for punctual, manner in product((False, True), looks.manners()):
@@ -318,14 +309,14 @@ class Prover:
             self._screenings[looking.hazard] = known
         return known
 
-    def _refute(self, looks: Looks, interlocks: bool, first: Node, count: _Count) -> Refuted:
+    def _refute(self, looks: Looks, interlocks: bool, first: Node, count: Count) -> Refuted:
         """The longest overlap of a hazard that happens; `first` is a run that brings it."""
         try:
             return self._measured(looks, interlocks, count)
         except LimitReached:
             return self._first(looks, interlocks, first)
 
-    def _measured(self, looks: Looks, interlocks: bool, count: _Count) -> Refuted:
+    def _measured(self, looks: Looks, interlocks: bool, count: Count) -> Refuted:
         """The run with the longest overlap, or to a mode that holds the hazard."""
         exact = looks.projection(True, looks.manners(measure=True)[-1])
         found = longest(looks, count)
@@ -345,7 +336,7 @@ class Prover:
         overlap = None if endless else trace.end - trace.overlap_from
         return Refuted(trace, _mode(node) if node.location.held else None, overlap, 0, endless)
 
-    def _held(self, looks: Looks, interlocks: bool, count: _Count) -> tuple[Trace | None, str | None]:
+    def _held(self, looks: Looks, interlocks: bool, count: Count) -> tuple[Trace | None, str | None]:
         """The shortest run to a mode that itself holds the hazard, and the mode, if there is one."""
         *rough, exact = looks.manners()
         for manner in rough:
@@ -374,6 +365,19 @@ class Prover:
         if firmware not in self._maps:
             self._maps[firmware] = Map(firmware, observer)
         return self._maps[firmware]
+
+
+Answer = TypeVar("Answer")
+
+
+def _remembered(count: Count, found: Callable[[], Answer]) -> Answer:
+    """What the memory of a count knows, or what is found; the memory keeps the kind of answer that it was given."""
+    try:
+        answer = found()
+    except Known as known:
+        return cast(Answer, known.answer)
+    count.keep(answer)
+    return answer
 
 
 def _at_rest(projection: Projection, node: Node) -> Refuted:

@@ -31,6 +31,8 @@ def proved(drive: Drive) -> None:
     """Prove or refute everything that the evidence of a drive speaks of."""
     prover = Prover(drive)
     for hazard, _ in asked(drive):
+        if hazard is None:  # evidence does not speak of what must be tolerated
+            continue
         proof = prover.prove(hazard, True, unobserved)
         if isinstance(proof, Proven) and hazard.joins:
             for rule in margin_rules(drive):

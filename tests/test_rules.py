@@ -157,9 +157,9 @@ def test_a_claim_that_is_not_so_is_refused(rule: str) -> None:
 def test_evidence_says_which_rules_it_is_not_about(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    """An audit claims no more than it checks: a rule about a length is named."""
+    """An audit claims no more than it checks: a rule about single faults is named."""
     monkeypatch.chdir(tmp_path)
-    text = _text("A on at most 50 ps")
+    text = _text('A on at most 50 ps\n  waive single-fault for a because "a fuse"\n  tolerates single faults in a')
     Path("x.dseq").write_text(text, encoding="utf-8")
     assert main(["lint", "--as", "lines", "--evidence", "proofs", "x.dseq"]) == 0
     capsys.readouterr()

@@ -113,6 +113,14 @@ def test_margin_is_wait_less_need(waits: tuple[int, int], slacks: tuple[int, int
     assert {one.needed for one in found.values()} == {5}
 
 
+def test_an_end_at_time_0_counts() -> None:
+    """The start mode is left in the instant of its entry: A was on for ever, B comes 7 ps after, 2 more than needed."""
+    moves = "  start a\n  a -> b\n    set A off\n    wait 7 ps\n  b -> a when back\n    set B off\n    wait 9 ps"
+    text = leg("a on off\nb off on", moves)
+    assert margins_of(text)["A"].slack == 2
+    assert wrong("leg", text) == []
+
+
 def test_what_never_follows() -> None:
     """B is never left for A."""
     found = margins_of(leg("a on off\nb off on", SWAP.format(9, 9).partition("\n  b")[0]))

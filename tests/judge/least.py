@@ -38,6 +38,10 @@ def least_gap(
         if later is not None and possible(search, node, after):
             best[later] = 0
             heappush(queue, (0, len(queue), later))
+    for node in search.starts():
+        if possible(search, node, after):  # and has been so for ever, however soon it ends
+            best[node] = 0
+            heappush(queue, (0, len(queue), node))
     count = len(queue)
     while queue:
         time, _, node = heappop(queue)

@@ -19,6 +19,8 @@ SYNTAX: list[Case] = [
     ("= 16 us", "= (16 us", "4:20: the line ends too soon; expected ')', '+' or '-' [syntax]"),
     ("= 16 us", "= 16 us)", "4:19: ')' does not fit here; expected '+', '-' or the end of the line [syntax]"),
     ("idle  -> open", "idle  => open", "39:9: '=' does not fit here; expected ',' or '->' [syntax]"),
+    ("wait settle", "wiat settle", "43:5: 'wiat' does not fit here; did you mean 'wait'? [syntax]"),
+    ("set all off", "sett all off", "42:5: 'sett' does not fit here; did you mean 'set'? [syntax]"),
     ("wait settle", "wait §", "43:10: the character U+00A7 (SECTION SIGN) has no meaning here; take it out [syntax]"),
     ("wait settle", "wait & settle", "43:10: the character '&' has no meaning here; take it out [syntax]"),
     (

@@ -8,7 +8,7 @@ from seqcheck.language.grammar import STATEMENT, parsed
 from seqcheck.language.mistakes import reserved, stray
 from seqcheck.language.notes import Notes
 from seqcheck.language.syntax import Line, MoveLine, Node, StartLine, TripLine
-from seqcheck.language.words import LINE_FORMS, SECTIONS, STARTS
+from seqcheck.language.words import FIRST_WORDS, LINE_FORMS, SECTIONS, STARTS
 from seqcheck.messages import Problem, Problems
 from seqcheck.source import Place
 
@@ -172,7 +172,18 @@ class _Reader:
             self._keep(word, Line(place, node))
             return
         if not self._misspelt(word, place, text):
-            self._broken(node)
+            self._broken(self._misspelt_here(word, place, text) or node)
+
+    def _misspelt_here(self, word: str, place: Place, text: str) -> Problem | None:
+        """The mistake of a line that would be right with a word of its section in place of its first."""
+        close = get_close_matches(word[:20], FIRST_WORDS.get(self.section, ()), n=1, cutoff=0.7)
+        if not close:
+            return None
+        node = self._parse(text.replace(word, close[0], 1), f"{self.section}_line", place.line)
+        if isinstance(node, Problem):
+            return None
+        here = Place(place.file, place.line, place.column, place.line, place.column + len(word))
+        return Problem(here, "syntax", f"'{word}' does not fit here", f"did you mean '{close[0]}'?")
 
     def _keep(self, word: str, line: Line) -> None:
         """Keep a line of a section; a step needs a move or trip above it."""

@@ -16,6 +16,14 @@ RESERVED = STARTS | frozenset(
 )
 """Words that cannot be names. All other words of the language mean something only where a name cannot stand."""
 
+FIRST_WORDS = {
+    "paths": ("interlock",),
+    "moves": ("start", "set", "wait"),
+    "trips": ("set", "wait"),
+    "rules": ("margin", "never", "tolerates", "waive"),
+}
+"""Words with which lines of a section begin where others begin with names."""
+
 NO_QUANTITY = frozenset({"up"})
 """Words that can be names of all but quantities, since `up to D` stands where a quantity can stand."""
 

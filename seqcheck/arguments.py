@@ -224,31 +224,19 @@ def parser() -> argparse.ArgumentParser:
     )
     compare.add_argument("old", metavar="OLD")
     compare.add_argument("new", metavar="NEW")
-    compare.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default) or lines")
-    compare.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
-    compare.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
-    compare.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
-    compare.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    _told(compare, "screen (the default) or lines")
     margins = commands.add_parser(
         "margins", help="how much dead time is left", description=_MARGINS, epilog=_EXITS, allow_abbrev=False
     )
     margins.add_argument("file", metavar="FILE")
-    margins.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (as it is), lines or json")
-    margins.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
-    margins.add_argument("--most-zones", metavar="N", help="give a search up after N zones")
-    margins.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
-    margins.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    _told(margins, "screen (the default), lines or json")
     size = commands.add_parser(
         "size", help="how far a quantity may go", description=_SIZE, epilog=_SIZED, allow_abbrev=False
     )
     size.add_argument("file", metavar="FILE")
     size.add_argument("name", metavar="NAME")
     size.add_argument("--step", metavar="D", help="how finely to look (a tick of the clock, else 1 ps, Hz, ppm)")
-    size.add_argument("--as", dest="form", metavar="FORM", default="screen", help="screen (the default), lines or json")
-    size.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
-    size.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
-    size.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
-    size.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
+    _told(size, "screen (the default), lines or json")
     audit = commands.add_parser(
         "audit", help="check evidence", description=_AUDIT, epilog=_EXITS, allow_abbrev=False
     )
@@ -267,6 +255,15 @@ def parser() -> argparse.ArgumentParser:
     )
     completion.add_argument("shell", metavar="SHELL")
     return parser
+
+
+def _told(parser: argparse.ArgumentParser, forms: str) -> None:
+    """How an answer is told, where it goes, and when a proof for it is given up."""
+    parser.add_argument("--as", dest="form", metavar="FORM", default="screen", help=forms)
+    parser.add_argument("--out", metavar="FILE", help="write the answer to FILE instead of standard output")
+    parser.add_argument("--most-zones", metavar="N", help="give a proof up after N zones")
+    parser.add_argument("--give-up-after", metavar="DURATION", help="give up after this time, such as '30 s'")
+    parser.add_argument("--color", metavar="WHEN", default="auto", help="auto (the default), always or never")
 
 
 def _limited(parser: argparse.ArgumentParser) -> None:

@@ -36,7 +36,7 @@ from seqcheck.drive import (
     cell_text,
     fact_words,
 )
-from seqcheck.quantities import HERTZ, RATIOS, Interval, shown, widened
+from seqcheck.quantities import Interval, exactly, in_hertz, in_parts, shown, spanned, widened
 from seqcheck.records import dataclass
 from seqcheck.source import Place
 
@@ -129,7 +129,7 @@ def _switch(switch: Switch) -> Entry:
 def _signals(drive: Drive) -> Iterator[Entry]:
     for part in drive.parts.values():
         most = None if part.difference is None else shown(part.difference)
-        fields = _said(on=_plain(part.on), off=_plain(part.off), difference_at_most=most)
+        fields = _said(on=spanned(part.on), off=spanned(part.off), difference_at_most=most)
         yield Entry("part", part.name, fields, part.place)
     places = {switch.name: switch.place for switch in drive.stage.switches}
     for name, parts in drive.paths.items():
@@ -137,9 +137,9 @@ def _signals(drive: Drive) -> Iterator[Entry]:
             yield Entry("path", name, _said(through=", ".join(part.name for part in parts)), places[name])
     for lock in drive.interlocks:
         names = " ".join(sorted((lock.first, lock.second)))
-        yield Entry("interlock", names, _said(dead_time=_plain(lock.dead)), lock.place)
+        yield Entry("interlock", names, _said(dead_time=spanned(lock.dead)), lock.place)
     for pin in drive.pins.values():
-        after = _plain(pin.after) if pin.after.hi else None
+        after = spanned(pin.after) if pin.after.hi else None
         active = "high" if pin.active_high else "low"
         fields = _said(pin=pin.name, active=active, rests=pin.rests.value, after=after, port=pin.port)
         yield Entry("pin", pin.switch, fields, pin.place)
@@ -150,7 +150,7 @@ def _carrier(drive: Drive, carrier: Carrier) -> Entry:
     exact = Fraction(_SECOND) / carrier.frequency
     clock = _tolerance(drive)
     own = clock if widened(exact, exact, clock) == carrier.period else _own_tolerance(exact, carrier.period)
-    within = None if own == clock else _plain(carrier.period) if own is None else _ratio(own)
+    within = None if own == clock else spanned(carrier.period) if own is None else _ratio(own)
     low, high = carrier.duty
     fields = _said(
         frequency=_hertz(carrier.frequency),
@@ -272,32 +272,13 @@ def _rule(rule: Rule) -> tuple[str, Fields]:
 
 
 def _hertz(frequency: Fraction) -> str:
-    unit = next((unit for unit, size in reversed(HERTZ.items()) if frequency >= size), "Hz")
-    return f"{_decimal(frequency / HERTZ[unit])} {unit}"
+    number, unit = in_hertz(frequency)
+    return f"{exactly(number)} {unit}"
 
 
 def _ratio(ratio: Fraction) -> str:
-    unit = "%" if ratio == 0 or ratio >= Fraction(1, 1000) else "ppm"
-    return f"{_decimal(ratio / RATIOS[unit])} {unit}"
-
-
-def _decimal(number: Fraction) -> str:
-    """A number with all its digits, or as a fraction where they do not end soon."""
-    for digits in range(13):
-        scaled = number * 10**digits
-        if scaled.denominator == 1:
-            text = str(scaled.numerator).rjust(digits + 1, "0")
-            return f"{text[:-digits]}.{text[-digits:]}" if digits else text
-    return f"{number.numerator}/{number.denominator}"
-
-
-def _plain(span: Interval) -> str:
-    """A span that no clock has widened."""
-    if span.hi is None:
-        return f"at least {shown(span.lo)}"
-    if span.lo == span.hi:
-        return shown(span.lo)
-    return f"up to {shown(span.hi)}" if span.lo == 0 else f"{shown(span.lo)} to {shown(span.hi)}"
+    number, unit = in_parts(ratio)
+    return f"{exactly(number)} {unit}"
 
 
 def _time(span: Interval, tolerance: Fraction) -> str:

@@ -72,3 +72,51 @@ def shown(time: int) -> str:
     whole, rest = divmod(abs(time), size)
     digits = str(rest + size)[1:].rstrip("0") if rest else ""
     return f"{'-' if time < 0 else ''}{whole}{'.' if digits else ''}{digits} {unit}"
+
+
+def spanned(span: Interval) -> str:
+    """A span of time for people: `4 us`, `1 us to 2 us`, `at least 1 us`, or `up to 2 us`."""
+    if span.hi is None:
+        return f"at least {shown(span.lo)}"
+    if span.lo == span.hi:
+        return shown(span.lo)
+    return f"up to {shown(span.hi)}" if span.lo == 0 else f"{shown(span.lo)} to {shown(span.hi)}"
+
+
+def decimal(number: Fraction, digits: int = 12) -> str | None:
+    """A number with all its digits; None where more than so many stand behind the point."""
+    for count in range(digits + 1):
+        scaled = number * 10**count
+        if scaled.denominator == 1:
+            return _pointed(int(scaled), count)
+    return None
+
+
+def exactly(number: Fraction) -> str:
+    """A number with all its digits, or as a fraction where they do not end soon."""
+    return decimal(number) or str(number)
+
+
+def nearly(number: Fraction, digits: int, up: bool | None = None) -> str:
+    """A number with all its digits, or `about` one with so many: rounded as told (None: to the nearest)."""
+    scaled = number * 10**digits
+    rounded = ceil(scaled) if up else floor(scaled) if up is False else round(scaled)
+    return decimal(number, digits) or f"about {_pointed(rounded, digits)}"
+
+
+def _pointed(scaled: int, digits: int) -> str:
+    whole, rest = divmod(abs(scaled), 10**digits)
+    tail = f".{rest:0{digits}d}" if digits else ""
+    return f"{'-' if scaled < 0 else ''}{whole}{tail}"
+
+
+def in_hertz(frequency: Fraction) -> tuple[Fraction, str]:
+    """A frequency in hertz, in the largest unit that keeps it at or above one: how many of them, and the unit."""
+    unit = next((unit for unit, size in reversed(HERTZ.items()) if abs(frequency) >= size), "Hz")
+    return frequency / HERTZ[unit], unit
+
+
+def in_parts(ratio: Fraction) -> tuple[Fraction, str]:
+    """A ratio in per cent, a small one in parts per million: how many of them, and the unit."""
+    unit = "%" if ratio == 0 or abs(ratio) >= Fraction(1, 1000) else "ppm"
+    return ratio / RATIOS[unit], unit

@@ -27,7 +27,7 @@ from seqcheck.drive import (
 )
 from seqcheck.effects import Row
 from seqcheck.hazards import reach
-from seqcheck.quantities import Interval, shown, widened
+from seqcheck.quantities import Interval, in_hertz, in_parts, nearly, shown, spanned, widened
 from seqcheck.records import dataclass
 from seqcheck.reports.does import does, meant
 from seqcheck.reports.pieces import listed
@@ -54,16 +54,7 @@ class Keeping:
 
     def wait(self, time: Interval) -> str:
         """How long what firmware waits takes, from a span that is already widened by the tolerance."""
-        return span(time + Interval(0, self.late))
-
-
-def span(time: Interval) -> str:
-    """A span of time: `4 us`, `1 us to 2 us`, `at least 1 us`, or `up to 2 us`."""
-    if time.hi is None:
-        return f"at least {shown(time.lo)}"
-    if time.lo == time.hi:
-        return shown(time.lo)
-    return f"up to {shown(time.hi)}" if time.lo == 0 else f"{shown(time.lo)} to {shown(time.hi)}"
+        return spanned(time + Interval(0, self.late))
 
 
 # Quantities
@@ -84,46 +75,32 @@ def frequency(name: str, value: Fraction) -> str:
 
 def ratio(name: str, value: Fraction) -> str:
     """A named ratio."""
-    return f"{name} = {_percent(value)}"
+    return f"{name} = {_ratio(value)}"
 
 
 def number(name: str, value: Fraction) -> str:
     """A named plain number."""
-    return f"{name} = {_decimal(value)}"
+    return f"{name} = {nearly(value, _DIGITS)}"
 
 
 def _exact(value: Fraction) -> str:
     """A time in ps; what is no whole number of them as the two whole ones around it."""
     if value.denominator == 1:
         return shown(int(value))
-    return f"{shown(floor(value))} to {shown(ceil(value))}, which is {_decimal(value)} ps"
+    return f"{shown(floor(value))} to {shown(ceil(value))}, which is {nearly(value, _DIGITS)} ps"
 
 
-def _decimal(value: Fraction) -> str:
-    """A number, exact where it has few digits, else said to be rounded."""
-    for digits in range(7):
-        scaled = value * 10**digits
-        if scaled.denominator == 1:
-            return _point(int(scaled), digits)
-    return f"about {_point(round(value * 10**6), 6)}"
-
-
-def _point(scaled: int, digits: int) -> str:
-    whole, rest = divmod(abs(scaled), 10**digits)
-    tail = f".{rest:0{digits}d}" if digits else ""
-    return f"{'-' if scaled < 0 else ''}{whole}{tail}"
-
-
-def _percent(value: Fraction) -> str:
-    return f"{_decimal(value * 100)} %"
+def _ratio(value: Fraction) -> str:
+    number, unit = in_parts(value)
+    return f"{nearly(number, _DIGITS)} {unit}"
 
 
 def _hertz(value: Fraction) -> str:
-    size, unit = next(((size, unit) for size, unit in _HERTZ if abs(value) >= size), (1, "Hz"))
-    return f"{_decimal(value / size)} {unit}"
+    number, unit = in_hertz(value)
+    return f"{nearly(number, _DIGITS)} {unit}"
 
 
-_HERTZ = ((10**9, "GHz"), (10**6, "MHz"), (10**3, "kHz"))
+_DIGITS = 6
 
 
 # What lies between firmware and switch
@@ -131,7 +108,7 @@ _HERTZ = ((10**9, "GHz"), (10**6, "MHz"), (10**3, "kHz"))
 
 def part(one: Part) -> str:
     """The times of a part, as they are: hardware is not widened."""
-    said = [f"part {one.name}", f"turns on after {span(one.on)}", f"turns off after {span(one.off)}"]
+    said = [f"part {one.name}", f"turns on after {spanned(one.on)}", f"turns off after {spanned(one.off)}"]
     if one.difference is not None:
         said.append(f"a turn-off takes at most {shown(one.difference)} longer than a turn-on")
     return "\n".join(said)
@@ -140,11 +117,12 @@ def part(one: Part) -> str:
 def carrier(one: Carrier) -> str:
     """A carrier with its times, the tolerance in them."""
     low, high = one.duty
-    duty = _percent(low) if low == high else f"{_percent(low)} to {_percent(high)}"
-    levels = [f"{word} for {span(time)}" for word, time in (("high", one.high), ("low", one.low)) if time is not None]
-    said = [f"carrier {one.name}, {_hertz(one.frequency)}", f"period {span(one.period)}"]
+    duty = _ratio(low) if low == high else f"{_ratio(low)} to {_ratio(high)}"
+    times = (("high", one.high), ("low", one.low))
+    levels = [f"{level} for {spanned(time)}" for level, time in times if time is not None]
+    said = [f"carrier {one.name}, {_hertz(one.frequency)}", f"period {spanned(one.period)}"]
     said += [f"duty {duty}: {listed(levels)}"]
-    said.append(f"dead time {span(one.dead)}" if one.dead != Interval(0, 0) else "no dead time")
+    said.append(f"dead time {spanned(one.dead)}" if one.dead != Interval(0, 0) else "no dead time")
     return "\n".join([*said, _UPDATES[one.update]])
 
 
@@ -155,8 +133,8 @@ def switch(name: str, stage: Stage, paths: Mapping[str, Sequence[Part]], pins: M
     if parts:
         on, off = reach(parts)
         through = " and ".join(one.name for one in parts)
-        said += [f"through {through}:", f"  turns on {span(on)} after its command"]
-        said += [f"  turns off {span(off)} after its command"]
+        said += [f"through {through}:", f"  turns on {spanned(on)} after its command"]
+        said += [f"  turns off {spanned(off)} after its command"]
     else:
         said.append("no path: its delays are taken as zero")
     return "\n".join([*said, *([pin(pins[name])] if name in pins else ["no pin is given"])])
@@ -178,7 +156,7 @@ def _side(leg: Leg, name: str) -> str:
 def pin(one: Pin) -> str:
     """A pin: what turns its switch on and where it rests."""
     rest = f"rests {one.rests.value}, which is {one.resting.value}"
-    after = "" if one.after == Interval(0, 0) else f", after {span(one.after)}"
+    after = "" if one.after == Interval(0, 0) else f", after {spanned(one.after)}"
     port = f", port {one.port}" if one.port else ""
     return f"pin {one.name} of {one.switch}: active {'high' if one.active_high else 'low'}, {rest}{after}{port}"
 
@@ -240,7 +218,7 @@ def _begins(one: Move, keeping: Keeping) -> str:
     earliest, latest = max(one.trigger.earliest, keeping.loop), one.trigger.latest
     if latest is not None and latest < earliest:
         return f"begins never: on {one.trigger.event} up to {shown(latest)}, but the loop takes {shown(keeping.loop)}"
-    when = "" if (earliest, latest) == (0, None) else f", {span(Interval(earliest, latest))} after entry"
+    when = "" if (earliest, latest) == (0, None) else f", {spanned(Interval(earliest, latest))} after entry"
     return f"begins on {one.trigger.event}{when}"
 
 

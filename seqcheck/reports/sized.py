@@ -7,7 +7,7 @@ from math import ceil, floor
 
 from seqcheck import __version__
 from seqcheck.messages import Problem
-from seqcheck.quantities import HERTZ, RATIOS, shown
+from seqcheck.quantities import in_hertz, in_parts, nearly, shown
 from seqcheck.ranges import Beyond, End, Ends, Measure, Part, Sized
 from seqcheck.reports import document as outcome_document
 from seqcheck.reports.counterexample import counterexample, sentence
@@ -242,13 +242,10 @@ def value(found: Sized, exact: Fraction, up: bool | None = None) -> str:
     ticks where it is that."""
     if found.measure is Measure.PICOSECONDS:
         return _time(exact, found.tick, up)
-    if found.measure is Measure.HERTZ:
-        unit = next((unit for unit, size in reversed(HERTZ.items()) if abs(exact) >= size), "Hz")
-        return f"{_number(exact / HERTZ[unit], up)} {unit}"
-    if found.measure is Measure.RATIO:
-        unit = "%" if exact == 0 or abs(exact) >= Fraction(1, 1000) else "ppm"
-        return f"{_number(exact / RATIOS[unit], up)} {unit}"
-    return _number(exact, up)
+    if found.measure is Measure.NUMBER:
+        return nearly(exact, _DIGITS, up)
+    number, unit = in_hertz(exact) if found.measure is Measure.HERTZ else in_parts(exact)
+    return f"{nearly(number, _DIGITS, up)} {unit}"
 
 
 def _time(exact: Fraction, tick: Fraction | None, up: bool | None) -> str:
@@ -258,22 +255,6 @@ def _time(exact: Fraction, tick: Fraction | None, up: bool | None) -> str:
         return shown(whole) if whole == exact else f"about {shown(whole)}"
     count = f"{ticks} tick{'' if abs(ticks) == 1 else 's'}"
     return f"{shown(whole)} ({count})" if whole == exact else f"{count} (about {shown(whole)})"
-
-
-def _number(exact: Fraction, up: bool | None) -> str:
-    """A decimal with all its digits, or one that is said to be rounded."""
-    for digits in range(_DIGITS):
-        scaled = exact * 10**digits
-        if scaled.denominator == 1:
-            return _decimal(int(scaled), digits)
-    scaled = exact * 10**_DIGITS
-    return f"about {_decimal(ceil(scaled) if up else floor(scaled) if up is False else round(scaled), _DIGITS)}"
-
-
-def _decimal(scaled: int, digits: int) -> str:
-    text = str(abs(scaled)).rjust(digits + 1, "0")
-    sign = "-" if scaled < 0 else ""
-    return f"{sign}{text[:-digits]}.{text[-digits:]}" if digits else f"{sign}{text}"
 
 
 # The document

@@ -20,7 +20,7 @@ from seqcheck.drive import (
     Writes,
 )
 from seqcheck.hazards import reach
-from seqcheck.quantities import HERTZ, RATIOS, Interval, shown
+from seqcheck.quantities import exactly, in_hertz, in_parts, shown, spanned
 from seqcheck.reports.page.markup import listing, node, table
 
 
@@ -33,7 +33,7 @@ def assumptions(drive: Drive) -> list[Element]:
         found.append(table("Parts of the signal paths", heads, map(_part, drive.parts.values())))
     found.append(table("From pin to conduction", ("switch", "through", "on after", "off after"), _paths(drive)))
     if drive.interlocks:
-        rows = [(f"{one.first} and {one.second}", span(one.dead)) for one in drive.interlocks]
+        rows = [(f"{one.first} and {one.second}", spanned(one.dead)) for one in drive.interlocks]
         found.append(table("Interlocks of the driver", ("switches", "dead time"), rows))
     if drive.pins:
         of_pins = ("switch", "pin", "on when", "rests", "reached after", "port")
@@ -48,36 +48,23 @@ def assumptions(drive: Drive) -> list[Element]:
     return found
 
 
-def span(interval: Interval) -> str:
-    """An interval for people: `0.4 us to 1.5 us`, `at least 2 ms`, or one time."""
-    if interval.hi is None:
-        return f"at least {shown(interval.lo)}"
-    return shown(interval.lo) if interval.lo == interval.hi else f"{shown(interval.lo)} to {shown(interval.hi)}"
-
-
-def _plain(value: Fraction) -> str:
-    """A ratio as a decimal number, as a fraction where it has none that is short."""
-    text = f"{float(value):.6g}"
-    return text if Fraction(text) == value else str(value)
-
-
 def hertz(frequency: Fraction) -> str:
     """A frequency in the largest unit that keeps it at or above one."""
-    unit = next((name for name in ("GHz", "MHz", "kHz") if frequency >= HERTZ[name]), "Hz")
-    return f"{_plain(frequency / HERTZ[unit])} {unit}"
+    number, unit = in_hertz(frequency)
+    return f"{exactly(number)} {unit}"
 
 
 def ratio(value: Fraction) -> str:
     """A tolerance or duty in per cent, a small one in parts per million."""
-    unit = "ppm" if 0 < value < RATIOS["%"] / 10 else "%"
-    return f"{_plain(value / RATIOS[unit])} {unit}"
+    number, unit = in_parts(value)
+    return f"{exactly(number)} {unit}"
 
 
 def _time(drive: Drive) -> Iterator[str]:
     yield _clock(drive.clock)
     yield _writes(drive.writes)
     if drive.loop is not None:
-        yield f"Events are heard {span(drive.loop)} after a mode is entered at the soonest (main loop)."
+        yield f"Events are heard {spanned(drive.loop)} after a mode is entered at the soonest (main loop)."
 
 
 def _clock(clock: Clock | None) -> str:
@@ -93,13 +80,13 @@ def _clock(clock: Clock | None) -> str:
 def _writes(writes: Writes | None) -> str:
     if writes is None:
         return "No write discipline is given."
-    apart = f", {span(writes.gap)} apart" if writes.gap.hi else ""
+    apart = f", {spanned(writes.gap)} apart" if writes.gap.hi else ""
     return f"Writes reach the pins {writes.how.value}{apart}, {writes.order.value}."
 
 
 def _part(part: Part) -> tuple[str, ...]:
     difference = "" if part.difference is None else f"at most {shown(part.difference)}"
-    return part.name, span(part.on), span(part.off), difference
+    return part.name, spanned(part.on), spanned(part.off), difference
 
 
 def _paths(drive: Drive) -> Iterator[tuple[str, ...]]:
@@ -107,16 +94,17 @@ def _paths(drive: Drive) -> Iterator[tuple[str, ...]]:
         parts = drive.paths[switch.name]
         on, off = reach(parts)
         through = ", ".join(part.name for part in parts) or "no path: taken as instant"
-        yield switch.name, through, span(on), span(off)
+        yield switch.name, through, spanned(on), spanned(off)
 
 
 def _pin(pin: Pin) -> tuple[str, ...]:
-    return pin.switch, pin.name, "high" if pin.active_high else "low", pin.rests.value, span(pin.after), pin.port or ""
+    active = "high" if pin.active_high else "low"
+    return pin.switch, pin.name, active, pin.rests.value, spanned(pin.after), pin.port or ""
 
 
 def _carrier(one: Carrier) -> tuple[str, ...]:
     duty = ratio(one.duty[0]) if one.duty[0] == one.duty[1] else f"{ratio(one.duty[0])} to {ratio(one.duty[1])}"
-    return one.name, hertz(one.frequency), duty, span(one.dead), one.update.value
+    return one.name, hertz(one.frequency), duty, spanned(one.dead), one.update.value
 
 
 def _stage(drive: Drive) -> Iterator[tuple[str, str]]:

@@ -47,7 +47,7 @@ class End:
 
 
 @dataclass(frozen=True, slots=True)
-class Part:
+class Patch:
     """A piece of a range, both ends included (`last` None: without end).
 
     With `whole` it is shown by one proof in which the quantity takes any value of it; else its values one step apart
@@ -89,6 +89,6 @@ class Sized:
     holds: bool
     low: End | None
     high: End | None
-    parts: tuple[Part, ...]
+    parts: tuple[Patch, ...]
     tried: Tried | None = None
     idle: bool = False

@@ -15,7 +15,7 @@ from seqcheck.commands.over import Over
 from seqcheck.commands.size import Asked, WrongCall, exit_of, size
 from seqcheck.language.varied import Varied
 from seqcheck.messages import Problems
-from seqcheck.ranges import Ends, Part, Sized
+from seqcheck.ranges import Ends, Patch, Sized
 from seqcheck.verdict import Check, Finding, Outcome, Unsafe
 
 SAMPLES = Path(__file__).parent.parent / "samples"
@@ -128,7 +128,7 @@ def test_a_wait_has_a_least_value_and_no_greatest() -> None:
     assert range_of(found) == (58 * US, None)
     assert found.holds
     assert checks_beyond(found, low=True) == {"overlap"}
-    assert found.parts == (Part(Fraction(58 * US), None, True),)
+    assert found.parts == (Patch(Fraction(58 * US), None, True),)
     assert exit_of(found) == 0
 
 

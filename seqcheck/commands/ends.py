@@ -8,7 +8,7 @@ from math import ceil, floor
 from seqcheck.checking import check
 from seqcheck.commands.over import Key, Observer, Over
 from seqcheck.messages import Problems
-from seqcheck.ranges import Beyond, End, Ends, Part, Tried
+from seqcheck.ranges import Beyond, End, Ends, Patch, Tried
 from seqcheck.reports.waived import reason
 from seqcheck.verdict import WARNINGS, Check, Finding, Outcome, Undecided, Unsafe
 
@@ -46,7 +46,7 @@ class Found:
 
     low: End
     high: End
-    parts: tuple[Part, ...]
+    parts: tuple[Patch, ...]
 
 
 class Search:
@@ -108,15 +108,15 @@ class Search:
 
     # One end
 
-    def _end(self, value: Callable[[int], Fraction]) -> tuple[End, list[Part]]:
+    def _end(self, value: Callable[[int], Fraction]) -> tuple[End, list[Patch]]:
         """The end on one side of a value that holds, and the pieces from there to it."""
-        parts: list[Part] = []
+        parts: list[Patch] = []
         start, up = 0, value(1) > value(0)
         while True:
             if up and self._over.holds(value(start), None):
-                return End(None, Ends.OPEN), [*parts, Part(value(start), None, True)]
+                return End(None, Ends.OPEN), [*parts, Patch(value(start), None, True)]
             last = self._farthest(value, start)
-            parts.append(Part(value(start), value(last), True))
+            parts.append(Patch(value(start), value(last), True))
             if abs(value(last)) > self._most(value(0)):
                 return End(value(last), Ends.FAR), parts
             beyond = self.judged(value(last + 1))
@@ -159,9 +159,9 @@ class Search:
     def _most(self, value: Fraction) -> Fraction:
         return max(abs(value), self._step) * FARTHEST
 
-    def _joined(self, parts: tuple[Part, ...]) -> Iterator[Part]:
+    def _joined(self, parts: tuple[Patch, ...]) -> Iterator[Patch]:
         """Neighbours in one where one proof is enough for both, single values one step apart as such."""
-        before: Part | None = None
+        before: Patch | None = None
         for one in parts:
             both = None if before is None else self._both(before, one)
             if both is None and before is not None:
@@ -170,15 +170,15 @@ class Search:
         if before is not None:
             yield before
 
-    def _both(self, one: Part, other: Part) -> Part | None:
+    def _both(self, one: Patch, other: Patch) -> Patch | None:
         if one.whole and other.whole and one.last == other.first and self._over.holds(one.first, other.last):
-            return Part(one.first, other.last, True)
+            return Patch(one.first, other.last, True)
         if one.last == other.first and (one.first == one.last or other.first == other.last):
             return one if other.first == other.last else other
         if one.last is None or other.last is None or other.first - one.last > self._step:
             return None
         alone = (not one.whole or one.first == one.last) and (not other.whole or other.first == other.last)
-        return Part(one.first, other.last, False) if alone else None
+        return Patch(one.first, other.last, False) if alone else None
 
 
 def holds(outcome: Outcome) -> bool:
@@ -220,7 +220,7 @@ def _ordered(one: Fraction, other: Fraction) -> tuple[Fraction, Fraction]:
     return min(one, other), max(one, other)
 
 
-def _turned(part: Part) -> Part:
+def _turned(part: Patch) -> Patch:
     """A piece that was found downwards."""
     assert part.last is not None
-    return Part(part.last, part.first, part.whole)
+    return Patch(part.last, part.first, part.whole)

@@ -13,7 +13,7 @@ from seqcheck.language.values import MOST_DIGITS, Unit, in_unit
 from seqcheck.language.varied import Varied
 from seqcheck.messages import nearest
 from seqcheck.quantities import PICOSECONDS
-from seqcheck.ranges import End, Ends, Measure, Part, Sized
+from seqcheck.ranges import End, Ends, Measure, Patch, Sized
 from seqcheck.reports import screen
 from seqcheck.reports import sized as wording
 from seqcheck.source import printable
@@ -86,7 +86,7 @@ def size(text: str, asked: Asked, fetch: Callable[[str], str], observer: Observe
     search = Search(over, asked.file, step, observer)
     low: End | None = None
     high: End | None = None
-    parts: tuple[Part, ...] = ()
+    parts: tuple[Patch, ...] = ()
     tried, idle = None, over.idle(today)
     if not idle and holds(now):
         found = search.around(today)

@@ -8,7 +8,7 @@ from math import ceil, floor
 from seqcheck import __version__
 from seqcheck.messages import Problem
 from seqcheck.quantities import in_hertz, in_parts, nearly, shown
-from seqcheck.ranges import Beyond, End, Ends, Measure, Part, Sized
+from seqcheck.ranges import Beyond, End, Ends, Measure, Patch, Sized
 from seqcheck.reports import document as outcome_document
 from seqcheck.reports.counterexample import counterexample, sentence
 from seqcheck.reports.pieces import Line, Piece, Tone, counted, line, listed, paragraph, visible
@@ -165,7 +165,7 @@ def _rests(found: Sized) -> Iterator[str]:
         yield "Whether each waiver still matches something does not count here"
 
 
-def _piece(found: Sized, part: Part) -> str:
+def _piece(found: Sized, part: Patch) -> str:
     if part.last is None:
         return f"any value from {value(found, part.first)} on"
     if part.first == part.last:
@@ -281,5 +281,5 @@ def _document_of(found: Sized, beyond: Beyond) -> dict[str, object]:
     return {"value": _exactly(found, beyond.value), "lint": whole["files"][0]}
 
 
-def _part(part: Part) -> dict[str, object]:
+def _part(part: Patch) -> dict[str, object]:
     return {"first": str(part.first), "last": None if part.last is None else str(part.last), "whole": part.whole}

@@ -69,7 +69,7 @@ class Share:
 
 
 @dataclass(frozen=True, slots=True)
-class Stuck:
+class SwitchFaults:
     """What one switch that is stuck brings about, with the hazards to ask anew (see failing.asked_anew)."""
 
     number: int
@@ -80,7 +80,7 @@ class Stuck:
     end: float | None = None
 
 
-Piece = Whole | Share | Stuck
+Piece = Whole | Share | SwitchFaults
 
 
 class NoHands(Exception):  # noqa: N818 - it says what the system or the call is to blame for
@@ -120,13 +120,13 @@ class Parts:
 
 
 @dataclass(frozen=True, slots=True)
-class Brought:
+class FaultsFound:
     """What one switch brings about."""
 
     faults: "tuple[Faulted, ...]"
 
 
-Result = Judged | Parts | Brought | Trouble
+Result = Judged | Parts | FaultsFound | Trouble
 
 
 # What is said before an answer
@@ -203,7 +203,7 @@ class Hand:
                     return self._whole(piece)
                 case Share():
                     return Parts(self._settled(self._prover(piece), list(piece.hazards), piece.call, piece.end))
-                case Stuck():
+                case SwitchFaults():
                     return self._stuck(piece)
         except Exception as fault:
             return trouble_of(fault)
@@ -266,13 +266,13 @@ class Hand:
 
         return with_faults(outcome, self._watched(observer(call.limits)))
 
-    def _stuck(self, piece: Stuck) -> Brought:
+    def _stuck(self, piece: SwitchFaults) -> FaultsFound:
         from seqcheck.failing import faults_of
 
         watched = self._watched(observer(piece.call.limits, piece.end))
-        return Brought(tuple(faults_of(self._prover(piece), piece.switch, *piece.asked, watched)))
+        return FaultsFound(tuple(faults_of(self._prover(piece), piece.switch, *piece.asked, watched)))
 
-    def _prover(self, piece: Share | Stuck) -> "Prover":
+    def _prover(self, piece: Share | SwitchFaults) -> "Prover":
         """The prover of the piece's drive, which pieces of one drive share."""
         from pickle import loads
 

@@ -8,8 +8,8 @@ from seqcheck.messages import Problems
 from seqcheck.opening import STDIN, text_of, used_text
 from seqcheck.verdict import Outcome, Unread
 from seqcheck.work.pieces import (
-    Brought,
     Call,
+    FaultsFound,
     Hands,
     Instead,
     Judged,
@@ -17,7 +17,7 @@ from seqcheck.work.pieces import (
     Piece,
     Result,
     Share,
-    Stuck,
+    SwitchFaults,
     Told,
     Trouble,
     Whole,
@@ -157,8 +157,8 @@ class _Plan:
                 self._counted(Told(0, 0 if self._crew.machine else len(said.settled), 0))
                 file.settled.update(said.settled)
                 self._put_together(piece.number, file)
-            case Brought():
-                assert isinstance(piece, Stuck)
+            case FaultsFound():
+                assert isinstance(piece, SwitchFaults)
                 file.faults[piece.switch] = said.faults
             case Trouble():
                 self._troubled(piece, file, said)
@@ -170,7 +170,7 @@ class _Plan:
             case Share():
                 file.settled.update({number: trouble for number, _ in piece.hazards})
                 self._put_together(piece.number, file)
-            case Stuck():
+            case SwitchFaults():
                 file.faults[piece.switch] = trouble
 
     def _put_together(self, number: int, file: _File) -> None:
@@ -206,7 +206,7 @@ class _Plan:
         file.switches = tuple(switch.name for switch in drive.stage.switches)
         end = self._call.limits.end() if self._crew.machine else None  # other machines have other clocks
         for switch in reversed(file.switches):
-            self._crew.give(Stuck(number, file.drive, switch, asked, self._call, end), first=True)
+            self._crew.give(SwitchFaults(number, file.drive, switch, asked, self._call, end), first=True)
 
     def _ready(self, file: _File) -> bool:
         if file.trouble is not None:
